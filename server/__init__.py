@@ -1,0 +1,1 @@
+"""Titrant Ledger: from the first weighing to the number on the bottle."""

@@ -1,0 +1,1 @@
+"""Atomic weights, substances, reactions, equilibria and cautions, each value with its source."""

@@ -1,0 +1,1 @@
+"""Passwords and tokens."""

@@ -1,0 +1,1 @@
+"""From points of a titration curve to equivalence volumes."""

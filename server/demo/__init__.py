@@ -1,0 +1,1 @@
+"""The demonstration laboratory, made through the procedures."""

@@ -1,0 +1,1 @@
+"""Numbers to SVG marks and chart data; knows nothing of where the numbers come from."""

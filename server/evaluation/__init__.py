@@ -1,0 +1,1 @@
+"""A bench record in, a bench result out: versioned calculations, snapshot, replay."""

@@ -1,0 +1,1 @@
+"""Bytes and typed lines to values."""

@@ -1,0 +1,1 @@
+"""The GUM's arithmetic and the physics of weighing and measuring volume; knows no chemistry."""

@@ -1,0 +1,1 @@
+"""What the laboratory does: one frozen command, one function, one effect."""

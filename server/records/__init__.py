@@ -1,0 +1,1 @@
+"""SQLAlchemy: engine, transaction, columns, tables, queries, trail; the only home of SQL."""

@@ -1,0 +1,1 @@
+"""The selects, one module a noun."""

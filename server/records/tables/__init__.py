@@ -1,0 +1,1 @@
+"""The tables, one module a noun."""

@@ -1,0 +1,1 @@
+"""What leaves the laboratory: a sheet in, bytes out."""

@@ -1,0 +1,1 @@
+"""What the laboratory reads: frozen read models for templates and JSON alike."""

@@ -1,0 +1,52 @@
+"""A certificate as it is read: the issued document and its state today."""
+
+from dataclasses import dataclass
+
+from server.sheets.bench import FindingView, RestsOn, SignatureView
+from server.sheets.countersign import BudgetRow, ReplicateRow
+
+
+@dataclass(frozen=True, slots=True)
+class CertificatePage:
+    """The issued statement of a lot's concentration."""
+
+    number: str
+    state: str
+    replaced_by: str | None
+    replaces: str | None
+    title: str
+    laboratory: str
+    address: str
+    titrant: str
+    nominal: str
+    lot_code: str
+    lot_name: str
+    sheet_number: str
+    value: str
+    uncertainty: str
+    unit: str
+    k: str
+    coverage: str
+    factor: str
+    temperature: str
+    valid_for: str
+    valid_until: str
+    valid_until_rule: str
+    measured_on: str
+    issued_on: str
+    method: str
+    traceability: tuple[RestsOn, ...]
+    findings: tuple[FindingView, ...]
+    corrections: tuple[str, ...]
+    remarks: tuple[str, ...]
+    replicates: tuple[ReplicateRow, ...]
+    budget: tuple[BudgetRow, ...]
+    bars: str
+    dots: str
+    signatures: tuple[SignatureView, ...]
+    calculation: str
+    input_digest: str
+    document_digest: str
+    document_holds: bool
+    trail_anchor: str
+    statements: tuple[str, ...]

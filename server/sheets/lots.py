@@ -1,0 +1,39 @@
+"""A titrant lot as it is read."""
+
+from dataclasses import dataclass
+
+from server.sheets.bench import SheetLine
+from server.sheets.shelf import BottleLine, HistoryLine
+from server.sheets.stores import Fact
+
+
+@dataclass(frozen=True, slots=True)
+class LotPage:
+    """One lot: preparation, bottles, sheets, certificates."""
+
+    id: str
+    code: str
+    name: str
+    title: str
+    state: str
+    why: str
+    facts: tuple[Fact, ...]
+    bottles: tuple[BottleLine, ...]
+    sheets: tuple[SheetLine, ...]
+    certificates: tuple[HistoryLine, ...]
+    history_chart: str
+    may_bottle: bool
+    may_hold: bool
+    may_release: bool
+    may_standardize: bool
+    may_propose_pull: bool
+    may_confirm_pull: bool
+    pull_says: str
+
+
+@dataclass(frozen=True, slots=True)
+class MakeUpPage:
+    """What the form for a new lot offers."""
+
+    titrants: tuple[tuple[str, str], ...]
+    proposed_name: str

@@ -1,0 +1,1 @@
+"""Outliers, spread, comparison of methods, series over time."""

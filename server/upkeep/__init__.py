@@ -1,0 +1,1 @@
+"""Backup, restore, move, trail check, bench."""

@@ -1,0 +1,1 @@
+"""Form fields to commands."""
