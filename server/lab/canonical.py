@@ -1,4 +1,4 @@
-"""Canonical text: the one spelling of a value that digests, signatures and the trail are made of."""
+"""Canonical text: the one spelling of a value that digests, signatures and trail are made of."""
 
 import hashlib
 import json

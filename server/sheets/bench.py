@@ -32,7 +32,10 @@ class StruckEntry:
 
 @dataclass(frozen=True, slots=True)
 class BenchRow:
-    """One row. ``kind``: number, step, choice, text. ``low``/``high`` are bounds as text."""
+    """One row. ``kind``: number, step, choice, text.
+
+    ``low`` and ``high`` are what is possible, ``usual_low`` and ``usual_high`` what is usual.
+    """
 
     replicate: int
     slot: str
@@ -49,6 +52,8 @@ class BenchRow:
     high: str | None
     value: EntryView | None
     struck: tuple[StruckEntry, ...]
+    usual_low: str | None = None
+    usual_high: str | None = None
 
 
 @dataclass(frozen=True, slots=True)

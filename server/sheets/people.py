@@ -32,10 +32,14 @@ class PeoplePage:
 
 @dataclass(frozen=True, slots=True)
 class Chrome:
-    """What every page shows around itself: who is here, where, how many sheets wait."""
+    """What every page shows around itself: who is here, where, how many sheets wait.
+
+    ``person_id`` keeps one person's unsent entries apart from another's on a shared tablet.
+    """
 
     laboratory: str
     printed_name: str | None
     initials: str | None
     roles: tuple[str, ...]
     waiting: int
+    person_id: str | None = None

@@ -1,0 +1,132 @@
+"""Hands that do the demo laboratory's work through the procedures, one act a transaction."""
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field
+from datetime import datetime, timedelta
+from random import Random
+from typing import Any, TypeVar
+from uuid import UUID
+
+from sqlalchemy.orm import Session
+
+from server.demo.cast import Member
+from server.demo.simulated import Line
+from server.lab.actor import Actor, Proof
+from server.lab.ink import standing
+from server.lab.people import initials_of
+from server.procedures.bench import BeginSheet, begin_sheet
+from server.procedures.countersign import Countersign, countersign_sheet
+from server.procedures.entries import NewEntry, WriteEntries, write_entries
+from server.procedures.hand_in import (
+    HandIn,
+    evaluate_sheet,
+    failing,
+    hand_in_sheet,
+    prepare_hand_in,
+)
+from server.records.queries.load_sheet import load_sheet_facts
+from server.records.transaction import Transactions
+
+T = TypeVar("T")
+
+
+@dataclass(slots=True)
+class Hands:
+    """The demo's people at work; ``random`` makes ids, codes and scatter repeatable."""
+
+    transactions: Transactions
+    zone: str
+    random: Random
+    ids: dict[str, str] = field(default_factory=dict)
+
+    def actor(self, member: Member) -> Actor:
+        """Return a member as the one who acts."""
+        return Actor(
+            person_id=self.ids[member.sign_in_name],
+            printed_name=member.printed_name,
+            initials=initials_of(member.printed_name),
+            roles=frozenset(member.roles),
+            zone=self.zone,
+        )
+
+    def do(
+        self, procedure: Callable[..., T], command: Any, member: Member, at: datetime, **more: Any
+    ) -> T:
+        """Run one procedure as one member at one instant, in its own transaction."""
+
+        def work(session: Session) -> T:
+            return procedure(session, command, actor=self.actor(member), now=at, **more)
+
+        return self.transactions.write(work)
+
+    def begin(self, command: BeginSheet, member: Member, at: datetime) -> str:
+        """Begin a bench sheet."""
+        return self.do(begin_sheet, command, member, at)
+
+    def write(self, sheet_id: str, lines: Sequence[Line], member: Member, at: datetime) -> None:
+        """Write entries on a sheet."""
+        entries = tuple(self._entry(line) for line in lines)
+        self.do(write_entries, WriteEntries(sheet_id, entries), member, at)
+
+    def correct(self, sheet_id: str, line: Line, reason: str, member: Member, at: datetime) -> None:
+        """Strike what stands in a row and write it anew."""
+        facts = self.transactions.read(lambda session: load_sheet_facts(session, sheet_id))
+        stands = standing(facts.entries)[(line[0], line[1], 1)]
+        entry = self._entry(line, strikes=stands.id, reason=reason)
+        self.do(write_entries, WriteEntries(sheet_id, (entry,)), member, at)
+
+    def leave_out(
+        self, sheet_id: str, replicate: int, why: tuple[str, str], member: Member, at: datetime
+    ) -> None:
+        """Leave a replicate out of the mean, with criterion and reason."""
+        entry = self._entry((replicate, "excluded", why[0]), reason=why[1])
+        self.do(write_entries, WriteEntries(sheet_id, (entry,)), member, at)
+
+    def hand_in(
+        self,
+        sheet_id: str,
+        member: Member,
+        at: datetime,
+        *,
+        reasons: Mapping[str, str] | None = None,
+    ) -> None:
+        """Evaluate a sheet and hand it in; what fails without a reason of its own gets a plain one.
+
+        Signatures of the demo need no password: nobody sits at the keyboard yet.
+        """
+        actor = self.actor(member)
+        prepared = self.transactions.read(
+            lambda session: prepare_hand_in(session, sheet_id, actor=actor, now=at)
+        )
+        evaluated = evaluate_sheet(prepared)
+        names = failing(evaluated.result["findings"])
+        given = {name: (reasons or {}).get(name, "seen, see remark") for name in names}
+        command = HandIn(sheet_id, prepared.revision, given)
+        proof = Proof(actor.person_id, at)
+        self.transactions.write(
+            lambda session: hand_in_sheet(
+                session, command, evaluated, actor=actor, proof=proof, now=at
+            )
+        )
+
+    def countersign(self, sheet_id: str, member: Member, at: datetime) -> None:
+        """Countersign a sheet, accepting by name what fails."""
+        facts = self.transactions.read(lambda session: load_sheet_facts(session, sheet_id))
+        accepted = failing(facts.evaluation.result["findings"]) if facts.evaluation else []
+        command = Countersign(sheet_id, facts.revision, tuple(accepted))
+        proof = Proof(self.ids[member.sign_in_name], at)
+        self.do(countersign_sheet, command, member, at, proof=proof)
+
+    def _entry(
+        self, line: Line, *, strikes: str | None = None, reason: str | None = None
+    ) -> NewEntry:
+        replicate, slot, text = line
+        uuid = str(UUID(int=self.random.getrandbits(128), version=4))
+        return NewEntry(
+            id=uuid, replicate=replicate, slot=slot, text=text, strikes=strikes, reason=reason
+        )
+
+
+def minutes(count: float) -> timedelta:
+    """Return a span of minutes."""
+    return timedelta(minutes=count)

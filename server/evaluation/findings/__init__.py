@@ -1,0 +1,1 @@
+"""Checks that a reviewer sees, each with figure, limit, verdict, basis and a plain sentence."""

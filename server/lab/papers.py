@@ -1,0 +1,117 @@
+"""What the papers of standard lots and instruments must state, read strictly."""
+
+from collections.abc import Mapping, Sequence
+from decimal import Decimal
+from itertools import pairwise
+from typing import Any
+
+from server.lab import reading_documents as reading
+from server.lab.refusal import Unacceptable
+from server.lab.sheet_facts import BALANCE, BURETTE, INSTRUMENT_KINDS, ROOM, THERMOMETER
+from server.metrology.decimal_text import DecimalProblem, read_wire_decimal
+
+_KEYS = {
+    BALANCE: ("linearity", "error_table", "error_u"),
+    BURETTE: ("capacity", "delivery", "error_table", "glass_expansion"),
+    THERMOMETER: ("reading",),
+    ROOM: ("temperature", "pressure", "humidity"),
+}
+_ROOM_UNITS = {"temperature": "Cel", "pressure": "hPa", "humidity": "%"}
+
+
+def check_kind(kind: str) -> str:
+    """Return the kind of an instrument, or refuse one that is not known."""
+    if kind not in INSTRUMENT_KINDS:
+        says = f"kind cannot be “{kind}”; it is one of {', '.join(INSTRUMENT_KINDS)}."
+        raise Unacceptable(says, field="kind", example=BALANCE)
+    return kind
+
+
+def read_calibration(kind: str, document: Any) -> dict[str, Any]:
+    """Return a calibration's statements: the fragment of a bench record.
+
+    Raises:
+        Unacceptable: an unknown key, a missing statement, a wrong unit, a table out of order.
+    """
+    doc = reading.known_keys(document, "document", _KEYS[kind])
+    if kind == BALANCE:
+        read = {
+            "linearity": _bound(doc, "linearity", "g", required=True),
+            "error_table": _table(doc, "load in g"),
+            "error_u": _bound(doc, "error_u", "g"),
+        }
+    elif kind == BURETTE:
+        read = {
+            "capacity": reading.quantity_at(doc, "capacity", "document", unit="mL"),
+            "delivery": _bound(doc, "delivery", "mL"),
+            "error_table": _table(doc, "reading in mL"),
+            "glass_expansion": _decimal(doc, "glass_expansion"),
+        }
+        _need(read, "capacity", '{"value": "20", "unit": "mL"}')
+        if read["delivery"] is None and read["error_table"] is None:
+            says = "Give the bound of a delivery, the table of errors, or both."
+            raise Unacceptable(says, field="document.delivery", example=_DELIVERY)
+    elif kind == THERMOMETER:
+        read = {"reading": _bound(doc, "reading", "Cel", required=True)}
+    else:
+        read = {key: _bound(doc, key, unit, required=True) for key, unit in _ROOM_UNITS.items()}
+    return {key: value for key, value in read.items() if value is not None}
+
+
+_DELIVERY = '{"unit": "mL", "half_width": "0.03", "shape": "triangular"}'
+
+
+def _need(read: Mapping[str, Any], key: str, example: str) -> None:
+    if read.get(key) is None:
+        says = f"document.{key} is missing."
+        raise Unacceptable(says, field=f"document.{key}", example=example)
+
+
+def _bound(
+    doc: Mapping[str, Any], key: str, unit: str, *, required: bool = False
+) -> dict[str, Any] | None:
+    """Return a bound: a quantity that states an uncertainty and no value."""
+    bound = reading.quantity_at(doc, key, "document", unit=unit, needs_value=False)
+    example = f'{{"unit": "{unit}", "half_width": "0.1", "shape": "rectangular"}}'
+    if required:
+        _need({key: bound}, key, example)
+    if bound is None:
+        return None
+    if not {"u", "U", "half_width"} & bound.keys() or "value" in bound:
+        says = f"document.{key} is a bound: it states an uncertainty and no value."
+        raise Unacceptable(says, field=f"document.{key}", example=example)
+    return bound
+
+
+def _decimal(doc: Mapping[str, Any], key: str) -> str | None:
+    if doc.get(key) in {None, ""}:
+        return None
+    _number(doc[key], f"document.{key}", example="9.9e-6")
+    return str(doc[key])
+
+
+def _table(doc: Mapping[str, Any], head: str) -> list[list[str]] | None:
+    table = doc.get("error_table")
+    if not table:
+        return None
+    field, example = "document.error_table", '[["0", "0.0000"], ["100", "0.0001"]]'
+    good = isinstance(table, Sequence) and not isinstance(table, str) and len(table) > 1
+    if not good or any(not isinstance(row, Sequence) or len(row) != 2 for row in table):
+        says = f"{field} needs at least two rows of two numbers: {head}, error."
+        raise Unacceptable(says, field=field, example=example)
+    readings = [_number(row[0], f"{field}[{i}]", example="10.0") for i, row in enumerate(table)]
+    for i, row in enumerate(table):
+        _number(row[1], f"{field}[{i}]", example="-0.003")
+    if any(a >= b for a, b in pairwise(readings)):
+        says = f"{field}: the {head} must rise from row to row."
+        raise Unacceptable(says, field=field, example=example)
+    return [[str(row[0]), str(row[1])] for row in table]
+
+
+def _number(value: Any, path: str, *, example: str) -> Decimal:
+    if not isinstance(value, str):
+        raise Unacceptable(f"{path} must be a number as text.", field=path, example=example)
+    try:
+        return read_wire_decimal(value, path)
+    except DecimalProblem as problem:
+        raise Unacceptable(problem.says, field=path, example=example) from problem

@@ -1,0 +1,37 @@
+"""What a signature is bound to: a digest that belongs to one record and no other."""
+
+from server.lab.canonical import canonical, digest
+from server.lab.ink import ink_digest
+from server.lab.sheet_facts import SheetFacts, SignatureFact
+
+MEASURED, COUNTERSIGNED = "measured", "countersigned"
+
+
+def digest_to_sign(signature: SignatureFact, facts: SheetFacts, snapshot_digest: str) -> str:
+    """Return the digest of who signs what, when and in which meaning, with all that was written.
+
+    Entries received after the signature do not belong to it; the signature's own digest does not
+    enter.
+    """
+    ink = ink_digest(entry for entry in facts.entries if entry.received_at <= signature.at)
+    return digest(
+        canonical(
+            {
+                "sheet": facts.id,
+                "snapshot": snapshot_digest,
+                "ink": ink,
+                "person": signature.person_id,
+                "printed_name": signature.printed_name,
+                "meaning": signature.meaning,
+                "at": signature.at.isoformat(),
+                "zone": signature.zone,
+                "reasons": signature.reasons,
+                "remark": signature.remark,
+            }
+        )
+    )
+
+
+def signature_holds(signature: SignatureFact, facts: SheetFacts, snapshot_digest: str) -> bool:
+    """Say whether a signature still belongs to this sheet, this evaluation and what is written."""
+    return signature.signed_digest == digest_to_sign(signature, facts, snapshot_digest)

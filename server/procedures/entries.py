@@ -1,0 +1,334 @@
+"""Writing entries: the one door, in ink."""
+
+from dataclasses import asdict, dataclass
+from datetime import datetime
+from typing import Any
+from uuid import UUID
+
+from sqlalchemy.orm import Session
+
+from server.lab.actor import Actor
+from server.lab.canonical import canonical, digest
+from server.lab.in_use import kind_of_slot, things_in_use
+from server.lab.ink import WrittenEntry, standing
+from server.lab.readings import Beside, check_reading
+from server.lab.refusal import KeyMissing, NotAllowed, SavedFirst, Unacceptable
+from server.lab.rig import rig_of
+from server.lab.roles import Act
+from server.lab.sheet_facts import SheetFacts
+from server.lab.slots import row_at
+from server.lab.states import OPEN, SENT_BACK
+from server.lab.validity import read_zone
+from server.procedures.acts import Thing, note_act
+from server.procedures.bench import lock_sheet
+from server.records.queries.load_entries import entry_of_device
+from server.records.queries.load_sheet import load_sheet_facts
+from server.records.tables.bench import Entry, Sheet
+from server.records.tables.people import Device
+
+MOST_ENTRIES = 500
+_MOST_TEXT = 2000
+
+
+@dataclass(frozen=True, slots=True)
+class NewEntry:
+    """One thing to write. ``id`` is a UUID made by the writer: the entry's idempotency key.
+
+    ``text`` stays as typed; an empty one only strikes. ``strikes`` is the entry that this one
+    replaces, with ``reason``. Replicate 0 is the sheet.
+    """
+
+    id: str
+    replicate: int
+    slot: str
+    text: str
+    segment: int = 1
+    unit: str | None = None
+    raw: str | None = None
+    strikes: str | None = None
+    reason: str | None = None
+    device_id: str | None = None
+    device_sequence: int | None = None
+    device_at: str | None = None
+    device_zone: str | None = None
+    monotonic_ms: int | None = None
+    base_revision: int | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class WriteEntries:
+    """Entries for one sheet, in the order in which they were written; all or none are taken."""
+
+    sheet_id: str
+    entries: tuple[NewEntry, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Written:
+    """Where an entry stands now; ``repeated`` where it had come before."""
+
+    id: str
+    position: int
+    repeated: bool
+
+
+def write_entries(
+    session: Session, command: WriteEntries, *, actor: Actor, now: datetime
+) -> tuple[Written, ...]:
+    """Write entries on a sheet; a repeated one gets its first answer and writes nothing.
+
+    Raises:
+        KeyMissing: an entry has no UUID.
+        SavedFirst: somebody else wrote in the row first; both values are shown.
+        Unacceptable: a reading that cannot be, or a UUID that came before with another content.
+    """
+    actor.need(Act.WRITE)
+    if not 1 <= len(command.entries) <= MOST_ENTRIES:
+        says = f"Send 1 to {MOST_ENTRIES} entries at a time."
+        raise Unacceptable(says, field="entries")
+    for entry in command.entries:
+        _check_key(entry)
+    sheet = lock_sheet(session, command.sheet_id)
+    answers = [_earlier(session, sheet, entry) for entry in command.entries]
+    if all(answers):
+        return tuple(answer for answer in answers if answer)
+    facts = load_sheet_facts(session, sheet.id)
+    _need_writable(facts)
+    pen = _Pen(session, sheet, facts, actor=actor, now=now)
+    written = tuple(
+        answer or pen.write(entry) for answer, entry in zip(answers, command.entries, strict=True)
+    )
+    pen.finish()
+    return written
+
+
+def _check_key(entry: NewEntry) -> None:
+    if not entry.id:
+        raise KeyMissing("An entry needs its own UUID.", field="id", example=_EXAMPLE_UUID)
+    for field in ("id", "strikes", "device_id"):
+        value = getattr(entry, field)
+        if value is not None and not _is_uuid(value):
+            raise Unacceptable(f"{field} must be a UUID.", field=field, example=_EXAMPLE_UUID)
+
+
+_EXAMPLE_UUID = "7f0f3b1e-2f57-4c0c-9d62-0c6f8c1c9a11"
+
+
+def _is_uuid(text: str) -> bool:
+    try:
+        return str(UUID(text)) == text
+    except ValueError:
+        return False
+
+
+def _body_digest(sheet_id: str, entry: NewEntry) -> str:
+    return digest(canonical({"sheet_id": sheet_id, **asdict(entry)}))
+
+
+def _earlier(session: Session, sheet: Sheet, entry: NewEntry) -> Written | None:
+    """Return the first answer where this entry came before."""
+    row = session.get(Entry, entry.id)
+    if row is None:
+        return None
+    if row.body_digest != _body_digest(sheet.id, entry):
+        says = "This entry's UUID came before with something else in it; nothing was written now."
+        raise Unacceptable(says, field="id")
+    return Written(row.id, row.position, repeated=True)
+
+
+def _need_writable(facts: SheetFacts) -> None:
+    if facts.state not in {OPEN, SENT_BACK}:
+        says = f"This sheet is {facts.state}: nothing is written on it any more."
+        if facts.state == "handed in":
+            says += " A countersigner can send it back."
+        raise NotAllowed(says)
+    if facts.lot.pulled:
+        raise NotAllowed("This lot was pulled: it is out of use for good.")
+
+
+class _Pen:
+    """Writes entries one by one, each checked against what stands by then."""
+
+    def __init__(
+        self, session: Session, sheet: Sheet, facts: SheetFacts, *, actor: Actor, now: datetime
+    ) -> None:
+        self._session, self._sheet, self._facts = session, sheet, facts
+        self._actor, self._now = actor, now
+        self._rig = rig_of(facts.instruments)
+        self._entries = list(facts.entries)
+        self._refused = {one.kind: one for one in things_in_use(facts, at=now) if one.blocks}
+        self._lines: list[dict[str, Any]] = []
+
+    def write(self, entry: NewEntry) -> Written:
+        """Check one entry and write it."""
+        if entry.id in {one.id for one in self._entries}:
+            raise Unacceptable("Two entries in this list have the same UUID.", field="id")
+        row = row_at(
+            self._facts.recipe.document, self._rig, (entry.replicate, entry.slot, entry.segment)
+        )
+        self._check_in_date(entry, row.label)
+        stands = standing(self._entries)
+        self._check_strike(entry, stands.get(row.place), row.label)
+        if entry.text.strip() or not entry.strikes:
+            values = {place: one.text for place, one in stands.items() if place != row.place}
+            beside = Beside(values=values, rig=self._rig, reason=entry.reason)
+            check_reading(row, entry.text, entry.unit, beside)
+        return self._add(entry, row.unit)
+
+    def finish(self) -> None:
+        """Note what was written, and take up a sheet that was sent back."""
+        if self._sheet.sent_back_at is not None:
+            self._sheet.sent_back_at = None
+            self._sheet.handed_in_at = None
+        self._sheet.revision += 1
+        self._session.flush()
+        struck = any(line["strikes"] for line in self._lines)
+        reasons = [line["reason"] for line in self._lines if line["strikes"] and line["reason"]]
+        note_act(
+            self._session,
+            "corrected entries" if struck else "wrote entries",
+            Thing("sheet", self._sheet.id, self._sheet.number),
+            actor=self._actor,
+            now=self._now,
+            why="; ".join(dict.fromkeys(reasons)) or None,
+            body={"entries": self._lines},
+        )
+
+    def _check_in_date(self, entry: NewEntry, label: str) -> None:
+        for kind in kind_of_slot(entry.slot):
+            if kind in self._refused:
+                says = f"{self._refused[kind].says} A keeper may let it be used with a reason."
+                raise Unacceptable(says, field=label)
+
+    def _check_strike(self, entry: NewEntry, stands: WrittenEntry | None, label: str) -> None:
+        if entry.strikes is None:
+            if stands is not None:
+                raise self._saved_first(entry, stands, label)
+            return
+        struck = next((one for one in self._entries if one.id == entry.strikes), None)
+        if struck is None or struck.place != (entry.replicate, entry.slot, entry.segment):
+            says = f"{label}: the entry to be struck is not in this row."
+            raise Unacceptable(says, field="strikes")
+        if stands is None or stands.id != struck.id:
+            raise self._saved_first(entry, stands, label)
+        if not (entry.reason or "").strip():
+            says = f"{label}: give the reason why {struck.text} is struck through."
+            raise Unacceptable(says, field="reason", example="misread")
+
+    def _saved_first(self, entry: NewEntry, stands: WrittenEntry | None, label: str) -> SavedFirst:
+        yours = {"text": entry.text, "unit": entry.unit, "by": self._actor.printed_name}
+        theirs = stands and {
+            "id": stands.id,
+            "text": stands.text,
+            "unit": stands.unit,
+            "by": stands.printed_name,
+            "at": stands.received_at.isoformat(),
+        }
+        says = (
+            f"{label}: {theirs['by']} wrote {theirs['text']} here first. Strike it through "
+            "with a reason to write anew."
+            if theirs
+            else f"{label}: this entry is struck through already."
+        )
+        return SavedFirst(says, field=label, shown={"standing": theirs, "yours": yours})
+
+    def _add(self, entry: NewEntry, unit: str | None) -> Written:
+        for name, value in (("reason", entry.reason), ("raw", entry.raw)):
+            if value is not None and len(value) > _MOST_TEXT:
+                raise Unacceptable(f"{name} takes up to {_MOST_TEXT} characters.", field=name)
+        self._check_device(entry)
+        position = len(self._entries) + 1
+        row = Entry(
+            id=entry.id,
+            sheet_id=self._sheet.id,
+            position=position,
+            replicate=entry.replicate,
+            slot=entry.slot,
+            segment=entry.segment,
+            text=entry.text,
+            unit=unit,
+            raw=entry.raw,
+            strikes=entry.strikes,
+            reason=(entry.reason or "").strip() or None,
+            person_id=self._actor.person_id,
+            posted_by=self._actor.person_id,
+            device_id=entry.device_id,
+            device_sequence=entry.device_sequence if entry.device_id else None,
+            device_at=_instant(entry),
+            device_zone=entry.device_zone,
+            monotonic_ms=entry.monotonic_ms,
+            received_at=self._now,
+            base_revision=entry.base_revision,
+            body_digest=_body_digest(self._sheet.id, entry),
+        )
+        self._session.add(row)
+        self._session.flush()
+        self._entries.append(self._as_written(row))
+        self._lines.append(
+            {
+                "id": row.id,
+                "position": position,
+                "replicate": row.replicate,
+                "slot": row.slot,
+                "segment": row.segment,
+                "text": row.text,
+                "unit": row.unit,
+                "strikes": row.strikes,
+                "reason": row.reason,
+            }
+        )
+        return Written(row.id, position, repeated=False)
+
+    def _check_device(self, entry: NewEntry) -> None:
+        if entry.device_id is None:
+            return
+        if self._session.get(Device, entry.device_id) is None:
+            self._session.add(Device(id=entry.device_id, name="", first_seen_at=self._now))
+            self._session.flush()
+        if entry.device_sequence is not None and entry_of_device(
+            self._session, entry.device_id, entry.device_sequence
+        ):
+            says = "This device has sent another entry with the same sequence number."
+            raise Unacceptable(says, field="device_sequence")
+
+    def _as_written(self, row: Entry) -> WrittenEntry:
+        return WrittenEntry(
+            id=row.id,
+            position=row.position,
+            replicate=row.replicate,
+            slot=row.slot,
+            segment=row.segment,
+            text=row.text,
+            unit=row.unit,
+            raw=row.raw,
+            strikes=row.strikes,
+            reason=row.reason,
+            person_id=row.person_id,
+            printed_name=self._actor.printed_name,
+            initials=self._actor.initials,
+            posted_by=row.posted_by,
+            device_id=row.device_id,
+            device_sequence=row.device_sequence,
+            device_at=row.device_at,
+            device_zone=row.device_zone,
+            received_at=row.received_at,
+            late=row.late,
+        )
+
+
+def _instant(entry: NewEntry) -> datetime | None:
+    """Return the device's time; it is kept beside the server's, which rules."""
+    if entry.device_zone is not None:
+        read_zone(entry.device_zone)
+    if entry.device_at is None:
+        return None
+    try:
+        at = datetime.fromisoformat(entry.device_at)
+    except ValueError as problem:
+        says = "device_at must be a time in ISO 8601 with its offset."
+        example = "2026-05-31T10:00:00+02:00"
+        raise Unacceptable(says, field="device_at", example=example) from problem
+    if at.tzinfo is None:
+        says = "device_at needs its offset from UTC."
+        raise Unacceptable(says, field="device_at", example="2026-05-31T10:00:00+02:00")
+    return at

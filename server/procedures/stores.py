@@ -1,0 +1,175 @@
+"""The stores: standard lots and recipes, kept by a keeper."""
+
+from dataclasses import dataclass
+from datetime import datetime
+from typing import Any
+from uuid import uuid4
+
+from sqlalchemy.orm import Session
+
+from server.chemistry.reactions import ratio
+from server.lab import reading_documents as reading
+from server.lab.actor import Actor
+from server.lab.people import check_name
+from server.lab.recipe import RecipeDocument, read_recipe
+from server.lab.refusal import SavedFirst, Unacceptable
+from server.lab.roles import Act
+from server.lab.validity import end_of_day, read_day
+from server.procedures.acts import Thing, note_act
+from server.records.queries.loading import newest_recipe_version, standard_lot_by_name
+from server.records.tables.stores import Recipe, StandardLot
+
+_BASES = ("as is", "dried")
+
+
+@dataclass(frozen=True, slots=True)
+class ReceiveStandardLot:
+    """A delivery of a primary standard with what its certificate states.
+
+    ``mass_fraction``, ``molar_mass`` (g/mol) and ``density`` (g/cm3) are quantities as in a bench
+    record; days are written year-month-day.
+    """
+
+    name: str
+    substance: str
+    certificate_number: str
+    issuer: str
+    due_on: str
+    due_basis: str
+    mass_fraction: dict[str, Any]
+    basis: str = "as is"
+    drying: str = ""
+    molar_mass: dict[str, Any] | None = None
+    density: dict[str, Any] | None = None
+    minimum_sample_g: str = ""
+    storage: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class WriteRecipe:
+    """A recipe, or a new version where the name exists.
+
+    ``version`` is the newest version that the writer has seen (0: a new recipe).
+    """
+
+    name: str
+    document: dict[str, Any]
+    version: int = 0
+
+
+def receive_standard_lot(
+    session: Session, command: ReceiveStandardLot, *, actor: Actor, now: datetime
+) -> str:
+    """Keep a standard lot; return its id.
+
+    Raises:
+        Unacceptable: a statement that cannot be taken, or a due day that is past.
+    """
+    actor.need(Act.KEEP)
+    name = check_name(command.name, "name", example="KHP lot 2026-3")
+    if standard_lot_by_name(session, name) is not None:
+        raise Unacceptable(f"There is a standard lot “{name}” already.", field="name")
+    due_at = end_of_day(read_day(command.due_on, "due_on"), actor.zone)
+    if due_at <= now:
+        raise Unacceptable("This standard lot's due day is past.", field="due_on")
+    row = StandardLot(
+        id=str(uuid4()),
+        name=name,
+        substance=check_name(command.substance, "substance", example="KHP"),
+        certificate_number=check_name(
+            command.certificate_number, "certificate_number", example="RM-1184"
+        ),
+        issuer=check_name(command.issuer, "issuer", example="producer of the standard"),
+        due_at=due_at,
+        due_basis=check_name(command.due_basis, "due_basis", example="expiry on the certificate"),
+        document=_statements(command),
+        made_by=actor.person_id,
+        made_at=now,
+    )
+    session.add(row)
+    session.flush()
+    thing = Thing("standard lot", row.id, row.name)
+    body = {"substance": row.substance, "due_on": command.due_on, **row.document}
+    note_act(session, "received a standard lot", thing, actor=actor, now=now, body=body)
+    return row.id
+
+
+def write_recipe(session: Session, command: WriteRecipe, *, actor: Actor, now: datetime) -> str:
+    """Write a recipe as a new version; return the version's id.
+
+    Raises:
+        SavedFirst: somebody else wrote a newer version meanwhile.
+        Unacceptable: the document cannot be taken.
+    """
+    actor.need(Act.KEEP)
+    name = check_name(command.name, "name", example="NaOH against KHP")
+    recipe = read_recipe(command.document)
+    _need_ratio(recipe)
+    newest = newest_recipe_version(session, name)
+    if command.version != newest:
+        says = (
+            f"“{name}” has version {newest} by now; look at it and write from there."
+            if newest
+            else f"There is no recipe “{name}” yet."
+        )
+        raise SavedFirst(says, field="version", shown={"standing": {"version": newest}})
+    row = Recipe(
+        id=str(uuid4()),
+        name=name,
+        version=newest + 1,
+        titrant=recipe.titrant.substance,
+        standard=recipe.standard,
+        document=command.document,
+        made_by=actor.person_id,
+        made_at=now,
+    )
+    session.add(row)
+    session.flush()
+    thing = Thing("recipe", row.id, f"{name}, version {row.version}")
+    note_act(session, "wrote a recipe", thing, actor=actor, now=now, body=command.document)
+    return row.id
+
+
+def _need_ratio(recipe: RecipeDocument) -> None:
+    if recipe.ratio is None and ratio(recipe.titrant.substance, recipe.standard) is None:
+        says = (
+            f"No reaction of {recipe.titrant.substance} with {recipe.standard} is known here: "
+            "state ratio, the amount of titrant per amount of standard."
+        )
+        raise Unacceptable(says, field="ratio", example="2/5")
+
+
+def _statements(command: ReceiveStandardLot) -> dict[str, Any]:
+    given: dict[str, Any] = {
+        "mass_fraction": command.mass_fraction,
+        "molar_mass": command.molar_mass,
+        "density": command.density,
+        "minimum_sample_g": command.minimum_sample_g or None,
+    }
+    units = {"mass_fraction": None, "molar_mass": "g/mol", "density": "g/cm3"}
+    read: dict[str, Any] = {
+        key: reading.quantity_at(given, key, "", unit=unit) for key, unit in units.items()
+    }
+    if read["mass_fraction"] is None:
+        says = "mass_fraction is missing."
+        example = '{"value": "0.9998", "U": "0.0004", "k": "2"}'
+        raise Unacceptable(says, field="mass_fraction", example=example)
+    fraction = float(read["mass_fraction"]["value"])
+    if not 0 < fraction <= 1.05:
+        says = "mass_fraction is a part of one, not of a hundred."
+        raise Unacceptable(says, field="mass_fraction", example="0.9998")
+    if command.basis not in _BASES:
+        says = f"basis is one of {', '.join(_BASES)}."
+        raise Unacceptable(says, field="basis", example="as is")
+    read["basis"] = command.basis
+    read["drying"] = command.drying.strip() or None
+    read["storage"] = command.storage.strip() or None
+    if command.minimum_sample_g:
+        read["minimum_sample_g"] = _grams(command.minimum_sample_g)
+    return {key: value for key, value in read.items() if value is not None}
+
+
+def _grams(text: str) -> str:
+    quantity = {"minimum_sample_g": {"value": text, "unit": "g"}}
+    reading.quantity_at(quantity, "minimum_sample_g", "", unit="g")
+    return text

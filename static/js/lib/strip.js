@@ -1,0 +1,31 @@
+// The words of the strip: what is kept where, and how far the sheet has come.
+
+/** "1 entry", "2 entries". */
+export function entries(count) {
+  return count === 1 ? "1 entry" : `${count} entries`;
+}
+
+/** Where the entries are, in one sentence; empty while all of them are on the server. */
+export function networkSays({ waiting, refused, state, detail }) {
+  const asks = refused > 0 ? `${entries(refused)} not taken: see the row.` : "";
+  if (waiting === 0) return asks;
+  const wait = waiting === 1 ? "waits" : "wait";
+  const kept = `${entries(waiting)} ${wait} on this tablet, nothing is lost.`;
+  const says = {
+    sending: `Sending ${entries(waiting)}.`,
+    offline: `No network: ${kept}`,
+    "signed out": `You are signed out: ${kept} Sign in again to send.`,
+    trouble: `${detail || "The server did not take them"}. ${kept}`.replace("..", "."),
+  }[state];
+  return [says ?? kept, asks].filter(Boolean).join(" ");
+}
+
+/** The parts of the one-line strip, most needed first. */
+export function lineParts(margin) {
+  const parts = margin.replicates
+    .filter((one) => one.value !== null && !one.excluded)
+    .map((one) => ({ term: one.label, value: one.value }));
+  if (margin.mean) parts.push({ term: "mean", value: margin.mean });
+  if (margin.spread) parts.push({ term: "spread", value: margin.spread });
+  return parts;
+}

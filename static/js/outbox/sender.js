@@ -1,0 +1,91 @@
+// Sends what waits, in order, under the uuids it was written with, until the server has answered.
+
+import { forTheDoor } from "../lib/entry.js";
+
+const PATIENCE_MS = 15000;
+const REFUSED = new Set([400, 404, 409, 412, 413, 415, 422]);
+
+/** One sender for one sheet. `door` is the address, `onChange(sheet or null)` redraws. */
+export class Sender {
+  constructor({ store, door, person, fetcher, onChange }) {
+    Object.assign(this, { store, door, person, fetcher, onChange });
+    this.state = "idle";
+    this.detail = "";
+    this.busy = false;
+    this.again = false;
+  }
+
+  /** Send all that waits; a call that comes meanwhile makes it look once more. */
+  async flush() {
+    if (this.busy) {
+      this.again = true;
+      return;
+    }
+    this.busy = true;
+    try {
+      do {
+        this.again = false;
+        await this.#round();
+      } while (this.again);
+    } finally {
+      this.busy = false;
+    }
+  }
+
+  /** A refused batch is sent one by one, so that one odd entry holds none of the others back. */
+  async #round() {
+    let single = false;
+    for (let batch = this.store.waiting(); batch.length > 0; batch = this.store.waiting()) {
+      this.#become("sending", "");
+      const sent = single ? batch.slice(0, 1) : batch;
+      const answer = await this.#post(sent);
+      if (answer.written) {
+        const ids = new Set(answer.written.map((one) => one.id));
+        const taken = sent.filter((entry) => ids.has(entry.id));
+        if (taken.length === 0) return this.#become("trouble", "");
+        for (const entry of taken) this.store.drop(entry.id);
+        this.#become("idle", "", answer.sheet);
+      } else if (REFUSED.has(answer.status) && sent.length > 1) {
+        single = true;
+      } else if (REFUSED.has(answer.status)) {
+        this.store.refuse(sent[0].id, answer.problem);
+        this.#become("idle", "");
+      } else {
+        return this.#become(stateFor(answer.status), answer.problem.detail ?? "");
+      }
+    }
+    return this.#become("idle", "");
+  }
+
+  async #post(entries) {
+    try {
+      const answer = await this.fetcher(this.door, {
+        method: "POST",
+        credentials: "same-origin",
+        headers: {
+          Accept: "application/json",
+          "Content-Type": "application/json",
+          "X-Titrant-Ledger": "bench",
+          ...(this.person ? { "X-Titrant-Person": encodeURIComponent(this.person) } : {}),
+        },
+        body: JSON.stringify({ entries: entries.map(forTheDoor) }),
+        signal: AbortSignal.timeout(PATIENCE_MS),
+      });
+      const said = await answer.json().catch(() => ({}));
+      return answer.ok && said.written ? said : { status: answer.status, problem: said };
+    } catch {
+      return { status: 0, problem: {} };
+    }
+  }
+
+  #become(state, detail, sheet = null) {
+    this.state = state;
+    this.detail = detail;
+    this.onChange(sheet);
+  }
+}
+
+function stateFor(status) {
+  if (status === 0) return "offline";
+  return status === 401 ? "signed out" : "trouble";
+}

@@ -1,0 +1,132 @@
+// The lit row: the one that is written next, or the one that is being corrected.
+
+import { echo, readTyped } from "../lib/reading.js";
+import { keyOf } from "../lib/overlay.js";
+import { el, unseen } from "./dom.js";
+
+/** The lit row as a form of its own; the pad's Write key belongs to it. */
+export function litRow(row, view, acts) {
+  const correcting = row.value !== null;
+  const key = keyOf(row);
+  const form = el(
+    "form",
+    { class: "lit", id: "lit", novalidate: true, on: { submit: (event) => (event.preventDefault(), acts.write()) } },
+    el(
+      "div",
+      { class: "label" },
+      el("label", { for: "reading" }, row.label, row.unit ? unseen(`, in ${row.unit}`) : null),
+      row.hint ? el("span", { class: "hint", id: "hint" }, row.hint) : null,
+    ),
+    fieldOf(row, view, acts),
+    el("span", { class: "unit", "aria-hidden": "true" }, row.unit === "Cel" ? "°C" : (row.unit ?? "")),
+    el("span", { class: "where" }, correcting ? "correcting" : "next"),
+    row.kind === "number" ? el("p", { class: "echo", id: "echo" }, echoOf(row, view.typed)) : null,
+    noteOf(row, view, acts),
+    correcting ? reasonsOf(row, view, acts) : null,
+  );
+  return el("li", { class: "row next", "data-key": key, "aria-current": "step" }, form);
+}
+
+/** What the typed text amounts to, said back while it is typed. */
+export function echoOf(row, typed) {
+  if (!typed.trim()) return "";
+  const reading = readTyped(typed, row);
+  return reading.says ? "" : echo(reading.text, row.unit === "Cel" ? "°C" : row.unit);
+}
+
+function fieldOf(row, view, acts) {
+  if (row.kind === "step") return stepButton(row, acts);
+  if (row.kind === "choice") return choices(row, acts);
+  return el(
+    "span",
+    { class: "values" },
+    row.value ? el("s", { class: "struck" }, unseen("to be struck through: "), row.value.text) : null,
+    el("input", {
+      id: "reading",
+      class: row.kind === "number" ? "reading" : "reading words",
+      type: "text",
+      inputmode: row.kind === "number" && !row.signed ? "decimal" : "text",
+      autocomplete: "off",
+      autocapitalize: "off",
+      spellcheck: "false",
+      enterkeyhint: "next",
+      maxlength: row.kind === "number" ? "80" : "500",
+      value: view.typed,
+      "aria-describedby": "hint echo note",
+      "aria-invalid": view.note ? "true" : false,
+      on: { input: (event) => acts.type(event.target.value) },
+    }),
+  );
+}
+
+function stepButton(row, acts) {
+  const press = { click: () => acts.choose("done") };
+  return el("button", { type: "button", id: "reading", class: "button point", on: press }, `Done: ${row.label}`);
+}
+
+function choices(row, acts) {
+  const buttons = row.choices.map((choice, place) =>
+    el(
+      "button",
+      { type: "button", id: place === 0 ? "reading" : false, class: "button", on: { click: () => acts.choose(choice) } },
+      choice,
+    ),
+  );
+  return el("span", { class: "choices", role: "group", "aria-label": row.label }, buttons);
+}
+
+function noteOf(row, view, acts) {
+  if (!view.note) return null;
+  const answers = (view.note.answers ?? []).map((answer) =>
+    el(
+      "button",
+      {
+        type: "button",
+        class: answer.key === "again" ? "button" : "button main",
+        "data-answer": answer.key,
+        on: { click: () => acts.answer(answer.key) },
+      },
+      answer.label,
+    ),
+  );
+  return el(
+    "div",
+    { class: "ask", id: "note" },
+    el("p", {}, view.note.says),
+    answers.length ? el("div", { class: "answers" }, answers) : null,
+  );
+}
+
+function reasonsOf(row, view, acts) {
+  const chips = view.reasons.map((reason) =>
+    el(
+      "label",
+      { class: "chip" },
+      el("input", {
+        type: "radio",
+        name: "reason",
+        value: reason,
+        checked: view.reason === reason,
+        on: { change: () => acts.reason(reason) },
+      }),
+      reason,
+    ),
+  );
+  const own = view.reasons.includes(view.reason) ? "" : view.reason;
+  return el(
+    "fieldset",
+    { class: "reasons" },
+    el("legend", {}, "Why is it struck through?"),
+    el("div", { class: "chips" }, chips),
+    el("label", { class: "own", for: "own-reason" }, "In your own words"),
+    el("input", {
+      id: "own-reason",
+      type: "text",
+      maxlength: "300",
+      autocomplete: "off",
+      value: own,
+      on: { input: (event) => acts.reason(event.target.value) },
+    }),
+    el("button", { type: "button", class: "button", on: { click: acts.leave } }, "Leave it as it is"),
+  );
+}
