@@ -283,7 +283,10 @@ def _reference(top: Fields) -> Reference | None:
 
 
 def _components(fields: Fields) -> tuple[Component, ...]:
-    rows, example = fields.document.get("components") or (), '[{"id": "B-3", "relative": "-0.0006"}]'
+    rows, example = (
+        fields.document.get("components") or (),
+        '[{"id": "B-3", "relative": "-0.0006"}]',
+    )
     if not isinstance(rows, list | tuple):
         fields.refuse("components", "This must be a list of components.", example)
     return tuple(_component(row, f"{fields.at('components')}[{i}]") for i, row in enumerate(rows))
@@ -423,7 +426,9 @@ def _check_liquids(top: Fields, record: BenchRecord) -> None:
     low, high = (-20.0, 120.0) if stated else WATER_RANGE_C
     for path, value in _temperatures(record):
         if not low <= value <= high:
-            says = f"{value:g} Cel lies outside {low:g} to {high:g} Cel, where volumes are reckoned."
+            says = (
+                f"{value:g} Cel lies outside {low:g} to {high:g} Cel, where volumes are reckoned."
+            )
             raise RecordProblem(path, says, '"20.5"')
 
 

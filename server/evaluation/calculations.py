@@ -5,9 +5,7 @@ from types import MappingProxyType, ModuleType
 from server.evaluation.methods import standardization_v1
 
 CURRENT: ModuleType = standardization_v1
-CALCULATIONS = MappingProxyType(
-    {(one.NAME, one.VERSION): one for one in (standardization_v1,)}
-)
+CALCULATIONS = MappingProxyType({(one.NAME, one.VERSION): one for one in (standardization_v1,)})
 
 
 class UnknownCalculation(Exception):  # noqa: N818 - an answer, not an error of the program

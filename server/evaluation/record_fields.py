@@ -128,7 +128,9 @@ class Fields:
         rows, example = self.document[key], '[["0", "0"], ["10", "0.003"]]'
         if not isinstance(rows, Sequence) or isinstance(rows, str) or len(rows) < 2:
             self.refuse(key, "An error table needs at least two rows of two values.", example)
-        table = tuple(pair_at(row, f"{self.at(key)}[{i}]", '["10", "0.003"]') for i, row in enumerate(rows))
+        table = tuple(
+            pair_at(row, f"{self.at(key)}[{i}]", '["10", "0.003"]') for i, row in enumerate(rows)
+        )
         for i, (low, high) in enumerate(zip(table, table[1:], strict=False), start=1):
             if high[0] <= low[0]:
                 where = f"{key}[{i}][0]"
@@ -147,8 +149,6 @@ class Fields:
         if ratio <= 0 or any(mark in text for mark in "eE_ "):
             self.refuse(key, f"{text!r} is no ratio: whole numbers, or one over another.", "2/5")
         return ratio
-
-
 
 
 def decimal_at(value: Any, path: str, example: str) -> float:

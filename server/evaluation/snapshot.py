@@ -101,6 +101,4 @@ def replay(snapshot_text: str, *, expected_digest: str | None = None) -> Replay:
     if was["reported"] != now["reported"]:
         doubts.append(f"it was printed as {was['reported']}, and comes out as {now['reported']}")
     says = "; ".join(doubts) if doubts else "The same numbers come out again."
-    return Replay(
-        agrees=not doubts, shift_over_u=shift, u_ratio=ratio, says=says, result=result
-    )
+    return Replay(agrees=not doubts, shift_over_u=shift, u_ratio=ratio, says=says, result=result)

@@ -172,9 +172,7 @@ def _two_people(setting: Setting) -> Iterator[Finding]:
         return
     by_person: dict[str, list[float]] = {}
     if len(circumstances.analysts) == len(setting.evaluation.replicates):
-        for name, one in zip(
-            circumstances.analysts, setting.evaluation.replicates, strict=True
-        ):
+        for name, one in zip(circumstances.analysts, setting.evaluation.replicates, strict=True):
             if one.excluded is None and one.value is not None:
                 by_person.setdefault(name, []).append(one.value)
     enough = [values for values in by_person.values() if len(values) >= 4]

@@ -11,13 +11,10 @@ def simulation_finding(simulated: Simulated, setting: Setting) -> Finding:
     value = setting.evaluation.value
     distance = max(abs(value - half - simulated.low), abs(value + half - simulated.high))
     holds = simulated.first_order_validated
-    says = (
-        f"{simulated.trials} trials give {simulated.low:.6g} to {simulated.high:.6g} mol/L; "
-        + (
-            "the first-order interval agrees."
-            if holds
-            else "the first-order interval does not agree, so this one is printed."
-        )
+    says = f"{simulated.trials} trials give {simulated.low:.6g} to {simulated.high:.6g} mol/L; " + (
+        "the first-order interval agrees."
+        if holds
+        else "the first-order interval does not agree, so this one is printed."
     )
     if simulated.u is None:
         says += " An input has two degrees of freedom or fewer, so Monte Carlo has no u."

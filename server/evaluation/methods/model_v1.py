@@ -119,7 +119,9 @@ class Model:
             return float(self.ratio * self._reference(x) * volume)
         return self.concentration(portion) * volume
 
-    def _concentration(self, portion: Portion, x: Mapping[str, Number], delivered: Number) -> Number:
+    def _concentration(
+        self, portion: Portion, x: Mapping[str, Number], delivered: Number
+    ) -> Number:
         volume = self._volume(portion, x)
         if self.record.route == "weighed":
             mass = portion.mass_g + x["linearity"] + x["balance_errors"]

@@ -94,9 +94,7 @@ class Evaluation:
         return self.model.mean(self.portions, inputs)
 
 
-def evaluate(
-    record: BenchRecord, constants: Constants, circumstances: Circumstances
-) -> Evaluation:
+def evaluate(record: BenchRecord, constants: Constants, circumstances: Circumstances) -> Evaluation:
     """Return the concentration of a standardization with its uncertainty (JCGM 100).
 
     Raises:

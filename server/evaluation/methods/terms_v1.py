@@ -46,9 +46,7 @@ def between_days_term(history: BetweenDays) -> Term:
     """Return the factor 1 that stands for the day-to-day spread, over the days of this mean."""
     u = history.relative_s / math.sqrt(history.days)
     source = f"day-to-day spread ({history.source})"
-    return Term(
-        source, Input(name="between_days", value=1.0, u=u, dof=history.dof, shared=False)
-    )
+    return Term(source, Input(name="between_days", value=1.0, u=u, dof=history.dof, shared=False))
 
 
 def _of_quantity(name: str, quantity: Quantity, unit: str | None) -> Input:
