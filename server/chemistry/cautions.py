@@ -27,6 +27,22 @@ class Caution:
     source: str = SOURCE
 
 
+_ALKALINE = (
+    "Strongly alkaline, also when dilute: a splash in the eye is an emergency (solid and strong "
+    "solutions: H314, H290)."
+)
+_OXIDIZING = (
+    "Oxidizer, harmful, harms water life (H272, H302, H314, H361d, H373, H410). Keep away from "
+    "organic matter."
+)
+_CHROMIUM = (
+    "Toxic, carcinogenic, oxidizer (H272, H301, H330, H340, H350, H360FD, H410): restricted in "
+    "many places. Ask for a method without chromium(VI)."
+)
+_IODINE = "Harmful vapour, irritates, harms water life (H312, H332, H315, H319, H335, H372, H400)."
+_FUMING = "Concentrated: burns skin and eyes, vapour irritates (H314, H290, H335); use the hood."
+_ACID = "Acid into water, never the other way. Keep away from hypochlorite, cyanide, sulfide."
+_COOLED = "Acid into water, slowly, cooled. Keep away from hypochlorite, cyanide, sulfide."
 _GLOVES = "Wear eye protection and gloves."
 _DRAIN = "Waste goes where your local rules say."
 
@@ -35,8 +51,7 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
         "NaOH": (
             "sodium hydroxide",
             (
-                "Strongly alkaline, also when dilute: a splash in the eye is an emergency "
-                "(solid and strong solutions: H314, H290).",
+                _ALKALINE,
                 "Heat when dissolving: add the solid slowly to water, never water to the solid.",
                 _GLOVES,
             ),
@@ -44,8 +59,7 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
         "KOH": (
             "potassium hydroxide",
             (
-                "Strongly alkaline, also when dilute: a splash in the eye is an emergency "
-                "(solid and strong solutions: H314, H290).",
+                _ALKALINE,
                 "Heat when dissolving: add the solid slowly to water, never water to the solid.",
                 _GLOVES,
             ),
@@ -53,8 +67,8 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
         "HCl": (
             "hydrochloric acid",
             (
-                "Concentrated: burns skin and eyes, vapour irritates (H314, H290, H335); use the hood.",
-                "Acid into water, never the other way. Keep away from hypochlorite, cyanide, sulfide.",
+                _FUMING,
+                _ACID,
                 _GLOVES,
             ),
         ),
@@ -62,7 +76,7 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
             "sulfuric acid",
             (
                 "Concentrated: severe burns (H314, H290); much heat when diluted.",
-                "Acid into water, slowly, with cooling. Keep away from hypochlorite, cyanide, sulfide.",
+                _COOLED,
                 _GLOVES,
             ),
         ),
@@ -77,8 +91,7 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
         "KMnO4": (
             "potassium permanganate",
             (
-                "Oxidizer, harmful, harms water life (H272, H302, H314, H361d, H373, H410). "
-                "Keep away from organic matter.",
+                _OXIDIZING,
                 _GLOVES,
                 _DRAIN,
             ),
@@ -86,8 +99,7 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
         "K2Cr2O7": (
             "potassium dichromate",
             (
-                "Toxic, carcinogenic, oxidizer (H272, H301, H330, H340, H350, H360FD, H410): restricted in "
-                "many places. Ask for a method without chromium(VI).",
+                _CHROMIUM,
                 _GLOVES,
                 _DRAIN,
             ),
@@ -102,10 +114,7 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
         ),
         "I2": (
             "iodine",
-            (
-                "Harmful vapour, irritates, harms water life (H312, H332, H315, H319, H335, H372, H400).",
-                _GLOVES,
-            ),
+            (_IODINE, _GLOVES),
         ),
         "Na2S2O3": (
             "sodium thiosulfate",

@@ -13,7 +13,7 @@ _MOST_CHARACTERS = 100
 _MOST_ATOMS = 10_000
 
 
-class FormulaProblem(ValueError):  # noqa: N818 - a refusal is an answer, not an error of the program
+class FormulaProblem(ValueError):
     """A formula that cannot be read, or an element that the table lacks."""
 
 
@@ -48,7 +48,7 @@ def atoms_of(formula: str) -> dict[str, int]:
 
 
 def molar_mass(formula: str) -> MolarMass:
-    """Return M = Σ n·A_r in g/mol with u(M)² = Σ (n·u(A_r))² (QUAM A2: atoms of one element move together).
+    """Return M = Σ n·A_r in g/mol with u(M)² = Σ (n·u(A_r))² (QUAM, A2).
 
     Raises:
         FormulaProblem: the formula cannot be read, or an element is not in the table.

@@ -9,7 +9,7 @@ _HANDBOOK = "common handbook value, from memory"
 
 @dataclass(frozen=True, slots=True)
 class Substance:
-    """A substance by its key: name, formula as weighed, density in g/cm³ with its source, drying."""
+    """A substance by its key: name, formula as weighed, density in g/cm³, drying."""
 
     key: str
     name: str

@@ -8,7 +8,7 @@ CURRENT: ModuleType = standardization_v1
 CALCULATIONS = MappingProxyType({(one.NAME, one.VERSION): one for one in (standardization_v1,)})
 
 
-class UnknownCalculation(Exception):  # noqa: N818 - an answer, not an error of the program
+class UnknownCalculation(Exception):
     """A snapshot names a calculation that this program does not have."""
 
 

@@ -179,7 +179,7 @@ def limits_of(of_laboratory: Mapping[str, str], of_recipe: Mapping[str, str]) ->
     texts = {**of_laboratory, **of_recipe}
     bases = dict.fromkeys(of_laboratory, "set by the laboratory")
     bases |= dict.fromkeys(of_recipe, "set by the recipe")
-    kinds = {one.name: type(one.default) for one in fields(Limits)}
+    kinds: dict[str, Any] = {one.name: type(one.default) for one in fields(Limits)}
     values: dict[str, Any] = {name: kinds[name](text) for name, text in texts.items()}
     return Limits(**values, bases=bases)
 

@@ -3,6 +3,7 @@
 from collections.abc import Collection, Mapping, Sequence
 from difflib import get_close_matches
 from fractions import Fraction
+from itertools import pairwise
 from typing import Any, NoReturn
 
 from server.metrology.decimal_text import DecimalProblem, read_wire_decimal
@@ -11,7 +12,7 @@ from server.metrology.quantity import Quantity, QuantityProblem, read_quantity
 Table = tuple[tuple[float, float], ...]
 
 
-class RecordProblem(Exception):  # noqa: N818 - a refusal is an answer, not an error of the program
+class RecordProblem(Exception):
     """A bench record that cannot be read: where (``path``), what is wrong, and what would do."""
 
     def __init__(self, path: str, says: str, example: str | None = None) -> None:
@@ -41,7 +42,7 @@ class Fields:
         near = get_close_matches(key, known, n=1)
         hint = f" Did you mean {near[0]!r}?" if near else ""
         says = f"This key is not known here.{hint} Known keys: {', '.join(sorted(known))}."
-        raise RecordProblem(self.at(key), says, near[0] if near else sorted(known)[0])
+        raise RecordProblem(self.at(key), says, near[0] if near else min(known))
 
     def at(self, key: str) -> str:
         """Return the path of a key."""
@@ -131,7 +132,7 @@ class Fields:
         table = tuple(
             pair_at(row, f"{self.at(key)}[{i}]", '["10", "0.003"]') for i, row in enumerate(rows)
         )
-        for i, (low, high) in enumerate(zip(table, table[1:], strict=False), start=1):
+        for i, (low, high) in enumerate(pairwise(table), start=1):
             if high[0] <= low[0]:
                 where = f"{key}[{i}][0]"
                 self.refuse(where, f"Each {first} must be above the one before it.", example)

@@ -42,7 +42,8 @@ def build_certificate(
     Keys: ``format``, ``number``, ``title``, ``replaces``, ``issued_at``, ``laboratory``, ``lot``,
     ``sheet``, ``recipe``, ``result`` (bench result), ``findings`` (with ``reason`` and
     ``accepted_by``), ``valid_for``, ``end_point``, ``validity``, ``measured``,
-    ``replicates_left_out``, ``corrections``, ``entries``, ``traceability``, ``signatures``, ``independently_reviewed``,
+    ``replicates_left_out``, ``corrections``, ``entries``,
+    ``traceability``, ``signatures``, ``independently_reviewed``,
     ``statements``, ``calculation``, ``input_digest``, ``snapshot_digest``. Instants are ISO 8601
     in UTC, days are the laboratory's.
     """

@@ -35,7 +35,7 @@ def read_calibration(kind: str, document: Any) -> dict[str, Any]:
     """
     doc = reading.known_keys(document, "document", _KEYS[kind])
     if kind == BALANCE:
-        read = {
+        read: dict[str, Any] = {
             "linearity": _bound(doc, "linearity", "g", required=True),
             "error_table": _table(doc, "load in g"),
             "error_u": _bound(doc, "error_u", "g"),

@@ -4,7 +4,7 @@ from collections.abc import Mapping
 from typing import Any
 
 
-class Refusal(Exception):  # noqa: N818 - a refusal is an answer, not an error of the program
+class Refusal(Exception):
     """A request that is refused in words; nothing was changed and nothing typed is lost.
 
     Attributes:

@@ -3,12 +3,12 @@
 import re
 from decimal import Decimal
 
-_WIRE = re.compile(r"[+-]?\d+(\.\d+)?([eE][+-]?\d{1,3})?")
-_TYPED = re.compile(r"[+\-−]?\d+([.,]\d+)?")
+_WIRE = re.compile(r"[+-]?\d+(\.\d+)?([eE][+-]?\d{1,3})?", re.ASCII)
+_TYPED = re.compile(r"[+\-−]?\d+([.,]\d+)?", re.ASCII)
 _MOST_CHARACTERS = 40
 
 
-class DecimalProblem(ValueError):  # noqa: N818 - a refusal is an answer, not an error of the program
+class DecimalProblem(ValueError):
     """A text that is no decimal number: what is wrong (``says``), and an ``example``."""
 
     def __init__(self, says: str, example: str | None = None) -> None:

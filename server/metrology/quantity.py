@@ -17,7 +17,7 @@ _KEYS = ("value", "unit", "u", "U", "k", "half_width", "shape", "dof", "source",
 _EXAMPLE = '{"value": "20.00", "unit": "mL", "U": "0.02", "k": "2"}'
 
 
-class QuantityProblem(ValueError):  # noqa: N818 - a refusal is an answer, not an error of the program
+class QuantityProblem(ValueError):
     """A quantity that cannot be read: where (``path``), what is wrong, and what would do."""
 
     def __init__(self, path: str, says: str, example: str | None = _EXAMPLE) -> None:

@@ -39,13 +39,13 @@ def significant(value: float, digits: int = SIGNIFICANT) -> str:
         return "0"
     exponent = rounding_exponent(abs(value), digits=digits)
     plain = _to(value, exponent)
-    return plain if -8 < exponent < 7 else f"{value:.{digits - 1}e}"  # noqa: PLR2004
+    return plain if -8 < exponent < 7 else f"{value:.{digits - 1}e}"
 
 
 def printed_k(k: float) -> str:
     """Return a coverage factor with one decimal, or with two where they say more."""
     two = f"{k:.2f}"
-    return two[:-1] if two.endswith("0") else two
+    return two.removesuffix("0")
 
 
 def report(value: float, U: float, unit: str, k: float) -> str:

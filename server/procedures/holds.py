@@ -89,11 +89,17 @@ def _thing(session: Session, kind: str, key: str) -> Thing:
         bottle = bottle_by_code(session, read_code(key))
         found = Thing(kind, bottle.id, bottle.code) if bottle else None
     else:
-        row = session.get(StandardLot if kind == "standard lot" else Instrument, key)
+        row = _kept(session, kind, key)
         found = Thing(kind, row.id, row.name) if row else None
     if found is None:
         raise NotFound(f"There is no such {kind}.", field="thing")
     return found
+
+
+def _kept(session: Session, kind: str, key: str) -> StandardLot | Instrument | None:
+    if kind == "standard lot":
+        return session.get(StandardLot, key)
+    return session.get(Instrument, key)
 
 
 def _reason(text: str, *, example: str) -> str:

@@ -64,5 +64,5 @@ def forget(session: Session, key: str) -> None:
 def _left(row: SignInFailure | None, now: datetime) -> float:
     if row is None or row.count < FREE_FAILURES or now - row.last_at > FORGOTTEN_AFTER:
         return 0.0
-    wait = min(MOST_WAIT_S, 2 ** min(row.count - FREE_FAILURES, 20))
+    wait = float(min(MOST_WAIT_S, 1 << min(row.count - FREE_FAILURES, 20)))
     return max(0.0, wait - (now - row.last_at).total_seconds())

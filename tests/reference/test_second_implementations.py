@@ -63,7 +63,10 @@ def random_record(rng: random.Random) -> dict[str, Any]:
             "delivery": statement(rng, 0.02, "mL", "cal-burette"),
             "glass_expansion": rng.choice(["0", "9.9e-6", "2.7e-5"]),
         },
-        "temperature": {"value": f"{rng.uniform(16, 28):.1f}", **statement(rng, 0.8, "Cel", "thermo")},
+        "temperature": {
+            "value": f"{rng.uniform(16, 28):.1f}",
+            **statement(rng, 0.8, "Cel", "thermo"),
+        },
     }
     if rng.random() < 0.5:
         points = [0, capacity / 4, capacity / 2, 3 * capacity / 4, capacity]
@@ -130,9 +133,7 @@ def route_parts(
     per_mol = float(Fraction(ratio))
     molar = sum(WEIGHTS[element][0] * count for element, count in formula.items())
     wanted = nominal * capacity * rng.uniform(0.45, 0.8)
-    weighs = record["route"] == "weighed" or (
-        record["route"] == "aliquot" and rng.random() < 0.6
-    )
+    weighs = record["route"] == "weighed" or (record["route"] == "aliquot" and rng.random() < 0.6)
     if weighs:
         record["standard"] = {
             "substance": standard,
@@ -142,7 +143,11 @@ def route_parts(
             },
         }
         if rng.random() < 0.3:
-            record["standard"]["molar_mass"] = {"value": f"{molar:.4f}", "unit": "g/mol", "u": "0.004"}
+            record["standard"]["molar_mass"] = {
+                "value": f"{molar:.4f}",
+                "unit": "g/mol",
+                "u": "0.004",
+            }
         record["standard"]["density"] = {"value": str(density), "unit": "g/cm3"}
         if rng.random() < 0.5:
             record["standard"]["density"]["u"] = "0.02"
@@ -153,10 +158,16 @@ def route_parts(
         }
         if rng.random() < 0.5:
             record["balance"]["error_table"] = [
-                ["0", "0"], ["1", "0.0001"], ["50", "0.0004"], ["200", "-0.0002"],
+                ["0", "0"],
+                ["1", "0.0001"],
+                ["50", "0.0004"],
+                ["200", "-0.0002"],
             ]
         record["air"] = {
-            "temperature": {"value": f"{rng.uniform(17, 26):.1f}", **statement(rng, 0.5, "Cel", "thermo")},
+            "temperature": {
+                "value": f"{rng.uniform(17, 26):.1f}",
+                **statement(rng, 0.5, "Cel", "thermo"),
+            },
             "pressure": {"value": f"{rng.uniform(940, 1030):.1f}", "unit": "hPa", "u": "2"},
             "humidity": {"value": str(rng.randint(20, 70)), "unit": "%", "u": "5"},
         }
@@ -187,7 +198,10 @@ def route_parts(
                 record["solution"]["flask"]["temperature"] = f"{rng.uniform(17, 26):.1f}"
         else:
             record["solution"] = {
-                "concentration": {"value": f"{strength:.6f}", **statement(rng, 0.001 * strength, "mol/L", "bought")}
+                "concentration": {
+                    "value": f"{strength:.6f}",
+                    **statement(rng, 0.001 * strength, "mol/L", "bought"),
+                }
             }
         return wanted
     record["unknown_in"] = rng.choice(["burette", "flask"])
@@ -236,14 +250,19 @@ def random_replicate(
             replicate["container_less_standard"] = f"{rest:.4f}"
     refilled = rng.random() < 0.2
     if refilled:
-        replicate["burette"] = [["0.10", f"{0.1 + wanted / 2:.2f}"], ["0.20", f"{0.2 + wanted / 2:.2f}"]]
+        replicate["burette"] = [
+            ["0.10", f"{0.1 + wanted / 2:.2f}"],
+            ["0.20", f"{0.2 + wanted / 2:.2f}"],
+        ]
     elif "error_table" in record["burette"] or rng.random() < 0.7:
         start = rng.uniform(0, 0.5)
         replicate["burette"] = [[f"{start:.2f}", f"{start + wanted:.2f}"]]
     else:
         replicate["delivered"] = f"{wanted:.2f}"
     if rng.random() < 0.4:
-        replicate["temperature"] = f"{float(record['temperature']['value']) + rng.uniform(-1, 1):.1f}"
+        replicate["temperature"] = (
+            f"{float(record['temperature']['value']) + rng.uniform(-1, 1):.1f}"
+        )
     return replicate
 
 
@@ -355,7 +374,9 @@ def second_per_gram(x: SimpleNamespace) -> Any:
     fraction = x.quantity(standard["mass_fraction"]) / molar
     if not x.record["balance"]["buoyancy"]:
         return fraction
-    moist = second_air(x, *(x.quantity(air[key]) for key in ("temperature", "pressure", "humidity")))
+    moist = second_air(
+        x, *(x.quantity(air[key]) for key in ("temperature", "pressure", "humidity"))
+    )
     rho = 1000 * x.quantity(standard["density"])
     return fraction * (1 - moist / 8000) / (1 - moist / rho)
 
@@ -370,9 +391,14 @@ def second_air(x: SimpleNamespace, t: Any, p_hpa: Any, h_percent: Any) -> Any:
     xv = h * enhancement * saturation / p
     z = (
         1
-        - p / kelvin * (
-            1.58123e-6 - 2.9331e-8 * t + 1.1043e-10 * t**2
-            + (5.707e-6 - 2.051e-8 * t) * xv + (1.9898e-4 - 2.376e-6 * t) * xv**2
+        - p
+        / kelvin
+        * (
+            1.58123e-6
+            - 2.9331e-8 * t
+            + 1.1043e-10 * t**2
+            + (5.707e-6 - 2.051e-8 * t) * xv
+            + (1.9898e-4 - 2.376e-6 * t) * xv**2
         )
         + (p / kelvin) ** 2 * (1.83e-11 - 0.765e-8 * xv**2)
     )
@@ -461,7 +487,9 @@ def test_evaluate_against_gtc_agrees_on_c_u_and_dof():
     for i, record, result, (c, u, df) in differences(
         GTC_RECORDS, ops, lambda y: (y.x, y.u, GTC.dof(y))
     ):
-        routes.add((record["route"], record.get("unknown_in"), "flask" in str(record.get("solution"))))
+        routes.add(
+            (record["route"], record.get("unknown_in"), "flask" in str(record.get("solution")))
+        )
         assert result["value"] == pytest.approx(c, rel=1e-9), i
         assert result["u"] == pytest.approx(u, rel=1e-6), i
         # GTC truncates nothing and calls 1e6 and more infinite

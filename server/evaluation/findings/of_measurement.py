@@ -55,6 +55,7 @@ def _burette_use(setting: Setting) -> Iterator[Finding]:
     low, high = limits.burette_least_percent, limits.burette_most_percent
     least, most = 100.0 * min(totals) / capacity, 100.0 * max(fillings) / capacity
     range_text = f"{low:g} to {high:g} %"
+    verdict: Verdict
     if least < low:
         verdict, figure, limit = "fails", least, low
         says = f"Only {least:.0f} % of the burette was used; use at least {low:g} %."
@@ -72,7 +73,7 @@ def _burette_use(setting: Setting) -> Iterator[Finding]:
         verdict = "look" if verdict == "holds" else verdict
     yield Finding(
         name="burette use",
-        verdict=verdict,  # type: ignore[arg-type]
+        verdict=verdict,
         says=says,
         basis=basis,
         figure=figure,

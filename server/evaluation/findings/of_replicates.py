@@ -2,7 +2,7 @@
 
 from collections.abc import Iterator
 
-from server.evaluation.findings.finding import Finding, replicates_named
+from server.evaluation.findings.finding import Finding, Verdict, replicates_named
 from server.evaluation.findings.setting import Setting
 from server.statistics.outliers import chi2_limit, grubbs
 
@@ -53,7 +53,7 @@ def _spread(setting: Setting) -> Finding:
         f"Your replicates scatter by {text} (relative s), "
         f"{'within' if holds else 'more than'} the limit of {limit:.2f} %."
     )
-    verdict = "holds" if holds else "fails"
+    verdict: Verdict = "holds" if holds else "fails"
     return Finding(
         "spread", verdict, says, basis, spread.rsd_percent, limit, "%", text, f"{limit:.2f} %"
     )
@@ -88,17 +88,17 @@ def _outlier(setting: Setting) -> Iterator[Finding]:
         return
     found = grubbs(values)
     label = setting.counting[found.which][1].label
-    verdict = "holds"
+    verdict: Verdict = "holds"
     says = f"Replicate {label} lies farthest from the mean, but not farther than chance explains."
-    if found.G > found.critical_1:
+    if found.critical_1 < found.G:
         verdict, says = "fails", f"Replicate {label} is an outlier (beyond the 1 % limit)."
-    elif found.G > found.critical_5:
+    elif found.critical_5 < found.G:
         verdict, says = "look", f"Replicate {label} is a straggler (beyond the 5 % limit)."
     if len(values) == 3:
         says += " With three values this test has almost no power: it can hardly find anything."
     yield Finding(
         name="outlier",
-        verdict=verdict,  # type: ignore[arg-type]
+        verdict=verdict,
         says=says,
         basis=ISO_5725,
         figure=found.G,
@@ -138,6 +138,7 @@ def _history(setting: Setting) -> Iterator[Finding]:
     if used.one_s is None or used.own_s is None or used.limit is None:
         return
     figure, limit = 100.0 * used.own_s, 100.0 * used.limit
+    verdict: Verdict
     if figure <= limit:
         verdict, says = "holds", "This run repeats as well as its history or validation says."
     elif used.own:
@@ -154,7 +155,7 @@ def _history(setting: Setting) -> Iterator[Finding]:
         )
     yield Finding(
         name="history",
-        verdict=verdict,  # type: ignore[arg-type]
+        verdict=verdict,
         says=says,
         basis="F test of s² against the pooled or validated one, 95 %",
         figure=figure,

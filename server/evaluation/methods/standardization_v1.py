@@ -101,7 +101,7 @@ def evaluate(record: BenchRecord, constants: Constants, circumstances: Circumsta
         RecordProblem: no volume is left after blank and excess, or nothing tells the repeatability.
     """
     terms = terms_of(record, constants)
-    model = Model(record, constants, _estimates(record, terms))
+    model = Model(record, constants, _estimates(terms))
     replicates = tuple(_replicate(record, model, i) for i in range(len(record.replicates)))
     counting = [one for one in record.replicates if one.excluded is None]
     portions = tuple(portion_of(record, one) for one in counting)
@@ -134,7 +134,7 @@ def replicate_values(record: BenchRecord, constants: Constants) -> tuple[Replica
     Raises:
         RecordProblem: no volume is left after blank and excess.
     """
-    model = Model(record, constants, _estimates(record, terms_of(record, constants)))
+    model = Model(record, constants, _estimates(terms_of(record, constants)))
     return tuple(_replicate(record, model, i) for i in range(len(record.replicates)))
 
 
@@ -152,7 +152,7 @@ def with_all(record: BenchRecord) -> BenchRecord | None:
     return replace(record, replicates=replicates)
 
 
-def _estimates(record: BenchRecord, terms: Sequence[Term]) -> dict[str, float]:
+def _estimates(terms: Sequence[Term]) -> dict[str, float]:
     """Return every input's estimate; what the record leaves out is 0, a factor 1, water 20 °C."""
     absent: dict[str, Any] = dict.fromkeys(
         ("linearity", "balance_errors", "delivery", "blank", "excess"), 0.0
@@ -235,7 +235,7 @@ def _own_repeatability(spread: Summary) -> RepeatabilityUsed | None:
 
 
 def _spread_terms(used: RepeatabilityUsed, circumstances: Circumstances) -> tuple[Term, ...]:
-    terms = (repeatability_term(used.relative_u, used.dof, used.source),)
+    terms: tuple[Term, ...] = (repeatability_term(used.relative_u, used.dof, used.source),)
     if circumstances.between_days is not None:
         terms += (between_days_term(circumstances.between_days),)
     return terms

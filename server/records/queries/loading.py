@@ -17,7 +17,7 @@ def laboratory_row(session: Session) -> Laboratory:
     Raises:
         NotFound: the laboratory is not set up yet.
     """
-    row = session.scalar(select(Laboratory))
+    row: Laboratory | None = session.scalar(select(Laboratory))
     if row is None:
         raise NotFound("This laboratory is not set up yet.")
     return row

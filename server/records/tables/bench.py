@@ -7,7 +7,7 @@ from server.records.tables.base import Document, Table, Uuid, When
 
 
 class Sheet(Table):
-    """A bench sheet. Its state is computed from the instants below; ``revision`` grows by each act."""
+    """A bench sheet; its state is computed from the instants, ``revision`` grows by each act."""
 
     __tablename__ = "sheet"
     id: Mapped[Uuid] = mapped_column(primary_key=True)
@@ -29,7 +29,7 @@ class Sheet(Table):
 
 
 class Entry(Table):
-    """One thing written on a bench sheet, in ink: never changed, only struck through and rewritten."""
+    """One thing written on a bench sheet, in ink: never changed, only struck through."""
 
     __tablename__ = "entry"
     __table_args__ = (

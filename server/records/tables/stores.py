@@ -43,7 +43,7 @@ class StandardLot(Table):
 
 
 class Instrument(Table):
-    """A balance, burette, thermometer or room monitor; ``document`` holds the rest of its identity."""
+    """A balance, burette, thermometer or room monitor with the rest of its identity."""
 
     __tablename__ = "instrument"
     id: Mapped[Uuid] = mapped_column(primary_key=True)

@@ -7,7 +7,7 @@ from server.records.tables.base import Table, Uuid, When
 
 
 class TrailRow(Table):
-    """One act: who, what, when, why. ``hash`` is SHA-256 of the previous hash and the row's text."""
+    """One act: who, what, when, why; ``hash`` chains it to the row before."""
 
     __tablename__ = "trail"
     seq: Mapped[int] = mapped_column(BigInteger, primary_key=True, autoincrement=False)

@@ -1,0 +1,22 @@
+"""The program: ``python -m server VERB``."""
+
+import sys
+
+from server.cli import Verbs, run
+from server.settings import Settings
+
+
+def main() -> None:
+    """Do what the command line says and exit with its status."""
+    sys.exit(run(sys.argv[1:], Verbs(serve=_serve)))
+
+
+def _serve(settings: Settings, demo: bool) -> int:
+    """Start the server; the web is imported only where it is served."""
+    from server.app import serve  # noqa: PLC0415 - evaluate and selfcheck start without the web
+
+    return serve(settings, demo=demo)
+
+
+if __name__ == "__main__":
+    main()

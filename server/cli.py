@@ -1,0 +1,228 @@
+"""The verbs of the command line."""
+
+import argparse
+import json
+import os
+import sys
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import Any
+
+from server.settings import (
+    DEFAULT_HOST,
+    DEFAULT_PORT,
+    Settings,
+    SettingsProblem,
+    check_door,
+    read_settings,
+)
+
+GOOD, NOT_SO, REFUSED = 0, 1, 2
+
+
+@dataclass(frozen=True, slots=True)
+class Verbs:
+    """What the roof hands down to the verbs: they start the web and the demonstration."""
+
+    serve: Callable[[Settings, bool], int]
+
+
+def run(arguments: Sequence[str], verbs: Verbs) -> int:
+    """Do what the arguments say; return the exit status."""
+    given = _parser().parse_args(arguments)
+    try:
+        status: int = given.do(given, verbs)
+    except SettingsProblem as problem:
+        print(problem, file=sys.stderr)  # noqa: T201 - the command line speaks by printing
+        return REFUSED
+    return status
+
+
+def _parser() -> argparse.ArgumentParser:
+    parser = argparse.ArgumentParser(
+        prog="titrant-ledger",
+        description="From the first weighing to the number on the bottle, and true until empty.",
+    )
+    verbs = parser.add_subparsers(required=True, metavar="VERB")
+    _add_serve(verbs)
+    _add_evaluate(verbs)
+    selfcheck = verbs.add_parser("selfcheck", help="check the calculations on published examples")
+    selfcheck.add_argument("--pdf", type=Path, metavar="FILE", help="write the table as a PDF too")
+    selfcheck.set_defaults(do=_selfcheck)
+    migrating = verbs.add_parser("migrate", help="bring the database to this release")
+    _add_data(migrating)
+    migrating.set_defaults(do=_migrate)
+    trail = verbs.add_parser("trail", help="the trail of what was done")
+    trail_verbs = trail.add_subparsers(required=True, metavar="VERB")
+    checking = trail_verbs.add_parser("check", help="check that its chain holds")
+    _add_data(checking)
+    checking.set_defaults(do=_trail_check)
+    return parser
+
+
+def _add_data(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument(
+        "--data", type=Path, default=Path("data"), metavar="DIR", help="data folder (./data)"
+    )
+
+
+def _add_serve(verbs: Any) -> None:
+    serve = verbs.add_parser("serve", help="migrate, then serve")
+    _add_data(serve)
+    serve.add_argument("--host", default=DEFAULT_HOST, metavar="H")
+    serve.add_argument("--port", type=int, default=DEFAULT_PORT, metavar="P")
+    serve.add_argument("--demo", action="store_true", help="fill an empty data folder")
+    serve.add_argument("--tls-cert", type=Path, metavar="F")
+    serve.add_argument("--tls-key", type=Path, metavar="F")
+    serve.add_argument("--behind-proxy", action="store_true", help="a proxy speaks https")
+    serve.add_argument("--plain-http", action="store_true", help="accept http on a network")
+    serve.set_defaults(do=_serve)
+
+
+def _add_evaluate(verbs: Any) -> None:
+    evaluating = verbs.add_parser("evaluate", help="a bench record in, a bench result out")
+    evaluating.add_argument("file", type=Path, metavar="FILE.json")
+    evaluating.add_argument("--monte-carlo", type=int, default=0, metavar="N", help="trials")
+    evaluating.add_argument("--seed", type=int, default=1, metavar="S")
+    evaluating.set_defaults(do=_evaluate)
+
+
+def _say(*lines: object) -> None:
+    for line in lines:
+        print(line, flush=True)  # noqa: T201 - the command line speaks by printing
+
+
+def _settings(given: argparse.Namespace) -> Settings:
+    settings = read_settings(os.environ, data=given.data)
+    if settings.keeps_file and not given.data.is_dir():
+        raise SettingsProblem(f"There is no data folder {given.data}.")
+    return settings
+
+
+def _serve(given: argparse.Namespace, verbs: Verbs) -> int:
+    settings = read_settings(
+        os.environ,
+        data=given.data,
+        host=given.host,
+        port=given.port,
+        tls_cert=given.tls_cert,
+        tls_key=given.tls_key,
+        behind_proxy=given.behind_proxy,
+        plain_http=given.plain_http,
+    )
+    check_door(settings)
+    return verbs.serve(settings, given.demo)
+
+
+def _evaluate(given: argparse.Namespace, _: Verbs) -> int:
+    from server.evaluation.entrance import RecordProblem, evaluate  # noqa: PLC0415 - numpy waits
+
+    if given.monte_carlo < 0 or given.seed < 0:
+        return _problem("--monte-carlo and --seed take whole numbers from 0.", "--monte-carlo")
+    try:
+        document = json.loads(given.file.read_bytes(), object_pairs_hook=_no_key_twice)
+    except OSError as problem:
+        return _problem(f"{given.file} cannot be read: {problem.strerror}.", "FILE.json")
+    except (ValueError, RecursionError) as problem:
+        return _problem(f"{given.file} is no JSON: {problem}.", "FILE.json")
+    try:
+        result = evaluate(document, trials=given.monte_carlo or None, seed=given.seed)
+    except RecordProblem as problem:
+        return _problem(problem.says, problem.path, problem.example)
+    _say(json.dumps(result, ensure_ascii=False, indent=2, allow_nan=False))
+    return GOOD
+
+
+def _no_key_twice(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+    found = dict(pairs)
+    if len(found) < len(pairs):
+        keys = [key for key, _ in pairs]
+        twice = next(key for key in keys if keys.count(key) > 1)
+        raise ValueError(f"the key “{twice}” is there twice in one object")
+    return found
+
+
+def _problem(detail: str, field: str, example: str | None = None) -> int:
+    """Say on stderr, as JSON, why a record cannot be read."""
+    problem = {
+        "type": "/about#cannot-be-taken",
+        "title": "The record cannot be read",
+        "status": 422,
+        "detail": detail,
+        "field": field,
+    }
+    if example is not None:
+        problem["example"] = example
+    print(json.dumps(problem, ensure_ascii=False), file=sys.stderr)  # noqa: T201 - the same
+    return REFUSED
+
+
+def _selfcheck(given: argparse.Namespace, _: Verbs) -> int:
+    from server.evaluation.published import checks  # noqa: PLC0415 - numpy waits
+
+    found = checks()
+    heads = ("source", "what", "published", "computed", "agreement", "")
+    rows = [heads] + [
+        (one.source, one.what, one.published, one.computed, one.agreement,
+         "holds" if one.holds else "FAILS")
+        for one in found
+    ]  # fmt: skip
+    widths = [max(len(row[i]) for row in rows) for i in range(len(heads))]
+    for row in rows:
+        cells = (cell.ljust(width) for cell, width in zip(row, widths, strict=True))
+        _say("  ".join(cells).rstrip())
+    failed = sum(1 for one in found if not one.holds)
+    says = f"{len(found) - failed} of {len(found)} published cases hold."
+    _say("", says)
+    if given.pdf is not None:
+        from server.reports.selfcheck_pdf import selfcheck_pdf  # noqa: PLC0415 - typst waits
+
+        day = datetime.now(UTC).date().isoformat()
+        pdf = selfcheck_pdf(found, release=_release(), day=day, says=says)
+        given.pdf.write_bytes(pdf)
+        _say(f"Written to {given.pdf}.")
+    return NOT_SO if failed or not found else GOOD
+
+
+def _release() -> str:
+    from importlib.metadata import PackageNotFoundError, version  # noqa: PLC0415 - seldom needed
+
+    try:
+        return f"Titrant Ledger {version('titrant-ledger')}"
+    except PackageNotFoundError:
+        return "Titrant Ledger"
+
+
+def _migrate(given: argparse.Namespace, _: Verbs) -> int:
+    from server.records.database import open_database  # noqa: PLC0415 - the database waits
+    from server.records.migrating import migrate  # noqa: PLC0415 - the same
+
+    settings = read_settings(os.environ, data=given.data)
+    if settings.keeps_file:
+        given.data.mkdir(parents=True, exist_ok=True)
+    database = open_database(settings.database_url)
+    try:
+        report = migrate(database)
+    finally:
+        database.dispose()
+    if report.before == report.after:
+        _say(f"The database is at {report.after}; nothing was to do.")
+    else:
+        _say(f"The database was brought from {report.before or 'empty'} to {report.after}.")
+    return GOOD
+
+
+def _trail_check(given: argparse.Namespace, _: Verbs) -> int:
+    from server.records.database import open_database  # noqa: PLC0415 - the database waits
+    from server.records.transaction import Transactions  # noqa: PLC0415 - the same
+    from server.upkeep.trail_check import check_trail  # noqa: PLC0415 - the same
+
+    transactions = Transactions(open_database(_settings(given).database_url))
+    try:
+        found = check_trail(transactions)
+    finally:
+        transactions.close()
+    _say(found.says, f"Row {found.seq}: {found.hash}")
+    return GOOD if found.holds else NOT_SO

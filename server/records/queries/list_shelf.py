@@ -1,0 +1,121 @@
+"""Bottles and lots with all that their states are computed from, in a fixed number of selects."""
+
+import json
+from collections.abc import Iterable
+from dataclasses import dataclass, field
+from typing import Any
+
+from sqlalchemy import select
+from sqlalchemy.orm import Session, aliased
+
+from server.records.queries.list_holds import StandingHold, standing_holds
+from server.records.tables.bench import Certificate
+from server.records.tables.lots import Bottle, Lot, Pull
+
+
+@dataclass(frozen=True, slots=True)
+class StandingCertificate:
+    """The certificate that no other one replaces, with its document as read."""
+
+    row: Certificate
+    document: dict[str, Any] = field(repr=False)
+
+
+@dataclass(frozen=True, slots=True)
+class LotOnShelf:
+    """A lot with its standing certificate, its standing hold, and whether it was pulled."""
+
+    lot: Lot
+    certificate: StandingCertificate | None
+    hold: StandingHold | None
+    pulled: bool
+
+
+@dataclass(frozen=True, slots=True)
+class BottleOnShelf:
+    """A bottle with its lot and its own standing hold."""
+
+    bottle: Bottle
+    lot: LotOnShelf
+    hold: StandingHold | None
+
+
+def bottles_on_shelf(session: Session) -> list[BottleOnShelf]:
+    """Return all bottles, lot by lot and by their numbers."""
+    asked = select(Bottle).order_by(Bottle.lot_id, Bottle.number)
+    bottles = session.scalars(asked).all()
+    lots = {one.lot.id: one for one in _lots(session, None)}
+    holds = standing_holds(session, ("bottle",))
+    return [BottleOnShelf(one, lots[one.lot_id], holds.get(("bottle", one.id))) for one in bottles]
+
+
+def lot_on_shelf(session: Session, lot_id: str) -> LotOnShelf:
+    """Return one lot with all that its state is computed from."""
+    return _lots(session, (lot_id,))[0]
+
+
+def bottle_on_shelf(session: Session, bottle: Bottle) -> BottleOnShelf:
+    """Return one bottle with all that its state is computed from."""
+    holds = standing_holds(session, ("bottle",), thing_ids=(bottle.id,))
+    lot = lot_on_shelf(session, bottle.lot_id)
+    return BottleOnShelf(bottle, lot, holds.get(("bottle", bottle.id)))
+
+
+def bottles_of_lot(session: Session, lot: LotOnShelf) -> list[BottleOnShelf]:
+    """Return the bottles of a lot by their numbers."""
+    asked = select(Bottle).where(Bottle.lot_id == lot.lot.id).order_by(Bottle.number)
+    bottles = session.scalars(asked).all()
+    holds = standing_holds(session, ("bottle",), thing_ids=[one.id for one in bottles])
+    return [BottleOnShelf(one, lot, holds.get(("bottle", one.id))) for one in bottles]
+
+
+def all_lots(session: Session) -> list[LotOnShelf]:
+    """Return all lots, made up last first."""
+    return _lots(session, None)
+
+
+def bottle_codes(session: Session) -> list[str]:
+    """Return the codes of all bottles."""
+    return list(session.scalars(select(Bottle.code)))
+
+
+def lot_names_like(session: Session, start: str) -> set[str]:
+    """Return the names of lots that begin with a text."""
+    return set(session.scalars(select(Lot.name).where(Lot.name.startswith(start, autoescape=True))))
+
+
+def _lots(session: Session, lot_ids: Iterable[str] | None) -> list[LotOnShelf]:
+    ids = None if lot_ids is None else list(lot_ids)
+    lots = select(Lot).order_by(Lot.made_at.desc(), Lot.id)
+    later = aliased(Certificate)
+    standing = (
+        select(Certificate)
+        .outerjoin(later, later.replaces_id == Certificate.id)
+        .where(later.id.is_(None))
+    )
+    pulls = select(Pull.lot_id).where(Pull.confirmed_at.is_not(None))
+    if ids is not None:
+        lots = lots.where(Lot.id.in_(ids))
+        standing = standing.where(Certificate.lot_id.in_(ids))
+        pulls = pulls.where(Pull.lot_id.in_(ids))
+    certificates = {
+        one.lot_id: StandingCertificate(one, json.loads(one.document))
+        for one in session.scalars(standing)
+    }
+    pulled = set(session.scalars(pulls))
+    holds = standing_holds(session, ("lot",), thing_ids=ids)
+    return [
+        LotOnShelf(one, certificates.get(one.id), holds.get(("lot", one.id)), one.id in pulled)
+        for one in session.scalars(lots)
+    ]
+
+
+def all_lot_codes(session: Session) -> list[str]:
+    """Return the codes of all lots and bottles."""
+    return [*session.scalars(select(Lot.code)), *session.scalars(select(Bottle.code))]
+
+
+def last_pull(session: Session, lot_id: str) -> Pull | None:
+    """Return the pull of a lot that was proposed last, confirmed or not."""
+    asked = select(Pull).where(Pull.lot_id == lot_id).order_by(Pull.proposed_at.desc())
+    return session.scalar(asked.limit(1))

@@ -1,0 +1,146 @@
+"""Standard lots, recipes and instruments in lists, in a fixed number of selects."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from sqlalchemy import func, select
+from sqlalchemy.orm import Session
+
+from server.lab.sheet_facts import HoldFact, InstrumentFact, StandardLotFact
+from server.records.tables.people import Person
+from server.records.tables.stores import Calibration, Hold, Instrument, Recipe, StandardLot
+
+
+@dataclass(frozen=True, slots=True)
+class ListedInstrument:
+    """An instrument; ``fact`` holds its serving calibration and is None where it has none."""
+
+    instrument: Instrument
+    fact: InstrumentFact | None
+
+
+@dataclass(frozen=True, slots=True)
+class KeptCalibration:
+    """A calibration with who recorded it."""
+
+    row: Calibration
+    recorded_by: str
+
+
+def standard_lot_facts(session: Session, *, substance: str | None = None) -> list[StandardLotFact]:
+    """Return the standard lots with their holds, by name; of one substance where it is named."""
+    asked = select(StandardLot).order_by(StandardLot.name)
+    if substance is not None:
+        asked = asked.where(StandardLot.substance == substance)
+    rows = session.scalars(asked).all()
+    holds = holds_by_thing(session, "standard lot", [row.id for row in rows])
+    return [standard_lot_fact(row, holds.get(row.id, ())) for row in rows]
+
+
+def listed_instruments(session: Session) -> list[ListedInstrument]:
+    """Return the instruments, each with the calibration that serves, by kind and name."""
+    newest = (
+        select(Calibration.instrument_id, func.max(Calibration.version).label("version"))
+        .group_by(Calibration.instrument_id)
+        .subquery()
+    )
+    rows = session.execute(
+        select(Instrument, Calibration)
+        .outerjoin(newest, newest.c.instrument_id == Instrument.id)
+        .outerjoin(
+            Calibration,
+            (Calibration.instrument_id == Instrument.id)
+            & (Calibration.version == newest.c.version),
+        )
+        .order_by(Instrument.kind, Instrument.name)
+    ).all()
+    holds = holds_by_thing(session, "instrument", [row.id for row, _ in rows])
+    return [
+        ListedInstrument(
+            row,
+            instrument_fact(row, calibration, holds.get(row.id, ())) if calibration else None,
+        )
+        for row, calibration in rows
+    ]
+
+
+def calibrations_of(session: Session, instrument_id: str) -> list[KeptCalibration]:
+    """Return the calibrations of an instrument, the newest first."""
+    rows = session.execute(
+        select(Calibration, Person.printed_name)
+        .join(Person, Person.id == Calibration.made_by)
+        .where(Calibration.instrument_id == instrument_id)
+        .order_by(Calibration.version.desc())
+    )
+    return [KeptCalibration(row, name) for row, name in rows]
+
+
+def newest_recipes(session: Session) -> list[Recipe]:
+    """Return the newest version of each recipe, by name."""
+    newest = (
+        select(Recipe.name, func.max(Recipe.version).label("version"))
+        .group_by(Recipe.name)
+        .subquery()
+    )
+    rows = select(Recipe).join(
+        newest, (newest.c.name == Recipe.name) & (newest.c.version == Recipe.version)
+    )
+    return list(session.scalars(rows.order_by(Recipe.name)))
+
+
+def recipe_versions(session: Session, name: str) -> list[Recipe]:
+    """Return all versions of a recipe, the newest first."""
+    rows = select(Recipe).where(Recipe.name == name).order_by(Recipe.version.desc())
+    return list(session.scalars(rows))
+
+
+def holds_by_thing(
+    session: Session, kind: str, thing_ids: Sequence[str]
+) -> dict[str, tuple[HoldFact, ...]]:
+    """Return all holds of some things of one kind, oldest first, by the thing."""
+    rows = session.scalars(
+        select(Hold)
+        .where(Hold.kind == kind, Hold.thing_id.in_(thing_ids))
+        .order_by(Hold.held_at, Hold.id)
+    )
+    found: dict[str, tuple[HoldFact, ...]] = {}
+    for row in rows:
+        one = HoldFact(row.held_at, row.released_at, row.reason)
+        found[row.thing_id] = (*found.get(row.thing_id, ()), one)
+    return found
+
+
+def standard_lot_fact(row: StandardLot, holds: tuple[HoldFact, ...]) -> StandardLotFact:
+    """Return a standard lot's row as a plain value."""
+    return StandardLotFact(
+        id=row.id,
+        name=row.name,
+        substance=row.substance,
+        certificate_number=row.certificate_number,
+        issuer=row.issuer,
+        due_at=row.due_at,
+        due_basis=row.due_basis,
+        document=row.document,
+        holds=holds,
+    )
+
+
+def instrument_fact(
+    row: Instrument, calibration: Calibration, holds: tuple[HoldFact, ...]
+) -> InstrumentFact:
+    """Return an instrument's row with one of its calibrations as a plain value."""
+    return InstrumentFact(
+        kind=row.kind,
+        instrument_id=row.id,
+        name=row.name,
+        identity=row.document,
+        calibration_id=calibration.id,
+        version=calibration.version,
+        certificate_number=calibration.certificate_number,
+        issuer=calibration.issuer,
+        done_on=calibration.done_on,
+        due_at=calibration.due_at,
+        due_basis=calibration.due_basis,
+        document=calibration.document,
+        holds=holds,
+    )

@@ -1,0 +1,104 @@
+"""One bench sheet as the bench page's script gets it."""
+
+from collections.abc import Iterator
+from datetime import datetime
+
+from sqlalchemy.orm import Session
+
+from server.chemistry.cautions import DEFERRAL
+from server.evaluation.from_sheet import PreparedSheet, prepare_sheet
+from server.lab.actor import Actor
+from server.lab.in_use import things_in_use
+from server.lab.ink import CORRECTION_REASONS
+from server.lab.roles import Act
+from server.lab.sheet_facts import SheetFacts
+from server.lab.states import OPEN, SENT_BACK
+from server.records.queries.list_sheets import snapshots_of
+from server.records.queries.load_sheet import load_sheet_facts
+from server.sheets.bench import BenchSheet
+from server.sheets.parts.doors import need_reader
+from server.sheets.parts.margin import margin_of
+from server.sheets.parts.roots import caution_views, rests_on
+from server.sheets.parts.rows import groups_of, next_row
+from server.sheets.parts.sheet_lines import sheet_title
+from server.sheets.parts.signed import signature_views
+from server.sheets.parts.telling import moment_words
+
+
+def open_bench_sheet(
+    session: Session, sheet_id: str, *, actor: Actor | None, now: datetime
+) -> BenchSheet:
+    """Return a bench sheet with all its rows, what was written, and what is missing.
+
+    Raises:
+        NotFound: there is no such sheet.
+        NotSignedIn: a visitor.
+    """
+    del now
+    reader = need_reader(actor)
+    facts = load_sheet_facts(session, sheet_id)
+    return bench_sheet(facts, prepare_sheet(facts), snapshots_of(session, facts.id), reader)
+
+
+def bench_sheet(
+    facts: SheetFacts, prepared: PreparedSheet, snapshots: dict[str, str], reader: Actor
+) -> BenchSheet:
+    """Return a sheet that was loaded and prepared, for one reader."""
+    zone, lot = facts.laboratory.zone, facts.lot
+    groups = groups_of(facts)
+    missing = tuple(_missing(facts, prepared))
+    writable = facts.state in {OPEN, SENT_BACK} and not lot.pulled
+    may_write = writable and reader.may(Act.WRITE)
+    begun = moment_words(facts.begun_at, zone)
+    return BenchSheet(
+        id=facts.id,
+        number=facts.number,
+        state=facts.state,
+        revision=facts.revision,
+        title=sheet_title(lot.titrant, lot.nominal),
+        against=against(facts),
+        lot_code=lot.code,
+        lot_name=lot.name,
+        recipe=f"{facts.recipe.name}, version {facts.recipe.version}",
+        begun=f"begun {begun} by {facts.begun_by.printed_name}",
+        rests_on=rests_on(facts),
+        cautions=caution_views(substances_of(facts)),
+        deferral=DEFERRAL,
+        groups=groups,
+        next=next_row(groups) if may_write else None,
+        margin=margin_of(facts, prepared, groups),
+        missing=missing,
+        correction_reasons=CORRECTION_REASONS,
+        may_write=may_write,
+        may_hand_in=writable and not missing and reader.may(Act.HAND_IN),
+        sent_back_remark=facts.sent_back_remark if facts.state == SENT_BACK else None,
+        signatures=signature_views(facts, snapshots),
+    )
+
+
+def against(facts: SheetFacts) -> str:
+    """Return the lot, the standard and the instruments in one line."""
+    recipe = facts.recipe.document
+    parts = [f"lot {facts.lot.name}"]
+    if facts.standard_lot is not None:
+        parts.append(f"against {facts.standard_lot.name}")
+    parts += [one.name for one in facts.instruments]
+    if recipe.end_point.indicator:
+        parts.append(f"indicator {recipe.end_point.indicator}")
+    return " · ".join(parts)
+
+
+def substances_of(facts: SheetFacts) -> tuple[str, ...]:
+    """Return the substances that somebody handles for a sheet, by key."""
+    return facts.lot.titrant, facts.recipe.document.standard
+
+
+def _missing(facts: SheetFacts, prepared: PreparedSheet) -> Iterator[str]:
+    """Yield what keeps the sheet from being handed in: rows first, then what was not valid."""
+    for one in prepared.missing:
+        yield one.says
+    for thing in things_in_use(facts):
+        if thing.blocks:
+            yield f"{thing.says} A keeper may let it be used with a reason."
+    if facts.lot.pulled:
+        yield "This lot was pulled: it is out of use for good."

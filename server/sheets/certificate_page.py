@@ -1,0 +1,172 @@
+"""A certificate: the issued document as it reads, and its state today."""
+
+import json
+from collections.abc import Iterator, Mapping
+from datetime import datetime
+from typing import Any
+
+from sqlalchemy.orm import Session
+
+from server.chemistry.substances import name_of
+from server.lab.actor import Actor
+from server.lab.canonical import digest
+from server.lab.refusal import NotFound
+from server.records.queries.list_certificates import (
+    KeptCertificate,
+    anchor_hash,
+    certificate_by_number,
+)
+from server.records.queries.list_sheets import snapshots_of
+from server.records.queries.list_trail import issue_noted
+from server.records.queries.load_sheet import load_sheet_facts
+from server.sheets.bench import SignatureView
+from server.sheets.certificate import CertificatePage
+from server.sheets.parts import outcome
+from server.sheets.parts.doors import need_reader
+from server.sheets.parts.history import state_of_certificate
+from server.sheets.parts.roots import certificate_roots, root_urls
+from server.sheets.parts.shelf_state import nominal_words
+from server.sheets.parts.signed import signature_views
+from server.sheets.parts.telling import listed, moment_words, signed_words, typed_day_words
+
+
+def open_certificate(
+    session: Session, number: str, *, actor: Actor | None, now: datetime
+) -> CertificatePage:
+    """Return a certificate for reading and print.
+
+    Raises:
+        NotFound: there is no certificate of this number.
+        NotSignedIn: a visitor; people's names stand on it.
+    """
+    del now
+    need_reader(actor)
+    kept = _kept(session, number)
+    document = kept.document
+    result, lot, zone = document["result"], document["lot"], document["laboratory"]["zone"]
+    shown = outcome.printed(result)
+    return CertificatePage(
+        number=kept.row.number,
+        state=state_of_certificate(kept),
+        replaced_by=kept.replaced_by,
+        replaces=document["replaces"],
+        title=document["title"],
+        laboratory=document["laboratory"]["name"],
+        address=document["laboratory"]["address"],
+        titrant=name_of(lot["titrant"]).capitalize(),
+        nominal=nominal_words(lot["nominal"]),
+        lot_code=lot["code"],
+        lot_name=lot["name"],
+        sheet_number=document["sheet"]["number"],
+        value=shown.value,
+        uncertainty=shown.uncertainty,
+        unit=shown.unit,
+        k=shown.k,
+        coverage=shown.coverage,
+        factor=shown.factor,
+        temperature=f"at {result['concentration']['temperature_C']} °C",
+        valid_for=document["valid_for"],
+        valid_until=typed_day_words(document["validity"]["last_day"]),
+        valid_until_rule=document["validity"]["rule"],
+        measured_on=_measured(document["measured"]),
+        issued_on=signed_words(datetime.fromisoformat(document["issued_at"]), zone),
+        method=_method(document["recipe"]),
+        traceability=certificate_roots(document),
+        findings=outcome.finding_views(document["findings"]),
+        corrections=tuple(_corrections(document, zone)),
+        remarks=tuple(_remarks(document, zone)),
+        replicates=outcome.replicate_rows(result),
+        budget=outcome.budget_rows(result, root_urls(document["traceability"])),
+        bars=outcome.bars(result),
+        dots=outcome.dots(result),
+        signatures=_signatures(session, kept),
+        calculation=document["calculation"],
+        input_digest=document["input_digest"],
+        document_digest=kept.row.document_digest,
+        document_holds=document_holds(session, kept),
+        trail_anchor=f"act {kept.row.trail_seq}, {kept.row.trail_hash}",
+        statements=tuple(document["statements"]),
+    )
+
+
+def open_certificate_document(
+    session: Session, number: str, *, actor: Actor | None, now: datetime
+) -> dict[str, Any]:
+    """Return the issued document with its state today, digest, and whether that holds.
+
+    Raises:
+        NotFound: there is no certificate of this number.
+        NotSignedIn: a visitor; people's names stand on it.
+    """
+    need_reader(actor)
+    kept = _kept(session, number)
+    return {
+        "document": kept.document,
+        "state": state_of_certificate(kept),
+        "replaced_by": kept.replaced_by,
+        "document_digest": kept.row.document_digest,
+        "document_holds": document_holds(session, kept),
+        "trail": {"seq": kept.row.trail_seq, "hash": kept.row.trail_hash},
+        "as_of": now.isoformat(),
+    }
+
+
+def document_holds(session: Session, kept: KeptCertificate) -> bool:
+    """Say whether the text is the one that was issued: its digest, the trail's, and the anchor."""
+    made_anew = digest(kept.row.document)
+    noted = issue_noted(session, kept.row.id)
+    return (
+        made_anew == kept.row.document_digest
+        and noted is not None
+        and json.loads(noted).get("document_digest") == made_anew
+        and anchor_hash(session, kept.row.trail_seq) == kept.row.trail_hash
+    )
+
+
+def _kept(session: Session, number: str) -> KeptCertificate:
+    kept = certificate_by_number(session, number)
+    if kept is None:
+        raise NotFound(f"There is no certificate {number[:40]}.", field="number")
+    return kept
+
+
+def _signatures(session: Session, kept: KeptCertificate) -> tuple[SignatureView, ...]:
+    """Return the two signatures that the document names, checked against the sheet as it stands."""
+    facts = load_sheet_facts(session, kept.row.sheet_id)
+    views = signature_views(facts, snapshots_of(session, facts.id))
+    by_id = dict(zip((one.id for one in facts.signatures), views, strict=True))
+    return tuple(by_id[one["id"]] for one in kept.document["signatures"] if one["id"] in by_id)
+
+
+def _measured(measured: Mapping[str, Any]) -> str:
+    by = f" by {listed(measured['by'])}" if measured["by"] else ""
+    return f"{typed_day_words(measured['day'])}{by}"
+
+
+def _method(recipe: Mapping[str, Any]) -> str:
+    return f"{recipe['title']} (recipe {recipe['name']}, version {recipe['version']})"
+
+
+def _corrections(document: Mapping[str, Any], zone: str) -> Iterator[str]:
+    for one in document["corrections"]:
+        where = f"Replicate {one['replicate']}" if one["replicate"] else "Sheet"
+        now = one["now"] or "nothing"
+        at = moment_words(datetime.fromisoformat(one["at"]), zone)
+        yield (
+            f"{where}, {one['label']}: {one['was']} ({one['was_by']}) struck through, {now} "
+            f"written by {one['by']}, {at}: {one['reason']}"
+        )
+
+
+def _remarks(document: Mapping[str, Any], zone: str) -> Iterator[str]:
+    """Yield what was left out, and the remarks written on the sheet."""
+    for one in document["replicates_left_out"]:
+        at = moment_words(datetime.fromisoformat(one["at"]), zone)
+        yield (
+            f"Replicate {one['replicate']} left out of the mean by {one['by']}, {at}: "
+            f"{one['criterion']}: {one['reason']}"
+        )
+    for one in document["entries"]:
+        if one["slot"] == "remark":
+            where = f"Replicate {one['replicate']}" if one["replicate"] else "Sheet"
+            yield f"{where}: {one['text']} ({one['by']})"

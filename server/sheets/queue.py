@@ -1,0 +1,78 @@
+"""The sheets that wait for a second person, longest first."""
+
+from datetime import datetime
+
+from sqlalchemy.orm import Session
+
+from server.lab.actor import Actor
+from server.lab.roles import Act, holders
+from server.lab.segregation import countersign_refusal
+from server.lab.sheet_facts import SheetFacts
+from server.lab.signing import COUNTERSIGNED
+from server.records.queries.list_sheets import done_sheet_ids, waiting_sheet_ids
+from server.records.queries.load_many_sheets import load_many_sheet_facts
+from server.sheets.countersign import Queue, QueueLine
+from server.sheets.parts.doors import need_reader
+from server.sheets.parts.outcome import finding_views
+from server.sheets.parts.sheet_lines import sheet_title
+from server.sheets.parts.telling import moment_words, span_words
+
+DONE_SHOWN = 8
+
+
+def open_queue(session: Session, *, actor: Actor | None, now: datetime) -> Queue:
+    """Return all sheets that wait, with what stands out, and those countersigned last.
+
+    Raises:
+        NotSignedIn: a visitor.
+    """
+    reader = need_reader(actor)
+    waiting, done = waiting_sheet_ids(session), done_sheet_ids(session, most=DONE_SHOWN)
+    facts = {one.id: one for one in load_many_sheet_facts(session, [*waiting, *done])}
+    return Queue(
+        waiting=tuple(_waiting(facts[one], reader, now) for one in waiting),
+        done=tuple(_done(facts[one]) for one in done),
+    )
+
+
+def countersign_problem(facts: SheetFacts, reader: Actor) -> str | None:
+    """Return in words why this person may not countersign this sheet, or None where she may."""
+    if not reader.may(Act.COUNTERSIGN):
+        return f"To countersign you need the role {' or '.join(holders(Act.COUNTERSIGN))}."
+    return countersign_refusal(facts, reader.person_id)
+
+
+def _waiting(facts: SheetFacts, reader: Actor, now: datetime) -> QueueLine:
+    since = facts.handed_in_at or now
+    return _line(
+        facts,
+        waiting=f"waits {span_words(now - since)}",
+        refused=countersign_problem(facts, reader),
+    )
+
+
+def _done(facts: SheetFacts) -> QueueLine:
+    second = [one for one in facts.signatures if one.meaning == COUNTERSIGNED]
+    by = f" by {second[-1].printed_name}" if second else ""
+    at = facts.countersigned_at
+    when = moment_words(at, facts.laboratory.zone) if at else ""
+    return _line(facts, waiting=f"countersigned {when}{by}", refused=None)
+
+
+def _line(facts: SheetFacts, *, waiting: str, refused: str | None) -> QueueLine:
+    measured, evaluation = facts.measured_signature, facts.evaluation
+    findings = evaluation.result["findings"] if evaluation else []
+    odd = [one for one in findings if one["verdict"] != "holds"]
+    reasons = measured.reasons if measured else {}
+    return QueueLine(
+        sheet_id=facts.id,
+        number=facts.number,
+        title=sheet_title(facts.lot.titrant, facts.lot.nominal),
+        lot_name=facts.lot.name,
+        handed_in_by=measured.printed_name if measured else "",
+        waiting=waiting,
+        reported=evaluation.result["concentration"]["reported"] if evaluation else "",
+        stands_out=finding_views(odd, reasons=reasons),
+        refused=refused,
+        url=f"/countersign/{facts.id}",
+    )

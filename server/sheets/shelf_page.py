@@ -1,0 +1,90 @@
+"""The shelf: bottles by code or words, due soonest first."""
+
+from collections.abc import Sequence
+from datetime import datetime
+
+from sqlalchemy.orm import Session
+
+from server.chemistry.substances import name_of
+from server.lab.actor import Actor
+from server.lab.codes import LENGTH, nearest
+from server.lab.states import BOTTLE_STATES, CHECK_DUE, IN_FORCE, may_be_used
+from server.records.queries.list_shelf import BottleOnShelf, bottles_on_shelf
+from server.records.queries.load_sheet import load_laboratory_fact
+from server.sheets.parts.doors import need_shelf
+from server.sheets.parts.shelf_state import bottle_line, state_of_bottle
+from server.sheets.parts.telling import count_words
+from server.sheets.shelf import Shelf
+
+_MOST_WORDS = 200
+
+
+def open_shelf(
+    session: Session, *, words: str, state: str, actor: Actor | None, now: datetime
+) -> Shelf:
+    """Return the bottles that answer to the words and the state; a visitor sees those in force.
+
+    Raises:
+        NotSignedIn: a visitor where the laboratory has closed its shelf.
+    """
+    laboratory = load_laboratory_fact(session)
+    need_shelf(laboratory.settings, actor)
+    words = words.strip()[:_MOST_WORDS]
+    everything = bottles_on_shelf(session)
+    states = {one.bottle.code: state_of_bottle(one, now) for one in everything}
+    open_to = [
+        one for one in everything if actor is not None or may_be_used(states[one.bottle.code])
+    ]
+    answering = [
+        one for one in open_to if _answers(one, words) and state in {"", states[one.bottle.code]}
+    ]
+    answering.sort(key=lambda one: _soonest(one, states[one.bottle.code]))
+    codes = [one.bottle.code for one in everything]
+    return Shelf(
+        words=words,
+        bottles=tuple(bottle_line(one, now, laboratory.zone) for one in answering),
+        says=_says(words, answering, states),
+        nearest=() if answering else _nearest(words, codes),
+        states=(IN_FORCE, CHECK_DUE) if actor is None else tuple(BOTTLE_STATES),
+        state=state if state in BOTTLE_STATES else "",
+    )
+
+
+def _answers(one: BottleOnShelf, words: str) -> bool:
+    """Say whether every word stands somewhere in what the bottle is called."""
+    lot, bottle = one.lot.lot, one.bottle
+    called = (
+        bottle.code, lot.code, lot.titrant, name_of(lot.titrant), lot.nominal, "mol/L", lot.name,
+        lot.medium, bottle.place,
+    )  # fmt: skip
+    text = " ".join(called).casefold()
+    if all(word in text for word in words.casefold().split()):
+        return True
+    return _as_code(words) in {bottle.code, lot.code}
+
+
+def _as_code(words: str) -> str:
+    return "".join(words.split()).replace("-", "").upper()
+
+
+def _soonest(one: BottleOnShelf, state: str) -> tuple[bool, float, str, int]:
+    certificate = one.lot.certificate
+    due = certificate.row.valid_until.timestamp() if certificate else float("inf")
+    return not may_be_used(state), due, one.lot.lot.name, one.bottle.number
+
+
+def _nearest(words: str, codes: Sequence[str]) -> tuple[str, ...]:
+    """Return codes close to what looks like a code that no bottle has."""
+    code = _as_code(words)
+    if abs(len(code) - LENGTH) > 2 or code in codes:
+        return ()
+    return tuple(nearest(code, codes))
+
+
+def _says(words: str, answering: Sequence[BottleOnShelf], states: dict[str, str]) -> str:
+    code = _as_code(words)
+    if not answering and code in states:
+        return f"Bottle {code} is {states[code]}."
+    count = count_words(len(answering), "bottle")
+    usable = sum(1 for one in answering if may_be_used(states[one.bottle.code]))
+    return f"{count}, {usable} in force; due soonest first." if answering else "No bottle."

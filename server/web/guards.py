@@ -1,0 +1,112 @@
+"""What stands before every route: size, origin, and what nobody foresaw."""
+
+from urllib.parse import urlsplit
+
+from fastapi import Request, Response
+from starlette.concurrency import run_in_threadpool
+from starlette.types import ASGIApp, Message, Receive, Scope, Send
+
+from server.lab.refusal import Refusal
+from server.web.errors import answer_incident, refuse
+from server.web.refusals import NotFromHere, TooLarge, Unreadable
+
+MOST_BODY = 2 * 1024 * 1024
+_SAFE = frozenset({"GET", "HEAD", "OPTIONS"})
+_OWN_SITES = frozenset({"same-origin", "none"})
+
+
+class Incidents:
+    """Answers an error that nobody foresaw with a number, under which it is logged."""
+
+    def __init__(self, app: ASGIApp) -> None:
+        self._app = app
+
+    async def __call__(self, scope: Scope, receive: Receive, send: Send) -> None:
+        """Pass a request on; answer for whatever breaks before the answer has begun."""
+        if scope["type"] != "http":
+            await self._app(scope, receive, send)
+            return
+        begun = False
+
+        async def watch(message: Message) -> None:
+            nonlocal begun
+            begun = begun or message["type"] == "http.response.start"
+            await send(message)
+
+        try:
+            await self._app(scope, receive, watch)
+        except Exception as problem:
+            request = Request(scope)
+            response = await run_in_threadpool(answer_incident, request, problem)
+            if begun:
+                raise
+            await response(scope, receive, send)
+
+
+class Guards:
+    """Refuses what is too large, comes from another site, or holds what no text can hold."""
+
+    def __init__(self, app: ASGIApp) -> None:
+        self._app = app
+
+    async def __call__(self, scope: Scope, receive: Receive, send: Send) -> None:
+        """Pass a request on unless a guard refuses it."""
+        if scope["type"] != "http":
+            await self._app(scope, receive, send)
+            return
+        request = Request(scope)
+        refusal = _refusal(request)
+        if refusal is not None:
+            response: Response = await run_in_threadpool(refuse, request, refusal)
+            await response(scope, receive, send)
+            return
+        await self._app(scope, _counted(receive), send)
+
+
+def _refusal(request: Request) -> Refusal | None:
+    path, query = request.scope["path"], request.scope["query_string"]
+    if "\0" in path or b"%00" in query:
+        return Unreadable("The address holds a character that no text has.")
+    length = request.headers.get("content-length", "0")
+    if not length.isdigit() or int(length) > MOST_BODY:
+        return _too_large()
+    if request.method in _SAFE or _is_from_here(request):
+        return None
+    return NotFromHere("This was sent from another site; nothing was done.")
+
+
+def _is_from_here(request: Request) -> bool:
+    """Say whether a write was sent by a page of this server, or by no page at all."""
+    headers = request.headers
+    if headers.get("sec-fetch-site", "none") not in _OWN_SITES:
+        return False
+    origin = headers.get("origin")
+    if origin is None:
+        return True
+    sent = urlsplit(origin)
+    return bool(sent.netloc) and _host(sent.netloc) == _host(headers.get("host", ""))
+
+
+def _host(netloc: str) -> str:
+    """Return a host and port; a scheme's usual port is not written."""
+    return netloc.lower().removesuffix(":443").removesuffix(":80")
+
+
+def _too_large() -> TooLarge:
+    return TooLarge(f"This is more than {MOST_BODY // 1024} kB; send it in parts.")
+
+
+def _counted(receive: Receive) -> Receive:
+    """Return a receiver that refuses a body without a stated length once it grows too large."""
+    seen = 0
+
+    async def counted() -> Message:
+        nonlocal seen
+        message = await receive()
+        if message["type"] == "http.request":
+            seen += len(message.get("body", b""))
+            if seen > MOST_BODY:
+                raise _too_large()
+        return message
+
+    return counted

@@ -1,0 +1,34 @@
+"""What the web is made of: values handed down by the roof, nothing global."""
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from datetime import datetime
+
+from starlette.requests import HTTPConnection
+
+from server.records.transaction import Transactions
+from server.web.templating import Templating
+from server.web.unknown_codes import UnknownCodes
+
+
+@dataclass(frozen=True, slots=True)
+class Parts:
+    """The parts that every route may use.
+
+    ``secure``: whether all traffic comes by https, also where a proxy speaks it. ``setup_code``
+    opens the set-up page of an empty database.
+    """
+
+    transactions: Transactions
+    clock: Callable[[], datetime]
+    templating: Templating
+    secure: bool
+    setup_code: str = field(repr=False)
+    version: str
+    unknown_codes: UnknownCodes
+
+
+def parts_of(connection: HTTPConnection) -> Parts:
+    """Return the parts of the application that a request came to."""
+    parts: Parts = connection.app.state.parts
+    return parts

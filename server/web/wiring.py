@@ -1,0 +1,80 @@
+"""The application, put together from its parts."""
+
+from collections.abc import AsyncIterator
+from contextlib import asynccontextmanager
+
+from fastapi import FastAPI
+from starlette.middleware import Middleware
+
+from server.web.api import bottles as api_bottles
+from server.web.api import certificates as api_certificates
+from server.web.api import countersigning as api_countersigning
+from server.web.api import health
+from server.web.api import instruments as api_instruments
+from server.web.api import lots as api_lots
+from server.web.api import people as api_people
+from server.web.api import session as api_session
+from server.web.api import sheets as api_sheets
+from server.web.api import stores as api_stores
+from server.web.api import trail as api_trail
+from server.web.api.desk import PROBLEMS
+from server.web.errors import add_error_handlers
+from server.web.guards import Guards, Incidents
+from server.web.headers import SecurityHeaders
+from server.web.pages import (
+    about,
+    bench,
+    certificates,
+    countersign,
+    holds,
+    instruments,
+    lots,
+    people,
+    session,
+    shelf,
+    stores,
+    trail,
+)
+from server.web.parts import Parts
+from server.web.static_files import StaticFiles, static_router
+
+_PAGES = (
+    shelf, session, bench, countersign, certificates, stores, instruments, lots, holds, trail,
+    people, about,
+)  # fmt: skip
+_API = (
+    api_session, api_bottles, api_sheets, api_countersigning, api_certificates, api_lots,
+    api_stores, api_instruments, api_trail, api_people,
+)  # fmt: skip
+
+
+def create_app(parts: Parts, static: StaticFiles) -> FastAPI:
+    """Return the application; when it ends, its database is closed."""
+
+    @asynccontextmanager
+    async def life(_: FastAPI) -> AsyncIterator[None]:
+        yield
+        parts.transactions.close()
+
+    app = FastAPI(
+        title="Titrant Ledger",
+        version=parts.version,
+        lifespan=life,
+        openapi_url="/api/openapi.json",
+        docs_url=None,
+        redoc_url=None,
+        middleware=[
+            Middleware(SecurityHeaders, secure=parts.secure),
+            Middleware(Incidents),
+            Middleware(Guards),
+        ],
+    )
+    app.state.parts = parts
+    add_error_handlers(app)
+    for page in _PAGES:
+        app.include_router(page.router, include_in_schema=False)
+    for api in _API:
+        app.include_router(api.router, prefix="/api", responses=PROBLEMS)
+    app.include_router(health.router)
+    app.include_router(static_router(static))
+    return app
