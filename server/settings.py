@@ -7,7 +7,7 @@ from pathlib import Path
 
 DATABASE_VARIABLE = "TITRANT_LEDGER_DATABASE_URL"
 DEFAULT_HOST, DEFAULT_PORT = "127.0.0.1", 8017
-DATABASE_FILE = "ledger.sqlite3"
+DATABASE_FILE = "ledger.sqlite"
 
 
 class SettingsProblem(Exception):

@@ -145,9 +145,7 @@ class ChargeBalance:
             squares = squares - (2 * top) * found.lost[0]
         carbonate = chemistry.flask_carbonate + (chemistry.c * chemistry.f) * V_read
         ions = n * (squares + abs(self.system.strong_charge)) + chemistry.c * V_read
-        return np.asarray(
-            0.5 * ((ions + carbonate * found.lost2[1]) / (V0 + V_read) + found.both)
-        )
+        return np.asarray(0.5 * ((ions + carbonate * found.lost2[1]) / (V0 + V_read) + found.both))
 
     def per_pK(self, found: Volumes, step: int) -> Floats:
         """Return dV/dpK of one of the analyte's steps (from 0), in mL."""

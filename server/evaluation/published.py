@@ -1,4 +1,4 @@
-"""The calculations against published examples: source, published value, computed value, agreement."""
+"""The calculations against published examples that come with the program."""
 
 import json
 import math

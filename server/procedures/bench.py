@@ -10,6 +10,7 @@ from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.codes import read_code
+from server.lab.free_text import MOST_REASON, read_reason, read_text
 from server.lab.in_use import judge, things_in_use
 from server.lab.recipe import RecipeDocument
 from server.lab.refusal import NotAllowed, NotFound, Stale, Unacceptable
@@ -96,7 +97,7 @@ def begin_sheet(session: Session, command: BeginSheet, *, actor: Actor, now: dat
     Raises:
         Unacceptable: the recipe does not fit the lot, or something is missing or not valid.
     """
-    reason = (command.override_reason or "").strip()
+    reason = read_text(command.override_reason or "", "override_reason", most=MOST_REASON)
     if not (reason and actor.may(Act.OVERRIDE)):
         actor.need(Act.WRITE)
     lot = _lot(session, command.lot_code)
@@ -108,6 +109,8 @@ def begin_sheet(session: Session, command: BeginSheet, *, actor: Actor, now: dat
         raise Unacceptable(says, field="standard_lot_id")
     instruments = _instruments(session, command, recipe.document)
     overrides = _overrides(standard, instruments, reason, actor=actor, now=now)
+    if not overrides:
+        actor.need(Act.WRITE)
     sheet = Sheet(
         id=str(uuid4()),
         number=_number(session, actor, now),
@@ -145,10 +148,12 @@ def let_be_used(session: Session, command: LetBeUsed, *, actor: Actor, now: date
     if command.what not in things:
         says = f"This sheet uses no “{command.what[:40]}”; it uses {', '.join(things)}."
         raise Unacceptable(says, field="what", example=next(iter(things), None))
-    if not command.reason.strip():
-        says = "Give the reason; it is printed on the certificate."
-        raise Unacceptable(says, field="reason", example="checked with the daily weight today")
-    one = _override(command.what, command.reason.strip(), actor=actor, now=now)
+    reason = read_reason(
+        command.reason,
+        says="Give the reason; it is printed on the certificate.",
+        example="checked with the daily weight today",
+    )
+    one = _override(command.what, reason, actor=actor, now=now)
     sheet.overrides = [*sheet.overrides, one]
     sheet.revision += 1
     session.flush()
@@ -156,7 +161,7 @@ def let_be_used(session: Session, command: LetBeUsed, *, actor: Actor, now: date
     thing = Thing("sheet", sheet.id, sheet.number)
     note_act(
         session, "let something out of date be used", thing,
-        actor=actor, now=now, why=command.reason.strip(), body=body,
+        actor=actor, now=now, why=reason, body=body,
     )  # fmt: skip
     return sheet.revision
 
@@ -168,14 +173,15 @@ def abandon_sheet(session: Session, command: AbandonSheet, *, actor: Actor, now:
     state = load_sheet_facts(session, sheet.id).state
     if state not in {OPEN, SENT_BACK}:
         raise NotAllowed(f"This sheet is {state}; only an open one can be abandoned.")
-    if not command.reason.strip():
-        says = "Give the reason; the sheet stays readable."
-        raise Unacceptable(says, field="reason", example="burette leaked")
+    why = read_reason(
+        command.reason,
+        says="Give the reason; the sheet stays readable.",
+        example="burette leaked",
+    )
     sheet.abandoned_at = now
     sheet.revision += 1
     session.flush()
     thing = Thing("sheet", sheet.id, sheet.number)
-    why = command.reason.strip()
     note_act(session, "abandoned a bench sheet", thing, actor=actor, now=now, why=why)
 
 

@@ -11,6 +11,7 @@ from sqlalchemy.orm import Session
 from server.lab.actor import Actor, Proof
 from server.lab.canonical import canonical, digest
 from server.lab.certificate_document import Issue, build_certificate, measured_at
+from server.lab.free_text import read_text
 from server.lab.in_use import things_in_use
 from server.lab.refusal import NotAllowed, Unacceptable
 from server.lab.roles import Act
@@ -113,7 +114,7 @@ def send_back_sheet(session: Session, command: SendBack, *, actor: Actor, now: d
     if refusal:
         raise NotAllowed(refusal.replace("countersigns", "sends it back"))
     need_revision(sheet, command.revision)
-    remark = command.remark.strip()[:2000]
+    remark = read_text(command.remark, "remark")
     if not remark:
         says = "Say in a remark what shall be looked at again."
         raise Unacceptable(says, field="remark", example="replicate 3: is 18.46 a slip?")

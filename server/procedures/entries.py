@@ -1,7 +1,7 @@
 """Writing entries: the one door, in ink."""
 
 from dataclasses import asdict, dataclass
-from datetime import datetime
+from datetime import UTC, datetime
 from typing import Any
 from uuid import UUID
 
@@ -9,6 +9,7 @@ from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.canonical import canonical, digest
+from server.lab.free_text import check_text
 from server.lab.in_use import kind_of_slot, things_in_use
 from server.lab.ink import WrittenEntry, standing
 from server.lab.readings import Beside, check_reading
@@ -28,6 +29,8 @@ from server.records.tables.people import Device
 
 MOST_ENTRIES = 500
 _MOST_TEXT = 2000
+#: What the columns hold: a device counts up to this, and its clock runs up to this.
+_MOST = {"device_sequence": 2**31 - 1, "base_revision": 2**31 - 1, "monotonic_ms": 2**53}
 
 
 @dataclass(frozen=True, slots=True)
@@ -109,6 +112,13 @@ def _check_key(entry: NewEntry) -> None:
         value = getattr(entry, field)
         if value is not None and not _is_uuid(value):
             raise Unacceptable(f"{field} must be a UUID.", field=field, example=_EXAMPLE_UUID)
+    for field in ("slot", "text", "raw", "reason"):
+        check_text(getattr(entry, field) or "", field, most=_MOST_TEXT)
+    for field, most in _MOST.items():
+        value = getattr(entry, field)
+        if value is not None and not 0 <= value <= most:
+            says = f"{field} must be a whole number from 0 to {most}."
+            raise Unacceptable(says, field=field, example="1")
 
 
 _EXAMPLE_UUID = "7f0f3b1e-2f57-4c0c-9d62-0c6f8c1c9a11"
@@ -233,9 +243,6 @@ class _Pen:
         return SavedFirst(says, field=label, shown={"standing": theirs, "yours": yours})
 
     def _add(self, entry: NewEntry, unit: str | None) -> Written:
-        for name, value in (("reason", entry.reason), ("raw", entry.raw)):
-            if value is not None and len(value) > _MOST_TEXT:
-                raise Unacceptable(f"{name} takes up to {_MOST_TEXT} characters.", field=name)
         self._check_device(entry)
         position = len(self._entries) + 1
         row = Entry(
@@ -322,13 +329,13 @@ def _instant(entry: NewEntry) -> datetime | None:
         read_zone(entry.device_zone)
     if entry.device_at is None:
         return None
+    example = "2026-05-31T10:00:00+02:00"
     try:
         at = datetime.fromisoformat(entry.device_at)
-    except ValueError as problem:
+        if at.tzinfo is None:
+            says = "device_at needs its offset from UTC."
+            raise Unacceptable(says, field="device_at", example=example)
+        return at.astimezone(UTC)
+    except (ValueError, OverflowError) as problem:
         says = "device_at must be a time in ISO 8601 with its offset."
-        example = "2026-05-31T10:00:00+02:00"
         raise Unacceptable(says, field="device_at", example=example) from problem
-    if at.tzinfo is None:
-        says = "device_at needs its offset from UTC."
-        raise Unacceptable(says, field="device_at", example="2026-05-31T10:00:00+02:00")
-    return at

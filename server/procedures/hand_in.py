@@ -15,6 +15,7 @@ from server.evaluation.from_sheet import (
     prepare_sheet,
 )
 from server.lab.actor import Actor, Proof
+from server.lab.free_text import MOST_REASON, read_text
 from server.lab.in_use import things_in_use
 from server.lab.refusal import NotAllowed, Stale, Unacceptable
 from server.lab.roles import Act
@@ -144,7 +145,10 @@ def _reasons(findings: Iterable[Mapping[str, Any]], given: Mapping[str, str]) ->
         if name not in names and given[name].strip():
             says = f"“{name[:40]}” does not fail, so it needs no reason."
             raise Unacceptable(says, field=f"reasons.{name[:40]}")
-    reasons = {name: (given.get(name) or "").strip()[:1000] for name in names}
+    reasons = {
+        name: read_text(given.get(name) or "", f"reasons.{name}", most=MOST_REASON)
+        for name in names
+    }
     for name, reason in reasons.items():
         if not reason:
             says = f"“{name}” fails: give the reason; it is printed on the certificate."

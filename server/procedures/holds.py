@@ -8,6 +8,7 @@ from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.codes import read_code
+from server.lab.free_text import read_reason
 from server.lab.refusal import NotAllowed, NotFound, Unacceptable
 from server.lab.roles import Act
 from server.lab.segregation import release_refusal
@@ -17,6 +18,7 @@ from server.records.queries.loading import standing_hold
 from server.records.tables.stores import Hold, Instrument, StandardLot
 
 KINDS = ("lot", "bottle", "standard lot", "instrument")
+_GIVE = "Give the reason."
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,7 +43,7 @@ def hold_thing(session: Session, command: HoldThing, *, actor: Actor, now: datet
     """Hold a thing: it is out of use until somebody else releases it; return the hold's id."""
     actor.need(Act.HOLD)
     thing = _thing(session, command.kind, command.thing)
-    reason = _reason(command.reason, example="cloudy, looks carbonated")
+    reason = read_reason(command.reason, says=_GIVE, example="cloudy, looks carbonated")
     standing = standing_hold(session, thing.kind, thing.id)
     if standing is not None:
         raise NotAllowed(f"{thing.name} is held already: {standing.reason}.")
@@ -63,7 +65,7 @@ def release_thing(session: Session, command: ReleaseThing, *, actor: Actor, now:
     """Release what somebody else held."""
     actor.need(Act.RELEASE)
     thing = _thing(session, command.kind, command.thing)
-    reason = _reason(command.reason, example="filtered and checked, clear")
+    reason = read_reason(command.reason, says=_GIVE, example="filtered and checked, clear")
     hold = standing_hold(session, thing.kind, thing.id)
     if hold is None:
         raise NotAllowed(f"{thing.name} is not held.")
@@ -100,9 +102,3 @@ def _kept(session: Session, kind: str, key: str) -> StandardLot | Instrument | N
     if kind == "standard lot":
         return session.get(StandardLot, key)
     return session.get(Instrument, key)
-
-
-def _reason(text: str, *, example: str) -> str:
-    if not text.strip():
-        raise Unacceptable("Give the reason.", field="reason", example=example)
-    return text.strip()[:1000]

@@ -10,6 +10,7 @@ from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.codes import new_code, read_code
+from server.lab.free_text import read_reason, read_text
 from server.lab.people import check_name
 from server.lab.refusal import NotAllowed, NotFound, Unacceptable
 from server.lab.roles import Act
@@ -29,6 +30,7 @@ from server.records.queries.load_lots import (
 from server.records.tables.lots import Bottle, Lot, Pull
 
 MOST_BOTTLES = 50
+_MOST_STEPS = 10_000
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,11 +104,12 @@ def make_up_lot(
     if use_by is not None and use_by < day:
         raise Unacceptable("The use-by day lies before the preparation.", field="use_by")
     name = _lot_name(session, command, f"{titrant} {nominal} mol/L, {day.isoformat()}")
+    steps = read_text(command.preparation, "preparation", most=_MOST_STEPS)
     stated = {
         "prepared_on": day.isoformat(),
-        "made_from": command.made_from.strip(),
-        "preparation": [line.strip() for line in command.preparation.splitlines() if line.strip()],
-        "recipe_name": command.recipe_name.strip(),
+        "made_from": read_text(command.made_from, "made_from"),
+        "preparation": [line.strip() for line in steps.splitlines() if line.strip()],
+        "recipe_name": read_text(command.recipe_name, "recipe_name"),
         "use_by": use_by.isoformat() if use_by else "",
     }
     lot = Lot(
@@ -173,6 +176,7 @@ def use_up_bottle(session: Session, command: UseUpBottle, *, actor: Actor, now: 
     bottle = bottle_by_code(session, code)
     if bottle is None:
         raise NotFound(f"There is no bottle {code}.", field="code")
+    session.refresh(bottle, with_for_update=True)
     if bottle.used_up_at is not None:
         return
     bottle.used_up_at = now
@@ -189,7 +193,7 @@ def propose_pull(session: Session, command: ProposePull, *, actor: Actor, now: d
     _refuse_pulled(session, lot)
     if open_pull(session, lot.id) is not None:
         raise NotAllowed("A pull of this lot is proposed already; a countersigner confirms it.")
-    reason = _reason(command.reason)
+    reason = read_reason(command.reason, says="Give the reason.", example="cloudy")
     pull = Pull(
         id=str(uuid4()),
         lot_id=lot.id,
@@ -263,12 +267,6 @@ def _positive(text: str, field: str, *, example: str) -> str:
     if not good:
         raise Unacceptable(f"{field} must be more than zero.", field=field, example=example)
     return text
-
-
-def _reason(text: str) -> str:
-    if not text.strip():
-        raise Unacceptable("Give the reason.", field="reason", example="cloudy")
-    return text.strip()[:1000]
 
 
 def _lot_thing(lot: Lot) -> Thing:

@@ -8,11 +8,10 @@ from uuid import uuid4
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
+from server.lab.free_text import read_text
 from server.lab.sheet_facts import SheetFacts, SignatureFact
 from server.lab.signing import digest_to_sign
 from server.records.tables.bench import Signature
-
-_MOST_REMARK = 2000
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,7 +39,7 @@ def sign(
         evaluation_id=to_sign.evaluation_id,
         signed_digest="",
         reasons=to_sign.reasons,
-        remark=to_sign.remark.strip()[:_MOST_REMARK] or None,
+        remark=read_text(to_sign.remark, "remark") or None,
     )
     digest = digest_to_sign(unsigned, facts, to_sign.snapshot_digest)
     signature = replace(unsigned, signed_digest=digest)

@@ -4,7 +4,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
-from sqlalchemy import ColumnElement, Select, func, select
+from sqlalchemy import ColumnElement, func, select
 from sqlalchemy.orm import Session
 
 from server.records.tables.bench import Entry, Evaluation, Sheet
@@ -85,13 +85,13 @@ def snapshots_of(session: Session, sheet_id: str) -> dict[str, str]:
     return {row.id: row.snapshot for row in rows}
 
 
-def _select(*where: ColumnElement[bool]) -> Select[Any]:
+def _select(*where: ColumnElement[bool]) -> Any:
     joined = select(Sheet, Lot, Person.printed_name)
     joined = joined.join(Lot, Lot.id == Sheet.lot_id).join(Person, Person.id == Sheet.begun_by)
     return joined.where(*where)
 
 
-def _listed(session: Session, asked: Select[Any]) -> list[ListedSheet]:
+def _listed(session: Session, asked: Any) -> list[ListedSheet]:
     rows = session.execute(asked).all()
     ids = [sheet.id for sheet, _, _ in rows]
     counted = session.execute(
