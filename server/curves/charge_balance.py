@@ -75,7 +75,8 @@ class ChargeBalance:
         t = flask.temperature_C
         self.pK = tuple(step.pK(t) for step in system.analyte)
         self.pKw = water_pKw(t)
-        self._A = davies_A(t) * LN10
+        self.davies_A = davies_A(t) * LN10
+        """Debye and Hückel's A for natural logarithms."""
         self._lay_out([step.pK(t) for step in CARBONIC])
 
     def _lay_out(self, carbonic: list[float]) -> None:
@@ -104,7 +105,7 @@ class ChargeBalance:
         if not self.activities:
             return np.zeros_like(ionic_strength)
         root = np.sqrt(ionic_strength)
-        return np.asarray(self._A * (DAVIES_SLOPE * ionic_strength - root / (1 + root)))
+        return np.asarray(self.davies_A * (DAVIES_SLOPE * ionic_strength - root / (1 + root)))
 
     def start_ionic_strength(self, V: Floats, c: float) -> Floats:
         """Return a first guess of the ionic strength in mol/L at volumes V."""

@@ -4,6 +4,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
+from server.curves.lag import LagModel
 from server.curves.points import Floats
 
 _ENOUGH, _FAR = 4.0, 10.0
@@ -35,6 +36,7 @@ class Given:
 
     ``reading_u`` (pH) and ``volume_u`` (mL) of one point, None: learnt from the residuals, from
     the guesses on. ``trust`` gives points that are known to stand off a lower weight, 0 to 1.
+    With ``lag`` the probe's lag is fitted too, and the readings are taken from it.
     """
 
     priors: Priors = field(default_factory=Priors)
@@ -43,6 +45,7 @@ class Given:
     reading_guess: float = 0.01
     volume_guess: float = 0.002
     trust: Floats | None = None
+    lag: LagModel | None = None
 
 
 class ScatterEstimate:

@@ -13,6 +13,7 @@ import numpy as np
 
 from server.curves.charge_balance import ChargeBalance, Chemistry, Volumes
 from server.curves.fit_scatter import Given, Priors, ScatterEstimate
+from server.curves.lag import LagModel
 from server.curves.points import Floats
 
 PIVOT_pH = 7.0
@@ -82,7 +83,9 @@ class ModelFit:
 class _Rounds:
     """The state that the rounds of a fit carry along."""
 
-    def __init__(self, balance: ChargeBalance, start_mL: float, priors: Priors) -> None:
+    def __init__(
+        self, balance: ChargeBalance, start_mL: float, priors: Priors, lag: LagModel | None
+    ) -> None:
         system = balance.system
         self.balance = balance
         self.names = ["effective_mL", "offset", "slope"]
@@ -95,6 +98,12 @@ class _Rounds:
             self.names += ["carbonate", "flask_carbonate"]
             values += [0.0, priors.flask_carbonate]
             widths += [priors.carbonate, priors.u_flask_carbonate]
+        self.lag = lag
+        if lag is not None:
+            self.names.append("lag")
+            values.append(lag.start)
+            widths.append(np.inf)
+        self.carbonate_at = 3 + len(system.fitted_steps)
         self.values = np.array(values)
         self.centre = self.values
         self.precision = 1 / np.square(widths)
@@ -108,7 +117,8 @@ class _Rounds:
         pK = list(self.balance.pK)
         for at, step in enumerate(system.fitted_steps):
             pK[step] = values[3 + at]
-        f, n0 = values[-2:] if system.takes_up_carbonate else (0.0, 0.0)
+        at = self.carbonate_at
+        f, n0 = values[at : at + 2] if system.takes_up_carbonate else (0.0, 0.0)
         c = flask.amount_mmol * system.protons / (values[0] * (1 - f))
         return Chemistry(tuple(pK), c, f, n0)
 
@@ -122,14 +132,20 @@ class _Rounds:
         for at, step in enumerate(balance.system.fitted_steps):
             rows[3 + at] = balance.per_pK(found, step)
         if balance.system.takes_up_carbonate:
-            rows[-2] = balance.per_carbonate(found, chemistry)
-            rows[-1] = balance.per_flask_carbonate(found)
+            rows[self.carbonate_at] = balance.per_carbonate(found, chemistry)
+            rows[self.carbonate_at + 1] = balance.per_flask_carbonate(found)
         return rows
 
     def bounded(self, step: Floats) -> Floats:
         """Return the step, shortened as a whole where it would leave what is reasonable."""
         excess = float(np.abs(step / self.limits).max())
         return step if excess <= 1 else np.asarray(step / excess)
+
+    def move(self, step: Floats) -> None:
+        """Take a step."""
+        self.values = self.values + step
+        if self.lag is not None:
+            self.values[-1] = self.lag.bounded(float(self.values[-1]))
 
 
 def fit_model(
@@ -146,7 +162,8 @@ def fit_model(
         FitProblem: it does not settle, or settles outside what a titration can be.
     """
     given = given or Given()
-    rounds = _Rounds(balance, start_mL, given.priors)
+    lag = given.lag
+    rounds = _Rounds(balance, start_mL, given.priors, lag)
     scatter = ScatterEstimate(given, V.size)
     off_reading = np.zeros_like(V)
     chemistry = rounds.chemistry()
@@ -154,10 +171,14 @@ def fit_model(
     size = len(rounds.names)
     for count in range(1, _MOST_ROUNDS + 1):  # noqa: B007 - said in the result
         _, offset, slope = rounds.values[:3].tolist()
+        if lag is not None:
+            pH = lag.freed(float(rounds.values[-1]))
         latent = (pH - off_reading) * (1 / slope) + (PIVOT_pH - (PIVOT_pH + offset) / slope)
         found = balance.at(latent, chemistry, ln_gamma=ln_gamma)
         per_reading = found.slope * (1 / slope)
         rows = rounds.rows(chemistry, found, latent, per_reading)
+        if lag is not None:
+            rows[-1] = per_reading * lag.per_share(float(rounds.values[-1]), pH - off_reading)
         gap = V - found.V - per_reading * off_reading
         steep2 = per_reading * per_reading
         variance = scatter.variance(steep2)
@@ -169,7 +190,7 @@ def fit_model(
         pull = weighted @ gap - rounds.precision * (rounds.values - rounds.centre)
         step = rounds.bounded(covariance @ pull)
         left = gap - step @ rows
-        rounds.values = rounds.values + step
+        rounds.move(step)
         off_reading = per_reading * left * (scatter.reading_u**2 / -variance)
         chemistry = rounds.chemistry()
         if balance.activities and count <= _ROUNDS_OF_ACTIVITIES:

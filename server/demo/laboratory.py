@@ -4,6 +4,7 @@ import secrets
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime, timedelta
+from functools import partial
 from random import Random
 
 from server.demo import cast
@@ -116,9 +117,7 @@ class _Story:
                     password=password,
                 )
                 person_id = self._hands.transactions.write(
-                    lambda session, first=first, hashed=hashed: set_up_laboratory(
-                        session, first, password_hash=hashed, now=at
-                    )
+                    partial(set_up_laboratory, command=first, password_hash=hashed, now=at)
                 )
             else:
                 command = AddPerson(

@@ -250,7 +250,18 @@ def _replicate(materials: SheetMaterials, written: _Written, number: int) -> dic
     found["burette"] = pairs if all(None not in pair for pair in pairs) else None
     found["temperature"] = written.decimal(number, "temperature")
     found["excluded"] = written.text(number, "excluded")
+    if found["excluded"] is not None:
+        found = _without_half_masses(found)
     return {key: value for key, value in found.items() if value is not None}
+
+
+def _without_half_masses(found: dict[str, Any]) -> dict[str, Any]:
+    """Return an excluded replicate without a weighing that was never finished: it was spilled."""
+    pair = ("container_and_standard", "container_less_standard")
+    dropped = {*pair} if any(found.get(key) is None for key in pair) else set()
+    if found.get("mass") is None:
+        dropped.add("tare_load")
+    return {key: value for key, value in found.items() if key not in dropped}
 
 
 def _missing(materials: SheetMaterials, written: _Written) -> Iterator[Missing]:

@@ -21,7 +21,7 @@ from server.evaluation.entrance import evaluate
 from server.evaluation.snapshot import make_snapshot
 from server.lab.canonical import canonical, digest
 from server.lab.in_use import InUse, things_in_use
-from server.lab.ink import COUNTS_AGAIN, WrittenEntry, standing
+from server.lab.ink import COUNTS_AGAIN, WrittenEntry, excluded, standing
 from server.lab.refusal import Unacceptable
 from server.lab.rig import rig_of
 from server.lab.sheet_facts import (
@@ -194,7 +194,7 @@ def _missing_rows(facts: SheetFacts, already: tuple[Missing, ...]) -> tuple[Miss
     """Return required rows of the sheet and of begun replicates that assembling does not ask."""
     written = standing(facts.entries)
     begun = {place[0] for place in written if place[1] not in {"excluded", "remark"}}
-    left_out = {place[0] for place in written if place[1] == "excluded"}
+    left_out = excluded(facts.entries)
     asked = {(one.replicate, one.slot) for one in already}
     rows = all_rows(facts.recipe.document, rig_of(facts.instruments), facts.entries)
     return tuple(

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from datetime import datetime
 from typing import Any
 
-from server.lab.in_use import InUse
+from server.lab.in_use import InUse, kind_of_slot
 from server.lab.ink import excluded, standing, strikes
 from server.lab.rig import rig_of
 from server.lab.segregation import own_part
@@ -119,8 +119,12 @@ def corrections(facts: SheetFacts) -> list[dict[str, Any]]:
 
 
 def measured_at(facts: SheetFacts) -> datetime:
-    """Return when the last reading of the sheet was written."""
-    return max((one.received_at for one in facts.entries), default=facts.begun_at)
+    """Return when the last reading that stands was written; later remarks do not count."""
+    return max(_reading_times(facts), default=facts.begun_at)
+
+
+def _reading_times(facts: SheetFacts) -> list[datetime]:
+    return [one.received_at for one in standing(facts.entries).values() if kind_of_slot(one.slot)]
 
 
 def _lot(facts: SheetFacts) -> dict[str, Any]:

@@ -5,6 +5,9 @@ from dataclasses import dataclass
 from types import MappingProxyType
 
 from server.lab.refusal import Unacceptable
+from server.metrology.decimal_text import DecimalProblem, read_wire_decimal
+
+_MOST = 1_000_000
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,13 +39,13 @@ def check_limits(limits: Mapping[str, str], path: str) -> None:
         if name not in LIMITS:
             says = f"{field} is not known here; known are {', '.join(LIMITS)}."
             raise Unacceptable(says, field=field)
+        example = LIMITS[name].default
         try:
-            good = 0 < float(text) < 1e6
-        except ValueError:
-            good = False
+            good = 0 < read_wire_decimal(text, field) < _MOST
+        except DecimalProblem as problem:
+            raise Unacceptable(problem.says, field=field, example=example) from problem
         if not good:
-            says = f"{field} must be a positive number."
-            raise Unacceptable(says, field=field, example=LIMITS[name].default)
+            says = f"{field} must be a positive number below {_MOST}."
+            raise Unacceptable(says, field=field, example=example)
         if name.startswith("replicates") and not text.isdigit():
-            says = f"{field} must be a whole number."
-            raise Unacceptable(says, field=field, example=LIMITS[name].default)
+            raise Unacceptable(f"{field} must be a whole number.", field=field, example=example)

@@ -42,7 +42,7 @@ def read_calibration(kind: str, document: Any) -> dict[str, Any]:
         }
     elif kind == BURETTE:
         read = {
-            "capacity": reading.quantity_at(doc, "capacity", "document", unit="mL"),
+            "capacity": reading.positive_at(doc, "capacity", "document", unit="mL"),
             "delivery": _bound(doc, "delivery", "mL"),
             "error_table": _table(doc, "reading in mL"),
             "glass_expansion": _decimal(doc, "glass_expansion"),
@@ -84,19 +84,21 @@ def _bound(
 
 
 def _decimal(doc: Mapping[str, Any], key: str) -> str | None:
-    if doc.get(key) in {None, ""}:
+    if doc.get(key) is None or doc[key] == "":
         return None
-    _number(doc[key], f"document.{key}", example="9.9e-6")
+    field, example = f"document.{key}", "9.9e-6"
+    if not 0 <= _number(doc[key], field, example=example) < Decimal("1e-3"):
+        says = f"{field}: a cubic expansion of glass lies between 0 and 0.001 per K."
+        raise Unacceptable(says, field=field, example=example)
     return str(doc[key])
 
 
 def _table(doc: Mapping[str, Any], head: str) -> list[list[str]] | None:
     table = doc.get("error_table")
-    if not table:
+    if table is None or table in ("", []):
         return None
     field, example = "document.error_table", '[["0", "0.0000"], ["100", "0.0001"]]'
-    good = isinstance(table, Sequence) and not isinstance(table, str) and len(table) > 1
-    if not good or any(not isinstance(row, Sequence) or len(row) != 2 for row in table):
+    if not (_is_list(table) and len(table) > 1 and all(_is_list(r) and len(r) == 2 for r in table)):
         says = f"{field} needs at least two rows of two numbers: {head}, error."
         raise Unacceptable(says, field=field, example=example)
     readings = [_number(row[0], f"{field}[{i}]", example="10.0") for i, row in enumerate(table)]
@@ -106,6 +108,10 @@ def _table(doc: Mapping[str, Any], head: str) -> list[list[str]] | None:
         says = f"{field}: the {head} must rise from row to row."
         raise Unacceptable(says, field=field, example=example)
     return [[str(row[0]), str(row[1])] for row in table]
+
+
+def _is_list(value: Any) -> bool:
+    return isinstance(value, Sequence) and not isinstance(value, str)
 
 
 def _number(value: Any, path: str, *, example: str) -> Decimal:

@@ -7,6 +7,7 @@ from server.lab.refusal import Unacceptable
 from server.lab.roles import Role
 
 _MOST_NAME = 80
+_MOST_INITIALS = 4
 
 
 def check_roles(roles: Iterable[str]) -> tuple[str, ...]:
@@ -36,6 +37,17 @@ def check_name(text: str, field: str, *, example: str) -> str:
         says = f"{field} takes 1 to {_MOST_NAME} printable characters."
         raise Unacceptable(says, field=field, example=example)
     return name
+
+
+def read_initials(text: str) -> str:
+    """Return initials as given, without outer spaces; empty where none are given."""
+    if not text.strip():
+        return ""
+    initials = check_name(text, "initials", example="ML")
+    if len(initials) > _MOST_INITIALS:
+        says = f"initials takes up to {_MOST_INITIALS} characters."
+        raise Unacceptable(says, field="initials", example="ML")
+    return initials
 
 
 def sign_in_key(name: str) -> str:

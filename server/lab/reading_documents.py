@@ -1,8 +1,10 @@
 """Reading JSON-like documents strictly: each refusal names the path, what is wrong, an example."""
 
 from collections.abc import Iterable, Mapping, Sequence
+from decimal import Decimal
 from typing import Any
 
+from server.lab.free_text import check_text
 from server.lab.refusal import Unacceptable
 from server.metrology.quantity import QuantityProblem, read_quantity
 
@@ -34,8 +36,7 @@ def text_at(
     value = document.get(key, default)
     if not isinstance(value, str) or (not value.strip() and value != default):
         raise Unacceptable(f"{where} must be a text.", field=where, example=example)
-    if len(value) > most:
-        raise Unacceptable(f"{where} is longer than {most} characters.", field=where)
+    check_text(value, where, most=most)
     return value.strip()
 
 
@@ -62,7 +63,7 @@ def count_at(
     """Return a whole number between two bounds; digits in a text are taken too."""
     where = f"{path}.{key}" if path else key
     value = document.get(key, default)
-    if isinstance(value, str) and value.isascii() and value.isdigit():
+    if isinstance(value, str) and value.isascii() and value.isdigit() and len(value) < 10:
         value = int(value)
     if not isinstance(value, int) or isinstance(value, bool) or not low <= value <= high:
         says = f"{where} must be a whole number from {low} to {high}."
@@ -97,3 +98,14 @@ def quantity_at(
     except QuantityProblem as problem:
         raise Unacceptable(problem.says, field=problem.path, example=problem.example) from problem
     return dict(value)
+
+
+def positive_at(
+    document: Mapping[str, Any], key: str, path: str, *, unit: str | None
+) -> dict[str, Any] | None:
+    """Return the object of a quantity above zero, or None where the key is absent."""
+    quantity = quantity_at(document, key, path, unit=unit)
+    if quantity is not None and Decimal(quantity["value"]) <= 0:
+        where = f"{path}.{key}.value" if path else f"{key}.value"
+        raise Unacceptable(f"{where} must be above zero.", field=where)
+    return quantity

@@ -70,7 +70,7 @@ def _check_number(row: Row, text: str, beside: Beside) -> None:
     _check_span(row, text, value, beside)
     if row.slot in {"container_and_standard", "container_less_standard"}:
         _check_mass(row, text, value, beside)
-    elif row.slot == "mass":
+    elif row.slot in {"mass", "tare_load"}:
         _check_load(row, value, beside)
     elif row.slot in {"burette_start", "burette_end"}:
         _check_filling(row, text, value, beside)
@@ -131,10 +131,10 @@ def _check_mass(row: Row, text: str, value: Decimal, beside: Beside) -> None:
 
 
 def _check_load(row: Row, value: Decimal, beside: Beside) -> None:
-    if value == 0:
+    if value == 0 and row.slot == "mass":
         raise Unacceptable(f"{row.label} cannot be zero.", field=row.label)
-    load = beside.number((row.replicate, "tare_load", 1))
-    if load is not None and row.high is not None and load + value > Decimal(row.high):
+    other = beside.number((row.replicate, "tare_load" if row.slot == "mass" else "mass", 1))
+    if other is not None and row.high is not None and other + value > Decimal(row.high):
         says = f"Load and standard together are above {row.high} g, where {_end_of(row, beside)}."
         raise Unacceptable(says, field=row.label)
 

@@ -17,6 +17,7 @@ _KEYS = (
     "valid_for", "blank", "excess", "buoyancy", "temperature", "liquid_expansion",
     "repeatability", "interval_days", "notice_days", "steps", "limits",
 )  # fmt: skip
+_RATIO = re.compile(r"[0-9]{1,9}([./][0-9]{1,9})?")
 _STEP_KEY = re.compile(r"[a-z][a-z0-9_-]{0,39}")
 
 
@@ -145,11 +146,12 @@ def _words(end_point: EndPoint) -> str:
 
 def _ratio(doc: Mapping[str, Any]) -> str | None:
     ratio = doc.get("ratio")
-    if ratio in {None, ""}:
+    if ratio is None or ratio == "":
         return None
+    shaped = isinstance(ratio, str) and _RATIO.fullmatch(ratio)
     try:
-        good = isinstance(ratio, str) and Fraction(ratio) > 0
-    except (ValueError, ZeroDivisionError):
+        good = bool(shaped) and Fraction(ratio) > 0
+    except ZeroDivisionError:
         good = False
     if not good:
         says = "ratio must be a positive number or fraction: amount of titrant per standard."
@@ -170,7 +172,7 @@ def _repeatability(doc: Mapping[str, Any]) -> dict[str, Any] | None:
             stated, "applies_to", "repeatability", choices=("one", "mean"), default="one"
         ),
     }
-    if stated.get("dof"):
+    if stated.get("dof") not in (None, ""):
         answer["dof"] = _positive(stated["dof"], "repeatability.dof", example="24")
     if stated.get("source"):
         answer["source"] = reading.text_at(

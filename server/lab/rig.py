@@ -53,12 +53,15 @@ def rig_of(instruments: Sequence[InstrumentFact]) -> Rig:
 def read_decimals(kind: str, identity: Mapping[str, Any]) -> int | None:
     """Return how many decimals a reading of an instrument has, or None where nothing is stated."""
     stated = str(identity.get("decimals") or "")
-    if stated.isdigit():
+    if stated.isascii() and stated.isdigit():
         return int(stated)
     resolution = str(identity.get("resolution") or "")
     if not resolution:
         return None
-    own = len(resolution.partition(".")[2])
+    try:
+        own = max(0, -int(Decimal(resolution).as_tuple().exponent))
+    except (InvalidOperation, ValueError):
+        return None
     return max(own, _BURETTE_DECIMALS) if kind == BURETTE else own
 
 

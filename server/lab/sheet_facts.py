@@ -198,6 +198,12 @@ class SheetFacts:
 
     @property
     def measured_signature(self) -> SignatureFact | None:
-        """The last *measured* signature, or None."""
-        found = [one for one in self.signatures if one.meaning == "measured"]
+        """The *measured* signature of the evaluation that stands, or None."""
+        if self.evaluation is None:
+            return None
+        found = [
+            one
+            for one in self.signatures
+            if one.meaning == "measured" and one.evaluation_id == self.evaluation.id
+        ]
         return found[-1] if found else None

@@ -6,6 +6,8 @@ from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
 from server.lab.refusal import Unacceptable
 
+_FIRST_YEAR, _LAST_YEAR = 1900, 2999
+
 
 @dataclass(frozen=True, slots=True)
 class ValidUntil:
@@ -27,10 +29,14 @@ def read_zone(name: str) -> ZoneInfo:
 def read_day(text: str, field: str) -> date:
     """Return the day that a person typed as year-month-day."""
     try:
-        return date.fromisoformat(text.strip())
+        day = date.fromisoformat(text.strip())
     except ValueError as problem:
         says = f"{field} must be a day, written year-month-day."
         raise Unacceptable(says, field=field, example="2026-05-31") from problem
+    if not _FIRST_YEAR <= day.year <= _LAST_YEAR:
+        says = f"{field} must be a day from {_FIRST_YEAR} to {_LAST_YEAR}."
+        raise Unacceptable(says, field=field, example="2026-05-31")
+    return day
 
 
 def local_day(at: datetime, zone: str) -> date:

@@ -15,6 +15,7 @@ from server.lab.segregation import release_refusal
 from server.procedures.acts import Thing, note_act
 from server.records.queries.load_lots import bottle_by_code, lot_of_code
 from server.records.queries.loading import standing_hold
+from server.records.tables.lots import Bottle, Lot
 from server.records.tables.stores import Hold, Instrument, StandardLot
 
 KINDS = ("lot", "bottle", "standard lot", "instrument")
@@ -83,22 +84,18 @@ def _thing(session: Session, kind: str, key: str) -> Thing:
     if kind not in KINDS:
         says = f"kind cannot be “{kind[:40]}”; it is one of {', '.join(KINDS)}."
         raise Unacceptable(says, field="kind", example="bottle")
-    found: Thing | None = None
-    if kind == "lot":
-        lot = lot_of_code(session, read_code(key))
-        found = Thing(kind, lot.id, lot.name) if lot else None
-    elif kind == "bottle":
-        bottle = bottle_by_code(session, read_code(key))
-        found = Thing(kind, bottle.id, bottle.code) if bottle else None
-    else:
-        row = _kept(session, kind, key)
-        found = Thing(kind, row.id, row.name) if row else None
-    if found is None:
+    row = _row(session, kind, key)
+    if row is None:
         raise NotFound(f"There is no such {kind}.", field="thing")
-    return found
+    session.refresh(row, with_for_update=True)  # of two who hold it at once the second is told
+    return Thing(kind, row.id, row.code if isinstance(row, Bottle) else row.name)
 
 
-def _kept(session: Session, kind: str, key: str) -> StandardLot | Instrument | None:
+def _row(session: Session, kind: str, key: str) -> Lot | Bottle | StandardLot | Instrument | None:
+    if kind == "lot":
+        return lot_of_code(session, read_code(key))
+    if kind == "bottle":
+        return bottle_by_code(session, read_code(key))
     if kind == "standard lot":
         return session.get(StandardLot, key)
     return session.get(Instrument, key)

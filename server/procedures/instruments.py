@@ -8,6 +8,7 @@ from uuid import uuid4
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
+from server.lab.free_text import read_text
 from server.lab.papers import check_kind, read_calibration
 from server.lab.people import check_name
 from server.lab.refusal import NotFound, Unacceptable
@@ -17,6 +18,9 @@ from server.metrology.decimal_text import DecimalProblem, read_wire_decimal
 from server.procedures.acts import Thing, note_act
 from server.records.queries.loading import instrument_by_name, newest_calibration
 from server.records.tables.stores import Calibration, Instrument
+
+_MOST_TEXT = 200
+_DECIMALS = ("", "0", "1", "2", "3", "4", "5", "6")
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,7 +68,7 @@ def register_instrument(
         raise Unacceptable(f"There is an instrument “{name}” already.", field="name")
     for field in ("resolution", "capacity", "minimum_g"):
         _check_positive(getattr(command, field), field)
-    if command.decimals and (not command.decimals.isdigit() or int(command.decimals) > 6):
+    if command.decimals not in _DECIMALS:
         says = "decimals must be a whole number from 0 to 6."
         raise Unacceptable(says, field="decimals", example="2")
     if kind in {"balance", "burette"} and not command.resolution:
@@ -72,7 +76,7 @@ def register_instrument(
         raise Unacceptable(says, field="resolution", example="0.0001")
     keys = ("maker", "type", "serial", "location", "resolution", "capacity", "decimals",
             "minimum_g", "software")  # fmt: skip
-    stated = {key: str(getattr(command, key)).strip() for key in keys}
+    stated = {key: read_text(getattr(command, key), key, most=_MOST_TEXT) for key in keys}
     row = Instrument(
         id=str(uuid4()),
         kind=kind,

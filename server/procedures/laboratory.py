@@ -9,6 +9,7 @@ from uuid import uuid4
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
+from server.lab.free_text import read_text
 from server.lab.limits import check_limits
 from server.lab.people import check_name, initials_of, sign_in_key
 from server.lab.refusal import NotAllowed, SavedFirst, Unacceptable
@@ -72,7 +73,7 @@ def set_up_laboratory(
     laboratory = Laboratory(
         id=1,
         name=check_name(command.name, "name", example="Waterworks laboratory"),
-        address=command.address.strip(),
+        address=read_text(command.address, "address"),
         zone=command.zone,
         settings=dict(_SETTINGS),
     )
@@ -117,6 +118,7 @@ def change_settings(
     """
     actor.need(Act.ADMINISTER)
     row = laboratory_row(session)
+    session.refresh(row, with_for_update=True)
     before = _as_read(row)
     if row.revision != command.revision:
         says = "Somebody else changed the settings meanwhile; look at both and save again."
@@ -127,7 +129,7 @@ def change_settings(
         says = "idle_minutes must be from 1 to 720."
         raise Unacceptable(says, field="idle_minutes", example="30")
     row.name = check_name(command.name, "name", example="Waterworks laboratory")
-    row.address = command.address.strip()
+    row.address = read_text(command.address, "address")
     row.zone = command.zone
     row.own_signature = command.own_signature
     row.settings = {

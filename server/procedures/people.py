@@ -9,7 +9,8 @@ from sqlalchemy.orm import Session
 
 from server.credentials.passwords import check_new_password, hash_password
 from server.lab.actor import Actor, Proof
-from server.lab.people import check_name, check_roles, initials_of, sign_in_key
+from server.lab.free_text import MOST_REASON, read_text
+from server.lab.people import check_name, check_roles, initials_of, read_initials, sign_in_key
 from server.lab.refusal import NotAllowed, NotFound, SavedFirst, Unacceptable
 from server.lab.roles import Act, Role
 from server.procedures.acts import Thing, note_act
@@ -78,7 +79,7 @@ def add_person(
         id=str(uuid4()),
         sign_in_name=name,
         printed_name=printed,
-        initials=command.initials.strip()[:4] or initials_of(printed),
+        initials=read_initials(command.initials) or initials_of(printed),
         password_hash=password_hash,
         roles=list(check_roles(command.roles)),
         made_at=now,
@@ -120,6 +121,7 @@ def close_account(session: Session, command: CloseAccount, *, actor: Actor, now:
         NotAllowed: it is the last steward's.
     """
     actor.need(Act.ADMINISTER)
+    reason = read_text(command.reason, "reason", most=MOST_REASON)
     person = _person(session, command.person_id)
     if Role.STEWARD in person.roles:
         _need_another_steward(session, person)
@@ -129,7 +131,7 @@ def close_account(session: Session, command: CloseAccount, *, actor: Actor, now:
     person.revision += 1
     end_sign_ins(session, person.id, now=now)
     session.flush()
-    note_act(session, "closed an account", _thing(person), actor=actor, now=now, why=command.reason)
+    note_act(session, "closed an account", _thing(person), actor=actor, now=now, why=reason)
 
 
 def change_password(

@@ -1,6 +1,7 @@
 """A repeated request gets the first answer and does nothing twice."""
 
 from collections.abc import Callable
+from dataclasses import dataclass
 from datetime import datetime
 from typing import Any
 
@@ -12,6 +13,13 @@ from server.lab.refusal import KeyMissing, Unacceptable
 from server.records.tables.people import IdempotencyKey
 
 _MOST_KEY = 100
+
+
+@dataclass(frozen=True, slots=True)
+class Answered:
+    """The answer that a key got the first time."""
+
+    answer: Any
 
 
 def once(
@@ -35,16 +43,34 @@ def once(
     if not key or len(key) > _MOST_KEY:
         says = "This request needs an idempotency key of 1 to 100 characters."
         raise KeyMissing(says, field="key", example="2f1c1f0e-7d0b-4c5e-9d43-0a1b2c3d4e5f")
-    asked = digest(canonical(body))
-    row = session.get(IdempotencyKey, (actor.person_id, key))
-    if row is not None:
-        if row.body_digest != asked:
-            says = "This key was sent before with something else in it; nothing was done now."
-            raise Unacceptable(says, field="key")
-        return row.answer
-    answer = work()
-    session.add(
-        IdempotencyKey(person_id=actor.person_id, key=key, body_digest=asked, answer=answer, at=now)
+    earlier = find_answer(session, actor=actor, key=key, body=body)
+    if earlier is not None:
+        return earlier.answer
+    # the key first: a repeat that comes meanwhile waits at it, and then finds the answer
+    row = IdempotencyKey(
+        person_id=actor.person_id, key=key, body_digest=_digest(body), answer={}, at=now
     )
+    session.add(row)
     session.flush()
-    return answer
+    row.answer = work()
+    session.flush()
+    return row.answer
+
+
+def find_answer(session: Session, *, actor: Actor, key: str, body: Any) -> Answered | None:
+    """Return the first answer where a key came before, or None; writes nothing.
+
+    Raises:
+        Unacceptable: the key came before with another body.
+    """
+    row = session.get(IdempotencyKey, (actor.person_id, key))
+    if row is None:
+        return None
+    if row.body_digest != _digest(body):
+        says = "This key was sent before with something else in it; nothing was done now."
+        raise Unacceptable(says, field="key")
+    return Answered(row.answer)
+
+
+def _digest(body: Any) -> str:
+    return digest(canonical(body))

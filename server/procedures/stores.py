@@ -10,6 +10,7 @@ from sqlalchemy.orm import Session
 from server.chemistry.reactions import ratio
 from server.lab import reading_documents as reading
 from server.lab.actor import Actor
+from server.lab.free_text import read_text
 from server.lab.people import check_name
 from server.lab.recipe import RecipeDocument, read_recipe
 from server.lab.refusal import SavedFirst, Unacceptable
@@ -20,6 +21,8 @@ from server.records.queries.loading import newest_recipe_version, standard_lot_b
 from server.records.tables.stores import Recipe, StandardLot
 
 _BASES = ("as is", "dried")
+#: An assay may come out a little above one.
+_MOST_FRACTION = 1.05
 
 
 @dataclass(frozen=True, slots=True)
@@ -148,22 +151,21 @@ def _statements(command: ReceiveStandardLot) -> dict[str, Any]:
     }
     units = {"mass_fraction": None, "molar_mass": "g/mol", "density": "g/cm3"}
     read: dict[str, Any] = {
-        key: reading.quantity_at(given, key, "", unit=unit) for key, unit in units.items()
+        key: reading.positive_at(given, key, "", unit=unit) for key, unit in units.items()
     }
     if read["mass_fraction"] is None:
         says = "mass_fraction is missing."
         example = '{"value": "0.9998", "U": "0.0004", "k": "2"}'
         raise Unacceptable(says, field="mass_fraction", example=example)
-    fraction = float(read["mass_fraction"]["value"])
-    if not 0 < fraction <= 1.05:
+    if float(read["mass_fraction"]["value"]) > _MOST_FRACTION:
         says = "mass_fraction is a part of one, not of a hundred."
         raise Unacceptable(says, field="mass_fraction", example="0.9998")
     if command.basis not in _BASES:
         says = f"basis is one of {', '.join(_BASES)}."
         raise Unacceptable(says, field="basis", example="as is")
     read["basis"] = command.basis
-    read["drying"] = command.drying.strip() or None
-    read["storage"] = command.storage.strip() or None
+    read["drying"] = read_text(command.drying, "drying") or None
+    read["storage"] = read_text(command.storage, "storage") or None
     if command.minimum_sample_g:
         read["minimum_sample_g"] = _grams(command.minimum_sample_g)
     return {key: value for key, value in read.items() if value is not None}
@@ -171,5 +173,5 @@ def _statements(command: ReceiveStandardLot) -> dict[str, Any]:
 
 def _grams(text: str) -> str:
     quantity = {"minimum_sample_g": {"value": text, "unit": "g"}}
-    reading.quantity_at(quantity, "minimum_sample_g", "", unit="g")
+    reading.positive_at(quantity, "minimum_sample_g", "", unit="g")
     return text

@@ -10,10 +10,9 @@ from sqlalchemy.orm import Session
 from server.chemistry.cautions import DEFERRAL
 from server.evaluation.mass_window import mass_window
 from server.lab.actor import Actor
-from server.lab.codes import nearest, read_code
 from server.lab.in_use import judge
 from server.lab.recipe import RecipeDocument, read_recipe
-from server.lab.refusal import NotAllowed, NotFound
+from server.lab.refusal import NotAllowed
 from server.lab.rig import rig_of
 from server.lab.roles import Act
 from server.lab.sheet_facts import (
@@ -28,17 +27,18 @@ from server.lab.slots import replicate_rows, sheet_rows
 from server.lab.states import IN_DATE
 from server.metrology.rounding import significant
 from server.records.queries.list_sheets import open_sheets, sheets_written_on
-from server.records.queries.list_shelf import LotOnShelf, all_lot_codes, all_lots
+from server.records.queries.list_shelf import LotOnShelf, all_lots
 from server.records.queries.list_stores import (
     ListedInstrument,
     listed_instruments,
     newest_recipes,
     standard_lot_facts,
 )
-from server.records.queries.load_lots import lot_is_pulled, lot_of_code
+from server.records.queries.load_lots import lot_is_pulled
 from server.records.tables.lots import Lot
 from server.records.tables.stores import Recipe
 from server.sheets.bench import BeginPage, BenchHome, Choice
+from server.sheets.parts.by_code import find_lot
 from server.sheets.parts.doors import need_reader
 from server.sheets.parts.roots import caution_views
 from server.sheets.parts.sheet_lines import lot_words, sheet_line, sheet_title
@@ -75,31 +75,36 @@ def open_begin(
     Raises:
         NotFound: no lot has this code; ``shown["nearest"]`` holds codes close to it.
         NotSignedIn: a visitor.
-        NotAllowed: somebody who may not begin a sheet, or a lot that was pulled.
+        NotAllowed: somebody who may not begin a sheet, a lot that was pulled or has no recipe.
     """
     reader = need_reader(actor)
     may_override = reader.may(Act.OVERRIDE)
     if not may_override:
         reader.need(Act.WRITE)
-    lot = _lot(session, lot_code)
+    lot = find_lot(session, lot_code, field="lot_code")
+    if lot_is_pulled(session, lot.id):
+        raise NotAllowed("This lot was pulled: it is out of use for good.", field="lot_code")
     recipes = [one for one in newest_recipes(session) if _fits(one, lot)]
+    if not recipes:
+        says = f"No recipe fits {lot_words(lot)} in {lot.medium}; a keeper writes one."
+        raise NotAllowed(says, field="recipe_id")
     chosen = _chosen(recipes, recipe_id)
-    recipe = read_recipe(chosen.document) if chosen else None
+    recipe = read_recipe(chosen.document)
     shelf = _Offered(session, recipe, now, reader.zone)
     return BeginPage(
         lot_code=lot.code,
         lot_name=lot.name,
         title=sheet_title(lot.titrant, lot.nominal),
         recipes=tuple(_recipe_choice(one) for one in recipes),
-        recipe_id=chosen.id if chosen else "",
+        recipe_id=chosen.id,
         standard_lots=shelf.standard_lots,
         balances=shelf.of_kind(BALANCE),
         burettes=shelf.of_kind(BURETTE),
         thermometers=shelf.of_kind(THERMOMETER),
-        rooms=shelf.of_kind(ROOM) if recipe is not None and recipe.buoyancy else (),
+        rooms=shelf.of_kind(ROOM) if recipe.buoyancy else (),
         mass_window=shelf.mass_window(),
         asked=shelf.asked(),
-        cautions=caution_views([lot.titrant, *([recipe.standard] if recipe else [])]),
+        cautions=caution_views((lot.titrant, recipe.standard)),
         deferral=DEFERRAL,
         may_override=may_override,
     )
@@ -108,12 +113,10 @@ def open_begin(
 class _Offered:
     """What a recipe may rest on now, in date first."""
 
-    def __init__(
-        self, session: Session, recipe: RecipeDocument | None, now: datetime, zone: str
-    ) -> None:
+    def __init__(self, session: Session, recipe: RecipeDocument, now: datetime, zone: str) -> None:
         self._recipe, self._now, self._zone = recipe, now, zone
-        self._instruments = listed_instruments(session) if recipe else []
-        lots = standard_lot_facts(session, substance=recipe.standard) if recipe else []
+        self._instruments = listed_instruments(session)
+        lots = standard_lot_facts(session, substance=recipe.standard)
         self.standard_lots = _usable_first(self._standard_lot(one) for one in lots)
 
     def of_kind(self, kind: str) -> tuple[Choice, ...]:
@@ -125,7 +128,7 @@ class _Offered:
         """Return the masses that use the proposed burette well, empty where nobody can tell."""
         recipe, burette = self._recipe, self._proposed(BURETTE)
         capacity = rig_of([burette]).burette if burette else None
-        if recipe is None or capacity is None or burette is None:
+        if capacity is None or burette is None:
             return ""
         window = mass_window(
             recipe.titrant.substance,
@@ -144,8 +147,6 @@ class _Offered:
 
     def asked(self) -> tuple[str, ...]:
         """Return the rows that the sheet will ask for, each once."""
-        if self._recipe is None:
-            return ()
         proposed = [self._proposed(kind) for kind in (BALANCE, BURETTE, THERMOMETER, ROOM)]
         rig = rig_of([one for one in proposed if one is not None])
         rows = (*sheet_rows(self._recipe, rig), *replicate_rows(self._recipe, rig, 1))
@@ -202,17 +203,6 @@ def _about(one: LotOnShelf, now: datetime) -> str:
     return f"{lot_words(one.lot)}, {one.lot.code}, {state_of_lot(one, now)}"
 
 
-def _lot(session: Session, code: str) -> Lot:
-    lot = lot_of_code(session, read_code(code))
-    if lot is None:
-        close = nearest(code, all_lot_codes(session))
-        says = f"There is no lot or bottle {code[:40]}."
-        raise NotFound(says, field="lot_code", shown={"nearest": close})
-    if lot_is_pulled(session, lot.id):
-        raise NotAllowed("This lot was pulled: it is out of use for good.", field="lot_code")
-    return lot
-
-
 def _fits(row: Recipe, lot: Lot) -> bool:
     titrant = read_recipe(row.document).titrant
     return (
@@ -222,13 +212,16 @@ def _fits(row: Recipe, lot: Lot) -> bool:
     )
 
 
-def _chosen(recipes: Sequence[Recipe], recipe_id: str | None) -> Recipe | None:
-    asked = next((one for one in recipes if one.id == recipe_id), None)
-    usable = (one for one in recipes if _recipe_choice(one).refused is None)
-    return asked or next(usable, None)
+def _chosen(recipes: Sequence[Recipe], recipe_id: str | None) -> Recipe:
+    """Return the recipe asked for, else the first that can be written here."""
+    ordered = sorted(recipes, key=lambda one: (one.id != recipe_id, _refused_recipe(one) or ""))
+    return ordered[0]
+
+
+def _refused_recipe(row: Recipe) -> str | None:
+    return None if read_recipe(row.document).route == "weighed" else _NOT_HERE
 
 
 def _recipe_choice(row: Recipe) -> Choice:
-    recipe = read_recipe(row.document)
-    refused = None if recipe.route == "weighed" else _NOT_HERE
-    return Choice(row.id, f"{row.name}, version {row.version}", recipe.title, refused)
+    title = read_recipe(row.document).title
+    return Choice(row.id, f"{row.name}, version {row.version}", title, _refused_recipe(row))

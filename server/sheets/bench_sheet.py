@@ -11,7 +11,7 @@ from server.lab.actor import Actor
 from server.lab.in_use import things_in_use
 from server.lab.ink import CORRECTION_REASONS
 from server.lab.roles import Act
-from server.lab.sheet_facts import SheetFacts
+from server.lab.sheet_facts import SheetFacts, StandardLotFact
 from server.lab.states import OPEN, SENT_BACK
 from server.records.queries.list_sheets import snapshots_of
 from server.records.queries.load_sheet import load_sheet_facts
@@ -81,11 +81,17 @@ def against(facts: SheetFacts) -> str:
     recipe = facts.recipe.document
     parts = [f"lot {facts.lot.name}"]
     if facts.standard_lot is not None:
-        parts.append(f"against {facts.standard_lot.name}")
+        parts.append(f"against {standard_words(facts.standard_lot)}")
     parts += [one.name for one in facts.instruments]
     if recipe.end_point.indicator:
         parts.append(f"indicator {recipe.end_point.indicator}")
     return " · ".join(parts)
+
+
+def standard_words(lot: StandardLotFact) -> str:
+    """Return a standard lot with its substance, said once."""
+    named = lot.name.startswith(lot.substance)
+    return lot.name if named else f"{lot.substance}, lot {lot.name}"
 
 
 def substances_of(facts: SheetFacts) -> tuple[str, ...]:

@@ -15,7 +15,8 @@ from server.metrology.rounding import rounded_pair
 from server.records.queries.list_certificates import KeptCertificate, certificates_of_lot
 from server.records.queries.list_shelf import BottleOnShelf
 from server.records.queries.load_sheet import load_laboratory_fact
-from server.sheets.look_up import at_temperature, find_bottle, read_celsius
+from server.sheets.look_up import at_temperature, read_celsius
+from server.sheets.parts.by_code import find_bottle
 from server.sheets.parts.doors import may_hold, may_release, need_shelf
 from server.sheets.parts.history import history_chart, history_lines, state_of_certificate
 from server.sheets.parts.outcome import Printed, printed
@@ -131,4 +132,4 @@ def _gone(one: BottleOnShelf) -> bool:
 
 def _held_says(one: BottleOnShelf, zone: str) -> str:
     says = (held_says(one.hold, "bottle", zone), held_says(one.lot.hold, "lot", zone))
-    return " ".join(f"{words}." for words in says if words)
+    return " ".join(words for words in says if words)

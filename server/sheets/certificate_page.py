@@ -27,7 +27,13 @@ from server.sheets.parts.history import state_of_certificate
 from server.sheets.parts.roots import certificate_roots, root_urls
 from server.sheets.parts.shelf_state import nominal_words
 from server.sheets.parts.signed import signature_views
-from server.sheets.parts.telling import listed, moment_words, signed_words, typed_day_words
+from server.sheets.parts.telling import (
+    listed,
+    moment_words,
+    signed_words,
+    typed_day_words,
+    unit_words,
+)
 
 
 def open_certificate(
@@ -80,7 +86,7 @@ def open_certificate(
         bars=outcome.bars(result),
         dots=outcome.dots(result),
         signatures=_signatures(session, kept),
-        calculation=document["calculation"],
+        calculation=outcome.calculation(result),
         input_digest=document["input_digest"],
         document_digest=kept.row.document_digest,
         document_holds=document_holds(session, kept),
@@ -150,10 +156,11 @@ def _method(recipe: Mapping[str, Any]) -> str:
 def _corrections(document: Mapping[str, Any], zone: str) -> Iterator[str]:
     for one in document["corrections"]:
         where = f"Replicate {one['replicate']}" if one["replicate"] else "Sheet"
-        now = one["now"] or "nothing"
+        unit = f" {unit_words(one['unit'])}" if one["unit"] else ""
+        now = f"{one['now']}{unit}" if one["now"] else "nothing"
         at = moment_words(datetime.fromisoformat(one["at"]), zone)
         yield (
-            f"{where}, {one['label']}: {one['was']} ({one['was_by']}) struck through, {now} "
+            f"{where}, {one['label']}: {one['was']}{unit} ({one['was_by']}) struck through, {now} "
             f"written by {one['by']}, {at}: {one['reason']}"
         )
 

@@ -10,8 +10,7 @@ from server.lab.actor import Actor
 from server.lab.in_use import things_in_use
 from server.lab.ink import strikes
 from server.lab.refusal import NotAllowed
-from server.lab.sheet_facts import EvaluationFact, SheetFacts, SignatureFact
-from server.lab.signing import COUNTERSIGNED
+from server.lab.sheet_facts import EvaluationFact, SheetFacts
 from server.lab.states import HANDED_IN, OPEN
 from server.records.queries.list_certificates import certificate_of_sheet
 from server.records.queries.list_sheets import snapshots_of
@@ -25,7 +24,7 @@ from server.sheets.parts.doors import need_reader
 from server.sheets.parts.roots import rests_on, root_urls_of_sheet
 from server.sheets.parts.rows import groups_of
 from server.sheets.parts.sheet_lines import sheet_title
-from server.sheets.parts.signed import signature_views
+from server.sheets.parts.signed import signature_views, signed_findings
 from server.sheets.parts.telling import moment_words
 from server.sheets.queue import countersign_problem
 
@@ -52,7 +51,7 @@ def open_countersign(
     result = evaluation.result
     zone = facts.laboratory.zone
     number = outcome.printed(result)
-    findings = _findings(facts, result)
+    findings = signed_findings(facts, result["findings"])
     signatures = signature_views(facts, snapshots_of(session, facts.id))
     certificate = certificate_of_sheet(session, facts.id)
     return CountersignPage(
@@ -108,22 +107,6 @@ def _handed_in(facts: SheetFacts, zone: str) -> str:
     if measured is None:
         return ""
     return f"handed in {moment_words(measured.at, zone)} by {measured.printed_name}"
-
-
-def _findings(facts: SheetFacts, result: Mapping[str, Any]) -> tuple[FindingView, ...]:
-    """Return the findings with the analyst's reasons and who accepted them by name."""
-    measured, second = facts.measured_signature, _countersigned(facts)
-    return outcome.finding_views(
-        result["findings"],
-        reasons=measured.reasons if measured else {},
-        accepted=second.reasons if second else (),
-        accepted_by=second.printed_name if second else None,
-    )
-
-
-def _countersigned(facts: SheetFacts) -> SignatureFact | None:
-    found = [one for one in facts.signatures if one.meaning == COUNTERSIGNED]
-    return found[-1] if found else None
 
 
 def _refused(facts: SheetFacts, signatures: tuple[SignatureView, ...], reader: Actor) -> str | None:

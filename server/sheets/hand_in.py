@@ -1,6 +1,7 @@
 """Everything on one page before the signature *measured*."""
 
 from collections.abc import Mapping
+from dataclasses import dataclass
 from datetime import datetime
 from typing import Any
 
@@ -20,18 +21,40 @@ from server.sheets.parts.doors import need_reader
 from server.sheets.parts.outcome import dots, finding_views, printed
 
 
+@dataclass(frozen=True, slots=True)
+class ReadHandIn:
+    """A sheet read for its hand-in page, not evaluated yet."""
+
+    sheet: BenchSheet
+    prepared: PreparedSheet
+    given: Mapping[str, str]
+    problem: str | None
+    signer: str
+
+
 def open_hand_in(
     session: Session, sheet_id: str, *, actor: Actor | None, now: datetime
 ) -> HandInPage:
     """Return a sheet evaluated as it will be signed; ``problem`` says why it cannot be yet.
 
-    It is the evaluation that handing in makes, Monte Carlo included, so that what is read here is
-    what is signed.
+    Monte Carlo takes long: close the transaction between ``read_hand_in`` and
+    ``evaluate_hand_in`` where others wait for it.
 
     Raises:
         NotFound: there is no such sheet.
         NotSignedIn: a visitor.
         NotAllowed: somebody who may not hand in.
+    """
+    return evaluate_hand_in(read_hand_in(session, sheet_id, actor=actor, now=now))
+
+
+def read_hand_in(
+    session: Session, sheet_id: str, *, actor: Actor | None, now: datetime
+) -> ReadHandIn:
+    """Return what the hand-in page is made of; close the transaction before evaluating it.
+
+    Raises:
+        NotFound, NotSignedIn, NotAllowed: as ``open_hand_in``.
     """
     del now
     reader = need_reader(actor)
@@ -39,24 +62,32 @@ def open_hand_in(
     facts = load_sheet_facts(session, sheet_id)
     prepared = prepare_sheet(facts)
     sheet = bench_sheet(facts, prepared, snapshots_of(session, facts.id), reader)
-    result, problem = _evaluated(prepared)
+    return ReadHandIn(sheet, prepared, _given(facts), _problem(facts, sheet), reader.printed_name)
+
+
+def evaluate_hand_in(read: ReadHandIn) -> HandInPage:
+    """Return the page with the evaluation that handing in makes, Monte Carlo included.
+
+    So what is read here is what is signed. What can never be handed in is not evaluated.
+    """
+    result, problem = _evaluated(read)
     return HandInPage(
-        sheet=sheet,
+        sheet=read.sheet,
         reported=result["concentration"]["reported"] if result else None,
         factor=printed(result).factor if result else None,
-        findings=finding_views(result["findings"], reasons=_given(facts)) if result else (),
+        findings=finding_views(result["findings"], reasons=read.given) if result else (),
         dots=dots(result) if result else "",
-        problem=_problem(facts, sheet) or problem,
-        signer=reader.printed_name,
+        problem=read.problem or problem,
+        signer=read.signer,
     )
 
 
-def _evaluated(prepared: PreparedSheet) -> tuple[Mapping[str, Any] | None, str | None]:
+def _evaluated(read: ReadHandIn) -> tuple[Mapping[str, Any] | None, str | None]:
     """Return the result, or in words why there is none."""
-    if prepared.missing:
-        return None, prepared.missing[0].says
+    if read.prepared.missing or read.sheet.state not in {OPEN, SENT_BACK}:
+        return None, None
     try:
-        return evaluate_sheet(prepared).result, None
+        return evaluate_sheet(read.prepared).result, None
     except Unacceptable as refused:
         return None, refused.says
 

@@ -8,18 +8,12 @@ from sqlalchemy.orm import Session
 
 from server.evaluation.at_temperature import HIGH_C, LOW_C, concentration_at
 from server.lab.actor import Actor
-from server.lab.codes import LENGTH, nearest
-from server.lab.refusal import NotFound, Unacceptable
+from server.lab.refusal import Unacceptable
 from server.metrology.decimal_text import DecimalProblem, read_typed_decimal
 from server.metrology.quantity import Quantity, read_quantity
-from server.records.queries.list_shelf import (
-    BottleOnShelf,
-    LotOnShelf,
-    bottle_codes,
-    bottle_on_shelf,
-)
-from server.records.queries.load_lots import bottle_by_code
+from server.records.queries.list_shelf import LotOnShelf
 from server.records.queries.load_sheet import load_laboratory_fact, load_recipe_fact
+from server.sheets.parts.by_code import find_bottle
 from server.sheets.parts.doors import need_shelf
 from server.sheets.parts.shelf_state import concentration_in_force, state_of_bottle
 
@@ -71,26 +65,6 @@ def read_celsius(text: str) -> Decimal:
         says = f"at must be a temperature from {LOW_C:g} to {HIGH_C:g} °C; {text[:40]} is not."
         raise Unacceptable(says, field="at", example="24.0")
     return celsius
-
-
-def find_bottle(session: Session, code: str) -> BottleOnShelf:
-    """Return the bottle of a code as typed or scanned, in any case.
-
-    Raises:
-        NotFound: no bottle has this code; ``shown["nearest"]`` holds codes close to it.
-    """
-    wanted = "".join(code.split()).replace("-", "").upper()
-    bottle = bottle_by_code(session, wanted) if len(wanted) == LENGTH else None
-    if bottle is not None:
-        return bottle_on_shelf(session, bottle)
-    close = nearest(wanted[: 2 * LENGTH], bottle_codes(session))
-    says = f"No bottle has the code “{code[:40]}”."
-    if close:
-        says += f" Close to it: {', '.join(close)}."
-    raise NotFound(
-        says, field="code", example="a code of 8 characters, as on the label",
-        shown={"nearest": close},
-    )  # fmt: skip
 
 
 def at_temperature(session: Session, lot: LotOnShelf, celsius: Decimal) -> dict[str, Any]:

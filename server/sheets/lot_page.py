@@ -8,8 +8,6 @@ from sqlalchemy.orm import Session
 from server.chemistry.reactions import RATIOS
 from server.chemistry.substances import name_of
 from server.lab.actor import Actor
-from server.lab.codes import nearest, read_code
-from server.lab.refusal import NotFound
 from server.lab.roles import Act
 from server.lab.segregation import pull_refusal
 from server.lab.states import PULLED
@@ -17,17 +15,16 @@ from server.lab.validity import local_day
 from server.records.queries.list_certificates import KeptCertificate, certificates_of_lot
 from server.records.queries.list_sheets import sheets_of_lot
 from server.records.queries.list_shelf import (
-    all_lot_codes,
     bottles_of_lot,
     last_pull,
     lot_names_like,
     lot_on_shelf,
 )
 from server.records.queries.list_stores import newest_recipes
-from server.records.queries.load_lots import lot_of_code
 from server.records.queries.load_sheet import load_people
 from server.records.tables.lots import Lot, Pull
 from server.sheets.lots import LotPage, MakeUpPage
+from server.sheets.parts.by_code import find_lot
 from server.sheets.parts.doors import may_hold, may_release, need_reader
 from server.sheets.parts.history import history_chart, history_lines
 from server.sheets.parts.sheet_lines import lot_words, sheet_line
@@ -52,7 +49,7 @@ def open_lot(session: Session, code: str, *, actor: Actor | None, now: datetime)
         NotSignedIn: a visitor.
     """
     reader = need_reader(actor)
-    lot = _lot(session, code)
+    lot = find_lot(session, code)
     zone, on_shelf = reader.zone, lot_on_shelf(session, lot.id)
     state = state_of_lot(on_shelf, now)
     certificates = certificates_of_lot(session, lot.id)
@@ -117,14 +114,6 @@ def _free_name(day: str, taken: set[str]) -> str:
     names = [f"{day} {letter}" for letter in _LETTERS]
     names += [f"{day} {number}" for number in range(27, 28 + len(taken))]
     return next(name for name in names if name not in taken)
-
-
-def _lot(session: Session, code: str) -> Lot:
-    lot = lot_of_code(session, read_code(code))
-    if lot is None:
-        close = nearest(code, all_lot_codes(session))
-        raise NotFound(f"There is no lot {code[:40]}.", field="code", shown={"nearest": close})
-    return lot
 
 
 def _named(lot: Lot, pull: Pull | None) -> set[str]:

@@ -8,13 +8,12 @@ from server.lab.actor import Actor
 from server.lab.roles import Act, holders
 from server.lab.segregation import countersign_refusal
 from server.lab.sheet_facts import SheetFacts
-from server.lab.signing import COUNTERSIGNED
 from server.records.queries.list_sheets import done_sheet_ids, waiting_sheet_ids
 from server.records.queries.load_many_sheets import load_many_sheet_facts
 from server.sheets.countersign import Queue, QueueLine
 from server.sheets.parts.doors import need_reader
-from server.sheets.parts.outcome import finding_views
 from server.sheets.parts.sheet_lines import sheet_title
+from server.sheets.parts.signed import countersignature, signed_findings
 from server.sheets.parts.telling import moment_words, span_words
 
 DONE_SHOWN = 8
@@ -52,9 +51,8 @@ def _waiting(facts: SheetFacts, reader: Actor, now: datetime) -> QueueLine:
 
 
 def _done(facts: SheetFacts) -> QueueLine:
-    second = [one for one in facts.signatures if one.meaning == COUNTERSIGNED]
-    by = f" by {second[-1].printed_name}" if second else ""
-    at = facts.countersigned_at
+    second, at = countersignature(facts), facts.countersigned_at
+    by = f" by {second.printed_name}" if second else ""
     when = moment_words(at, facts.laboratory.zone) if at else ""
     return _line(facts, waiting=f"countersigned {when}{by}", refused=None)
 
@@ -63,7 +61,6 @@ def _line(facts: SheetFacts, *, waiting: str, refused: str | None) -> QueueLine:
     measured, evaluation = facts.measured_signature, facts.evaluation
     findings = evaluation.result["findings"] if evaluation else []
     odd = [one for one in findings if one["verdict"] != "holds"]
-    reasons = measured.reasons if measured else {}
     return QueueLine(
         sheet_id=facts.id,
         number=facts.number,
@@ -72,7 +69,7 @@ def _line(facts: SheetFacts, *, waiting: str, refused: str | None) -> QueueLine:
         handed_in_by=measured.printed_name if measured else "",
         waiting=waiting,
         reported=evaluation.result["concentration"]["reported"] if evaluation else "",
-        stands_out=finding_views(odd, reasons=reasons),
+        stands_out=signed_findings(facts, odd),
         refused=refused,
         url=f"/countersign/{facts.id}",
     )

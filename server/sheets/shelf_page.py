@@ -7,10 +7,10 @@ from sqlalchemy.orm import Session
 
 from server.chemistry.substances import name_of
 from server.lab.actor import Actor
-from server.lab.codes import LENGTH, nearest
 from server.lab.states import BOTTLE_STATES, CHECK_DUE, IN_FORCE, may_be_used
 from server.records.queries.list_shelf import BottleOnShelf, bottles_on_shelf
 from server.records.queries.load_sheet import load_laboratory_fact
+from server.sheets.parts.by_code import as_code, near_bottles
 from server.sheets.parts.doors import need_shelf
 from server.sheets.parts.shelf_state import bottle_line, state_of_bottle
 from server.sheets.parts.telling import count_words
@@ -39,12 +39,12 @@ def open_shelf(
         one for one in open_to if _answers(one, words) and state in {"", states[one.bottle.code]}
     ]
     answering.sort(key=lambda one: _soonest(one, states[one.bottle.code]))
-    codes = [one.bottle.code for one in everything]
+    unknown = not answering and as_code(words) not in states
     return Shelf(
         words=words,
         bottles=tuple(bottle_line(one, now, laboratory.zone) for one in answering),
         says=_says(words, answering, states),
-        nearest=() if answering else _nearest(words, codes),
+        nearest=tuple(near_bottles(session, as_code(words))) if unknown else (),
         states=(IN_FORCE, CHECK_DUE) if actor is None else tuple(BOTTLE_STATES),
         state=state if state in BOTTLE_STATES else "",
     )
@@ -60,11 +60,7 @@ def _answers(one: BottleOnShelf, words: str) -> bool:
     text = " ".join(called).casefold()
     if all(word in text for word in words.casefold().split()):
         return True
-    return _as_code(words) in {bottle.code, lot.code}
-
-
-def _as_code(words: str) -> str:
-    return "".join(words.split()).replace("-", "").upper()
+    return as_code(words) in {bottle.code, lot.code}
 
 
 def _soonest(one: BottleOnShelf, state: str) -> tuple[bool, float, str, int]:
@@ -73,16 +69,8 @@ def _soonest(one: BottleOnShelf, state: str) -> tuple[bool, float, str, int]:
     return not may_be_used(state), due, one.lot.lot.name, one.bottle.number
 
 
-def _nearest(words: str, codes: Sequence[str]) -> tuple[str, ...]:
-    """Return codes close to what looks like a code that no bottle has."""
-    code = _as_code(words)
-    if abs(len(code) - LENGTH) > 2 or code in codes:
-        return ()
-    return tuple(nearest(code, codes))
-
-
 def _says(words: str, answering: Sequence[BottleOnShelf], states: dict[str, str]) -> str:
-    code = _as_code(words)
+    code = as_code(words)
     if not answering and code in states:
         return f"Bottle {code} is {states[code]}."
     count = count_words(len(answering), "bottle")

@@ -75,7 +75,7 @@ def open_standard_lot(
     received = Fact("Received", f"{moment_words(row.made_at, reader.zone)} by {by}")
     return StandardLotPage(
         id=one.id,
-        name=one.name,
+        name=one.name.removeprefix(f"{one.substance}, lot "),
         substance=one.substance,
         state=_state(one, now),
         held_says=held_says(hold, STANDARD_LOT, reader.zone),

@@ -4,15 +4,11 @@ from collections.abc import Callable, Mapping
 from dataclasses import asdict, is_dataclass
 from typing import Any
 
-from server.procedures.repeats import once
+from server.procedures.repeats import find_answer, once
 from server.web.visits import Visit
 
 #: Fields whose content is never kept, not even as part of a digest.
 _SECRET = frozenset({"password"})
-
-
-class _NotYet(Exception):
-    """No answer is kept for a key."""
 
 
 def act(
@@ -60,18 +56,10 @@ def first_answer(
     actor, parts = visit.person, visit.parts
     body = _asked(procedure, command)
 
-    def work(session: Any) -> Any:
-        answer = once(session, actor=actor, key=key, body=body, now=visit.now, work=_raise_not_yet)
-        return answer["answer"]
-
-    try:
-        return parts.transactions.read(work)
-    except _NotYet:
-        return None
-
-
-def _raise_not_yet() -> Any:
-    raise _NotYet
+    earlier = parts.transactions.read(
+        lambda session: find_answer(session, actor=actor, key=key, body=body)
+    )
+    return earlier.answer["answer"] if earlier is not None else None
 
 
 def _asked(procedure: Callable[..., Any], command: Any) -> dict[str, Any]:

@@ -24,7 +24,10 @@ _EXAMPLES = {
 def model_of(
     command: type, *, without: Sequence[str] = (), also: Mapping[str, Any] | None = None
 ) -> type[BaseModel]:
-    """Return the model of a command's JSON: its fields but those that the address holds."""
+    """Return the model of a command's JSON: its fields but those that the address holds.
+
+    ``also``: fields beside them, each with its type, or with its type and default.
+    """
     hints = get_type_hints(command)
     shape: dict[str, Any] = {}
     for one in fields(command):
@@ -37,7 +40,7 @@ def model_of(
             default = one.default_factory()
         shape[one.name] = (hints[one.name], default)
     for name, kind in (also or {}).items():
-        shape[name] = (kind, ...)
+        shape[name] = kind if isinstance(kind, tuple) else (kind, ...)
     config = ConfigDict(extra="forbid", strict=True)
     model: type[BaseModel] = create_model(command.__name__, __config__=config, **shape)
     return model

@@ -78,11 +78,15 @@ def _refusal(request: Request) -> Refusal | None:
 def _is_from_here(request: Request) -> bool:
     """Say whether a write was sent by a page of this server, or by no page at all."""
     headers = request.headers
-    if headers.get("sec-fetch-site", "none") not in _OWN_SITES:
+    site = headers.get("sec-fetch-site", "none")
+    if site not in _OWN_SITES:
         return False
     origin = headers.get("origin")
     if origin is None:
         return True
+    if origin == "null":
+        # a page without referrers sends its own forms so; only the browser's word tells them apart
+        return site == "same-origin"
     sent = urlsplit(origin)
     return bool(sent.netloc) and _host(sent.netloc) == _host(headers.get("host", ""))
 

@@ -11,7 +11,6 @@ POLICY = (
 _ALWAYS = {
     "Content-Security-Policy": POLICY,
     "X-Content-Type-Options": "nosniff",
-    "Referrer-Policy": "no-referrer",
     "Permissions-Policy": "camera=(), geolocation=(), microphone=(), payment=(), usb=()",
     "Cross-Origin-Opener-Policy": "same-origin",
     "Cross-Origin-Resource-Policy": "same-origin",
@@ -38,7 +37,10 @@ class SecurityHeaders:
                 for name, value in _ALWAYS.items():
                     headers[name] = value
                 headers.setdefault("Cache-Control", "no-store")
-                if self._secure or scope["scheme"] == "https":
+                secure = self._secure or scope["scheme"] == "https"
+                # plain http tells no Sec-Fetch-Site, and without a referrer forms name no origin
+                headers["Referrer-Policy"] = "no-referrer" if secure else "same-origin"
+                if secure:
                     headers["Strict-Transport-Security"] = _YEAR
             await send(message)
 

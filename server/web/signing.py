@@ -3,6 +3,7 @@
 from typing import Any
 
 from server.lab.refusal import Unacceptable
+from server.lab.roles import Act
 from server.procedures.countersign import Countersign, countersign_sheet
 from server.procedures.hand_in import HandIn, evaluate_sheet, hand_in_sheet, prepare_hand_in
 from server.procedures.people import ChangePassword, change_password, hash_new_password
@@ -27,6 +28,7 @@ def set_second_signature(
     visit: Visit, command: Countersign, password: str, *, key: str | None
 ) -> Any:
     """Countersign a sheet and issue its certificate."""
+    visit.person.need(Act.COUNTERSIGN)
     earlier = first_answer(visit, countersign_sheet, command, key=key)
     if earlier is not None:
         return earlier

@@ -3,7 +3,7 @@
 from collections.abc import AsyncIterator
 from contextlib import asynccontextmanager
 
-from fastapi import FastAPI
+from fastapi import APIRouter, FastAPI
 from starlette.middleware import Middleware
 
 from server.web.api import bottles as api_bottles
@@ -46,6 +46,13 @@ _API = (
     api_session, api_bottles, api_sheets, api_countersigning, api_certificates, api_lots,
     api_stores, api_instruments, api_trail, api_people,
 )  # fmt: skip
+API_PREFIX = "/api"
+#: Every router with the beginning of its addresses; tests go through all of their routes.
+ROUTERS: tuple[tuple[str, APIRouter], ...] = (
+    *(("", page.router) for page in _PAGES),
+    *((API_PREFIX, api.router) for api in _API),
+    ("", health.router),
+)
 
 
 def create_app(parts: Parts, static: StaticFiles) -> FastAPI:
@@ -71,10 +78,13 @@ def create_app(parts: Parts, static: StaticFiles) -> FastAPI:
     )
     app.state.parts = parts
     add_error_handlers(app)
-    for page in _PAGES:
-        app.include_router(page.router, include_in_schema=False)
-    for api in _API:
-        app.include_router(api.router, prefix="/api", responses=PROBLEMS)
-    app.include_router(health.router)
+    for prefix, router in ROUTERS:
+        described = bool(router.tags)
+        app.include_router(
+            router,
+            prefix=prefix,
+            include_in_schema=described,
+            responses=PROBLEMS if described else None,
+        )
     app.include_router(static_router(static))
     return app

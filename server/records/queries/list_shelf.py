@@ -5,8 +5,8 @@ from collections.abc import Iterable
 from dataclasses import dataclass, field
 from typing import Any
 
-from sqlalchemy import select
-from sqlalchemy.orm import Session, aliased
+from sqlalchemy import or_, select
+from sqlalchemy.orm import InstrumentedAttribute, Session, aliased
 
 from server.records.queries.list_holds import StandingHold, standing_holds
 from server.records.tables.bench import Certificate
@@ -74,14 +74,32 @@ def all_lots(session: Session) -> list[LotOnShelf]:
     return _lots(session, None)
 
 
-def bottle_codes(session: Session) -> list[str]:
-    """Return the codes of all bottles."""
-    return list(session.scalars(select(Bottle.code)))
+def bottle_codes_with(session: Session, pieces: Iterable[str]) -> list[str]:
+    """Return the codes of bottles that hold one of the pieces."""
+    return _codes_with(session, Bottle.code, pieces)
+
+
+def lot_codes_with(session: Session, pieces: Iterable[str]) -> list[str]:
+    """Return the codes of lots that hold one of the pieces."""
+    return _codes_with(session, Lot.code, pieces)
 
 
 def lot_names_like(session: Session, start: str) -> set[str]:
     """Return the names of lots that begin with a text."""
     return set(session.scalars(select(Lot.name).where(Lot.name.startswith(start, autoescape=True))))
+
+
+def last_pull(session: Session, lot_id: str) -> Pull | None:
+    """Return the pull of a lot that was proposed last, confirmed or not."""
+    asked = select(Pull).where(Pull.lot_id == lot_id).order_by(Pull.proposed_at.desc())
+    return session.scalar(asked.limit(1))
+
+
+def _codes_with(
+    session: Session, code: InstrumentedAttribute[str], pieces: Iterable[str]
+) -> list[str]:
+    wanted = [code.contains(piece, autoescape=True) for piece in pieces if piece]
+    return list(session.scalars(select(code).where(or_(*wanted)))) if wanted else []
 
 
 def _lots(session: Session, lot_ids: Iterable[str] | None) -> list[LotOnShelf]:
@@ -108,14 +126,3 @@ def _lots(session: Session, lot_ids: Iterable[str] | None) -> list[LotOnShelf]:
         LotOnShelf(one, certificates.get(one.id), holds.get(("lot", one.id)), one.id in pulled)
         for one in session.scalars(lots)
     ]
-
-
-def all_lot_codes(session: Session) -> list[str]:
-    """Return the codes of all lots and bottles."""
-    return [*session.scalars(select(Lot.code)), *session.scalars(select(Bottle.code))]
-
-
-def last_pull(session: Session, lot_id: str) -> Pull | None:
-    """Return the pull of a lot that was proposed last, confirmed or not."""
-    asked = select(Pull).where(Pull.lot_id == lot_id).order_by(Pull.proposed_at.desc())
-    return session.scalar(asked.limit(1))

@@ -6,7 +6,7 @@ from typing import Any
 
 from server.records.tables.trail import TrailRow
 from server.sheets.countersign import TrailLine
-from server.sheets.parts.telling import moment_words
+from server.sheets.parts.telling import moment_words, unit_words
 
 
 def trail_lines(rows: Iterable[TrailRow], zone: str) -> tuple[TrailLine, ...]:
@@ -37,9 +37,23 @@ def _told(body: Any, name: str = "") -> Iterator[str]:
             yield f"{name} {', '.join(str(one) for one in body)}"
             return
         for place, one in enumerate(body, start=1):
-            yield from _told(one, f"{name} {place}")
+            if isinstance(one, Mapping) and {"slot", "text"} <= one.keys():
+                yield _entry(one)
+            else:
+                yield from _told(one, f"{name} {place}")
     elif body not in (None, ""):
         yield f"{name} {_plain(body)}"
+
+
+def _entry(one: Mapping[str, Any]) -> str:
+    """Return an entry as it was written: where, what, and why something was struck through."""
+    where = f"replicate {one['replicate']}" if one["replicate"] else "sheet"
+    filling = f", filling {one['segment']}" if one["segment"] > 1 else ""
+    slot = one["slot"].partition(":")[2] or one["slot"].replace("_", " ")
+    written = f"{one['text']} {unit_words(one['unit'])}".strip() or "nothing"
+    why = f" ({one['reason']})" if one["reason"] else ""
+    struck = ", an earlier value struck through" if one["strikes"] else ""
+    return f"{where}, {slot}{filling}: {written}{struck}{why}"
 
 
 def _plain(value: Any) -> str:

@@ -10,7 +10,7 @@ from server.metrology.decimal_text import decimals_of
 from server.metrology.rounding import printed_k, rounded, rounded_pair, rounding_exponent
 from server.sheets.bench import FindingView
 from server.sheets.countersign import BudgetRow, ReplicateRow
-from server.sheets.parts.telling import count_words, figure_words, unit_words
+from server.sheets.parts.telling import count_words, figure_words, plain_words, unit_words
 
 _SMALL_PERCENT = 1.0
 _INTERVAL = "interval "
@@ -108,9 +108,9 @@ def replicate_rows(result: Mapping[str, Any]) -> tuple[ReplicateRow, ...]:
         ReplicateRow(
             label=one["label"],
             value="" if one["value"] is None else rounded(one["value"], -decimals),
-            mass=_with_unit(figure_words(one["mass_g"]), "g"),
-            amount=_with_unit(figure_words(one["amount_mmol"]), "mmol"),
-            volume=_with_unit(figure_words(one["volume_mL"]), "mL"),
+            mass=_at_decimals(one["mass_g"], 5, "g"),
+            amount=_at_decimals(one["amount_mmol"], 4, "mmol"),
+            volume=_at_decimals(one["volume_mL"], 3, "mL"),
             excluded=one["excluded"],
         )
         for one in result["replicates"]
@@ -239,9 +239,9 @@ def _budget_row(one: Mapping[str, Any], urls: Mapping[str, str]) -> BudgetRow:
     root = (one["id"] or "").partition(":")[0]
     return BudgetRow(
         source=one["source"],
-        value=_with_unit(figure_words(one["value"], 7), unit_words(one["unit"])),
+        value=f"{plain_words(one['value'])} {unit_words(one['unit'])}".strip(),
         u=figure_words(one["u"], 2),
-        dof="∞" if one["dof"] is None else figure_words(one["dof"], 3),
+        dof="∞" if one["dof"] is None else plain_words(one["dof"], 3),
         shape=one["shape"],
         sensitivity=figure_words(one["sensitivity"], 3),
         contribution=figure_words(one["contribution"], 2),
@@ -259,8 +259,9 @@ def _percent(share: float) -> str:
 
 def _constant(held: Mapping[str, Any]) -> str:
     u = f", u = {figure_words(held['u'], 2)}" if held["u"] else ", taken as exact"
-    return f"{figure_words(held['value'], 7)} {unit_words(held['unit'])}{u} ({held['source']})"
+    return f"{plain_words(held['value'])} {unit_words(held['unit'])}{u} ({held['source']})"
 
 
-def _with_unit(number: str, unit: str) -> str:
-    return f"{number} {unit}".strip() if number else ""
+def _at_decimals(value: float | None, decimals: int, unit: str) -> str:
+    """Return what a replicate's value comes from, with one decimal more than is usually read."""
+    return "" if value is None else f"{rounded(value, -decimals)} {unit}"

@@ -52,7 +52,8 @@ def bottle_line(one: BottleOnShelf, now: datetime, zone: str) -> BottleLine:
     """Return a bottle for a table; a number only where the bottle is in force."""
     state, lot = state_of_bottle(one, now), one.lot
     result = concentration_in_force(lot, state)
-    until = lot.certificate.row.valid_until if lot.certificate else None
+    dated = lot.certificate is not None and state in {IN_FORCE, CHECK_DUE, LAPSED}
+    until = lot.certificate.row.valid_until if lot.certificate and dated else None
     return BottleLine(
         code=one.bottle.code,
         url=f"/b/{one.bottle.code}",
@@ -95,4 +96,5 @@ def held_says(hold: StandingHold | None, thing: str, zone: str) -> str:
     if hold is None:
         return ""
     at = moment_words(hold.held_at, zone)
-    return f"{hold.printed_name} holds this {thing} since {at}: {hold.reason}"
+    end = "" if hold.reason.endswith((".", "!", "?")) else "."
+    return f"{hold.printed_name} holds this {thing} since {at}: {hold.reason}{end}"

@@ -1,11 +1,13 @@
 """Signatures as printed, each checked again against what it was bound to."""
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
+from typing import Any
 
 from server.lab.canonical import digest
-from server.lab.sheet_facts import SheetFacts
-from server.lab.signing import signature_holds
-from server.sheets.bench import SignatureView
+from server.lab.sheet_facts import SheetFacts, SignatureFact
+from server.lab.signing import COUNTERSIGNED, signature_holds
+from server.sheets.bench import FindingView, SignatureView
+from server.sheets.parts.outcome import finding_views
 from server.sheets.parts.telling import signed_words
 
 
@@ -27,3 +29,22 @@ def signature_views(facts: SheetFacts, snapshots: Mapping[str, str]) -> tuple[Si
         )
         for one in facts.signatures
     )
+
+
+def signed_findings(
+    facts: SheetFacts, findings: Iterable[Mapping[str, Any]]
+) -> tuple[FindingView, ...]:
+    """Return findings with the analyst's reasons, and who accepted them by name."""
+    measured, second = facts.measured_signature, countersignature(facts)
+    return finding_views(
+        findings,
+        reasons=measured.reasons if measured else {},
+        accepted=second.reasons if second else (),
+        accepted_by=second.printed_name if second else None,
+    )
+
+
+def countersignature(facts: SheetFacts) -> SignatureFact | None:
+    """Return the signature that certified a sheet, or None."""
+    found = [one for one in facts.signatures if one.meaning == COUNTERSIGNED]
+    return found[-1] if found else None

@@ -2,6 +2,7 @@
 
 from collections.abc import Mapping
 from datetime import date, datetime, timedelta
+from decimal import Decimal
 from typing import Any
 
 from server.lab.validity import last_day, local_day, read_zone
@@ -81,6 +82,11 @@ def figure_words(value: float | None, digits: int = 6) -> str:
     Certified values are never written by this: they keep the digits that their U gives them.
     """
     return "" if value is None else significant(value, digits)
+
+
+def plain_words(value: float, digits: int = 7) -> str:
+    """Return an input as it entered, to so many digits, without zeros that nobody stated."""
+    return f"{Decimal(f'{value:.{digits}g}'):f}"
 
 
 def unit_words(unit: str | None) -> str:

@@ -31,7 +31,8 @@ router = APIRouter(tags=["sheets"])
 BENCH_HEADER = "X-Titrant-Ledger"
 PERSON_HEADER = "X-Titrant-Person"
 
-_ENTRY = model_of(NewEntry, without=("id",), also=None)
+#: An entry without its UUID is let in here, so that its refusal is the laboratory's own.
+_ENTRY = model_of(NewEntry, without=("id",), also={"id": (str, "")})
 
 
 @dataclass(frozen=True, slots=True)

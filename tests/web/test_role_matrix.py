@@ -1,0 +1,349 @@
+"""R058, R028: every route for every role answers what the laboratory's table of acts says."""
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+from typing import Any
+from uuid import uuid4
+
+import pytest
+
+from server.web.wiring import ROUTERS
+
+NOBODY = str(uuid4())
+NO_CODE = "ZZZZZZZ"
+ROLES = ("visitor", "analyst", "countersigner", "keeper", "steward", "reader")
+SIGNED_IN = frozenset(ROLES) - {"visitor"}
+EVERYBODY = frozenset(ROLES)
+
+
+@dataclass(frozen=True)
+class Case:
+    """Who may, what an allowed one is answered, and what is sent."""
+
+    who: frozenset[str]
+    status: int
+    address: str | None = None
+    body: dict[str, Any] | None = None
+    refused: int = 403
+    visitor: int = 401
+
+
+def only(*roles: str) -> frozenset[str]:
+    return frozenset(roles)
+
+
+REASON = {"reason": "cloudy"}
+ANALYST, KEEPER, STEWARD = only("analyst"), only("keeper"), only("steward")
+COUNTERSIGNER = only("countersigner")
+HOLDERS = only("analyst", "countersigner", "keeper")
+RELEASERS = only("keeper", "countersigner")
+PULL = {"reason": "the flask was not clean"}
+BEGIN = {
+    "lot_code": "NOCODE00",
+    "recipe_id": NOBODY,
+    "standard_lot_id": NOBODY,
+    "balance_id": NOBODY,
+    "burette_id": NOBODY,
+}
+CALIBRATION = {
+    "certificate_number": "C-1",
+    "issuer": "calibration house",
+    "done_on": "2026-05-01",
+    "due_on": "2027-05-01",
+    "due_basis": "own plan",
+    "document": {},
+}
+PERSON = {
+    "sign_in_name": "",
+    "printed_name": "Nobody Yet",
+    "roles": ["reader"],
+    "password": "words that stand far apart",
+}
+SETTINGS = {"name": "x", "address": "", "zone": "Europe/Zurich", "revision": 999}
+HOLD = {"kind": "lot", "thing": "NOCODE00", "reason": "cloudy"}
+
+# names.md, "People": act by act. An allowed one gets past the role: 404 for a thing that is not
+# there, 422 for a value that cannot be taken, 409 for a revision that is none.
+PAGES: dict[str, Case] = {
+    "GET /": Case(EVERYBODY, 200),
+    "GET /b/{code}": Case(EVERYBODY, 200),
+    "GET /B/{code}": Case(EVERYBODY, 200),
+    "POST /b/{code}/used-up": Case(ANALYST, 404, f"/b/{NO_CODE}/used-up"),
+    "GET /sign-in": Case(EVERYBODY, 200),
+    "POST /sign-in": Case(SIGNED_IN, 303),
+    "POST /sign-out": Case(EVERYBODY, 303),
+    "GET /setup": Case(EVERYBODY, 303),
+    "POST /setup": Case(frozenset(), 0, None, {"setup_code": "x"}, visitor=403),
+    "GET /me": Case(SIGNED_IN, 200),
+    "POST /me": Case(SIGNED_IN, 422, None, {"old": "x", "new": "short"}),
+    "GET /bench": Case(SIGNED_IN, 200),
+    "GET /bench/begin": Case(only("analyst", "keeper"), 200, "/bench/begin?lot={lot}"),
+    "POST /bench": Case(ANALYST, 404, None, BEGIN),
+    "GET /bench/{sheet_id}": Case(SIGNED_IN, 200),
+    "GET /bench/{sheet_id}/hand-in": Case(ANALYST, 200),
+    "POST /bench/{sheet_id}/hand-in": Case(
+        ANALYST, 404, f"/bench/{NOBODY}/hand-in", {"revision": "1"}
+    ),
+    "POST /bench/{sheet_id}/abandon": Case(ANALYST, 404, f"/bench/{NOBODY}/abandon", REASON),
+    "POST /bench/{sheet_id}/let-be-used": Case(
+        KEEPER, 404, f"/bench/{NOBODY}/let-be-used", {"what": "balance", **REASON}
+    ),
+    "GET /countersign": Case(SIGNED_IN, 200),
+    "GET /countersign/{sheet_id}": Case(SIGNED_IN, 200),
+    "POST /countersign/{sheet_id}": Case(
+        COUNTERSIGNER, 404, f"/countersign/{NOBODY}", {"revision": "1", "password": "{password}"}
+    ),
+    "POST /countersign/{sheet_id}/send-back": Case(
+        COUNTERSIGNER, 404, f"/countersign/{NOBODY}/send-back", {"revision": "1", "remark": "x"}
+    ),
+    "GET /certificates/{number}": Case(SIGNED_IN, 200),
+    "GET /stores": Case(SIGNED_IN, 200),
+    "GET /stores/standard-lots/new": Case(KEEPER, 200),
+    "POST /stores/standard-lots/new": Case(KEEPER, 422),
+    "GET /stores/standard-lots/{standard_lot_id}": Case(SIGNED_IN, 200),
+    "GET /stores/recipes/new": Case(KEEPER, 200),
+    "POST /stores/recipes/new": Case(KEEPER, 422),
+    "GET /stores/recipes/{recipe_id}": Case(SIGNED_IN, 200),
+    "GET /instruments": Case(SIGNED_IN, 200),
+    "GET /instruments/new": Case(KEEPER, 200),
+    "POST /instruments/new": Case(KEEPER, 422, None, {"kind": "teapot"}),
+    "GET /instruments/{instrument_id}": Case(SIGNED_IN, 200),
+    "GET /instruments/{instrument_id}/calibrations/new": Case(KEEPER, 200),
+    "POST /instruments/{instrument_id}/calibrations/new": Case(KEEPER, 422),
+    "GET /lots/new": Case(ANALYST, 200),
+    "POST /lots/new": Case(ANALYST, 422),
+    "GET /lots/{code}": Case(SIGNED_IN, 200, "/lots/{lot}"),
+    "POST /lots/{code}/bottles": Case(ANALYST, 404, f"/lots/{NO_CODE}/bottles", {"count": "1"}),
+    "POST /lots/{code}/propose-pull": Case(KEEPER, 404, f"/lots/{NO_CODE}/propose-pull", PULL),
+    "POST /lots/{code}/confirm-pull": Case(COUNTERSIGNER, 404, f"/lots/{NO_CODE}/confirm-pull"),
+    "POST /hold": Case(HOLDERS, 404, None, HOLD),
+    "POST /release": Case(RELEASERS, 404, None, HOLD),
+    "GET /trail": Case(SIGNED_IN, 200),
+    "GET /people": Case(STEWARD, 200),
+    "POST /people/new": Case(STEWARD, 422, None, PERSON),
+    "POST /people/{person_id}/roles": Case(
+        STEWARD, 404, f"/people/{NOBODY}/roles", {"revision": "1", "roles": ["reader"]}
+    ),
+    "POST /people/{person_id}/close": Case(STEWARD, 404, f"/people/{NOBODY}/close"),
+    "POST /laboratory": Case(STEWARD, 409, None, {**SETTINGS, "revision": "999"}),
+    "GET /about": Case(EVERYBODY, 200),
+}
+API: dict[str, Case] = {
+    "POST /api/session": Case(SIGNED_IN, 201),
+    "GET /api/session": Case(SIGNED_IN, 200),
+    "DELETE /api/session": Case(SIGNED_IN, 204),
+    "POST /api/session/password": Case(SIGNED_IN, 422, None, {"old": "x", "new": "short"}),
+    "GET /api/bottles/{code}": Case(EVERYBODY, 200),
+    "POST /api/bottles/{code}/used-up": Case(ANALYST, 404, f"/api/bottles/{NO_CODE}/used-up"),
+    "GET /api/shelf": Case(EVERYBODY, 200),
+    "GET /api/sheets": Case(SIGNED_IN, 200),
+    "POST /api/sheets": Case(ANALYST, 404, None, BEGIN),
+    "GET /api/sheets/{sheet_id}": Case(SIGNED_IN, 200),
+    "POST /api/sheets/{sheet_id}/entries": Case(
+        ANALYST,
+        404,
+        f"/api/sheets/{NOBODY}/entries",
+        {"entries": [{"id": NOBODY, "replicate": 0, "slot": "temperature", "text": "21.0"}]},
+    ),
+    "GET /api/sheets/{sheet_id}/hand-in": Case(ANALYST, 200),
+    "POST /api/sheets/{sheet_id}/hand-in": Case(
+        ANALYST, 404, f"/api/sheets/{NOBODY}/hand-in", {"revision": 1, "password": "x"}
+    ),
+    "POST /api/sheets/{sheet_id}/abandon": Case(
+        ANALYST, 404, f"/api/sheets/{NOBODY}/abandon", REASON
+    ),
+    "POST /api/sheets/{sheet_id}/let-be-used": Case(
+        KEEPER, 404, f"/api/sheets/{NOBODY}/let-be-used", {"what": "balance", **REASON}
+    ),
+    "GET /api/countersign": Case(SIGNED_IN, 200),
+    "GET /api/sheets/{sheet_id}/countersign": Case(SIGNED_IN, 200),
+    "POST /api/sheets/{sheet_id}/countersign": Case(
+        COUNTERSIGNER,
+        404,
+        f"/api/sheets/{NOBODY}/countersign",
+        {"revision": 1, "password": "{password}"},
+    ),
+    "POST /api/sheets/{sheet_id}/send-back": Case(
+        COUNTERSIGNER, 404, f"/api/sheets/{NOBODY}/send-back", {"revision": 1, "remark": "x"}
+    ),
+    "GET /api/certificates/{number}": Case(SIGNED_IN, 200),
+    "POST /api/lots": Case(ANALYST, 422, None, {"titrant": "NaOH", "nominal": "-1"}),
+    "GET /api/lots/{code}": Case(SIGNED_IN, 200, "/api/lots/{lot}"),
+    "POST /api/lots/{code}/bottles": Case(
+        ANALYST, 404, f"/api/lots/{NO_CODE}/bottles", {"place": "x", "volume_mL": "1000"}
+    ),
+    "POST /api/lots/{code}/propose-pull": Case(
+        KEEPER, 404, f"/api/lots/{NO_CODE}/propose-pull", PULL
+    ),
+    "POST /api/lots/{code}/confirm-pull": Case(
+        COUNTERSIGNER, 404, f"/api/lots/{NO_CODE}/confirm-pull"
+    ),
+    "POST /api/holds": Case(HOLDERS, 404, None, HOLD),
+    "POST /api/releases": Case(RELEASERS, 404, None, HOLD),
+    "GET /api/stores": Case(SIGNED_IN, 200),
+    "POST /api/standard-lots": Case(
+        KEEPER,
+        422,
+        None,
+        {
+            "name": "",
+            "substance": "KHP",
+            "certificate_number": "x",
+            "issuer": "x",
+            "due_on": "2027-01-01",
+            "due_basis": "x",
+            "mass_fraction": {},
+        },
+    ),
+    "GET /api/standard-lots/{standard_lot_id}": Case(SIGNED_IN, 200),
+    "POST /api/recipes": Case(KEEPER, 422, None, {"name": "", "document": {}}),
+    "GET /api/recipes/{recipe_id}": Case(SIGNED_IN, 200),
+    "GET /api/instruments": Case(SIGNED_IN, 200),
+    "POST /api/instruments": Case(
+        KEEPER,
+        422,
+        None,
+        {"kind": "teapot", "name": "x", "maker": "", "type": "", "serial": "", "location": ""},
+    ),
+    "GET /api/instruments/{instrument_id}": Case(SIGNED_IN, 200),
+    "POST /api/instruments/{instrument_id}/calibrations": Case(
+        KEEPER, 404, f"/api/instruments/{NOBODY}/calibrations", CALIBRATION
+    ),
+    "GET /api/trail": Case(SIGNED_IN, 200),
+    "GET /api/people": Case(STEWARD, 200),
+    "POST /api/people": Case(STEWARD, 422, None, PERSON),
+    "POST /api/people/{person_id}/roles": Case(
+        STEWARD, 404, f"/api/people/{NOBODY}/roles", {"revision": 1, "roles": ["reader"]}
+    ),
+    "POST /api/people/{person_id}/close": Case(STEWARD, 404, f"/api/people/{NOBODY}/close", {}),
+    "POST /api/laboratory": Case(STEWARD, 409, None, SETTINGS),
+    "GET /health": Case(EVERYBODY, 200),
+}
+MATRIX = PAGES | API
+#: Beginning and ending sessions is tried on sessions of their own.
+SESSIONS = frozenset({"POST /sign-in", "POST /sign-out", "POST /api/session", "DELETE /api/session"})
+
+
+def routes() -> Iterator[tuple[str, str]]:
+    """Every route of the application, with its method."""
+    for prefix, router in ROUTERS:
+        for route in router.routes:
+            for method in sorted(route.methods - {"HEAD"}):  # type: ignore[attr-defined]
+                yield method, prefix + route.path  # type: ignore[attr-defined]
+
+
+@pytest.fixture(scope="module")
+def people(shared_web: Any) -> Callable[[str], Any]:
+    """Somebody for each role, and a visitor; each signed in once."""
+    found = {role: shared_web.client(name) for role, name in shared_web.roles.items()}
+
+    def somebody(role: str) -> Any:
+        return shared_web.visitor() if role == "visitor" else found[role]
+
+    return somebody
+
+
+@pytest.fixture(scope="module")
+def things(shared_web: Any) -> dict[str, str]:
+    """Things of the demonstration that addresses name."""
+    reader = shared_web.client("rosa")
+    bottle = shared_web.demo.bottles_in_force[0]
+    card = reader.get(f"/api/bottles/{bottle}").json()
+    stores = reader.get("/api/stores").json()
+    lots = [one["id"] for one in shared_web.client("imke").get("/api/sheets").json()["lots"]]
+    return {
+        "code": bottle,
+        "lot": lots[0],
+        "number": card["certificate"]["number"],
+        "sheet_id": shared_web.demo.waiting_sheet_id,
+        "open_sheet_id": shared_web.demo.sent_back_sheet_id,
+        "standard_lot_id": stores["standard_lots"][0]["id"],
+        "recipe_id": stores["recipes"][0]["id"],
+        "instrument_id": reader.get("/api/instruments").json()["instruments"][0]["id"],
+    }
+
+
+def test_matrix_holds_every_route_and_no_other() -> None:
+    assert {f"{method} {path}" for method, path in routes()} == set(MATRIX)
+
+
+def _address(name: str, case: Case, things: dict[str, str]) -> str:
+    address = case.address or name.partition(" ")[2]
+    if name.endswith("/hand-in"):
+        things = {**things, "sheet_id": things["open_sheet_id"]}
+    for thing, value in things.items():
+        address = address.replace(f"{{{thing}}}", value)
+    return address
+
+
+def _send(somebody: Any, name: str, address: str, case: Case) -> Any:
+    method = name.partition(" ")[0]
+    client = getattr(somebody, "client", somebody)
+    if method == "GET":
+        return client.get(address)
+    body = dict(case.body or {})
+    if body.get("password") == "{password}":
+        body["password"] = getattr(somebody, "password", "x")
+    token = getattr(somebody, "token", "none")
+    if address.startswith("/api"):
+        return client.request(method, address, json=body, headers={"X-Form-Token": token})
+    if token == "none" and address in {"/sign-in", "/setup"}:
+        token = _visitor_token(client)
+    return client.post(address, data={"form_token": token, "key": str(uuid4()), **body})
+
+
+def _visitor_token(client: Any) -> str:
+    page: str = client.get("/sign-in").text
+    return page.partition('name="form_token" value="')[2].partition('"')[0]
+
+
+@pytest.mark.parametrize("role", ROLES)
+@pytest.mark.parametrize("name", sorted(set(MATRIX) - SESSIONS))
+def test_route_for_role_answers_what_the_table_says(
+    name: str, role: str, people: Callable[[str], Any], things: dict[str, str]
+) -> None:
+    case = MATRIX[name]
+    if role in case.who:
+        wanted = case.status
+    else:
+        wanted = case.visitor if role == "visitor" else case.refused
+
+    answer = _send(people(role), name, _address(name, case, things), case)
+
+    assert answer.status_code == wanted, answer.text[:2000]
+
+
+@pytest.mark.parametrize("role", ROLES)
+def test_sign_in_for_role_answers_what_the_table_says(role: str, shared_web: Any) -> None:
+    name = shared_web.roles.get(role, "nobody")
+    given = {"name": name, "password": shared_web.passwords.get(name, "nothing")}
+    by_page, by_api = shared_web.visitor(), shared_web.visitor()
+    form = {"form_token": _visitor_token(by_page), "key": "1", **given}
+    page, api = (MATRIX[f"POST {path}"] for path in ("/sign-in", "/api/session"))
+
+    answer = by_page.post("/sign-in", data=form)
+    assert answer.status_code == (page.status if role in page.who else page.visitor)
+    answer = by_api.post("/api/session", json=given)
+    assert answer.status_code == (api.status if role in api.who else api.visitor)
+    assert by_page.get("/me").status_code == by_api.get("/me").status_code
+    assert by_page.get("/me").status_code == (200 if role in page.who else 401)
+
+
+@pytest.mark.parametrize("role", ROLES)
+def test_sign_out_for_role_ends_only_a_session_that_is_there(role: str, shared_web: Any) -> None:
+    if role == "visitor":
+        visitor = shared_web.visitor()
+        assert visitor.post("/sign-out", data={}, headers=FORM).status_code == 303
+        assert visitor.delete("/api/session").status_code == 401
+        return
+    by_page, by_api = (shared_web.client(shared_web.roles[role]) for _ in range(2))
+
+    assert by_page.form("/sign-out").status_code == 303
+    headers = {"X-Form-Token": by_api.token}
+    assert by_api.client.delete("/api/session", headers=headers).status_code == 204
+
+    assert by_page.get("/me").status_code == 401
+    assert by_api.get("/me").status_code == 401
+
+
+FORM = {"Content-Type": "application/x-www-form-urlencoded"}
