@@ -16,21 +16,19 @@ from server.records.transaction import Transactions
 
 POSTGRES_URL = os.environ.get("TITRANT_LEDGER_TEST_DATABASE_URL", "")
 NO_SKIP = os.environ.get("TITRANT_LEDGER_NO_SKIP", "") not in {"", "0"}
-CHROMIUM = next(
-    (
-        path
-        for path in ("/usr/bin/chromium", "/usr/bin/chromium-browser", "/usr/bin/google-chrome")
-        if Path(path).exists()
-    ),
-    None,
-)
 
 
-def missing(what: str) -> None:
+def refuse_to_skip(what: str) -> None:
     """Skip with a clear reason, or fail where a skip is not allowed."""
     if NO_SKIP:
         pytest.fail(what)
     pytest.skip(what)
+
+
+@pytest.fixture(scope="session")
+def missing() -> Callable[[str], None]:
+    """What a fixture calls where a browser or program is missing."""
+    return refuse_to_skip
 
 
 class Clock:
@@ -68,7 +66,9 @@ def sqlite_template(tmp_path_factory: pytest.TempPathFactory) -> Path:
 def postgres_template() -> Iterator[str]:
     """The name of a PostgreSQL database with all migrations."""
     if not POSTGRES_URL:
-        missing("PostgreSQL is missing: set TITRANT_LEDGER_TEST_DATABASE_URL to a server's URL")
+        refuse_to_skip(
+            "PostgreSQL is missing: set TITRANT_LEDGER_TEST_DATABASE_URL to a server's URL"
+        )
     name = f"template_{uuid4().hex[:12]}"
     admin(f'CREATE DATABASE "{name}"')
     database = open_database(postgres_url(name))

@@ -17,6 +17,8 @@ _FLASK_VOLUME_U = 0.02
 """u of the volume in the flask as a fraction: measuring cylinder and rinsing."""
 _TEMPERATURE_U_K = 0.5
 _PKW_PER_K = 0.033
+_LEAST_DOF = 4.0
+"""A learnt scatter of the volumes enlarges u by dof/(dof - 2), the variance of the scaled t."""
 _OTHER_DAVIES_SLOPE = 0.1
 """Davies' coefficient of the linear term was 0.2 in 1938 and 0.3 in 1962: the difference."""
 
@@ -74,6 +76,9 @@ def end_point_uncertainty(
     chi2 = float(residuals @ residuals) / free
     correlation = _correlation_factor(residuals)
     scale = max(1.0, chi2) * correlation
+    if np.isfinite(fit.volume_dof):
+        dof = max(fit.volume_dof, _LEAST_DOF)
+        scale *= dof / (dof - 2)
     fitted = float(np.sqrt(scale * fit.data_covariance[0, 0]))
     parts = (*_priors(fit), *_moved(fit), ("weights", _other_weights(fit)), *others)
     model = float(np.sqrt(sum(one * one for _, one in parts)))
@@ -128,5 +133,6 @@ def _other_weights(fit: ModelFit) -> float:
         weights = fit.trust / (steep2 * fit.reading_u**2 + volume_u**2)
         weighted = fit.rows * weights
         normal = weighted @ fit.rows.T + np.diag(fit.precision_of_priors)
-        shifts.append(float(np.linalg.solve(normal, weighted @ fit.off_mL)[0]))
+        pull = (weighted - fit.rows * fit.weights) @ fit.off_mL
+        shifts.append(float(np.linalg.solve(normal, pull)[0]))
     return (abs(shifts[0]) + abs(shifts[1])) / 2

@@ -61,6 +61,7 @@ class ModelFit:
     ln_gamma: Floats
     reading_u: float
     volume_u: float
+    volume_dof: float
     rounds: int
     chemistry: Chemistry
 
@@ -223,6 +224,7 @@ def fit_model(
         ln_gamma=ln_gamma,
         reading_u=scatter.reading_u,
         volume_u=scatter.volume_u,
+        volume_dof=float(scatter.volume_dof),
         rounds=count,
         chemistry=chemistry,
     )

@@ -7,10 +7,10 @@ from concurrent.futures import Future
 from typing import Any, TypeVar
 
 from sqlalchemy import Connection
-from sqlalchemy.exc import DBAPIError
+from sqlalchemy.exc import DBAPIError, OperationalError
 from sqlalchemy.orm import Session
 
-from server.lab.refusal import SavedFirst
+from server.lab.refusal import CannotWrite, SavedFirst
 from server.records.database import IMMEDIATE, Database
 
 T = TypeVar("T")
@@ -38,10 +38,17 @@ class Transactions:
 
         What it raises is raised here, and nothing of it is kept. The closure may run more than
         once: a serialization failure is tried again.
+
+        Raises:
+            CannotWrite: the database did not take it: full, read-only, or not there.
         """
-        if self._writer is not None:
-            return self._writer.run(work)
-        return _write_on_postgresql(self.database, work)
+        try:
+            if self._writer is not None:
+                return self._writer.run(work)
+            return _write_on_postgresql(self.database, work)
+        except OperationalError as problem:
+            says = "The database did not take this: nothing of it was saved. Tell the steward."
+            raise CannotWrite(says) from problem
 
     def read(self, work: Callable[[Session], T]) -> T:
         """Run a closure that only reads, on one state of the database; it is always rolled back."""

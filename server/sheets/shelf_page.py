@@ -1,7 +1,9 @@
 """The shelf: bottles by code or words, due soonest first."""
 
+import re
 from collections.abc import Sequence
 from datetime import datetime
+from decimal import Decimal
 
 from sqlalchemy.orm import Session
 
@@ -17,6 +19,8 @@ from server.sheets.parts.telling import count_words
 from server.sheets.shelf import Shelf
 
 _MOST_WORDS = 200
+_SHORT = 2
+_NUMBER = re.compile(r"[0-9]{1,12}([.,][0-9]{1,12})?").fullmatch
 
 
 def open_shelf(
@@ -51,16 +55,27 @@ def open_shelf(
 
 
 def _answers(one: BottleOnShelf, words: str) -> bool:
-    """Say whether every word stands somewhere in what the bottle is called."""
+    """Say whether every word stands somewhere in what the bottle is called.
+
+    A number answers to the same number only: 0.1 is in 0.1 mol/L, not in 0.15 mol/L.
+    """
     lot, bottle = one.lot.lot, one.bottle
+    if as_code(words) in {bottle.code, lot.code}:
+        return True
     called = (
         bottle.code, lot.code, lot.titrant, name_of(lot.titrant), lot.nominal, "mol/L", lot.name,
         lot.medium, bottle.place,
     )  # fmt: skip
     text = " ".join(called).casefold()
-    if all(word in text for word in words.casefold().split()):
-        return True
-    return as_code(words) in {bottle.code, lot.code}
+    numbers = {Decimal(found) for found in text.replace(",", " ").split() if _NUMBER(found)}
+    for word in words.casefold().split():
+        number = Decimal(word.replace(",", ".")) if _NUMBER(word) else None
+        begins_code = len(word) > _SHORT and (
+            bottle.code.startswith(word) or lot.code.startswith(word)
+        )
+        if not begins_code and (word not in text if number is None else number not in numbers):
+            return False
+    return True
 
 
 def _soonest(one: BottleOnShelf, state: str) -> tuple[bool, float, str, int]:

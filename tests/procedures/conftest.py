@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
-from datetime import datetime
+from datetime import UTC, datetime
 from typing import Any
 from uuid import uuid4
 
@@ -32,6 +32,7 @@ from server.procedures.stores import (
     write_recipe,
 )
 from server.records import trail
+from server.records.database import Database
 from server.records.queries.load_sheet import load_sheet_facts
 from server.records.tables.trail import TrailRow
 from server.records.transaction import Transactions
@@ -58,6 +59,7 @@ RECIPE = {
     "replicates": 3,
     "end_point": {"mode": "visual", "indicator": "phenolphthalein"},
     "blank": "none",
+    "repeatability": {"relative_u": "0.0005", "applies_to": "one", "source": "validation"},
     "buoyancy": False,
     "temperature": "once",
     "interval_days": 14,
@@ -112,9 +114,7 @@ def all_lines() -> list[tuple[int, str, str]]:
 
 def new_entry(replicate: int, slot: str, text: str, **more: Any) -> NewEntry:
     """Return an entry with a UUID of its own."""
-    return NewEntry(
-        **{"id": str(uuid4()), "replicate": replicate, "slot": slot, "text": text}, **more
-    )
+    return NewEntry(id=str(uuid4()), replicate=replicate, slot=slot, text=text, **more)
 
 
 @dataclass
@@ -290,3 +290,11 @@ def lab(transactions: Transactions, clock: Callable[[], datetime]) -> Iterator[L
 def sqlite_lab(sqlite_transactions: Transactions, clock: Callable[[], datetime]) -> Laboratory:
     """The small laboratory on SQLite alone, for rules that do not depend on the engine."""
     return set_up(sqlite_transactions, clock)
+
+
+@pytest.fixture(scope="module")
+def shared_lab(fresh_sqlite: Callable[[], Database]) -> Iterator[Laboratory]:
+    """One small laboratory for all tests of a module that change nothing in it."""
+    found = Transactions(fresh_sqlite())
+    yield set_up(found, lambda: datetime(2026, 5, 4, 8, 30, tzinfo=UTC))
+    found.close()

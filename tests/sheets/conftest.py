@@ -6,6 +6,7 @@ from dataclasses import dataclass, replace
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
+from uuid import uuid4
 
 import pytest
 import sqlalchemy as sa
@@ -14,6 +15,7 @@ from sqlalchemy.orm import Session
 from server.demo.laboratory import DemoSummary, fill_demo
 from server.lab.actor import Actor
 from server.records.database import Database, open_database, sqlite_url
+from server.records.tables.bench import Entry, Sheet, Signature
 from server.records.tables.people import Person
 from server.records.transaction import Transactions
 
@@ -52,6 +54,26 @@ class Demo:
 
     def write(self, work: Callable[[Session], Any]) -> Any:
         return self.transactions.write(work)
+
+    @staticmethod
+    def twin(session: Session, row: Any, **changes: Any) -> Any:
+        """Add a second row like one that is there."""
+        columns = {one.key: getattr(row, one.key) for one in sa.inspect(type(row)).column_attrs}
+        new = type(row)(**columns | {"id": str(uuid4())} | changes)
+        session.add(new)
+        session.flush()
+        return new
+
+    def twin_sheet(self, session: Session, sheet_id: str, **changes: Any) -> str:
+        """Add a second sheet like one that is there, with its entries and signatures."""
+        row = session.get_one(Sheet, sheet_id)
+        count = session.scalar(sa.select(sa.func.count()).select_from(Sheet))
+        new = self.twin(session, row, number=f"S-2026-1{count:03d}", **changes)
+        for table in (Entry, Signature):
+            for one in session.scalars(sa.select(table).where(table.sheet_id == sheet_id)).all():
+                more = {"device_id": None, "strikes": None} if table is Entry else {}
+                self.twin(session, one, sheet_id=new.id, **more)
+        return new.id
 
     def at(self, now: datetime) -> "Demo":
         return replace(self, now=now)

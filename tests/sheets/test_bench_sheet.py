@@ -94,9 +94,7 @@ def test_sheet_left_out_replicate_stays_with_criterion_and_reason(demo) -> None:
     sheet_id = demo.transactions.read(lambda s: s.scalar(by_number))
     sheet = demo.read(open_bench_sheet, sheet_id, who="imke")
     group = next(one for one in sheet.groups if one.replicate == 4)
-    assert group.excluded == (
-        "titrated past the end point: yellow before the last drop was seen"
-    )
+    assert group.excluded == ("titrated past the end point: yellow before the last drop was seen")
     assert [one.excluded for one in sheet.margin.replicates] == [False] * 3 + [True, False]
 
 

@@ -23,9 +23,7 @@ def test_hand_in_shows_the_result_that_is_then_signed(own_demo) -> None:
     command = HandIn(sheet_id, page.sheet.revision, reasons)
     proof = Proof(actor.person_id, own_demo.now)
     signed = own_demo.write(
-        lambda s: hand_in_sheet(
-            s, command, evaluated, actor=actor, proof=proof, now=own_demo.now
-        )
+        lambda s: hand_in_sheet(s, command, evaluated, actor=actor, proof=proof, now=own_demo.now)
     )
     assert page.reported == signed["reported"]
 

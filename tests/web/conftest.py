@@ -49,9 +49,7 @@ class Web:
     def client(self, name: str) -> "Hand":
         """A browser with somebody signed in."""
         client = self.visitor()
-        answer = client.post(
-            "/api/session", json={"name": name, "password": self.passwords[name]}
-        )
+        answer = client.post("/api/session", json={"name": name, "password": self.passwords[name]})
         assert answer.status_code == 201, answer.text
         return Hand(client, answer.json()["form_token"], self.passwords[name])
 

@@ -221,7 +221,9 @@ API: dict[str, Case] = {
 }
 MATRIX = PAGES | API
 #: Beginning and ending sessions is tried on sessions of their own.
-SESSIONS = frozenset({"POST /sign-in", "POST /sign-out", "POST /api/session", "DELETE /api/session"})
+SESSIONS = frozenset(
+    {"POST /sign-in", "POST /sign-out", "POST /api/session", "DELETE /api/session"}
+)
 
 
 def routes() -> Iterator[tuple[str, str]]:

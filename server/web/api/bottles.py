@@ -6,9 +6,8 @@ from fastapi import APIRouter, Request, Response
 from fastapi.responses import PlainTextResponse
 from starlette.concurrency import run_in_threadpool
 
-from server.lab.refusal import NotFound, NotSignedIn
+from server.lab.refusal import NotFound
 from server.procedures.lots import UseUpBottle, use_up_bottle
-from server.records.queries.loading import laboratory_row
 from server.sheets.look_up import look_up
 from server.sheets.shelf_page import open_shelf
 from server.web.api.desk import AtApi, answer
@@ -32,7 +31,7 @@ async def bottle(request: Request, code: str, at: str | None = None) -> Response
         request.state.visit = visit
         if visit.actor is None and not _is_open(session):
             raise NotSignedIn("This laboratory shows its shelf to its own people only: sign in.")
-        found = look_up(session, code, at=at or None, now=now)
+        found = look_up(session, code, at=at or None, now=now, actor=visit.actor)
         return found, visit if to_touch else None
 
     try:
@@ -76,6 +75,3 @@ def _wants_text(request: Request) -> bool:
     accept = request.headers.get("accept", "")
     return "text/plain" in accept and "json" not in accept
 
-
-def _is_open(session: Any) -> bool:
-    return bool(laboratory_row(session).settings.get("shelf_open", True))

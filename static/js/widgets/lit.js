@@ -14,7 +14,7 @@ export function litRow(row, view, acts) {
     el(
       "div",
       { class: "label" },
-      el("label", { for: "reading" }, row.label, row.unit ? unseen(`, in ${row.unit}`) : null),
+      labelOf(row),
       row.hint ? el("span", { class: "hint", id: "hint" }, row.hint) : null,
     ),
     fieldOf(row, view, acts),
@@ -25,6 +25,13 @@ export function litRow(row, view, acts) {
     correcting ? reasonsOf(row, view, acts) : null,
   );
   return el("li", { class: "row next", "data-key": key, "aria-current": "step" }, form);
+}
+
+/** A label names its field; a button is named by what it says. */
+function labelOf(row) {
+  const typed = row.kind === "number" || row.kind === "text";
+  if (!typed) return el("span", {}, row.label);
+  return el("label", { for: "reading" }, row.label, row.unit ? unseen(`, in ${row.unit}`) : null);
 }
 
 /** What the typed text amounts to, said back while it is typed. */

@@ -1,0 +1,128 @@
+"""Every procedure by every role: allowed or refused exactly as the laboratory's table says."""
+
+import importlib
+import inspect
+import pkgutil
+
+import pytest
+
+from server import procedures
+from server.lab.refusal import NotAllowed, Refusal
+from server.procedures.bench import (
+    AbandonSheet,
+    BeginSheet,
+    LetBeUsed,
+    abandon_sheet,
+    begin_sheet,
+    let_be_used,
+)
+from server.procedures.countersign import (
+    Countersign,
+    SendBack,
+    countersign_sheet,
+    send_back_sheet,
+)
+from server.procedures.entries import WriteEntries, write_entries
+from server.procedures.hand_in import HandIn, hand_in_sheet, prepare_hand_in
+from server.procedures.holds import HoldThing, ReleaseThing, hold_thing, release_thing
+from server.procedures.instruments import (
+    RecordCalibration,
+    RegisterInstrument,
+    record_calibration,
+    register_instrument,
+)
+from server.procedures.laboratory import ChangeSettings, change_settings
+from server.procedures.lots import (
+    ConfirmPull,
+    FillBottles,
+    MakeUpLot,
+    ProposePull,
+    UseUpBottle,
+    confirm_pull,
+    fill_bottles,
+    make_up_lot,
+    propose_pull,
+    use_up_bottle,
+)
+from server.procedures.people import (
+    AddPerson,
+    ChangeRoles,
+    CloseAccount,
+    add_person,
+    change_roles,
+    close_account,
+)
+from server.procedures.stores import (
+    ReceiveStandardLot,
+    WriteRecipe,
+    receive_standard_lot,
+    write_recipe,
+)
+
+ROLES = ("analyst", "countersigner", "keeper", "steward", "reader")
+NOBODY = "00000000-0000-0000-0000-000000000001"
+
+# who may do what; the commands name things that are not there, so whoever may is refused later
+TABLE = {
+    make_up_lot: ({"analyst"}, MakeUpLot("", "0.1")),
+    fill_bottles: ({"analyst"}, FillBottles("x", "Shelf", "1000")),
+    use_up_bottle: ({"analyst"}, UseUpBottle("x")),
+    begin_sheet: ({"analyst"}, BeginSheet("x", NOBODY, NOBODY, NOBODY, NOBODY)),
+    write_entries: ({"analyst"}, WriteEntries(NOBODY, ())),
+    abandon_sheet: ({"analyst"}, AbandonSheet(NOBODY, "leak")),
+    prepare_hand_in: ({"analyst"}, NOBODY),
+    hand_in_sheet: ({"analyst"}, HandIn(NOBODY, 1)),
+    countersign_sheet: ({"countersigner"}, Countersign(NOBODY, 1)),
+    send_back_sheet: ({"countersigner"}, SendBack(NOBODY, 1, "look again")),
+    hold_thing: ({"analyst", "countersigner", "keeper"}, HoldThing("lot", "x", "cloudy")),
+    release_thing: ({"keeper", "countersigner"}, ReleaseThing("lot", "x", "clear")),
+    receive_standard_lot: ({"keeper"}, ReceiveStandardLot("", "KHP", "", "", "", "", {})),
+    write_recipe: ({"keeper"}, WriteRecipe("", {})),
+    register_instrument: ({"keeper"}, RegisterInstrument("", "", "", "", "", "")),
+    record_calibration: ({"keeper"}, RecordCalibration(NOBODY, "", "", "", "", "", {})),
+    let_be_used: ({"keeper"}, LetBeUsed(NOBODY, "burette", "checked")),
+    propose_pull: ({"keeper"}, ProposePull("x", "wrong salt")),
+    confirm_pull: ({"countersigner"}, ConfirmPull("x")),
+    add_person: ({"steward"}, AddPerson("", "", (), "")),
+    change_roles: ({"steward"}, ChangeRoles(NOBODY, ("reader",), 1)),
+    close_account: ({"steward"}, CloseAccount(NOBODY)),
+    change_settings: ({"steward"}, ChangeSettings("", "", "UTC", 99)),
+}
+
+
+def more_for(procedure, lab, who):
+    """Return what some procedures take besides their command."""
+    if procedure is hand_in_sheet:
+        return {"evaluated": None, "proof": lab.proof(who)}
+    if procedure is countersign_sheet:
+        return {"proof": lab.proof(who)}
+    return {"password_hash": "none"} if procedure is add_person else {}
+
+
+@pytest.mark.parametrize("role", ROLES)
+@pytest.mark.parametrize("procedure", TABLE, ids=lambda one: one.__name__)
+def test_procedure_by_role_is_allowed_or_refused_by_the_table(shared_lab, procedure, role):
+    allowed, command = TABLE[procedure]
+    more = more_for(procedure, shared_lab, role)
+    before = shared_lab.acts()
+    with pytest.raises(Refusal) as refused:
+        shared_lab.act(procedure, command, role, **more)
+    says = refused.value.says
+    for_want_of_role = isinstance(refused.value, NotAllowed) and "you need the role" in says
+    assert for_want_of_role is (role not in allowed)
+    assert shared_lab.acts() == before
+
+
+def test_table_names_every_procedure_that_takes_an_actor():
+    # sessions, set up and one's own password are everybody's own affair
+    own = {"change_password", "find_own_account", "record_proof", "sign_out", "once", "find_answer"}
+    found = set()
+    for module in pkgutil.iter_modules(procedures.__path__):
+        inside = importlib.import_module(f"server.procedures.{module.name}")
+        for name, work in vars(inside).items():
+            public = inspect.isfunction(work) and work.__module__ == inside.__name__
+            if public and not name.startswith("_") and name not in own:
+                parameters = list(inspect.signature(work).parameters)
+                if parameters[:1] == ["session"] and "actor" in parameters:
+                    found.add(name)
+    assert found - {"note_act", "sign"} == {one.__name__ for one in TABLE}
