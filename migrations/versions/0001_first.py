@@ -424,7 +424,6 @@ def upgrade():
         sa.Column("input_digest", sa.Text(), nullable=False),
         sa.Column("snapshot", sa.Text(), nullable=False),
         sa.Column("snapshot_digest", sa.Text(), nullable=False),
-        sa.Column("result", sa.Text(), nullable=False),
         sa.Column("made_at", sa.BigInteger(), nullable=False),
         sa.ForeignKeyConstraint(
             ["sheet_id"], ["sheet.id"], name=op.f("fk_evaluation_sheet_id_sheet")

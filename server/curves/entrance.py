@@ -15,7 +15,7 @@ from server.curves.fit_scatter import Given, Priors
 from server.curves.fit_uncertainty import EndPointUncertainty, end_point_uncertainty
 from server.curves.gran import GranLine, gran_line
 from server.curves.jumps import CleanCurve, cleaned, jumps
-from server.curves.model_fit import PIVOT_pH, FitProblem, ModelFit, fit_model
+from server.curves.model_fit import FitProblem, ModelFit, PIVOT_pH, fit_model
 from server.curves.outcome import METHODS, CannotTell, EndPoint, Method, NoEndPoint, Outcome
 from server.curves.points import CurveProblem, Floats, PointsLike, TitrationCurve, titration_curve
 from server.curves.probe_lag import LagLook, look_for_lag

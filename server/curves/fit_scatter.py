@@ -9,6 +9,8 @@ from server.curves.points import Floats
 
 _ENOUGH, _FAR = 4.0, 10.0
 """A residual within 4 standard deviations has full weight; at 10 a point weighs nothing."""
+_CONTRADICTS = 1.2816
+"""Quantile of the normal distribution: at 10 % the jump contradicts that volumes are exact."""
 _STANDS = 0.1
 """A change below this fraction leaves the parameters where they are, as far as shows."""
 _LEAST_READING_U = 5e-4
@@ -89,6 +91,7 @@ class ScatterEstimate:
             self._score_reading(freed, steep2, variance, use)
         if self._stage == "guess":
             self._stage, self.volume_u = "exact", _LEAST_VOLUME_U
+            self.volume_dof = np.inf
             return False
         if self._stage == "exact" and self._contradicted(left, steep2, leverage, use):
             self._stage, self.volume_u = "learnt", self._given.volume_guess
@@ -116,7 +119,7 @@ class ScatterEstimate:
     ) -> bool:
         """Tell whether the residuals at the jump are larger than the readings' scatter explains.
 
-        A chi-squared test at 1 % over the points whose reading would tell the volume to 3 µL.
+        A chi-squared test at 10 % over the points whose reading would tell the volume to 3 µL.
         """
         expected = steep2 * self.reading_u**2
         steep = expected < _ALLOWED_VOLUME_U**2
@@ -127,7 +130,7 @@ class ScatterEstimate:
             return False
         chi2 = float((left[steep] ** 2 / expected[steep]).clip(max=25.0).sum())
         ninth = 2 / (9 * free)
-        return chi2 > free * (1 - ninth + 2.326 * ninth**0.5) ** 3
+        return chi2 > free * (1 - ninth + _CONTRADICTS * ninth**0.5) ** 3
 
     def _score_reading(
         self, freed: Floats, steep2: Floats, variance: Floats, use: Floats | None

@@ -124,15 +124,16 @@ def _moved(fit: ModelFit) -> list[tuple[str, float]]:
 
 
 def _other_weights(fit: ModelFit) -> float:
-    """Return the shift in mL when volumes are taken to scatter half as much again, or a third."""
+    """Return the shift in mL when volumes are taken to scatter by a third less, or half more.
+
+    Half more is at least 1 µL: less than that the points hardly tell from nothing.
+    """
     steep2 = np.square(fit.per_reading)
-    least = 0.1 * float(np.sqrt(np.min(steep2))) * fit.reading_u
     shifts = []
-    for factor in (0.67, 1.5):
-        volume_u = max(factor * fit.volume_u, least if factor > 1 else 0.0)
+    for volume_u in (0.67 * fit.volume_u, max(1.5 * fit.volume_u, 1e-3)):
         weights = fit.trust / (steep2 * fit.reading_u**2 + volume_u**2)
         weighted = fit.rows * weights
         normal = weighted @ fit.rows.T + np.diag(fit.precision_of_priors)
         pull = (weighted - fit.rows * fit.weights) @ fit.off_mL
         shifts.append(float(np.linalg.solve(normal, pull)[0]))
-    return (abs(shifts[0]) + abs(shifts[1])) / 2
+    return max(abs(one) for one in shifts)

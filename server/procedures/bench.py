@@ -28,12 +28,12 @@ from server.lab.states import IN_DATE, OPEN, SENT_BACK
 from server.lab.validity import local_day
 from server.procedures.acts import Thing, note_act
 from server.records.queries.load_lots import lot_is_pulled, lot_of_code
-from server.records.queries.load_sheet import (
+from server.records.queries.load_papers import (
     load_instrument_fact,
     load_recipe_fact,
-    load_sheet_facts,
     load_standard_lot_fact,
 )
+from server.records.queries.load_sheet import load_sheet_facts
 from server.records.queries.loading import (
     newest_calibration,
     newest_recipe_version,

@@ -167,7 +167,6 @@ def _keep_evaluation(
         input_digest=evaluated.input_digest,
         snapshot=evaluated.snapshot,
         snapshot_digest=evaluated.snapshot_digest,
-        result=evaluated.result,
         made_at=now,
     )
     session.add(row)

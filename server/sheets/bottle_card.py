@@ -14,7 +14,7 @@ from server.lab.states import STANDING
 from server.metrology.rounding import rounded_pair
 from server.records.queries.list_certificates import KeptCertificate, certificates_of_lot
 from server.records.queries.list_shelf import BottleOnShelf
-from server.records.queries.load_sheet import load_laboratory_fact
+from server.records.queries.load_papers import load_laboratory_fact
 from server.sheets.look_up import at_temperature, read_celsius
 from server.sheets.parts.by_code import find_bottle
 from server.sheets.parts.doors import may_hold, may_release, need_shelf

@@ -18,7 +18,7 @@ from server.records.queries.list_stores import (
     calibrations_of,
     listed_instruments,
 )
-from server.records.queries.load_sheet import load_people
+from server.records.queries.load_papers import load_people
 from server.records.tables.stores import Instrument
 from server.sheets.parts.doors import may_hold, may_release, need_reader
 from server.sheets.parts.shelf_state import held_says

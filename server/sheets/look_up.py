@@ -12,7 +12,7 @@ from server.lab.refusal import Unacceptable
 from server.metrology.decimal_text import DecimalProblem, read_typed_decimal
 from server.metrology.quantity import Quantity, read_quantity
 from server.records.queries.list_shelf import LotOnShelf
-from server.records.queries.load_sheet import load_laboratory_fact, load_recipe_fact
+from server.records.queries.load_papers import load_laboratory_fact, load_recipe_fact
 from server.sheets.parts.by_code import find_bottle
 from server.sheets.parts.doors import need_shelf
 from server.sheets.parts.shelf_state import concentration_in_force, state_of_bottle

@@ -21,7 +21,7 @@ from server.records.queries.list_shelf import (
     lot_on_shelf,
 )
 from server.records.queries.list_stores import newest_recipes
-from server.records.queries.load_sheet import load_people
+from server.records.queries.load_papers import load_people
 from server.records.tables.lots import Lot, Pull
 from server.sheets.lots import LotPage, MakeUpPage
 from server.sheets.parts.by_code import find_lot

@@ -9,7 +9,7 @@ from server.lab.roles import Act, holders
 from server.lab.segregation import countersign_refusal
 from server.lab.sheet_facts import SheetFacts
 from server.records.queries.list_sheets import done_sheet_ids, waiting_sheet_ids
-from server.records.queries.load_many_sheets import load_many_sheet_facts
+from server.records.queries.load_sheet import load_many_sheet_facts
 from server.sheets.countersign import Queue, QueueLine
 from server.sheets.parts.doors import need_reader
 from server.sheets.parts.sheet_lines import sheet_title

@@ -11,7 +11,7 @@ from server.chemistry.substances import name_of
 from server.lab.actor import Actor
 from server.lab.states import BOTTLE_STATES, CHECK_DUE, IN_FORCE, may_be_used
 from server.records.queries.list_shelf import BottleOnShelf, bottles_on_shelf
-from server.records.queries.load_sheet import load_laboratory_fact
+from server.records.queries.load_papers import load_laboratory_fact
 from server.sheets.parts.by_code import as_code, near_bottles
 from server.sheets.parts.doors import need_shelf
 from server.sheets.parts.shelf_state import bottle_line, state_of_bottle

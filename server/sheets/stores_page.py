@@ -17,7 +17,7 @@ from server.lab.states import DUE_SOON, HELD, IN_DATE, LAPSED, due_state
 from server.records.queries.list_holds import standing_holds
 from server.records.queries.list_sheets import sheets_on_standard_lot
 from server.records.queries.list_stores import newest_recipes, recipe_versions, standard_lot_facts
-from server.records.queries.load_sheet import (
+from server.records.queries.load_papers import (
     load_laboratory_fact,
     load_people,
     load_standard_lot_fact,

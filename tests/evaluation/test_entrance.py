@@ -94,6 +94,11 @@ def broken(path, value):
         (("ratio",), "1e3", "ratio"),
         (("repeatability",), {"from": "replicates"}, "repeatability"),
         (("blank",), {"value": "20", "unit": "mL", "kind": "reagent"}, "replicates[0].burette"),
+        (
+            ("replicates", 0),
+            {"mass": "0.3888", "curve": {"volume_mL": ["0", "1"], "pH": ["4", "5"]}},
+            "replicates[0].curve",
+        ),
         (("standard", "substance"), "unobtainium", None),
     ],
 )

@@ -1,12 +1,16 @@
 """A small laboratory, set up through the procedures: who works there, and what a sheet needs."""
 
+import os
+import shutil
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from datetime import UTC, datetime
+from pathlib import Path
 from typing import Any
 from uuid import uuid4
 
 import pytest
+import sqlalchemy as sa
 
 from server.evaluation.from_sheet import EvaluatedSheet, evaluate_sheet
 from server.lab.actor import Actor, Proof
@@ -32,11 +36,13 @@ from server.procedures.stores import (
     write_recipe,
 )
 from server.records import trail
-from server.records.database import Database
+from server.records.database import Database, open_database, sqlite_url
 from server.records.queries.load_sheet import load_sheet_facts
 from server.records.tables.trail import TrailRow
 from server.records.transaction import Transactions
 
+#: The time at which the tests' clock stands at first.
+START = datetime(2026, 5, 4, 8, 30, tzinfo=UTC)
 ZONE = "Europe/Berlin"
 #: Who works here, by the word that the tests use, with the roles that each holds.
 PEOPLE = {
@@ -95,8 +101,8 @@ REPLICATES = (
     ("60.4066", "60.0000", "0.00", "19.91"),
 )
 SLOTS = ("container_and_standard", "container_less_standard", "burette_start", "burette_end")
-#: Fewer trials than a hand in runs; the simulation adds what it needs.
-TRIALS = 10_000
+#: No Monte Carlo: these tests are about acts; tests/journeys hands in with the simulation.
+TRIALS = 0
 
 
 def replicate_lines(number: int, readings: tuple[str, str, str, str]) -> list[tuple[int, str, str]]:
@@ -280,21 +286,79 @@ def set_up(transactions: Transactions, clock: Callable[[], datetime]) -> Laborat
     return lab
 
 
-@pytest.fixture
-def lab(transactions: Transactions, clock: Callable[[], datetime]) -> Iterator[Laboratory]:
-    """The small laboratory on each engine."""
-    return set_up(transactions, clock)
+def on_server(statement: str) -> None:
+    """Run a statement on the PostgreSQL server of the tests, outside any transaction."""
+    engine = sa.create_engine(address_of(None), isolation_level="AUTOCOMMIT")
+    with engine.connect() as connection:
+        connection.exec_driver_sql(statement)
+    engine.dispose()
+
+
+def address_of(name: str | None) -> str:
+    """Return the URL of a database on the PostgreSQL server of the tests."""
+    url = sa.make_url(os.environ["TITRANT_LEDGER_TEST_DATABASE_URL"])
+    url = url.set(drivername="postgresql+psycopg")
+    return (url.set(database=name) if name else url).render_as_string(hide_password=False)
+
+
+@pytest.fixture(scope="session")
+def lab_in_file(fresh_sqlite: Callable[[], Database]) -> tuple[Path, Laboratory]:
+    """The small laboratory in a SQLite file, to be copied."""
+    database = fresh_sqlite()
+    transactions = Transactions(database)
+    built = set_up(transactions, lambda: START)
+    with database.engine.connect() as connection:
+        connection.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)")
+    transactions.close()
+    return Path(str(database.url.database)), built
+
+
+@pytest.fixture(scope="session")
+def lab_on_server(request: pytest.FixtureRequest) -> Iterator[tuple[str, Laboratory]]:
+    """The small laboratory in a PostgreSQL database, to be copied."""
+    template = request.getfixturevalue("postgres_template")
+    name = f"lab_{uuid4().hex[:12]}"
+    on_server(f'CREATE DATABASE "{name}" TEMPLATE "{template}"')
+    transactions = Transactions(open_database(address_of(name)))
+    built = set_up(transactions, lambda: START)
+    transactions.close()
+    yield name, built
+    on_server(f'DROP DATABASE "{name}" WITH (FORCE)')
 
 
 @pytest.fixture
-def sqlite_lab(sqlite_transactions: Transactions, clock: Callable[[], datetime]) -> Laboratory:
+def sqlite_lab(lab_in_file: tuple[Path, Laboratory], tmp_path: Path, clock: Any) -> Any:
     """The small laboratory on SQLite alone, for rules that do not depend on the engine."""
-    return set_up(sqlite_transactions, clock)
+    source, built = lab_in_file
+    path = tmp_path / "laboratory.sqlite"
+    shutil.copy(source, path)
+    transactions = Transactions(open_database(sqlite_url(path)))
+    yield replace(built, transactions=transactions, clock=clock)
+    transactions.close()
+
+
+@pytest.fixture
+def postgres_lab(request: pytest.FixtureRequest, clock: Any) -> Any:
+    """The small laboratory on PostgreSQL alone."""
+    source, built = request.getfixturevalue("lab_on_server")
+    name = f"test_{uuid4().hex[:12]}"
+    on_server(f'CREATE DATABASE "{name}" TEMPLATE "{source}"')
+    transactions = Transactions(open_database(address_of(name)))
+    yield replace(built, transactions=transactions, clock=clock)
+    transactions.close()
+    on_server(f'DROP DATABASE "{name}" WITH (FORCE)')
+
+
+@pytest.fixture(params=["sqlite", pytest.param("postgres", marks=pytest.mark.postgres)])
+def lab(request: pytest.FixtureRequest) -> Laboratory:
+    """The small laboratory on each engine."""
+    found: Laboratory = request.getfixturevalue(f"{request.param}_lab")
+    return found
 
 
 @pytest.fixture(scope="module")
 def shared_lab(fresh_sqlite: Callable[[], Database]) -> Iterator[Laboratory]:
     """One small laboratory for all tests of a module that change nothing in it."""
     found = Transactions(fresh_sqlite())
-    yield set_up(found, lambda: datetime(2026, 5, 4, 8, 30, tzinfo=UTC))
+    yield set_up(found, lambda: START)
     found.close()

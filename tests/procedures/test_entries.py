@@ -45,9 +45,9 @@ def test_entry_text_is_kept_byte_by_byte_as_typed(lab, text):
     assert (kept.printed_name, kept.received_at) == ("Ida Mohnke", lab.clock())
 
 
-def test_entries_of_two_people_get_positions_without_gaps(lab):
-    first = lab.write(entry("burette_start", "0.00"), entry("burette_end", "18.64"))
-    second = lab.write(entry("container_and_standard", "60.5450"), who="second analyst")
+def test_entries_of_two_people_get_positions_without_gaps(sqlite_lab):
+    first = sqlite_lab.write(entry("burette_start", "0.00"), entry("burette_end", "18.64"))
+    second = sqlite_lab.write(entry("container_and_standard", "60.5450"), who="second analyst")
     assert [one.position for one in (*first, *second)] == [1, 2, 3]
     assert not any(one.repeated for one in (*first, *second))
 
@@ -101,9 +101,9 @@ def test_entries_none_or_too_many_are_refused(shared_lab):
     assert refusal(shared_lab, *many).field == "entries"
 
 
-def test_entries_one_bad_in_a_list_leaves_none(lab):
-    refusal(lab, entry("burette_start", "0.00"), entry("burette_end", "1.0"))
-    assert lab.facts().entries == ()
+def test_entries_one_bad_in_a_list_leaves_none(sqlite_lab):
+    refusal(sqlite_lab, entry("burette_start", "0.00"), entry("burette_end", "1.0"))
+    assert sqlite_lab.facts().entries == ()
 
 
 def test_entry_on_no_sheet_is_not_found(shared_lab):
@@ -153,23 +153,25 @@ def test_correction_keeps_all_four_values_with_who_when_and_why(lab):
     assert acts == ["began a bench sheet", "wrote entries", *["corrected entries"] * 3]
 
 
-def test_correction_without_reason_is_refused(lab):
-    lab.write(entry("burette_start", "0.00"), entry("burette_end", "19.64"))
-    stands = standing(lab.facts().entries)[END]
+def test_correction_without_reason_is_refused(sqlite_lab):
+    sqlite_lab.write(entry("burette_start", "0.00"), entry("burette_end", "19.64"))
+    stands = standing(sqlite_lab.facts().entries)[END]
     for reason in (None, "   "):
         odd = entry("burette_end", "18.64", strikes=stands.id, reason=reason)
-        assert refusal(lab, odd).field == "reason"
+        assert refusal(sqlite_lab, odd).field == "reason"
 
 
-def test_correction_of_another_row_is_refused(lab):
-    (start, _) = lab.write(entry("burette_start", "0.00"), entry("burette_end", "19.64"))
+def test_correction_of_another_row_is_refused(sqlite_lab):
+    (start, _) = sqlite_lab.write(entry("burette_start", "0.00"), entry("burette_end", "19.64"))
     odd = entry("burette_end", "18.64", strikes=start.id, reason="misread")
-    assert refusal(lab, odd).field == "strikes"
+    assert refusal(sqlite_lab, odd).field == "strikes"
 
 
-def test_row_written_already_shows_both_values(lab):
-    lab.write(entry("burette_start", "0.00"), entry("burette_end", "18.64"))
-    refused = refusal(lab, entry("burette_end", "18.46"), kind=SavedFirst, who="second analyst")
+def test_row_written_already_shows_both_values(sqlite_lab):
+    sqlite_lab.write(entry("burette_start", "0.00"), entry("burette_end", "18.64"))
+    refused = refusal(
+        sqlite_lab, entry("burette_end", "18.46"), kind=SavedFirst, who="second analyst"
+    )
     assert refused.shown["standing"]["text"] == "18.64"
     assert refused.shown["standing"]["by"] == "Ida Mohnke"
     assert refused.shown["yours"] == {"text": "18.46", "unit": None, "by": "Pavel Orrin"}
@@ -184,12 +186,12 @@ def test_row_struck_by_two_at_once_lets_the_first_win(lab):
     assert refused.shown["standing"]["text"] == "18.64"
 
 
-def test_row_struck_out_only_can_be_written_anew(lab):
-    (written,) = lab.write(entry("container_and_standard", "60.5450"))
-    lab.write(entry("container_and_standard", "", strikes=written.id, reason="wrong row"))
-    assert standing(lab.facts().entries) == {}
-    lab.write(entry("container_and_standard", "60.5451"))
-    assert [one.text for one in lab.facts().entries] == ["60.5450", "", "60.5451"]
+def test_row_struck_out_only_can_be_written_anew(sqlite_lab):
+    (written,) = sqlite_lab.write(entry("container_and_standard", "60.5450"))
+    sqlite_lab.write(entry("container_and_standard", "", strikes=written.id, reason="wrong row"))
+    assert standing(sqlite_lab.facts().entries) == {}
+    sqlite_lab.write(entry("container_and_standard", "60.5451"))
+    assert [one.text for one in sqlite_lab.facts().entries] == ["60.5450", "", "60.5451"]
 
 
 # idempotency: R087, R088
@@ -204,10 +206,10 @@ def test_entry_repeated_gets_its_first_answer_and_writes_nothing(lab):
     assert (lab.acts(), lab.facts().revision) == (trail, revision)
 
 
-def test_entry_repeated_in_a_list_with_new_ones_writes_the_new_ones(lab):
+def test_entry_repeated_in_a_list_with_new_ones_writes_the_new_ones(sqlite_lab):
     one, two = entry("burette_start", "0.00"), entry("burette_end", "18.64")
-    lab.write(one)
-    written = lab.write(one, two)
+    sqlite_lab.write(one)
+    written = sqlite_lab.write(one, two)
     assert [(w.position, w.repeated) for w in written] == [(1, True), (2, False)]
 
 
@@ -227,9 +229,9 @@ def test_entry_uuid_of_another_sheet_is_refused(lab):
     assert lab.facts(other).entries == ()
 
 
-def test_entry_uuid_twice_in_one_list_is_refused(lab):
+def test_entry_uuid_twice_in_one_list_is_refused(sqlite_lab):
     one = entry("burette_start", "0.00")
-    assert refusal(lab, one, one).field == "id"
+    assert refusal(sqlite_lab, one, one).field == "id"
 
 
 def test_entry_repeated_after_hand_in_still_gets_its_answer(lab):
@@ -258,7 +260,7 @@ def test_two_hundred_duplicates_at_once_leave_one_row_and_equal_answers(lab):
 
 def test_twenty_threads_write_positions_without_gaps(lab):
     remarks = [
-        [entry("remark", f"{replicate}.{n}", replicate=replicate, segment=n) for n in range(1, 6)]
+        [entry("remark", f"{replicate}.{n}", replicate=replicate, segment=n) for n in range(1, 4)]
         for replicate in range(1, 21)
     ]
 
@@ -267,9 +269,9 @@ def test_twenty_threads_write_positions_without_gaps(lab):
 
     with ThreadPoolExecutor(20) as pool:
         positions = [position for found in pool.map(write_all, remarks) for position in found]
-    assert sorted(positions) == list(range(1, 101))
-    assert [one.position for one in lab.facts().entries] == list(range(1, 101))
-    assert lab.facts().revision == 101
+    assert sorted(positions) == list(range(1, 61))
+    assert [one.position for one in lab.facts().entries] == list(range(1, 61))
+    assert lab.facts().revision == 61
     assert lab.chain().holds
 
 

@@ -123,7 +123,7 @@ def test_countersign_after_the_snapshot_was_tampered_with_no_signature_holds(own
 
     def tamper(session):
         row = session.scalar(sa.select(Evaluation).where(Evaluation.sheet_id == sheet_id))
-        row.snapshot = row.snapshot.replace('"trials":', '"Trials":')
+        row.snapshot = row.snapshot.replace('"reported":"0.1', '"reported":"0.2')
 
     own_demo.write(tamper)
     page = own_demo.read(open_countersign, sheet_id, who="ottilie")

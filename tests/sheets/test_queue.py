@@ -6,8 +6,7 @@ from datetime import timedelta
 import pytest
 
 from server.lab.refusal import NotSignedIn
-from server.records.queries.load_many_sheets import load_many_sheet_facts
-from server.records.queries.load_sheet import load_sheet_facts
+from server.records.queries.load_sheet import load_many_sheet_facts, load_sheet_facts
 from server.sheets.queue import open_queue
 
 

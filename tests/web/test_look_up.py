@@ -71,7 +71,9 @@ def test_plain_text_is_number_and_unit_on_one_line(visitor: Any, good: str) -> N
     assert re.fullmatch(r"0\.\d{4,5} mol/L\n", answer.text)
 
 
-def test_bottle_that_is_not_in_force_has_no_number_in_any_form(visitor: Any, out: list[str]) -> None:
+def test_bottle_that_is_not_in_force_has_no_number_in_any_form(
+    visitor: Any, out: list[str]
+) -> None:
     """R010: no number that no standing certificate carries, anywhere."""
     assert out
     for code in out:
@@ -182,7 +184,9 @@ def test_visitor_is_told_no_name_of_any_person(shared_web: Any, visitor: Any) ->
             assert name not in text, (path, name)
 
 
-def test_shelf_lists_bottles_in_force_to_a_visitor_with_links(shared_web: Any, visitor: Any) -> None:
+def test_shelf_lists_bottles_in_force_to_a_visitor_with_links(
+    shared_web: Any, visitor: Any
+) -> None:
     page = visitor.get("/").text
 
     for code in shared_web.demo.bottles_in_force:

@@ -164,6 +164,9 @@ def _estimates(terms: Sequence[Term]) -> dict[str, float]:
 
 def _replicate(record: BenchRecord, model: Model, index: int) -> ReplicateValue:
     one = record.replicates[index]
+    if one.curve is not None and one.excluded is None:
+        says = "This calculation takes no volume from a curve: state the volume at its end point."
+        raise RecordProblem(f"replicates[{index}].curve", says, '"delivered": "18.64"')
     portion = portion_of(record, one)
     unweighed = record.route == "weighed" and portion.mass_g is None
     if portion.read_mL is None or unweighed:

@@ -68,7 +68,7 @@ class Entry(Table):
 
 
 class Evaluation(Table):
-    """One evaluation of a sheet: the snapshot that replays it, and its result."""
+    """One evaluation of a sheet: the snapshot that holds its result and replays it."""
 
     __tablename__ = "evaluation"
     id: Mapped[Uuid] = mapped_column(primary_key=True)
@@ -77,7 +77,6 @@ class Evaluation(Table):
     input_digest: Mapped[str] = mapped_column(Text)
     snapshot: Mapped[str] = mapped_column(Text)
     snapshot_digest: Mapped[str] = mapped_column(Text)
-    result: Mapped[Document]
     made_at: Mapped[When]
 
 

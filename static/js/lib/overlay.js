@@ -63,7 +63,7 @@ function openSegment(groups, replicate, segment) {
     const first = group.rows.find((row) => row.slot === slot && row.segment === 1);
     const there = group.rows.some((row) => row.slot === slot && row.segment === segment);
     if (!first || there) continue;
-    const label = `${first.label}, after refill${segment > 2 ? ` ${segment - 1}` : ""}`;
+    const label = `${first.label}, filling ${segment}`;
     const row = { ...first, segment, label, value: null, struck: [], where: null, local: true };
     group.rows.splice(placeAfterBurette(group.rows), 0, { ...row, required: true, refused: null });
   }

@@ -20,12 +20,19 @@ export function networkSays({ waiting, refused, state, detail }) {
   return [says ?? kept, asks].filter(Boolean).join(" ");
 }
 
-/** The parts of the one-line strip, most needed first. */
+/** How many replicates are still wanted, in few words. */
+export function toGo(margin) {
+  return margin.to_go > 0 ? `${margin.to_go} to go` : "all written";
+}
+
+/** The parts of the one-line strip, most needed first: those that find no room are left out. */
 export function lineParts(margin) {
-  const parts = margin.replicates
-    .filter((one) => one.value !== null && !one.excluded)
-    .map((one) => ({ term: one.label, value: one.value }));
-  if (margin.mean) parts.push({ term: "mean", value: margin.mean });
-  if (margin.spread) parts.push({ term: "spread", value: margin.spread });
-  return parts;
+  const part = (term, value) => (value ? [{ term, value }] : []);
+  const last = margin.replicates.filter((one) => one.value !== null && !one.excluded).reverse();
+  return [
+    ...part("mean", margin.mean),
+    ...part("spread", margin.spread),
+    { term: "", value: toGo(margin) },
+    ...last.map((one) => ({ term: `no. ${one.label}`, value: one.value })),
+  ];
 }

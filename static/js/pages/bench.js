@@ -140,8 +140,20 @@ function say(words) {
   spot("said").textContent = words;
 }
 
+/** The lit row whole between the top and the pad; a row taller than that shows its beginning. */
 function showLit() {
-  document.querySelector(".row.next")?.scrollIntoView({ block: "center" });
+  const row = document.querySelector(".row.next");
+  if (!row) return;
+  const room = (place.clientHeight < place.scrollHeight ? place.clientHeight : window.innerHeight) - dock();
+  row.scrollIntoView({ block: row.offsetHeight > room - 32 ? "start" : "center" });
+}
+
+/** The height of strip and pad where they are docked at the foot; told to the style sheet. */
+function dock() {
+  const side = spot("pad").parentElement.getBoundingClientRect();
+  const height = side.width >= document.documentElement.clientWidth ? Math.ceil(side.height) : 0;
+  document.documentElement.style.setProperty("--dock", `${height}px`);
+  return height;
 }
 
 function taken(newSheet) {
@@ -354,6 +366,7 @@ document.addEventListener("visibilitychange", () => document.hidden || sender.fl
 window.addEventListener("storage", () => draw());
 setInterval(() => store.waiting().length > 0 && sender.flush(), LOOK_AGAIN_MS);
 
+new ResizeObserver(dock).observe(spot("pad").parentElement);
 place.classList.add("is-drawn");
 draw({ focus: true });
 showLit();

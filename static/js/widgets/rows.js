@@ -34,6 +34,10 @@ function rowOf(row, view, acts) {
   return row.value ? writtenRow(row, view, acts) : emptyRow(row, view, acts);
 }
 
+function wordy(row) {
+  return row.kind === "number" ? "" : " is-words";
+}
+
 function writtenRow(row, view, acts) {
   const says = `${row.value.text}${row.unit ? ` ${row.unit}` : ""}`;
   const shown = el("span", { class: row.kind === "number" ? "reading" : "reading words" }, row.value.text);
@@ -52,7 +56,7 @@ function writtenRow(row, view, acts) {
     : el("span", { class: "value" }, shown);
   return el(
     "li",
-    { class: "row written", "data-key": keyOf(row) },
+    { class: `row written${wordy(row)}`, "data-key": keyOf(row) },
     el("span", { class: "label" }, row.label),
     el("span", { class: "values" }, struckOf(row), value),
     el("span", { class: "unit" }, row.unit === "Cel" ? "°C" : (row.unit ?? "")),
@@ -79,7 +83,7 @@ function emptyRow(row, view, acts) {
   const state = row.refused ? "not taken" : row.required ? "" : "if needed";
   return el(
     "li",
-    { class: `row later${row.refused ? " is-refused" : ""}`, "data-key": keyOf(row) },
+    { class: `row later${wordy(row)}${row.refused ? " is-refused" : ""}`, "data-key": keyOf(row) },
     el("span", { class: "label" }, row.label),
     el("span", { class: "values" }, struckOf(row), spot),
     el("span", { class: "unit" }, row.unit === "Cel" ? "°C" : (row.unit ?? "")),

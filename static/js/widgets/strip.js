@@ -22,18 +22,32 @@ export function cardOf(margin, network) {
 
 /** The strip in one line that opens to the card, for narrow pages. */
 export function lineOf(margin, network, { open, onToggle }) {
-  const parts = lineParts(margin).map((part) =>
-    el("span", { class: "part" }, el("span", { class: "soft" }, `${part.term} `), el("span", { class: "digits" }, part.value)),
-  );
-  const says = el("span", { class: "part to-go" }, margin.says || "Nothing weighed yet.");
   const line = el(
     "details",
     { class: "line-strip", open },
-    el("summary", {}, el("span", { class: "line" }, networkSays(network) ? el("span", { class: "part unsent" }, short(network)) : null, parts, says)),
+    el("summary", {}, el("span", { class: "line" }, unsentOf(network), verdictOf(margin.finding), lineParts(margin).map(partOf))),
     cardOf(margin, network),
   );
   line.addEventListener("toggle", () => onToggle(line.open));
   return line;
+}
+
+function partOf({ term, value }) {
+  const shown = el("span", { class: term ? "digits" : "to-go" }, value);
+  return el("span", { class: "part" }, term ? el("span", { class: "soft" }, `${term} `) : null, shown);
+}
+
+function unsentOf(network) {
+  return networkSays(network) ? el("span", { class: "part unsent" }, short(network)) : null;
+}
+
+function verdictOf(finding) {
+  if (!finding) return null;
+  return el("span", { class: `part ${finding.verdict}` }, markOf(finding.verdict), el("b", {}, capital(finding.verdict)));
+}
+
+function capital(word) {
+  return `${word[0].toUpperCase()}${word.slice(1)}`;
 }
 
 function short({ waiting, refused, state }) {
@@ -54,7 +68,7 @@ function findingOf(finding) {
     "p",
     { class: `finding ${finding.verdict}` },
     markOf(finding.verdict),
-    el("span", {}, el("b", {}, `${finding.verdict[0].toUpperCase()}${finding.verdict.slice(1)} `), finding.says),
+    el("span", {}, el("b", {}, `${capital(finding.verdict)} `), finding.says),
   );
 }
 
