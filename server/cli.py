@@ -4,7 +4,7 @@ import argparse
 import json
 import os
 import sys
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
@@ -163,16 +163,8 @@ def _selfcheck(given: argparse.Namespace, _: Verbs) -> int:
     from server.evaluation.published import checks  # noqa: PLC0415 - numpy waits
 
     found = checks()
-    heads = ("source", "what", "published", "computed", "agreement", "")
-    rows = [heads] + [
-        (one.source, one.what, one.published, one.computed, one.agreement,
-         "holds" if one.holds else "FAILS")
-        for one in found
-    ]  # fmt: skip
-    widths = [max(len(row[i]) for row in rows) for i in range(len(heads))]
-    for row in rows:
-        cells = (cell.ljust(width) for cell, width in zip(row, widths, strict=True))
-        _say("  ".join(cells).rstrip())
+    for line in _table(found):
+        _say(line)
     failed = sum(1 for one in found if not one.holds)
     says = f"{len(found) - failed} of {len(found)} published cases hold."
     _say("", says)
@@ -184,6 +176,31 @@ def _selfcheck(given: argparse.Namespace, _: Verbs) -> int:
         given.pdf.write_bytes(pdf)
         _say(f"Written to {given.pdf}.")
     return NOT_SO if failed or not found else GOOD
+
+
+def _table(found: Sequence[Any]) -> Iterator[str]:
+    """Return the lines of the table, the cases of one source under its name."""
+    heads = ("source and what", "published", "computed", "agreement", "")
+    rows = [
+        (f"  {one.what}", one.published, one.computed, one.agreement, _verdict(one.holds))
+        for one in found
+    ]
+    widths = [max(len(row[i]) for row in (heads, *rows)) for i in range(len(heads))]
+    lines = [
+        "  ".join(cell.ljust(width) for cell, width in zip(row, widths, strict=True)).rstrip()
+        for row in (heads, *rows)
+    ]
+    yield lines[0]
+    source = None
+    for one, line in zip(found, lines[1:], strict=True):
+        if one.source != source:
+            source = one.source
+            yield source
+        yield line
+
+
+def _verdict(holds: bool) -> str:
+    return "holds" if holds else "FAILS"
 
 
 def _release() -> str:

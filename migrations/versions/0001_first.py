@@ -68,6 +68,62 @@ RULES = (
         "NEW.confirmed_by = NEW.proposed_by",
         "nobody confirms the own pull",
     ),
+    (
+        "hold_second_person_at_once",
+        "hold",
+        "INSERT",
+        "NEW.released_by = NEW.held_by",
+        "nobody releases the own hold",
+    ),
+    (
+        "pull_second_person_at_once",
+        "pull",
+        "INSERT",
+        "NEW.confirmed_by = NEW.proposed_by",
+        "nobody confirms the own pull",
+    ),
+    # the first person is not exchanged to get round the second
+    (
+        "hold_first_person",
+        "hold",
+        "UPDATE",
+        "NEW.held_by <> OLD.held_by",
+        "who held a thing stays",
+    ),
+    (
+        "pull_first_person",
+        "pull",
+        "UPDATE",
+        "NEW.proposed_by <> OLD.proposed_by",
+        "who proposed a pull stays",
+    ),
+    (
+        "lot_maker",
+        "lot",
+        "UPDATE",
+        "NEW.made_by <> OLD.made_by",
+        "who made up a lot stays",
+    ),
+    (
+        "sheet_lot",
+        "sheet",
+        "UPDATE",
+        "NEW.lot_id <> OLD.lot_id",
+        "a sheet stays with its lot",
+    ),
+    (
+        "certificate_second_signature",
+        "certificate",
+        "INSERT",
+        """
+        NOT EXISTS (
+            SELECT 1 FROM signature WHERE signature.sheet_id = NEW.sheet_id
+            AND signature.evaluation_id = NEW.evaluation_id
+            AND signature.meaning = 'countersigned'
+        )
+        """,
+        "a certificate rests on a second signature",
+    ),
 )
 
 

@@ -148,8 +148,13 @@ def analysed(  # noqa: PLR0913 - a curve's circumstances, all by name
         method: _asked(method, lambda: _by_slopes(method, clean, main)) for method in METHODS[:3]
     }
     gran, refused = _gran_lines(
-        curve, clean, near=near, flask_volume_mL=flask_volume_mL, system=known,
-        inner_mL=_inner(clean, other, known, near), temperature_C=temperature_C,
+        curve,
+        clean,
+        near=near,
+        flask_volume_mL=flask_volume_mL,
+        system=known,
+        inner_mL=_inner(clean, other, known, near),
+        temperature_C=temperature_C,
     )
     outcomes |= {line.end_point.method: line.end_point for line in gran}
     outcomes |= {one.method: one for one in refused}
@@ -157,8 +162,14 @@ def analysed(  # noqa: PLR0913 - a curve's circumstances, all by name
     fit = uncertainty = lag = None
     try:
         fit, uncertainty, lag = _fitted(
-            curve, clean, near=near, system=known, flask_volume_mL=flask_volume_mL,
-            amount_mmol=amount_mmol, temperature_C=temperature_C, given=given,
+            curve,
+            clean,
+            near=near,
+            system=known,
+            flask_volume_mL=flask_volume_mL,
+            amount_mmol=amount_mmol,
+            temperature_C=temperature_C,
+            given=given,
         )
     except (CannotTell, FitProblem, TemperatureProblem) as problem:
         outcomes["model fit"] = NoEndPoint("model fit", str(problem))
@@ -257,8 +268,12 @@ def _gran_lines(  # noqa: PLR0913 - a curve's circumstances
         try:
             lines.append(
                 gran_line(
-                    clean, pH, side=side, near_mL=near,
-                    flask_volume_mL=flask_volume_mL, inner_mL=inner_mL,
+                    clean,
+                    pH,
+                    side=side,
+                    near_mL=near,
+                    flask_volume_mL=flask_volume_mL,
+                    inner_mL=inner_mL,
                 )
             )
         except CannotTell as problem:

@@ -50,7 +50,7 @@ def of_bubbles(curve: TitrationCurve, away: tuple[int, ...]) -> CurveFinding:
 def of_spacing(clean: CleanCurve, jump: int) -> CurveFinding:
     """Return whether the points lie close enough around the jump."""
     step = float(clean.V[jump + 1] - clean.V[jump])
-    share = 100 * step / float(clean.V[jump])if clean.V[jump] > 0 else 100.0
+    share = 100 * step / float(clean.V[jump]) if clean.V[jump] > 0 else 100.0
     limit = 0.5
     fine = share <= limit
     says = f"At the jump the points lie {step:.3g} mL apart, {share:.2g} % of the volume"

@@ -9,14 +9,16 @@ from server.curves.points import Floats
 
 _ENOUGH, _FAR = 4.0, 10.0
 """A residual within 4 standard deviations has full weight; at 10 a point weighs nothing."""
-_CONTRADICTS = 1.2816
-"""Quantile of the normal distribution: at 10 % the jump contradicts that volumes are exact."""
-_STANDS = 0.1
-"""A change below this fraction leaves the parameters where they are, as far as shows."""
+_STANDS = 0.2
+"""A variance that changes by less than this leaves the parameters where they are, as far as shows."""
 _LEAST_READING_U = 5e-4
 _LEAST_VOLUME_U = 2e-6
-_ALLOWED_VOLUME_U = 3e-3
-"""Volumes that scatter by this (mL) do not make a point stand far off while they count as exact."""
+_DRAWN_TO, _DRAWN_BY = 4e-4, 2.0
+"""Towards which scatter of a volume (mL) the weights' is drawn, and by how many points' worth."""
+_WIDENED = 4.0
+"""An estimate with this many degrees of freedom or fewer counts double in u, one with many once."""
+_MEDIAN_OF_CHI2 = 0.4549
+"""Median of chi-squared with one degree of freedom."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,21 +57,20 @@ class Given:
 class ScatterEstimate:
     """Standard deviations of reading and volume and the trust in each point, renewed each round.
 
-    Volumes are taken as exact until the points of the jump contradict it; from then on both
-    variances are those that make the squared residuals, over one less leverage, most likely (one
-    step of Fisher scoring a round). Points that stand far off have no say.
+    Where they are not given, the variances are those that make the squared residuals, over one
+    less leverage, most likely (one step of Fisher scoring a round). Only the few points of the
+    jump tell how volumes scatter; so the weights rest on that estimate drawn towards a small
+    value, while u rests on the estimate itself. Points that stand far off have no say.
     """
 
     def __init__(self, given: Given, points: int) -> None:
         self._given = given
         self._known = np.ones(points) if given.trust is None else given.trust
-        self._some_known = given.trust is not None
         self.trust = self._known
         self.reading_u = given.reading_u or max(given.reading_guess, _LEAST_READING_U)
         self.volume_u = given.volume_guess if given.volume_u is None else given.volume_u
-        self._stage = "given" if given.volume_u is not None else "guess"
-        self.volume_dof = np.inf
-        """Degrees of freedom of the volumes' scatter where it was learnt."""
+        self.volume_seen = self.volume_u**2
+        """The volumes' variance (mL2) as the residuals alone have it, widened for their fewness."""
 
     def variance(self, steep2: Floats) -> Floats:
         """Return the effective variance in mL2; ``steep2`` is (dV/d(reading))^2."""
@@ -79,33 +80,19 @@ class ScatterEstimate:
         """Renew both standard deviations and the trust; tell whether they stand as they were."""
         reading_u, volume_u = self.reading_u, self.volume_u
         freed = left * left / np.maximum(1 - leverage, 0.05)
-        if self._stage == "exact":
-            variance = variance + _ALLOWED_VOLUME_U**2
-        distance2 = freed / variance
-        middle = distance2.size // 2
-        usual2 = max(1.0, float(np.partition(distance2, middle)[middle]) / 0.4549)
-        use = self._trusted(distance2, usual2)
-        if self._stage in ("guess", "learnt"):
-            self._score_both(freed, steep2, variance, use)
-        elif self._given.reading_u is None:
-            self._score_reading(freed, steep2, variance, use)
-        if self._stage == "guess":
-            self._stage, self.volume_u = "exact", _LEAST_VOLUME_U
-            self.volume_dof = np.inf
-            return False
-        if self._stage == "exact" and self._contradicted(left, steep2, leverage, use):
-            self._stage, self.volume_u = "learnt", self._given.volume_guess
-            return False
-        least = float(variance.min())
-        return (
-            abs(self.reading_u - reading_u) <= _STANDS * reading_u
-            and abs(self.volume_u**2 - volume_u**2) <= _STANDS * least
-        )
+        use = self._trusted(freed / variance)
+        if self._given.reading_u is None or self._given.volume_u is None:
+            self._score(freed, steep2, variance, use)
+        return abs(self.reading_u - reading_u) <= _STANDS * reading_u and abs(
+            self.volume_u**2 - volume_u**2
+        ) <= _STANDS * float(variance.min())
 
-    def _trusted(self, distance2: Floats, usual2: float) -> Floats | None:
+    def _trusted(self, distance2: Floats) -> Floats | None:
         """Lower the trust in points that stand far off; return which to learn from, None: all."""
+        middle = distance2.size // 2
+        usual2 = max(1.0, float(np.partition(distance2, middle)[middle]) / _MEDIAN_OF_CHI2)
         self.trust = self._known
-        use = self._known == 1 if self._some_known else None
+        use = None if self._given.trust is None else self._known == 1
         if float(distance2.max()) > _ENOUGH**2 * usual2:
             far = np.sqrt(distance2 / usual2)
             near = far <= _ENOUGH
@@ -114,52 +101,27 @@ class ScatterEstimate:
             use = near if use is None else near & use
         return use
 
-    def _contradicted(
-        self, left: Floats, steep2: Floats, leverage: Floats, use: Floats | None
-    ) -> bool:
-        """Tell whether the residuals at the jump are larger than the readings' scatter explains.
-
-        A chi-squared test at 10 % over the points whose reading would tell the volume to 3 µL.
-        """
-        expected = steep2 * self.reading_u**2
-        steep = expected < _ALLOWED_VOLUME_U**2
-        if use is not None:
-            steep &= self._known > 0
-        free = float((1 - leverage[steep]).sum())
-        if free < 0.5:
-            return False
-        chi2 = float((left[steep] ** 2 / expected[steep]).clip(max=25.0).sum())
-        ninth = 2 / (9 * free)
-        return chi2 > free * (1 - ninth + _CONTRADICTS * ninth**0.5) ** 3
-
-    def _score_reading(
-        self, freed: Floats, steep2: Floats, variance: Floats, use: Floats | None
-    ) -> None:
-        """Learn the readings' scatter alone, away from the jump."""
-        share = steep2 / (variance * variance)
-        if use is not None:
-            share *= use
-        reading = float((freed - self.volume_u**2) @ share) / float(steep2 @ share)
-        self._move_reading(reading)
-
-    def _score_both(
-        self, freed: Floats, steep2: Floats, variance: Floats, use: Floats | None
-    ) -> None:
+    def _score(self, freed: Floats, steep2: Floats, variance: Floats, use: Floats | None) -> None:
         """Take one step of Fisher scoring for the two variances."""
         share = 1 / (variance * variance)
         if use is not None:
             share *= use
         slanted = steep2 * share
-        aa, ab, bb = float(steep2 @ slanted), float(slanted.sum()), float(share.sum())
-        a, b = float(freed @ slanted), float(freed @ share)
-        determinant = aa * bb - ab * ab
-        volume = (b * aa - a * ab) / determinant if determinant > 0 else 0.0
-        volume = min(max(volume, self.volume_u**2 / 16), self.volume_u**2 * 16)
-        self.volume_u = max(volume, _LEAST_VOLUME_U**2) ** 0.5
+        aa, ab, a = float(steep2 @ slanted), float(slanted.sum()), float(freed @ slanted)
+        if self._given.volume_u is None:
+            bb, b = float(share.sum()), float(freed @ share)
+            drawn = _DRAWN_BY / self.volume_u**4
+            volume = _ratio((b + drawn * _DRAWN_TO**2) * aa - a * ab, aa * (bb + drawn) - ab * ab)
+            seen = max(_ratio(b * aa - a * ab, aa * bb - ab * ab), 0.0)
+            # one over half the relative variance of the estimate: its degrees of freedom
+            dof = seen * seen * (bb - ab * ab / aa)
+            self.volume_seen = seen * (1 + min(1.0, _WIDENED / max(dof, 1e-9)))
+            volume = min(max(volume, self.volume_u**2 / 100), self.volume_u**2 * 16)
+            self.volume_u = max(volume, _LEAST_VOLUME_U**2) ** 0.5
         if self._given.reading_u is None:
-            self._move_reading((a - ab * self.volume_u**2) / aa)
-        self.volume_dof = self.volume_u**4 * determinant / aa
+            reading = max((a - ab * self.volume_u**2) / aa, _LEAST_READING_U**2) ** 0.5
+            self.reading_u = min(max(reading, self.reading_u / 4), self.reading_u * 4)
 
-    def _move_reading(self, reading2: float) -> None:
-        reading = max(reading2, _LEAST_READING_U**2) ** 0.5
-        self.reading_u = min(max(reading, self.reading_u / 4), self.reading_u * 4)
+
+def _ratio(over: float, under: float) -> float:
+    return over / under if under > 0 else 0.0

@@ -17,8 +17,6 @@ _FLASK_VOLUME_U = 0.02
 """u of the volume in the flask as a fraction: measuring cylinder and rinsing."""
 _TEMPERATURE_U_K = 0.5
 _PKW_PER_K = 0.033
-_LEAST_DOF = 4.0
-"""A learnt scatter of the volumes enlarges u by dof/(dof - 2), the variance of the scaled t."""
 _OTHER_DAVIES_SLOPE = 0.1
 """Davies' coefficient of the linear term was 0.2 in 1938 and 0.3 in 1962: the difference."""
 
@@ -73,12 +71,9 @@ def end_point_uncertainty(
     trusted = fit.trust > 0.5
     residuals = fit.standardized[trusted]
     free = max(int(trusted.sum()) - len(fit.names), 1)
-    chi2 = float(residuals @ residuals) / free
+    chi2 = float(residuals @ residuals) / free if fit.scatter_given else 1.0
     correlation = _correlation_factor(residuals)
     scale = max(1.0, chi2) * correlation
-    if np.isfinite(fit.volume_dof):
-        dof = max(fit.volume_dof, _LEAST_DOF)
-        scale *= dof / (dof - 2)
     fitted = float(np.sqrt(scale * fit.data_covariance[0, 0]))
     parts = (*_priors(fit), *_moved(fit), ("weights", _other_weights(fit)), *others)
     model = float(np.sqrt(sum(one * one for _, one in parts)))

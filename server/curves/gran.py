@@ -89,7 +89,11 @@ def _before(  # noqa: PLR0913 - one curve's circumstances
     if flask_volume_mL is None or inner_mL:
         return weak
     strong = _named(
-        clean, picked, (flask_volume_mL + V) * powers, method, "(V0 + V)·10^±pH, strong in the flask"
+        clean,
+        picked,
+        (flask_volume_mL + V) * powers,
+        method,
+        "(V0 + V)·10^±pH, strong in the flask",
     )
     return min(weak, strong, key=lambda one: _bend(clean, one))
 

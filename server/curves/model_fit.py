@@ -61,7 +61,8 @@ class ModelFit:
     ln_gamma: Floats
     reading_u: float
     volume_u: float
-    volume_dof: float
+    volume_seen_u: float
+    scatter_given: bool
     rounds: int
     chemistry: Chemistry
 
@@ -77,8 +78,9 @@ class ModelFit:
     @property
     def data_covariance(self) -> Floats:
         """The part of the covariance that comes from the scatter of the points alone."""
-        information = (self.rows * self.weights) @ self.rows.T
-        return np.asarray(self.covariance @ information @ self.covariance)
+        scatter2 = np.square(self.per_reading * self.reading_u) + self.volume_seen_u**2
+        pulls = self.covariance @ (self.rows * self.weights)
+        return np.asarray((pulls * scatter2 * (self.trust > 0)) @ pulls.T)
 
 
 class _Rounds:
@@ -224,7 +226,8 @@ def fit_model(
         ln_gamma=ln_gamma,
         reading_u=scatter.reading_u,
         volume_u=scatter.volume_u,
-        volume_dof=float(scatter.volume_dof),
+        scatter_given=given.reading_u is not None and given.volume_u is not None,
+        volume_seen_u=float(scatter.volume_seen) ** 0.5,
         rounds=count,
         chemistry=chemistry,
     )

@@ -61,5 +61,5 @@ def gravest(verdicts: list[Verdict]) -> Verdict:
     """Return the gravest of verdicts; *holds* where there is none."""
     for one in ("fails", "look"):
         if one in verdicts:
-            return one  # type: ignore[return-value]
+            return one
     return "holds"

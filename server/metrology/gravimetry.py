@@ -41,7 +41,7 @@ class Air:
 
 @dataclass(frozen=True, slots=True)
 class WaterWeighing:
-    """One weighing of water: net g as corrected, °C of the water, the air, minutes it stood open."""
+    """One weighing of water: net g as corrected, °C of the water, the air, minutes in the open."""
 
     net_g: float
     water_C: float
@@ -72,7 +72,7 @@ class WeighedVolume:
 
 @dataclass(frozen=True, slots=True)
 class BudgetLine:
-    """One input of the mean's budget: u in its own unit, |c·u| in mL, its share of u² in percent."""
+    """One input of the mean's budget: u in its unit, |c·u| in mL, its share of u² in percent."""
 
     name: str
     source: str

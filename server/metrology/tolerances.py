@@ -44,10 +44,10 @@ class Tolerance:
     caution: str
 
     @property
-    def words(self) -> str:
-        """The tolerance as one would name it."""
+    def row(self) -> str:
+        """The row as one would name it."""
         grade = f" class {self.grade}" if self.grade else ""
-        return f"{self.standard}{grade}, {self.row_mL} mL: ± {self.systematic_mL} mL"
+        return f"{self.standard}{grade}, {self.row_mL} mL"
 
 
 def tolerance(

@@ -27,6 +27,7 @@ from server.records.queries.load_lots import (
     lot_of_code,
     open_pull,
 )
+from server.records.queries.loading import next_number
 from server.records.tables.lots import Bottle, Lot, Pull
 
 MOST_BOTTLES = 50
@@ -140,7 +141,7 @@ def fill_bottles(
 ) -> tuple[str, ...]:
     """Fill bottles from a lot; return their codes in order."""
     actor.need(Act.BOTTLE)
-    lot = _lot(session, command.lot_code)
+    lot = _lot(session, command.lot_code, lock=True)
     _refuse_pulled(session, lot)
     if not 1 <= command.count <= MOST_BOTTLES:
         says = f"count must be from 1 to {MOST_BOTTLES}."
@@ -243,11 +244,11 @@ def _lot_name(session: Session, command: MakeUpLot, proposed: str) -> str:
         if lot_by_name(session, name) is not None:
             raise Unacceptable(f"There is a lot “{name}” already.", field="name", example=proposed)
         return name
-    name, n = proposed, 1
-    while lot_by_name(session, name) is not None:
-        n += 1
-        name = f"{proposed} ({n})"
-    return name
+    while True:
+        n = next_number(session, f"lot named {proposed}")
+        name = proposed if n == 1 else f"{proposed} ({n})"
+        if lot_by_name(session, name) is None:
+            return name
 
 
 def _free_code(session: Session, source: Random | None) -> str:

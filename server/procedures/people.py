@@ -16,7 +16,7 @@ from server.lab.roles import Act, Role
 from server.procedures.acts import Thing, note_act
 from server.procedures.proofs import need_proof
 from server.records.queries.load_sign_ins import end_sign_ins
-from server.records.queries.loading import other_stewards, person_by_name
+from server.records.queries.loading import laboratory_row, other_stewards, person_by_name
 from server.records.tables.people import Person
 
 
@@ -155,6 +155,8 @@ def change_password(
 
 
 def _need_another_steward(session: Session, person: Person) -> None:
+    # two stewards who close each other at once wait for one another here
+    session.refresh(laboratory_row(session), with_for_update=True)
     if not other_stewards(session, person.id):
         raise NotAllowed("This is the last steward: make another one first.", field="roles")
 

@@ -60,6 +60,9 @@ class Guards:
             response: Response = await run_in_threadpool(refuse, request, refusal)
             await response(scope, receive, send)
             return
+        if scope["method"] == "HEAD":
+            # answered as a GET; the server below sends no body for it
+            scope = {**scope, "method": "GET"}
         await self._app(scope, _counted(receive), send)
 
 

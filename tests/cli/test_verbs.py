@@ -135,7 +135,7 @@ def test_selfcheck_prints_every_case_and_writes_it_as_a_pdf(tmp_path: Path) -> N
     head = done.stdout.splitlines()[0]
     for word in ("source", "published", "computed", "agreement"):
         assert word in head
-    for source in ("QUAM", "GUM", "JCGM 101", "CIPM"):
+    for source in ("QUAM:2012", "JCGM 100", "JCGM 101", "CIPM-2007", "CIAAW"):
         assert source in done.stdout
     counted = re.search(r"(\d+) of (\d+) published cases hold", done.stdout)
     assert counted is not None

@@ -13,7 +13,10 @@ from fastapi import FastAPI
 from fastapi.testclient import TestClient
 
 from server.app import build_app
+from server.credentials.passwords import hash_password
 from server.demo.laboratory import DemoSummary, fill_demo
+from server.lab.actor import Actor
+from server.procedures.people import AddPerson, add_person
 from server.records.database import open_database, sqlite_url
 from server.records.transaction import Transactions
 from server.settings import Settings
@@ -21,6 +24,14 @@ from server.settings import Settings
 NOW = datetime(2026, 5, 4, 8, 30, tzinfo=UTC)
 SETUP_CODE = "7TESTED7"
 MORE_PEOPLE = {"rosa": ["reader"], "cleo": ["countersigner"], "tove": ["analyst", "countersigner"]}
+STEWARD = frozenset({"steward"})
+ONE_OF_EACH = {
+    "analyst": "imke",
+    "countersigner": "cleo",
+    "keeper": "jonas",
+    "steward": "marisol",
+    "reader": "rosa",
+}
 
 
 @dataclass
@@ -32,13 +43,7 @@ class Web:
     passwords: dict[str, str]
     clock: Any
     clients: list[TestClient] = field(default_factory=list)
-    roles = {
-        "analyst": "imke",
-        "countersigner": "cleo",
-        "keeper": "jonas",
-        "steward": "marisol",
-        "reader": "rosa",
-    }
+    roles: dict[str, str] = field(default_factory=lambda: dict(ONE_OF_EACH))
 
     def visitor(self) -> TestClient:
         """A browser that is not signed in."""
@@ -86,11 +91,27 @@ def demo_file(
     """A SQLite file with the demonstration laboratory, made once."""
     transactions = Transactions(fresh_sqlite())
     summary = fill_demo(transactions, now=NOW, zone="Europe/Zurich", progress=lambda _: None)
+    for name, roles in MORE_PEOPLE.items():
+        _add(transactions, name, roles)
     path = tmp_path_factory.mktemp("demo") / "ledger.sqlite"
     with transactions.database.engine.connect() as connection:
         connection.connection.execute("VACUUM INTO ?", (str(path),))
     transactions.close()
     return path, summary
+
+
+def _words_of(name: str) -> str:
+    return f"the words of {name}"
+
+
+def _add(transactions: Transactions, name: str, roles: list[str]) -> None:
+    """Add somebody with roles that nobody of the demonstration holds alone."""
+    steward = Actor("00000000-0000-4000-8000-000000000000", "Nobody", "N", STEWARD, "UTC")
+    command = AddPerson(name, f"{name.title()} Ambler", tuple(roles), _words_of(name))
+    hashed = hash_password(command.password)
+    transactions.write(
+        lambda session: add_person(session, command, password_hash=hashed, actor=steward, now=NOW)
+    )
 
 
 @pytest.fixture(scope="module")
@@ -109,18 +130,8 @@ def start_web(
         transactions = Transactions(open_database(settings.database_url))
         app = build_app(settings, transactions=transactions, clock=clock, setup_code=SETUP_CODE)
         passwords = {one.sign_in_name: one.password for one in summary.people}
+        passwords |= {name: _words_of(name) for name in MORE_PEOPLE}
         web = Web(app, summary, passwords, clock)
-        steward = web.client("marisol")
-        for name, roles in MORE_PEOPLE.items():
-            password = f"the words of {name}"
-            body = {
-                "sign_in_name": name,
-                "printed_name": f"{name.title()} Ambler",
-                "roles": roles,
-                "password": password,
-            }
-            assert steward.post("/api/people", body).status_code == 201
-            web.passwords[name] = password
         started.append(web)
         return web
 
@@ -149,5 +160,5 @@ def web(start_web: Callable[[Any], Web]) -> Web:
 
 @pytest.fixture(scope="module")
 def shared_web(start_web: Callable[[Any], Web]) -> Web:
-    """The application on a laboratory that the tests of a module share, for what changes nothing."""
+    """The application on a laboratory that a module's tests share, for what changes nothing."""
     return start_web(Clock())

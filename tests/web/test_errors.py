@@ -36,7 +36,7 @@ def test_every_refusal_has_its_own_line_in_the_table() -> None:
     assert _kinds(lab.Refusal) == set(STATUS)
 
 
-@pytest.mark.parametrize(("kind", "status"), WANTED.items(), ids=lambda one: str(one))
+@pytest.mark.parametrize(("kind", "status"), WANTED.items(), ids=str)
 def test_refusal_is_answered_with_its_status(kind: type[lab.Refusal], status: int) -> None:
     assert answer_of(kind("No.")).status == status
 
@@ -70,15 +70,24 @@ def test_method_that_an_address_does_not_take_is_refused(shared_web: Any) -> Non
     assert "allow" in visitor.request("PUT", "/api/lots", json={}).headers
 
 
+@pytest.mark.parametrize("path", ["/", "/about", "/health", "/api/shelf"])
+def test_head_is_answered_like_get(shared_web: Any, path: str) -> None:
+    visitor = shared_web.visitor()
+    head, get = visitor.head(path), visitor.get(path)
+
+    assert head.status_code == get.status_code == 200
+    assert head.headers["content-type"] == get.headers["content-type"]
+
+
 @pytest.mark.parametrize("path", ["/about", "/api/session", "/health"])
 def test_error_that_nobody_foresaw_gets_a_number_and_says_nothing_else(
     web: Any, path: str, monkeypatch: pytest.MonkeyPatch, caplog: pytest.LogCaptureFixture
 ) -> None:
-    def broken(work: Any) -> Any:
+    def broken(*_: Any) -> Any:
         raise ZeroDivisionError("the inside of the program")
 
     client = TestClient(web.app, base_url="https://testserver")
-    monkeypatch.setattr(type(web.transactions), "read", lambda self, work: broken(work))
+    monkeypatch.setattr(type(web.transactions), "read", broken)
 
     with caplog.at_level(logging.ERROR, logger="server.web.errors"):
         answer = client.get(path)

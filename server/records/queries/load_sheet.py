@@ -72,7 +72,7 @@ class _Loaded:
         used = {one for sheet in sheets for one in sheet.calibrations.values()}
         self.instruments = _instruments(session, used)
         self.entries = _by_sheet(session, Entry, ids, Entry.position)
-        self.signatures = _by_sheet(session, Signature, ids, Signature.at)
+        self.signatures = _by_sheet(session, Signature, ids, Signature.at, Signature.meaning.desc())
         self.evaluations = _by_id(session, Evaluation, {sheet.evaluation_id for sheet in sheets})
         self.certificates = session.scalars(
             select(Certificate).where(Certificate.lot_id.in_(lot_ids))
@@ -138,10 +138,10 @@ def _by_id(session: Session, table: Any, ids: Iterable[str | None]) -> dict[str,
 
 
 def _by_sheet(
-    session: Session, table: Any, sheet_ids: Sequence[str], order: Any
+    session: Session, table: Any, sheet_ids: Sequence[str], *order: Any
 ) -> dict[str, list[Any]]:
     rows = session.scalars(
-        select(table).where(table.sheet_id.in_(sheet_ids)).order_by(order, table.id)
+        select(table).where(table.sheet_id.in_(sheet_ids)).order_by(*order, table.id)
     )
     return _grouped(rows, lambda row: row.sheet_id)
 

@@ -1,0 +1,1 @@
+"""How instruments, ware, probes and standard lots are checked, and what they then state."""
