@@ -15,8 +15,6 @@ _LEAST_READING_U = 5e-4
 _LEAST_VOLUME_U = 2e-6
 _DRAWN_TO, _DRAWN_BY = 4e-4, 2.0
 """Towards which scatter of a volume (mL) the weights' is drawn, and by how many points' worth."""
-_WIDENED = 4.0
-"""An estimate with this many degrees of freedom or fewer counts double in u, one with many once."""
 _MEDIAN_OF_CHI2 = 0.4549
 """Median of chi-squared with one degree of freedom."""
 
@@ -115,7 +113,7 @@ class ScatterEstimate:
             seen = max(_ratio(b * aa - a * ab, aa * bb - ab * ab), 0.0)
             # one over half the relative variance of the estimate: its degrees of freedom
             dof = seen * seen * (bb - ab * ab / aa)
-            self.volume_seen = seen * (1 + min(1.0, _WIDENED / max(dof, 1e-9)))
+            self.volume_seen = seen * (1 + min(0.5, 2 / max(dof, 1e-9)))
             volume = min(max(volume, self.volume_u**2 / 100), self.volume_u**2 * 16)
             self.volume_u = max(volume, _LEAST_VOLUME_U**2) ** 0.5
         if self._given.reading_u is None:

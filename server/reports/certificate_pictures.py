@@ -1,6 +1,6 @@
 """The certificate's two pictures as numbers from 0 to 1: replicates around the mean, shares."""
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from typing import Any
 
 from server.metrology.rounding import rounded
@@ -8,6 +8,7 @@ from server.sheets.parts.outcome import printed
 
 _SMALL_PERCENT = 1.0
 _MARGIN = 0.06
+_LABEL_WIDTH = 0.03
 
 
 def dots_told(result: Mapping[str, Any]) -> dict[str, Any] | None:
@@ -29,11 +30,13 @@ def dots_told(result: Mapping[str, Any]) -> dict[str, Any] | None:
         return round((value - start) / width, 5)
 
     decimals = printed(result).decimals
+    dots = _on_levels(
+        {"label": one["label"], "at": at(one["value"]), "out": one["excluded"] is not None}
+        for one in values
+    )
     return {
-        "dots": [
-            {"label": one["label"], "at": at(one["value"]), "out": one["excluded"] is not None}
-            for one in values
-        ],
+        "dots": dots,
+        "levels": max(dot["level"] for dot in dots),
         "mean": at(spread["mean"]),
         "low": at(interval[0]) if interval else None,
         "high": at(interval[1]) if interval else None,
@@ -44,13 +47,24 @@ def dots_told(result: Mapping[str, Any]) -> dict[str, Any] | None:
     }
 
 
+def _on_levels(dots: Iterable[dict[str, Any]]) -> list[dict[str, Any]]:
+    """Return dots from left to right, each label one level higher where it would hide another."""
+    placed: list[dict[str, Any]] = []
+    for dot in sorted(dots, key=lambda one: one["at"]):
+        near = {one["level"] for one in placed if dot["at"] - one["at"] < _LABEL_WIDTH}
+        placed.append({**dot, "level": next(n for n in range(len(near) + 1) if n not in near)})
+    return placed
+
+
 def bars_told(result: Mapping[str, Any]) -> list[dict[str, Any]]:
     """Return the bars of the budget, the longest first; sources under 1 % are one bar."""
     ordered = sorted(result["budget"], key=lambda one: -one["share_percent"])
     large = [one for one in ordered if abs(one["share_percent"]) >= _SMALL_PERCENT]
     small = [one for one in ordered if abs(one["share_percent"]) < _SMALL_PERCENT and one["u"] > 0]
     longest = max((one["share_percent"] for one in large), default=0.0)
-    bars = [_bar(one["source"], one["share_percent"], longest, shared=one["shared"]) for one in large]
+    bars = [
+        _bar(one["source"], one["share_percent"], longest, shared=one["shared"]) for one in large
+    ]
     if small:
         together = sum(one["share_percent"] for one in small)
         name = "1 smaller source" if len(small) == 1 else f"{len(small)} smaller sources together"

@@ -34,6 +34,13 @@ _FIRST_SLOTS = (
 _LONG_CELL = 60
 _UNBROKEN = re.compile(r"\S{40,}")
 _PIECE = 20
+_EXPONENT = re.compile(r"(?<=\d)e([+-]?\d+)\b")
+_RAISED = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
+_STATED = {
+    "error_u": "each error",
+    "glass_expansion": "expansion of the glass per K",
+    "minimum_sample_g": "minimum sample in g",
+}
 _SHAPES = {"holds": "full", "look": "open", "fails": "cross"}
 _TITLES = {"measured": "analyst", "countersigned": "countersigner"}
 
@@ -81,6 +88,8 @@ def certificate_told(issued: Issued) -> dict[str, Any]:
         "constants": [list(one) for one in outcome.constants(result)],
         "calculation": outcome.calculation(result),
         "notes": notes.told(),
+        "attached": f"{issued.number}.json, this document in its canonical text; {issued.number}.jws, "
+        "the same signed by the laboratory where its key is at hand (RFC 7515)",
         "digests": _digests(issued),
         "url": issued.url or "",
     }
@@ -115,10 +124,9 @@ def _facts(issued: Issued, zone: str) -> list[list[str]]:
     document = issued.document
     lot, laboratory, recipe = document["lot"], document["laboratory"], document["recipe"]
     end_point, measured = document["end_point"], document["measured"]
-    place = ", ".join(part for part in (laboratory["name"], laboratory["address"]) if part)
     facts = [
-        ("Prepared for", "the laboratory itself; issued by and to be asked at: " + place),
-        ("Performed at", "the laboratory's own address"),
+        ("Laboratory", ", ".join(one for one in (laboratory["name"], laboratory["address"]) if one)),
+        ("Prepared for", "the laboratory itself, and performed at its own address"),
         (
             "Item",
             f"{name_of(lot['titrant'])}, {nominal_words(lot['nominal'])}, in {lot['medium']}; lot "
@@ -129,8 +137,7 @@ def _facts(issued: Issued, zone: str) -> list[list[str]]:
         ("End point", _end_point(end_point)),
         (
             "Measured",
-            f"{instant_words(measured['from'], zone)} to {instant_words(measured['to'], zone)}"
-            + (f", by {listed(measured['by'])}" if measured["by"] else ""),
+            _span(measured, zone) + (f", by {listed(measured['by'])}" if measured["by"] else ""),
         ),
         ("Issued", instant_words(document["issued_at"], zone)),
         ("Bench sheet", document["sheet"]["number"]),
@@ -138,6 +145,16 @@ def _facts(issued: Issued, zone: str) -> list[list[str]]:
     if document["replaces"]:
         facts.append(("Replaces", f"certificate {document['replaces']}"))
     return [list(one) for one in facts]
+
+
+def _span(measured: Mapping[str, Any], zone: str) -> str:
+    """Return from when to when it was measured; what both ends share is said once."""
+    first, last = (instant_words(measured[end], zone) for end in ("from", "to"))
+    day, _, _ = first.partition(", ")
+    start, _, offset = first.partition(" (")
+    if last.startswith(f"{day}, ") and last.endswith(offset):
+        return f"{start} to {last.removeprefix(f'{day}, ')}"
+    return f"{first} to {last}"
 
 
 def _end_point(end_point: Mapping[str, Any]) -> str:
@@ -233,8 +250,8 @@ def _findings(document: Mapping[str, Any], notes: Notes) -> Iterator[dict[str, A
             "verdict": one.verdict,
             "shape": _SHAPES[one.verdict],
             "says": one.says,
-            "figure": _minus(one.figure),
-            "limit": one.limit,
+            "figure": _printed(one.figure),
+            "limit": _printed(one.limit),
             "basis": one.basis,
             "marks": notes.of_finding(one.name),
         }
@@ -264,34 +281,28 @@ def _roots(document: Mapping[str, Any]) -> Iterator[dict[str, str]]:
 def _stated(statements: Mapping[str, Any]) -> Iterator[str]:
     """Yield what a paper states of its quantities, in words."""
     for key, value in statements.items():
-        name = key.removesuffix("_g").replace("_", " ")
+        name = _STATED.get(key, key.replace("_", " "))
         if isinstance(value, Mapping):
             yield f"{name} {quantity_words(value)}"
         elif key == "error_table":
             yield f"errors at {len(value)} points"
-        elif key.endswith("_g"):
-            yield f"{name} {value} g"
         elif isinstance(value, str | int | float):
-            yield f"{name} {value}"
+            yield f"{name} {_printed(str(value))}"
 
 
 def _budget(document: Mapping[str, Any]) -> list[dict[str, Any]]:
-    names = {
-        root: one["name"]
-        for one in document["traceability"]
-        for root in root_urls([one])
-    }
+    names = {root: one["name"] for one in document["traceability"] for root in root_urls([one])}
     rows = outcome.budget_rows(document["result"], names)
     return [
         {
             "source": row.source,
             "root": row.root or "",
-            "value": row.value,
-            "u": row.u,
+            "value": _printed(row.value),
+            "u": _printed(row.u),
             "shape": row.shape,
             "dof": row.dof,
-            "sensitivity": row.sensitivity,
-            "contribution": row.contribution,
+            "sensitivity": _printed(row.sensitivity),
+            "contribution": _printed(row.contribution),
             "share": row.share,
             "shared": row.shared,
         }
@@ -309,8 +320,10 @@ def _digests(issued: Issued) -> list[list[str]]:
     ]
 
 
-def _minus(text: str) -> str:
-    return f"−{text[1:]}" if text.startswith("-") else text
+def _printed(text: str) -> str:
+    """Return a figure with a true minus, and powers of ten as they are printed."""
+    minus = f"−{text[1:]}" if text.startswith("-") else text
+    return _EXPONENT.sub(lambda found: f"·10{str(int(found.group(1))).translate(_RAISED)}", minus)
 
 
 def _breakable(value: Any) -> Any:

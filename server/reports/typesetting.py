@@ -8,6 +8,7 @@ for letters that those lack, and a letter that no font has is printed by its cod
 import json
 import re
 from collections.abc import Mapping
+from dataclasses import dataclass
 from datetime import datetime
 from functools import cache
 from pathlib import Path
@@ -33,40 +34,53 @@ def set_pdf(
     *,
     made_at: datetime,
     files: Mapping[str, str] | None = None,
-    standards: tuple[str, ...] = ARCHIVAL,
 ) -> bytes:
-    """Return a page as PDF; ``files`` are texts that it attaches, by the page's own word for them.
+    """Return a page as archival PDF; ``files`` are texts that it attaches, by the page's own word.
 
     Raises:
         TypesettingProblem: the page refuses what it was told.
     """
-    pdf: bytes = _set(
-        page, told, files or {}, format="pdf", standards=standards, made_at=made_at
+    return _fitted(page, told, files or {}, made_at).pdf
+
+
+def set_pictures(
+    page: str, told: Mapping[str, Any], *, made_at: datetime, dots_per_inch: float
+) -> list[bytes]:
+    """Return the sheets of a page's PDF as PNG pictures.
+
+    Raises:
+        TypesettingProblem: the page refuses what it was told.
+    """
+    fitted = _fitted(page, told, {}, made_at)
+    found = _compile(
+        page, fitted.told, {}, own_fonts=fitted.own_fonts, format="png", ppi=dots_per_inch
     )
-    return pdf
-
-
-def set_pictures(page: str, told: Mapping[str, Any], *, dots_per_inch: float) -> list[bytes]:
-    """Return a page's sheets as PNG pictures.
-
-    Raises:
-        TypesettingProblem: the page refuses what it was told.
-    """
-    found = _set(page, told, {}, format="png", ppi=dots_per_inch)
     return found if isinstance(found, list) else [found]
 
 
-def _set(page: str, told: Mapping[str, Any], files: Mapping[str, str], **asked: Any) -> Any:
+@dataclass(frozen=True, slots=True)
+class _Fitted:
+    """A PDF, and with what fonts and letters it could be set."""
+
+    pdf: bytes
+    told: Mapping[str, Any]
+    own_fonts: bool
+
+
+def _fitted(
+    page: str, told: Mapping[str, Any], files: Mapping[str, str], made_at: datetime
+) -> _Fitted:
+    """Return the PDF with the typesetter's fonts, else the machine's, else with letters spelled."""
+    made = {"format": "pdf", "standards": ARCHIVAL, "made_at": made_at}
+    for own_fonts in (True, False):
+        try:
+            pdf = _compile(page, told, files, own_fonts=own_fonts, **made)
+        except _LetterMissing:
+            continue
+        return _Fitted(pdf, told, own_fonts)
+    spelled = _spell_out(told)
     try:
-        return _compile(page, told, files, own_fonts=True, **asked)
-    except _LetterMissing:
-        pass
-    try:
-        return _compile(page, told, files, own_fonts=False, **asked)
-    except _LetterMissing:
-        plain = _spell_out(told)
-    try:
-        return _compile(page, plain, files, own_fonts=False, **asked)
+        return _Fitted(_compile(page, spelled, files, own_fonts=False, **made), spelled, False)
     except _LetterMissing as problem:
         raise TypesettingProblem(str(problem)) from problem
 

@@ -32,29 +32,15 @@ class ReadHandIn:
     signer: str
 
 
-def open_hand_in(
-    session: Session, sheet_id: str, *, actor: Actor | None, now: datetime
-) -> HandInPage:
-    """Return a sheet evaluated as it will be signed; ``problem`` says why it cannot be yet.
-
-    Monte Carlo takes long: close the transaction between ``read_hand_in`` and
-    ``evaluate_hand_in`` where others wait for it.
-
-    Raises:
-        NotFound: there is no such sheet.
-        NotSignedIn: a visitor.
-        NotAllowed: somebody who may not hand in.
-    """
-    return evaluate_hand_in(read_hand_in(session, sheet_id, actor=actor, now=now))
-
-
 def read_hand_in(
     session: Session, sheet_id: str, *, actor: Actor | None, now: datetime
 ) -> ReadHandIn:
     """Return what the hand-in page is made of; close the transaction before evaluating it.
 
     Raises:
-        NotFound, NotSignedIn, NotAllowed: as ``open_hand_in``.
+        NotFound: there is no such sheet.
+        NotSignedIn: a visitor.
+        NotAllowed: somebody who may not hand in.
     """
     del now
     reader = need_reader(actor)

@@ -43,6 +43,26 @@ class Incidents:
             await response(scope, receive, send)
 
 
+class Heads:
+    """Answers HEAD as GET is answered, without the body."""
+
+    def __init__(self, app: ASGIApp) -> None:
+        self._app = app
+
+    async def __call__(self, scope: Scope, receive: Receive, send: Send) -> None:
+        """Pass a request on; of the answer to HEAD only what stands before the body."""
+        if scope["type"] != "http" or scope["method"] != "HEAD":
+            await self._app(scope, receive, send)
+            return
+
+        async def send_head(message: Message) -> None:
+            if message["type"] == "http.response.body":
+                message = {**message, "body": b""}
+            await send(message)
+
+        await self._app({**scope, "method": "GET"}, receive, send_head)
+
+
 class Guards:
     """Refuses what is too large, comes from another site, or holds what no text can hold."""
 

@@ -59,16 +59,22 @@ def show(
     template: str,
     open_page: Callable[..., Any],
     *given: Any,
+    finish: Callable[[Any], Any] | None = None,
     with_page: Callable[[Any], Mapping[str, Any]] | None = None,
     **context: Any,
 ) -> Response:
-    """Open a page in one transaction and draw it; ``with_page`` adds to the context from it."""
+    """Open a page in one transaction and draw it.
+
+    ``finish`` makes the page of what was read, with nothing open: long arithmetic waits for it.
+    ``with_page`` adds to the context from the page.
+    """
 
     def work(session: Any) -> tuple[Any, Chrome]:
         who: dict[str, Any] = {"actor": visit.actor, "now": visit.now}
         return open_page(session, *given, **who), open_chrome(session, **who)
 
     page, chrome = visit.parts.transactions.read(work)
+    page = finish(page) if finish else page
     more = with_page(page) if with_page else {}
     return draw(visit, template, page, chrome, **{**more, **context})
 

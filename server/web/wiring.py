@@ -19,7 +19,7 @@ from server.web.api import stores as api_stores
 from server.web.api import trail as api_trail
 from server.web.api.desk import PROBLEMS
 from server.web.errors import add_error_handlers
-from server.web.guards import Guards, Incidents
+from server.web.guards import Guards, Heads, Incidents
 from server.web.headers import SecurityHeaders
 from server.web.pages import (
     about,
@@ -72,6 +72,7 @@ def create_app(parts: Parts, static: StaticFiles) -> FastAPI:
         redoc_url=None,
         middleware=[
             Middleware(SecurityHeaders, secure=parts.secure),
+            Middleware(Heads),
             Middleware(Incidents),
             Middleware(Guards),
         ],

@@ -102,3 +102,11 @@ def test_session_over_plain_http_has_a_cookie_that_https_never_reads(shared_web:
     stolen = answer.headers["set-cookie"].partition(";")[0]
     over_https = shared_web.visitor().get("/me", headers={"Cookie": stolen})
     assert over_https.status_code == 401
+
+
+def test_head_is_answered_as_get_without_a_body(shared_web: Any) -> None:
+    visitor = shared_web.visitor()
+    head, whole = visitor.head("/about"), visitor.get("/about")
+    assert head.status_code == whole.status_code == 200
+    assert head.content == b""
+    assert head.headers["content-length"] == whole.headers["content-length"]

@@ -19,7 +19,7 @@ from server.procedures.entries import NewEntry, WriteEntries, write_entries
 from server.procedures.hand_in import HandIn
 from server.sheets.bench_home import open_bench_home
 from server.sheets.bench_sheet import open_bench_sheet
-from server.sheets.hand_in import open_hand_in
+from server.sheets.hand_in import evaluate_hand_in, read_hand_in
 from server.web.acting import act
 from server.web.api.desk import TOKEN_HEADER, AtApi, answer, made
 from server.web.bodies import Given, JsonBody, body_of, json_bytes, model_of, read_body
@@ -113,7 +113,7 @@ def write(
 @router.get("/sheets/{sheet_id}/hand-in")
 def before_hand_in(visit: AtDesk, sheet_id: str) -> Response:
     """Tell what a sheet comes to, with its findings, before it is signed."""
-    return answer(visit.read(open_hand_in, sheet_id))
+    return answer(evaluate_hand_in(visit.read(read_hand_in, sheet_id)))
 
 
 @router.post("/sheets/{sheet_id}/hand-in", openapi_extra=_HAND_IN.openapi)

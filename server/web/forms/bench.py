@@ -22,7 +22,7 @@ def read_begin(form: Typed) -> BeginSheet:
     )
 
 
-def read_hand_in(form: Typed, sheet_id: str) -> HandIn:
+def read_signing(form: Typed, sheet_id: str) -> HandIn:
     """Return a hand in with the reasons for what fails, by the names of the findings."""
     reasons = {
         name.removeprefix(_REASON): form.text(name)

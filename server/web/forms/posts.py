@@ -21,13 +21,15 @@ from server.web.visits import AtDesk, Visit
 class Again:
     """The page that a refused form is shown on: its template, its opener, what that is given.
 
-    ``keeps_typed`` False: the page has several forms, and this one held nothing that was typed.
+    ``keeps_typed`` False: the page has several forms, and this one held nothing that was typed;
+    ``finish`` makes the page of what was opened.
     """
 
     template: str
     open_page: Callable[..., Any]
     given: tuple[Any, ...] = ()
     keeps_typed: bool = True
+    finish: Callable[[Any], Any] | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,6 +88,7 @@ class Post:
                 again.template,
                 again.open_page,
                 *again.given,
+                finish=again.finish,
                 status=answer_of(refusal).status,
                 headers=headers_of(refusal),
                 problem=problem_of(refusal, form_field(refusal.field)),

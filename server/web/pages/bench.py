@@ -11,8 +11,8 @@ from server.procedures.bench import (
 )
 from server.sheets.bench_home import open_begin, open_bench_home
 from server.sheets.bench_sheet import open_bench_sheet
-from server.sheets.hand_in import open_hand_in
-from server.web.forms.bench import read_begin, read_hand_in
+from server.sheets.hand_in import evaluate_hand_in, read_hand_in
+from server.web.forms.bench import read_begin, read_signing
 from server.web.forms.posts import Again, Posted
 from server.web.showing import show
 from server.web.signing import hand_in
@@ -66,7 +66,7 @@ def sheet(visit: AtDesk, sheet_id: str) -> Response:
 @router.get("/bench/{sheet_id}/hand-in")
 def hand_in_page(visit: AtDesk, sheet_id: str) -> Response:
     """Show everything on one page before the signature."""
-    return show(visit, "bench/hand_in.html", open_hand_in, sheet_id)
+    return show(visit, "bench/hand_in.html", read_hand_in, sheet_id, finish=evaluate_hand_in)
 
 
 @router.post("/bench/{sheet_id}/hand-in")
@@ -74,11 +74,12 @@ def sign_and_hand_in(post: Posted, sheet_id: str) -> Response:
     """Sign a sheet as *measured* and hand it in."""
 
     def work() -> str:
-        command = read_hand_in(post.form, sheet_id)
+        command = read_signing(post.form, sheet_id)
         hand_in(post.visit, command, post.form.text("password"), key=post.key)
         return f"/bench/{sheet_id}"
 
-    return post.answer(work, again=Again("bench/hand_in.html", open_hand_in, (sheet_id,)))
+    again = Again("bench/hand_in.html", read_hand_in, (sheet_id,), finish=evaluate_hand_in)
+    return post.answer(work, again=again)
 
 
 @router.post("/bench/{sheet_id}/abandon")
