@@ -1,7 +1,7 @@
 """A calibration's table from CSV text or a workbook: recognised, and shown before it is taken."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from decimal import Decimal
 from itertools import pairwise
 from typing import Any
@@ -15,7 +15,7 @@ from server.intake.table_columns import (
     scaled,
 )
 from server.intake.table_text import CellGrid, read_grid, workbook_grid
-from server.intake.workbook import column_name
+from server.intake.workbook import is_workbook
 from server.lab.refusal import Unacceptable
 from server.metrology.decimal_text import DecimalProblem, read_wire_decimal
 
@@ -68,14 +68,19 @@ def read_calibration_table(
         raise Unacceptable(says, field="kind", example="balance")
     if means not in {None, "correction", "error"}:
         raise Unacceptable("means must be correction or error.", field="means", example="error")
-    grid = workbook_grid(data, sheet) if data.startswith(b"PK\x03\x04") else read_grid(data)
+    grid = workbook_grid(data, sheet) if is_workbook(data) else read_grid(data)
     columns = read_columns(grid, kind)
-    if means is not None:
-        columns = {
-            **{role: one for role, one in columns.items() if role not in {"correction", "error"}},
-            **{means: one for role, one in columns.items() if role in {"correction", "error"}},
-        }
-    return _table(grid, kind, columns)
+    return _table(grid, kind, columns if means is None else _renamed(columns, means))
+
+
+def _renamed(columns: dict[str, Column], means: str) -> dict[str, Column]:
+    """Return the columns with that of the correction or error called as a person says."""
+    told = columns.get("correction") or columns.get(ERROR)
+    if told is None:
+        says = "There is no column of corrections or errors: the reference tells the sign."
+        raise Unacceptable(says, field="means")
+    others = {role: one for role, one in columns.items() if role not in {"correction", ERROR}}
+    return {**others, means: told}
 
 
 def _table(grid: CellGrid, kind: str, columns: dict[str, Column]) -> CalibrationTable:
@@ -124,19 +129,38 @@ def _row(
         return found
 
     reading = need("reading")
-    if "correction" in columns:
-        added = need("correction")
-    elif ERROR in columns:
-        added = -need(ERROR)
-    else:
-        added = need("reference") - reading
+    told = {
+        role: sign * need(role)
+        for role, sign in (("correction", 1), (ERROR, -1))
+        if role in columns
+    }
+    if "reference" in columns:
+        told["reference"] = need("reference") - reading
+    added = next(iter(told.values()))
+    for role, value in told.items():
+        # two columns that tell the same must agree within their last digits: it shows a wrong sign
+        digits = max(_exponent(one) for one in (reading, added, value))
+        if abs(value - added) > 2 * Decimal(1).scaleb(digits):
+            says = (
+                f"Row {number}: by the column “{columns[role].label}” {decimal_text(value)} is "
+                f"added to the reading, by “{columns[next(iter(told))].label}” "
+                f"{decimal_text(added)}. An error is reading less reference, a correction its "
+                "opposite."
+            )
+            raise Unacceptable(says, field="file")
     return TableRow(decimal_text(reading), decimal_text(added), _u(grid, number, columns, numbers))
+
+
+def _exponent(value: Decimal) -> int:
+    return int(value.as_tuple().exponent)
 
 
 def _u(
     grid: CellGrid, number: int, columns: dict[str, Column], numbers: dict[str, Decimal | None]
 ) -> str | None:
     u, U, k = numbers.get("u"), numbers.get("U"), numbers.get("k")
+    if U is not None and k is None:
+        k = columns["U"].k
     for role in ("u", "U", "k"):
         value = numbers.get(role)
         if value is not None and (value < 0 or (role == "k" and value == 0)):
@@ -185,8 +209,3 @@ def _fragment(kind: str, unit: str, rows: Sequence[TableRow]) -> dict[str, Any]:
     if stated and len(stated) == len(rows):
         found[key] = {"unit": unit, "u": decimal_text(max(stated))}
     return found
-
-
-def with_column_letters(grid: CellGrid) -> CellGrid:
-    """Return a grid whose cells are named by letters, as a workbook shows them."""
-    return replace(grid, names=tuple(column_name(i) for i in range(grid.width)))

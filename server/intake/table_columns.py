@@ -41,14 +41,22 @@ _HEADER = re.compile(
 )
 
 
+#: A coverage factor in a header: “U (k = 2), mg”.
+_FACTOR = re.compile(r"[(\[]?\s*\bk\s*=\s*(?P<k>[1-9][0-9]{0,2}(?:[.,][0-9]{1,4})?)\s*[)\]]?")
+
+
 @dataclass(frozen=True, slots=True)
 class Column:
-    """A column: where it stands, its header, and the power of ten to the kind's own unit."""
+    """A column: where it stands, its header, and the power of ten to the kind's own unit.
+
+    ``k`` is the coverage factor where the header of an expanded uncertainty states it.
+    """
 
     index: int
     label: str
     power: int
     says: str
+    k: Decimal | None = None
 
     @property
     def words(self) -> str:
@@ -82,9 +90,6 @@ def read_columns(grid: CellGrid, kind: str) -> dict[str, Column]:
     if not ways:
         says = f"No column tells the error; name it correction, error or reference.{told}"
         raise Unacceptable(says, field="file", example=_example(kind))
-    for role in ways[1:]:
-        # one of them is enough: the correction before the error before the reference
-        del found[role]
     if unknown:
         first = found["reading"]
         found["reading"] = Column(
@@ -109,7 +114,7 @@ def _example(kind: str) -> str:
 
 
 def _role(text: str) -> tuple[str | None, str | None]:
-    shaped = _HEADER.fullmatch(text.strip())
+    shaped = _HEADER.fullmatch(_FACTOR.sub(" ", text).strip())
     if not shaped:
         return None, None
     name, unit = shaped["name"].strip(), shaped["after"] or shaped["inside"]
@@ -126,15 +131,18 @@ def _column(grid: CellGrid, index: int, *, role: str, unit: str | None, kind: st
     label = grid.header[index]
     if role == "k":
         return Column(index, label, 0, "")
-    base = BASE_UNITS[kind]
+    stated = _FACTOR.search(label) if role == "U" else None
+    k = Decimal(stated["k"].replace(",", ".")) if stated else None
     if unit is None:
-        return Column(index, label, 0, f"“{label[:40]}” names no unit; {base} is taken.")
+        says = f"“{label[:40]}” names no unit; {BASE_UNITS[kind]} is taken."
+        return Column(index, label, 0, says, k)
     power = _POWERS[kind].get(unit.strip().lower())
-    if power is None:
+    scale = kind == "thermometer" and role in {"reading", "reference"}
+    if power is None or (scale and unit.strip().lower() in {"k", "mk"}):
         known = ", ".join(_POWERS[kind])
         says = (
-            f"{grid.where(grid.header_row, index)}: “{unit[:20]}” is no unit of a {kind}; known "
-            f"are {known}."
+            f"{grid.where(grid.header_row, index)}: “{unit[:20]}” is no unit of a {kind}’s "
+            f"{role}; known are {known}."
         )
         raise Unacceptable(says, field="file", example=_example(kind))
-    return Column(index, label, power, "")
+    return Column(index, label, power, "", k)

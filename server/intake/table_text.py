@@ -93,9 +93,9 @@ def workbook_grid(data: bytes, sheet: str | None) -> CellGrid:
     if not rows:
         raise Unacceptable("The sheet holds no table.", field="sheet")
     grid = _grid(rows)
-    names = tuple(column_name(i) for i in range(len(grid.header)))
+    letters = tuple(column_name(i) for i in range(len(grid.header)))
     said = (f"Sheet “{filled[0].name}”.",)
-    return CellGrid(grid.header, grid.header_row, grid.body, False, said, names)
+    return CellGrid(grid.header, grid.header_row, grid.body, False, said, letters)
 
 
 def _grid(rows: Sequence[tuple[int, tuple[str, ...]]]) -> CellGrid:

@@ -13,7 +13,7 @@ _MOST_UNPACKED = 12_000_000
 _MOST_MEMBERS = 400
 _MOST_RATIO = 200
 _MOST_ROWS, _MOST_COLUMNS = 5_000, 60
-_XML = Bounds(most_bytes=4_000_000, most_elements=120_000, most_depth=20)
+_XML = Bounds(most_bytes=4_000_000, most_elements=100_000, most_depth=20)
 _MAIN = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
 _CELL = re.compile(r"([A-Z]{1,3})([1-9][0-9]{0,6})")
 

@@ -1,13 +1,14 @@
 """Beginning a bench sheet, letting something out of date be used, abandoning."""
 
 from dataclasses import dataclass
-from datetime import datetime
+from datetime import date, datetime
 from decimal import Decimal
 from typing import Any
 from uuid import uuid4
 
 from sqlalchemy.orm import Session
 
+from server.chemistry.substances import SUBSTANCES
 from server.lab.actor import Actor
 from server.lab.codes import read_code
 from server.lab.free_text import MOST_REASON, read_reason, read_text
@@ -100,13 +101,14 @@ def begin_sheet(session: Session, command: BeginSheet, *, actor: Actor, now: dat
     reason = read_text(command.override_reason or "", "override_reason", most=MOST_REASON)
     if not (reason and actor.may(Act.OVERRIDE)):
         actor.need(Act.WRITE)
-    lot = _lot(session, command.lot_code)
+    lot = _lot(session, command.lot_code, today=local_day(now, actor.zone))
     recipe = load_recipe_fact(session, command.recipe_id)
     _check_recipe(session, recipe, lot)
     standard = load_standard_lot_fact(session, command.standard_lot_id)
     if standard.substance != recipe.document.standard:
         says = f"The recipe weighs {recipe.document.standard}; {standard.name} is another standard."
         raise Unacceptable(says, field="standard_lot_id")
+    _check_density(standard, recipe.document)
     instruments = _instruments(session, command, recipe.document)
     overrides = _overrides(standard, instruments, reason, actor=actor, now=now)
     if not overrides:
@@ -205,12 +207,16 @@ def need_revision(sheet: Sheet, revision: int) -> None:
         raise Stale(says, field="revision", shown=shown)
 
 
-def _lot(session: Session, code: str) -> Lot:
+def _lot(session: Session, code: str, *, today: date) -> Lot:
     lot = lot_of_code(session, read_code(code))
     if lot is None:
         raise NotFound(f"There is no lot or bottle {code[:40]}.", field="lot_code")
     if lot_is_pulled(session, lot.id):
         raise NotAllowed("This lot was pulled: it is out of use for good.", field="lot_code")
+    use_by = lot.document.get("use_by")
+    if use_by and date.fromisoformat(use_by) < today:
+        says = f"This lot's use-by day, {use_by}, is past: no certificate of it would be valid."
+        raise NotAllowed(says, field="lot_code")
     return lot
 
 
@@ -234,6 +240,18 @@ def _check_recipe(session: Session, recipe: RecipeFact, lot: Lot) -> None:
             f"{lot.medium}."
         )
         raise Unacceptable(says, field="recipe_id")
+
+
+def _check_density(standard: StandardLotFact, recipe: RecipeDocument) -> None:
+    """Refuse before the work what could not be evaluated after it."""
+    known = SUBSTANCES.get(standard.substance)
+    in_table = known is not None and known.density_g_cm3 is not None
+    if recipe.buoyancy and not in_table and "density" not in standard.document:
+        says = (
+            f"The recipe corrects for buoyancy, and the density of {standard.substance} is in no "
+            f"table: a keeper states it for a standard lot; {standard.name} has none."
+        )
+        raise Unacceptable(says, field="standard_lot_id")
 
 
 def _instruments(

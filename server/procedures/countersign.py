@@ -1,5 +1,6 @@
 """Countersigning: the act of a second person that certifies; or sending back."""
 
+import json
 from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import date, datetime
@@ -13,7 +14,7 @@ from server.lab.canonical import canonical, digest
 from server.lab.certificate_document import Issue, build_certificate, measured_at
 from server.lab.free_text import read_text
 from server.lab.in_use import things_in_use
-from server.lab.refusal import NotAllowed, Unacceptable
+from server.lab.refusal import NotAllowed, Stale, Unacceptable
 from server.lab.roles import Act
 from server.lab.segregation import countersign_refusal
 from server.lab.sheet_facts import EvaluationFact, SheetFacts, SignatureFact
@@ -71,6 +72,7 @@ def countersign_sheet(
     if refusal:
         raise NotAllowed(refusal)
     need_revision(sheet, command.revision)
+    _need_same_last(facts, evaluation)
     refuse_not_valid(facts)
     accepted = _accepted(evaluation, command.accepted)
     _need_intact(facts, evaluation, measured)
@@ -134,6 +136,18 @@ def _waiting(facts: SheetFacts) -> tuple[EvaluationFact, SignatureFact]:
     if facts.lot.pulled:
         raise NotAllowed("This lot was pulled: it is out of use for good.")
     return facts.evaluation, facts.measured_signature
+
+
+def _need_same_last(facts: SheetFacts, evaluation: EvaluationFact) -> None:
+    """Refuse where the lot got another certificate since the sheet was compared with its last."""
+    compared = json.loads(evaluation.snapshot)["circumstances"]["last_certificate"]
+    standing = facts.last_certificate
+    if standing is not None and (compared is None or compared["number"] != standing.number):
+        says = (
+            f"Certificate {standing.number} was issued for this lot since this sheet was handed "
+            "in; send the sheet back, so that the two are compared."
+        )
+        raise Stale(says, field="revision", shown={"standing": standing.number})
 
 
 def _accepted(evaluation: EvaluationFact, accepted: Sequence[str]) -> list[str]:

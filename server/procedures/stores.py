@@ -7,7 +7,9 @@ from uuid import uuid4
 
 from sqlalchemy.orm import Session
 
+from server.chemistry.formula import FormulaProblem, molar_mass
 from server.chemistry.reactions import ratio
+from server.chemistry.substances import SUBSTANCES
 from server.lab import reading_documents as reading
 from server.lab.actor import Actor
 from server.lab.free_text import read_text
@@ -75,10 +77,13 @@ def receive_standard_lot(
     due_at = end_of_day(read_day(command.due_on, "due_on"), actor.zone)
     if due_at <= now:
         raise Unacceptable("This standard lot's due day is past.", field="due_on")
+    substance = check_name(command.substance, "substance", example="KHP")
+    if command.molar_mass is None:
+        _need_formula(substance)
     row = StandardLot(
         id=str(uuid4()),
         name=name,
-        substance=check_name(command.substance, "substance", example="KHP"),
+        substance=substance,
         certificate_number=check_name(
             command.certificate_number, "certificate_number", example="RM-1184"
         ),
@@ -131,6 +136,17 @@ def write_recipe(session: Session, command: WriteRecipe, *, actor: Actor, now: d
     thing = Thing("recipe", row.id, f"{name}, version {row.version}")
     note_act(session, "wrote a recipe", thing, actor=actor, now=now, body=command.document)
     return row.id
+
+
+def _need_formula(substance: str) -> None:
+    """Refuse a substance whose molar mass neither a table nor its formula tells."""
+    known = SUBSTANCES.get(substance)
+    try:
+        molar_mass(known.formula if known else substance)
+    except FormulaProblem as problem:
+        says = f"The molar mass of {substance} is in no table, and it is no formula: state it."
+        example = '{"value": "204.2212", "unit": "g/mol", "u": "0.0038"}'
+        raise Unacceptable(says, field="molar_mass", example=example) from problem
 
 
 def _need_ratio(recipe: RecipeDocument) -> None:

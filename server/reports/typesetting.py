@@ -20,7 +20,7 @@ import typst
 #: Archival (ISO 19005-3, level a) and accessible (ISO 14289-1).
 ARCHIVAL = ("a-3a", "ua-1")
 _PAGES = Path(__file__).with_name("pages")
-_NO_LETTER = re.compile("could not be displayed")
+_NO_LETTER = re.compile("could not be displayed|contains the codepoint")
 _LOCK = Lock()
 
 
@@ -71,7 +71,7 @@ def _fitted(
     page: str, told: Mapping[str, Any], files: Mapping[str, str], made_at: datetime
 ) -> _Fitted:
     """Return the PDF with the typesetter's fonts, else the machine's, else with letters spelled."""
-    made = {"format": "pdf", "standards": ARCHIVAL, "made_at": made_at}
+    made: dict[str, Any] = {"format": "pdf", "standards": ARCHIVAL, "made_at": made_at}
     for own_fonts in (True, False):
         try:
             pdf = _compile(page, told, files, own_fonts=own_fonts, **made)

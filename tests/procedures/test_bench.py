@@ -152,6 +152,35 @@ def test_sheet_on_a_pulled_lot_is_refused_and_an_open_one_closed_to_the_pen(sqli
         sqlite_lab.write(remark())
 
 
+def test_sheet_on_a_lot_past_its_use_by_day_is_refused(sqlite_lab):
+    command = MakeUpLot("NaOH", "0.1", use_by="2026-05-04")
+    lot = sqlite_lab.act(make_up_lot, command, "analyst")
+    sqlite_lab.begin(lot_code=lot)
+    sqlite_lab.clock.move(hours=14)
+    refused = refusal(sqlite_lab, kind=NotAllowed, lot_code=lot)
+    assert (refused.field, "2026-05-04" in refused.says) == ("lot_code", True)
+
+
+def test_sheet_that_could_not_be_evaluated_for_want_of_a_density_is_refused(sqlite_lab):
+    document = {
+        "title": "Odd", "titrant": {"substance": "NaOH", "nominal": "0.1"},
+        "standard": "NH4HSO4", "ratio": "1", "end_point": {"mode": "potentiometric"},
+    }  # fmt: skip
+    recipe = sqlite_lab.act(write_recipe, WriteRecipe("Odd", document), "keeper")
+    plain = {
+        "substance": "NH4HSO4", "certificate_number": "RM-9", "issuer": "house",
+        "due_on": "2028-01-31", "due_basis": "expiry", "mass_fraction": {"value": "0.999"},
+    }  # fmt: skip
+    without = ReceiveStandardLot("Odd 1", **plain)
+    lot = sqlite_lab.act(receive_standard_lot, without, "keeper")
+    refused = refusal(sqlite_lab, recipe_id=recipe, standard_lot_id=lot)
+    assert (refused.field, "density" in refused.says) == ("standard_lot_id", True)
+    stated = ReceiveStandardLot("Odd 2", **plain, density={"value": "1.78", "unit": "g/cm3"})
+    lot = sqlite_lab.act(receive_standard_lot, stated, "keeper")
+    # the next thing that is asked for is the room monitor
+    assert refusal(sqlite_lab, recipe_id=recipe, standard_lot_id=lot).field == "room_id"
+
+
 # R005: out of date
 
 

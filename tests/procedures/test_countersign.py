@@ -123,12 +123,12 @@ def test_both_signatures_are_bound_to_sheet_ink_and_evaluation(lab):
         assert not signature_holds(one, replace(facts, entries=facts.entries[1:]), snapshot)
 
 
-def test_valid_until_is_the_end_of_the_local_day_after_the_interval(lab):
-    waiting(lab)
-    lab.clock.move(days=2)
-    lab.countersign()
+def test_valid_until_is_the_end_of_the_local_day_after_the_interval(sqlite_lab):
+    waiting(sqlite_lab)
+    sqlite_lab.clock.move(days=2)
+    sqlite_lab.countersign()
     # measured on 4 May, 14 days; the day ends at 22:00 UTC in summer
-    assert standing(lab).valid_until.isoformat() == "2026-05-18T22:00:00+00:00"
+    assert standing(sqlite_lab).valid_until.isoformat() == "2026-05-18T22:00:00+00:00"
 
 
 def test_valid_until_is_not_lengthened_by_a_late_remark(sqlite_lab):
@@ -185,14 +185,14 @@ def test_countersigning_by_somebody_of_many_roles_without_a_part_is_allowed(sqli
     assert sqlite_lab.countersign(who="all hands")["certificate"] == "TL-2026-0001"
 
 
-def test_one_persons_laboratory_says_on_the_certificate_that_nobody_reviewed(lab):
+def test_one_persons_laboratory_says_on_the_certificate_that_nobody_reviewed(sqlite_lab):
     command = ChangeSettings("Small laboratory", "1 Lane", "Europe/Berlin", 1, own_signature=True)
-    lab.act(change_settings, command, "steward")
-    lab.sheet = lab.begin("all hands")
-    lab.write_lines(lines(), who="all hands")
-    lab.hand_in(who="all hands")
-    lab.countersign(who="all hands")
-    document = json.loads(standing(lab).document)
+    sqlite_lab.act(change_settings, command, "steward")
+    sqlite_lab.sheet = sqlite_lab.begin("all hands")
+    sqlite_lab.write_lines(lines(), who="all hands")
+    sqlite_lab.hand_in(who="all hands")
+    sqlite_lab.countersign(who="all hands")
+    document = json.loads(standing(sqlite_lab).document)
     assert document["independently_reviewed"] is False
     assert document["statements"][-1].startswith("Not independently reviewed")
 
@@ -206,13 +206,15 @@ def test_countersigning_with_somebody_elses_password_is_refused(sqlite_lab, whos
     assert refusal(sqlite_lab, NotSignedIn, proof=sqlite_lab.proof(whose)).field == "password"
 
 
-def test_countersigning_what_was_not_looked_at_is_stale(lab):
-    waiting(lab)
-    revision = lab.facts().revision
-    lab.act(send_back_sheet, SendBack(lab.sheet, revision, "look at 3"), "second countersigner")
-    lab.hand_in()
-    refused = refusal(lab, Stale, revision=revision)
-    assert refused.shown["standing"] == lab.facts().revision
+def test_countersigning_what_was_not_looked_at_is_stale(sqlite_lab):
+    waiting(sqlite_lab)
+    revision = sqlite_lab.facts().revision
+    sqlite_lab.act(
+        send_back_sheet, SendBack(sqlite_lab.sheet, revision, "look at 3"), "second countersigner"
+    )
+    sqlite_lab.hand_in()
+    refused = refusal(sqlite_lab, Stale, revision=revision)
+    assert refused.shown["standing"] == sqlite_lab.facts().revision
 
 
 def test_countersigning_a_sheet_that_does_not_wait_is_refused(sqlite_lab):
@@ -234,17 +236,36 @@ def test_finding_that_fails_is_accepted_by_name_or_not_at_all(sqlite_lab):
     assert failing["accepted_by"] == "Lene Tiedt"
 
 
-def test_instrument_held_after_hand_in_stops_the_certificate(lab):
+def test_certificate_issued_since_hand_in_is_not_replaced_without_a_comparison(lab):
+    # two sheets of one lot wait at once
+    first = lab.sheet
     waiting(lab)
-    lab.act(hold_thing, HoldThing("instrument", lab.balance, "drifts"), "keeper")
-    assert refusal(lab, NotAllowed).field == "balance"
+    lab.sheet = lab.begin("second analyst")
+    lab.write_lines(lines(), who="second analyst")
+    lab.hand_in(who="second analyst")
+    lab.countersign(first)
+    with pytest.raises(Stale, match="TL-2026-0001 was issued for this lot since"):
+        lab.countersign()
+    lab.act(send_back_sheet, SendBack(lab.sheet, lab.facts().revision, "compare"), "countersigner")
+    lab.hand_in()
+    lab.countersign()
+    document = json.loads(standing(lab).document)
+    assert document["replaces"] == "TL-2026-0001"
+    (last,) = [one for one in document["findings"] if one["name"] == "last certificate"]
+    assert last["verdict"] == "holds"
 
 
-def test_lot_pulled_after_hand_in_stops_the_certificate(lab):
-    waiting(lab)
-    lab.act(propose_pull, ProposePull(lab.lot, "wrong salt"), "keeper")
-    lab.act(confirm_pull, ConfirmPull(lab.lot), "second countersigner")
-    assert "out of use for good" in refusal(lab, NotAllowed).says
+def test_instrument_held_after_hand_in_stops_the_certificate(sqlite_lab):
+    waiting(sqlite_lab)
+    sqlite_lab.act(hold_thing, HoldThing("instrument", sqlite_lab.balance, "drifts"), "keeper")
+    assert refusal(sqlite_lab, NotAllowed).field == "balance"
+
+
+def test_lot_pulled_after_hand_in_stops_the_certificate(sqlite_lab):
+    waiting(sqlite_lab)
+    sqlite_lab.act(propose_pull, ProposePull(sqlite_lab.lot, "wrong salt"), "keeper")
+    sqlite_lab.act(confirm_pull, ConfirmPull(sqlite_lab.lot), "second countersigner")
+    assert "out of use for good" in refusal(sqlite_lab, NotAllowed).says
 
 
 def test_remark_too_long_is_refused_never_cut(sqlite_lab):

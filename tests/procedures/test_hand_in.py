@@ -62,6 +62,13 @@ def evaluated(lab):
     return lab.evaluate()
 
 
+@pytest.fixture
+def on_sqlite(sqlite_lab):
+    """The same on SQLite alone."""
+    sqlite_lab.write_lines(lines(*GOOD))
+    return sqlite_lab.evaluate()
+
+
 def test_sheet_handed_in_is_signed_as_measured_and_kept_with_its_snapshot(lab, evaluated):
     answer = sign(lab, evaluated)
     facts = lab.facts()
@@ -82,18 +89,18 @@ def test_sheet_handed_in_is_signed_as_measured_and_kept_with_its_snapshot(lab, e
     assert lab.chain().holds
 
 
-def test_snapshot_replayed_gives_the_same_number(lab, evaluated):
-    again = evaluate_sheet(prepared(lab), trials=0)
-    assert again.result == evaluated.result
-    assert again.snapshot_digest == evaluated.snapshot_digest
+def test_snapshot_replayed_gives_the_same_number(sqlite_lab, on_sqlite):
+    again = evaluate_sheet(prepared(sqlite_lab), trials=0)
+    assert again.result == on_sqlite.result
+    assert again.snapshot_digest == on_sqlite.snapshot_digest
 
 
-def test_sheet_handed_in_takes_no_more_ink(lab, evaluated):
-    sign(lab, evaluated)
+def test_sheet_handed_in_takes_no_more_ink(sqlite_lab, on_sqlite):
+    sign(sqlite_lab, on_sqlite)
     with pytest.raises(NotAllowed, match="A countersigner can send it back"):
-        lab.write(remark())
+        sqlite_lab.write(remark())
     with pytest.raises(NotAllowed, match="This sheet is handed in"):
-        prepared(lab)
+        prepared(sqlite_lab)
 
 
 # the race: something happens between the second and the third beat
@@ -111,16 +118,16 @@ def test_hand_in_remark_written_after_the_page_was_opened_is_stale(lab, evaluate
     assert refused.shown == {"seen": evaluated.revision, "standing": evaluated.revision + 1}
 
 
-def test_hand_in_standard_lot_held_after_evaluation_is_stale(lab, evaluated):
-    lab.act(hold_thing, HoldThing("standard lot", lab.standard_lot, "damp"), "keeper")
-    assert refusal(lab, Stale, evaluated)
+def test_hand_in_standard_lot_held_after_evaluation_is_stale(sqlite_lab, on_sqlite):
+    sqlite_lab.act(hold_thing, HoldThing("standard lot", sqlite_lab.standard_lot, "damp"), "keeper")
+    assert refusal(sqlite_lab, Stale, on_sqlite)
 
 
-def test_hand_in_evaluation_of_another_sheet_is_stale(lab, evaluated):
-    first, lab.sheet = lab.sheet, lab.begin()
-    lab.write_lines(lines(*GOOD))
-    assert lab.sheet != first
-    assert refusal(lab, Stale, evaluated, revision=lab.facts().revision)
+def test_hand_in_evaluation_of_another_sheet_is_stale(sqlite_lab, on_sqlite):
+    first, sqlite_lab.sheet = sqlite_lab.sheet, sqlite_lab.begin()
+    sqlite_lab.write_lines(lines(*GOOD))
+    assert sqlite_lab.sheet != first
+    assert refusal(sqlite_lab, Stale, on_sqlite, revision=sqlite_lab.facts().revision)
 
 
 # what is missing, what fails
@@ -140,13 +147,13 @@ def test_hand_in_of_an_empty_sheet_names_all_that_is_missing(sqlite_lab):
     assert missing == {(0, "temperature"), (0, "step:mixed"), (0, "indicator"), (1, "")}
 
 
-def test_hand_in_written_after_evaluation_and_struck_to_nothing_is_refused(lab, evaluated):
-    stands = {one.place: one for one in lab.facts().entries}[(1, "burette_end", 1)]
+def test_hand_in_written_after_evaluation_and_struck_to_nothing_is_refused(sqlite_lab, on_sqlite):
+    stands = {one.place: one for one in sqlite_lab.facts().entries}[(1, "burette_end", 1)]
     strike = NewEntry(
         str(uuid4()), 1, "burette_end", "", strikes=stands.id, reason="not at rest"
     )  # fmt: skip
-    lab.write(strike)
-    refused = refusal(lab, Unacceptable, evaluated, revision=lab.facts().revision)
+    sqlite_lab.write(strike)
+    refused = refusal(sqlite_lab, Unacceptable, on_sqlite, revision=sqlite_lab.facts().revision)
     assert refused.field == "burette_end"
 
 
@@ -180,8 +187,8 @@ def test_other_indicator_than_the_recipes_fails(sqlite_lab):
     assert failing(sqlite_lab.evaluate().result["findings"]) == ["end point"]
 
 
-def test_reason_for_what_does_not_fail_is_refused(lab, evaluated):
-    refused = refusal(lab, Unacceptable, evaluated, reasons={"spread": "just so"})
+def test_reason_for_what_does_not_fail_is_refused(sqlite_lab, on_sqlite):
+    refused = refusal(sqlite_lab, Unacceptable, on_sqlite, reasons={"spread": "just so"})
     assert refused.field == "reasons.spread"
 
 
@@ -203,43 +210,53 @@ def test_nothing_delivered_is_refused_in_words(sqlite_lab):
 
 
 @pytest.mark.parametrize("who", ["second analyst", "countersigner"])
-def test_hand_in_with_somebody_elses_password_is_refused(lab, evaluated, who):
-    assert refusal(lab, NotSignedIn, evaluated, proof=lab.proof(who)).field == "password"
+def test_hand_in_with_somebody_elses_password_is_refused(sqlite_lab, on_sqlite, who):
+    assert (
+        refusal(sqlite_lab, NotSignedIn, on_sqlite, proof=sqlite_lab.proof(who)).field == "password"
+    )
 
 
-def test_hand_in_with_an_old_proof_is_refused(lab, evaluated):
-    proof = lab.proof("analyst")
-    lab.clock.move(minutes=3)
-    assert refusal(lab, NotSignedIn, evaluated, proof=proof)
+def test_hand_in_with_an_old_proof_is_refused(sqlite_lab, on_sqlite):
+    proof = sqlite_lab.proof("analyst")
+    sqlite_lab.clock.move(minutes=3)
+    assert refusal(sqlite_lab, NotSignedIn, on_sqlite, proof=proof)
 
 
-def test_hand_in_while_an_instrument_is_held_is_refused_by_its_kind(lab, evaluated):
-    lab.act(hold_thing, HoldThing("instrument", lab.burette, "tip chipped"), "analyst")
-    refused = refusal(lab, NotAllowed, lab.evaluate())
+def test_hand_in_while_an_instrument_is_held_is_refused_by_its_kind(sqlite_lab, on_sqlite):
+    sqlite_lab.act(
+        hold_thing, HoldThing("instrument", sqlite_lab.burette, "tip chipped"), "analyst"
+    )
+    refused = refusal(sqlite_lab, NotAllowed, sqlite_lab.evaluate())
     assert refused.field == "burette"
     assert "tip chipped" in refused.says
-    lab.clock.move(minutes=5)
-    release = ReleaseThing("instrument", lab.burette, "it was the stand")
-    lab.act(release_thing, release, "keeper")
+    sqlite_lab.clock.move(minutes=5)
+    release = ReleaseThing("instrument", sqlite_lab.burette, "it was the stand")
+    sqlite_lab.act(release_thing, release, "keeper")
     # read at the very instant at which it was doubted: that stays within the doubt
-    assert refusal(lab, NotAllowed, lab.evaluate())
+    assert refusal(sqlite_lab, NotAllowed, sqlite_lab.evaluate())
 
 
-def test_hand_in_after_a_doubt_that_began_after_the_readings_and_is_gone(lab, evaluated):
-    lab.clock.move(minutes=1)
-    lab.act(hold_thing, HoldThing("instrument", lab.burette, "tip chipped"), "analyst")
-    lab.clock.move(minutes=5)
-    lab.act(release_thing, ReleaseThing("instrument", lab.burette, "it was the stand"), "keeper")
-    sign(lab, lab.evaluate())
-    assert lab.facts().state == "handed in"
+def test_hand_in_after_a_doubt_that_began_after_the_readings_and_is_gone(sqlite_lab, on_sqlite):
+    sqlite_lab.clock.move(minutes=1)
+    sqlite_lab.act(
+        hold_thing, HoldThing("instrument", sqlite_lab.burette, "tip chipped"), "analyst"
+    )
+    sqlite_lab.clock.move(minutes=5)
+    sqlite_lab.act(
+        release_thing, ReleaseThing("instrument", sqlite_lab.burette, "it was the stand"), "keeper"
+    )
+    sign(sqlite_lab, sqlite_lab.evaluate())
+    assert sqlite_lab.facts().state == "handed in"
 
 
-def test_hand_in_after_the_calibration_lapsed_stays_possible(lab, evaluated):
+def test_hand_in_after_the_calibration_lapsed_stays_possible(sqlite_lab, on_sqlite):
     # what counts is that it was in date when it was used
-    lab.clock.move(days=400)
-    assert lab.facts().instrument("burette").due_at < lab.clock() - timedelta(days=100)
-    sign(lab, lab.evaluate())
-    assert lab.facts().state == "handed in"
+    sqlite_lab.clock.move(days=400)
+    assert sqlite_lab.facts().instrument("burette").due_at < sqlite_lab.clock() - timedelta(
+        days=100
+    )
+    sign(sqlite_lab, sqlite_lab.evaluate())
+    assert sqlite_lab.facts().state == "handed in"
 
 
 # left out: R046

@@ -78,6 +78,7 @@ def test_standard_lot_keeps_the_digits_of_its_certificate(lab):
         ({"minimum_sample_g": "-0.1"}, "minimum_sample_g.value"),
         ({"minimum_sample_g": "much"}, "minimum_sample_g.value"),
         ({"basis": "wet"}, "basis"),
+        ({"substance": "white powder"}, "molar_mass"),
         ({"storage": "a\0"}, "storage"),
     ],
 )

@@ -1,6 +1,6 @@
 // What a row asks before it takes an odd value. The server decides in the end; this asks first.
 
-import { compare } from "./reading.js";
+import { compare, unitOf } from "./reading.js";
 
 const AGAIN = { key: "again", label: "Type again" };
 const ANYWAY = { key: "anyway", label: "It is right, write it" };
@@ -65,7 +65,7 @@ function outside(row, reading, [low, high], answers) {
   const under = stated(low) && compare(reading.text, low) < 0;
   const over = stated(high) && compare(reading.text, high) > 0;
   if (!under && !over) return null;
-  const unit = row.unit ? ` ${row.unit === "Cel" ? "°C" : row.unit}` : "";
+  const unit = row.unit ? ` ${unitOf(row)}` : "";
   const bound = under ? `less than ${low}${unit}` : `more than ${high}${unit}`;
   const usual = answers.length > 1 ? "unusual: it is" : "not possible here: it is";
   return { says: `${reading.text}${unit} is ${usual} ${bound}.`, answers };

@@ -52,7 +52,7 @@ export function readTyped(typed, row) {
     return { says: `“${bare}” is not a number. Type digits with one point or comma, for example ${exampleFor(row)}.` };
   }
   if (line?.unit && row.unit && line.unit !== unitOf(row)) {
-    return { says: `The line is in ${line.unit}, this row is in ${row.unit}. Set the instrument to ${row.unit} and send it again.` };
+    return { says: `The line is in ${line.unit}, this row is in ${unitOf(row)}. Set the instrument to ${unitOf(row)} and send it again.` };
   }
   const text = plain ? bare.replace("\u2212", "-") : line.text;
   const wrong = decimalsSay(text, row) ?? signSays(text, row);
@@ -60,8 +60,9 @@ export function readTyped(typed, row) {
   return { text, unit: row.unit, raw: line ? line.raw : null, settled: line ? line.settled : true };
 }
 
-function unitOf(row) {
-  return row.unit === "Cel" ? "°C" : row.unit;
+/** The unit of a row or reading as people write it; empty where there is none. */
+export function unitOf({ unit }) {
+  return unit === "Cel" ? "°C" : (unit ?? "");
 }
 
 function decimalsSay(text, row) {

@@ -22,7 +22,9 @@ export function networkSays({ waiting, refused, state, detail }) {
 
 /** How many replicates are still wanted, in few words. */
 export function toGo(margin) {
-  return margin.to_go > 0 ? `${margin.to_go} to go` : "all written";
+  if (margin.to_go === 0) return "all written";
+  const some = margin.replicates.some((one) => one.value !== null);
+  return some ? `${margin.to_go} to go` : `${margin.to_go} ${margin.to_go === 1 ? "replicate" : "replicates"} to go`;
 }
 
 /** The parts of the one-line strip, most needed first: those that find no room are left out. */

@@ -4,7 +4,7 @@ import { clockOf, newEntry } from "../lib/entry.js";
 import { COUNTS_AGAIN, keyOf, layOver, nextOf, rowsOf } from "../lib/overlay.js";
 import { press } from "../lib/pad.js";
 import { questionFor } from "../lib/questions.js";
-import { readTyped } from "../lib/reading.js";
+import { readTyped, unitOf } from "../lib/reading.js";
 import { entries } from "../lib/strip.js";
 import { Sender } from "../outbox/sender.js";
 import { Store } from "../outbox/store.js";
@@ -89,7 +89,7 @@ function draw({ focus = false } = {}) {
   drawEnd();
   const fine = window.matchMedia("(pointer: fine)").matches;
   if (focus && here.note?.answers?.length) document.querySelector("[data-answer]")?.focus();
-  else if (focus && fine) spot("reading")?.focus({ preventScroll: true });
+  else if (focus && fine) (spot("reading") ?? spot("hand-in"))?.focus({ preventScroll: true });
   else if (field) spot(field)?.focus({ preventScroll: true });
   if (caret && document.activeElement?.id === "reading" && spot("reading").setSelectionRange) {
     spot("reading").setSelectionRange(...caret);
@@ -115,10 +115,9 @@ function drawAside() {
 
 function writeLabel() {
   const { lit, typed } = view;
-  const unit = lit.unit === "Cel" ? "°C" : (lit.unit ?? "");
-  const what = [typed.trim(), typed.trim() ? unit : ""].filter(Boolean).join(" ");
-  if (lit.value) return `Strike ${lit.value.text}, write ${what}`.trim();
-  return `Write ${what}`.trim();
+  const what = [typed.trim(), typed.trim() ? unitOf(lit) : ""].filter(Boolean).join(" ");
+  const verb = lit.value ? `Strike ${lit.value.text}, write` : "Write";
+  return [el("span", { class: "verb" }, verb), " ", el("span", { class: "what" }, what)];
 }
 
 /** The foot of the sheet: on to hand in, or what keeps it from that. */
@@ -130,7 +129,7 @@ function drawEnd() {
   if (!sheet.may_write && !sheet.may_hand_in) return end.replaceChildren();
   return end.replaceChildren(
     ready
-      ? el("a", { class: "button main", href: `/bench/${sheetId}/hand-in` }, "Read it over and hand in")
+      ? el("a", { class: "button main", id: "hand-in", href: `/bench/${sheetId}/hand-in` }, "Read it over and hand in")
       : el("p", { class: "soft" }, unsent > 0 ? `Hand in opens when ${entries(unsent)} more ${unsent === 1 ? "is" : "are"} on the server.` : "Before hand in:"),
     ready ? "" : el("ul", { class: "missing" }, missing),
   );
@@ -142,7 +141,7 @@ function say(words) {
 
 /** The lit row whole between the top and the pad; a row taller than that shows its beginning. */
 function showLit() {
-  const row = document.querySelector(".row.next");
+  const row = document.querySelector(".row.next") ?? spot("hand-in");
   if (!row) return;
   const room = (place.clientHeight < place.scrollHeight ? place.clientHeight : window.innerHeight) - dock();
   row.scrollIntoView({ block: row.offsetHeight > room - 32 ? "start" : "center" });
@@ -191,7 +190,7 @@ const acts = {
     if (noted) draw();
     view.typed = text;
     if (spot("echo")) spot("echo").textContent = echoOf(view.lit, text);
-    if (spot("write")) spot("write").textContent = writeLabel();
+    if (spot("write")) spot("write").replaceChildren(...writeLabel());
   },
   reason(text) {
     here.reason = text;
@@ -258,10 +257,9 @@ function put(row, reading, confirmed) {
   keepAndSend(row, reading, { strikes, reason: strikes ? here.reason.trim() : confirmed });
   store.draft(keyOf(row), "");
   Object.assign(here, { chosen: null, note: null, reason: "", confirmed: null });
-  const unit = reading.unit === "Cel" ? "°C" : (reading.unit ?? "");
   draw({ focus: true });
   showLit();
-  say(`${row.label} ${reading.text} ${unit} written on this tablet. ${view.lit ? `Next: ${view.lit.label}.` : ""}`);
+  say(`${row.label} ${reading.text} ${unitOf(reading)} written on this tablet. ${view.lit ? `Next: ${view.lit.label}.` : ""}`);
   return undefined;
 }
 

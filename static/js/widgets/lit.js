@@ -1,6 +1,6 @@
 // The lit row: the one that is written next, or the one that is being corrected.
 
-import { echo, readTyped } from "../lib/reading.js";
+import { echo, readTyped, unitOf } from "../lib/reading.js";
 import { keyOf } from "../lib/overlay.js";
 import { el, unseen } from "./dom.js";
 
@@ -18,7 +18,7 @@ export function litRow(row, view, acts) {
       row.hint ? el("span", { class: "hint", id: "hint" }, row.hint) : null,
     ),
     fieldOf(row, view, acts),
-    el("span", { class: "unit", "aria-hidden": "true" }, row.unit === "Cel" ? "°C" : (row.unit ?? "")),
+    el("span", { class: "unit", "aria-hidden": "true" }, unitOf(row)),
     el("span", { class: "where" }, correcting ? "correcting" : "next"),
     row.kind === "number" ? el("p", { class: "echo", id: "echo" }, echoOf(row, view.typed)) : null,
     noteOf(row, view, acts),
@@ -31,14 +31,14 @@ export function litRow(row, view, acts) {
 function labelOf(row) {
   const typed = row.kind === "number" || row.kind === "text";
   if (!typed) return el("span", {}, row.label);
-  return el("label", { for: "reading" }, row.label, row.unit ? unseen(`, in ${row.unit}`) : null);
+  return el("label", { for: "reading" }, row.label, row.unit ? unseen(`, in ${unitOf(row)}`) : null);
 }
 
 /** What the typed text amounts to, said back while it is typed. */
 export function echoOf(row, typed) {
   if (!typed.trim()) return "";
   const reading = readTyped(typed, row);
-  return reading.says ? "" : echo(reading.text, row.unit === "Cel" ? "°C" : row.unit);
+  return reading.says ? "" : echo(reading.text, unitOf(row));
 }
 
 function fieldOf(row, view, acts) {

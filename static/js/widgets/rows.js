@@ -1,6 +1,7 @@
 // The rows of the sheet: written, lit, or still to come.
 
 import { SERVER, keyOf } from "../lib/overlay.js";
+import { unitOf } from "../lib/reading.js";
 import { litRow } from "./lit.js";
 import { el, unseen } from "./dom.js";
 
@@ -39,7 +40,7 @@ function wordy(row) {
 }
 
 function writtenRow(row, view, acts) {
-  const says = `${row.value.text}${row.unit ? ` ${row.unit}` : ""}`;
+  const says = [row.value.text, unitOf(row)].filter(Boolean).join(" ");
   const shown = el("span", { class: row.kind === "number" ? "reading" : "reading words" }, row.value.text);
   const value = view.mayWrite
     ? el(
@@ -59,7 +60,7 @@ function writtenRow(row, view, acts) {
     { class: `row written${wordy(row)}`, "data-key": keyOf(row) },
     el("span", { class: "label" }, row.label),
     el("span", { class: "values" }, struckOf(row), value),
-    el("span", { class: "unit" }, row.unit === "Cel" ? "°C" : (row.unit ?? "")),
+    el("span", { class: "unit" }, unitOf(row)),
     whereOf(row),
     row.struck.map(reasonOf),
   );
@@ -86,7 +87,7 @@ function emptyRow(row, view, acts) {
     { class: `row later${wordy(row)}${row.refused ? " is-refused" : ""}`, "data-key": keyOf(row) },
     el("span", { class: "label" }, row.label),
     el("span", { class: "values" }, struckOf(row), spot),
-    el("span", { class: "unit" }, row.unit === "Cel" ? "°C" : (row.unit ?? "")),
+    el("span", { class: "unit" }, unitOf(row)),
     el("span", { class: "where" }, state),
     row.refused ? el("p", { class: "row-note fails" }, row.refused.problem.detail ?? "Not taken.") : null,
   );

@@ -27,6 +27,11 @@ class Notes:
             if one["slot"] == "remark":
                 self._texts.append(f"{_where(one)}, remark: {one['text']} ({one['by']})")
 
+    def add(self, text: str) -> str:
+        """Add a note at the end and return its mark."""
+        self._texts.append(text)
+        return str(len(self._texts))
+
     def of_entry(self, entry: Mapping[str, Any]) -> list[str]:
         """Return the marks of an entry."""
         return self._of_entry.get(_place(entry), [])
@@ -40,8 +45,7 @@ class Notes:
         return [[str(number), text] for number, text in enumerate(self._texts, start=1)]
 
     def _note(self, marks: dict[Any, list[str]], key: Any, text: str) -> None:
-        self._texts.append(text)
-        marks.setdefault(key, []).append(str(len(self._texts)))
+        marks.setdefault(key, []).append(self.add(text))
 
     def _correction(self, one: Mapping[str, Any]) -> str:
         unit = f" {unit_words(one['unit'])}" if one["unit"] else ""

@@ -2,7 +2,7 @@
 
 from datetime import datetime
 
-from server.reports.certificate_told import certificate_told
+from server.reports.certificate.told import certificate_told
 from server.reports.issued import Issued
 from server.reports.qr_code import qr_squares
 from server.reports.typesetting import set_pdf, set_pictures
@@ -22,9 +22,7 @@ def certificate_pdf(issued: Issued, *, jws: str | None = None) -> bytes:
 
 def certificate_pictures(issued: Issued, *, dots_per_inch: float = 110) -> list[bytes]:
     """Return the printed certificate's pages as PNG pictures."""
-    return set_pictures(
-        _PAGE, _told(issued), made_at=_made_at(issued), dots_per_inch=dots_per_inch
-    )
+    return set_pictures(_PAGE, _told(issued), made_at=_made_at(issued), dots_per_inch=dots_per_inch)
 
 
 def _told(issued: Issued) -> dict[str, object]:

@@ -27,7 +27,7 @@ def dots_told(result: Mapping[str, Any]) -> dict[str, Any] | None:
     start, width = low - _MARGIN * span, (1 + 2 * _MARGIN) * span
 
     def at(value: float) -> float:
-        return round((value - start) / width, 5)
+        return round(float((value - start) / width), 5)
 
     decimals = printed(result).decimals
     dots = _on_levels(

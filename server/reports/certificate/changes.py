@@ -52,8 +52,10 @@ def _lines(was: Mapping[str, Any], now: Mapping[str, Any]) -> Iterator[tuple[str
         ("calculation", was["calculation"], now["calculation"]),
     ]
     papers = {"was": _papers(was), "now": _papers(now)}
-    for kind in dict.fromkeys((*papers["was"], *papers["now"])):
-        pairs.append((kind, papers["was"].get(kind, "none"), papers["now"].get(kind, "none")))
+    pairs += [
+        (kind, papers["was"].get(kind, "none"), papers["now"].get(kind, "none"))
+        for kind in dict.fromkeys((*papers["was"], *papers["now"]))
+    ]
     yield from (pair for pair in pairs if pair[1] != pair[2])
 
 

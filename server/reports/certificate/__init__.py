@@ -1,0 +1,1 @@
+"""The certificate on paper: what it is told, and its PDF."""
