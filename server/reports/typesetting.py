@@ -21,6 +21,9 @@ import typst
 ARCHIVAL = ("a-3a", "ua-1")
 _PAGES = Path(__file__).with_name("pages")
 _NO_LETTER = re.compile("could not be displayed|contains the codepoint")
+_UNBROKEN = re.compile(r"\S{25,}")
+_DIGEST = re.compile(r"[0-9a-f]{64}")
+_PIECE = 12
 _LOCK = Lock()
 
 
@@ -99,7 +102,7 @@ def _compile(
     made_at: datetime | None = None,
     **asked: Any,
 ) -> Any:
-    inputs = {"told": json.dumps(told, ensure_ascii=False), **files}
+    inputs = {"told": json.dumps(_breakable(told), ensure_ascii=False), **files}
     if standards:
         asked["pdf_standards"] = list(standards)
     if made_at is not None:
@@ -134,6 +137,22 @@ def _is_shown(letter: str) -> bool:
     except _LetterMissing:
         return False
     return True
+
+
+def _breakable(value: Any) -> Any:
+    """Return texts with places to break in what is long and has no space; digests stay whole."""
+    if isinstance(value, Mapping):
+        return {key: _breakable(one) for key, one in value.items()}
+    if isinstance(value, list | tuple):
+        return [_breakable(one) for one in value]
+    return _UNBROKEN.sub(_pieces, value) if isinstance(value, str) else value
+
+
+def _pieces(found: re.Match[str]) -> str:
+    text = found.group()
+    if _DIGEST.fullmatch(text):
+        return text
+    return "\u200b".join(text[at : at + _PIECE] for at in range(0, len(text), _PIECE))
 
 
 def _texts(value: Any) -> str:

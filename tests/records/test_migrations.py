@@ -10,7 +10,17 @@ from server.records.tables import bench, lots, people, stores, trail
 from server.records.tables.base import Table
 
 TABLES = (bench, lots, people, stores, trail)
-INK = ("entry", "evaluation", "signature", "certificate", "trail", "recipe", "calibration", "file")
+INK = (
+    "entry",
+    "evaluation",
+    "signature",
+    "certificate",
+    "trail",
+    "recipe",
+    "calibration",
+    "file",
+    "log",
+)
 
 
 def same_type(_context, _column, _metadata_column, _type, metadata_type):

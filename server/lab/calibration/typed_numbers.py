@@ -126,7 +126,7 @@ def corrected(table: Sequence[tuple[float, float]], reading: Decimal, where: str
     try:
         return value + interpolate_error(table, value)
     except ValueError as problem:
-        says = f"{where}: {problem} of the calibration."
+        says = f"{where}: {problem}; the calibration in use reaches no further."
         raise Unacceptable(says, field=where) from problem
 
 

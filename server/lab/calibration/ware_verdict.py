@@ -180,20 +180,21 @@ def _single_checks(run: WaterRun, found: Run, limit: Tolerance) -> tuple[Check, 
         _uncertainty_check(found.U_mL, limit),
     ]  # fmt: skip
     if limit.random_mL is not None and found.s_mL is not None:
-        checks.insert(1, _random_check(run, found, limit))
+        dof, cv = len(found.volumes) - 1.0, f" ({found.cv_percent:.3f} %)"
+        checks.insert(1, _random_check(found.s_mL, dof, limit, rule=run.rule, cv=cv))
     return tuple(checks)
 
 
-def _random_check(run: WaterRun, found: Run, limit: Tolerance) -> Check:
-    s, permitted = found.s_mL or 0.0, limit.random_mL or "0"
+def _random_check(s: float, dof: float, limit: Tolerance, *, rule: str, cv: str) -> Check:
+    permitted = limit.random_mL or "0"
     # u(s) ≈ s/√(2ν) (JCGM 100, E.4.3), twice that as U
-    U = 2.0 * s / math.sqrt(2.0 * (len(found.volumes) - 1))
+    U = 2.0 * s / math.sqrt(2.0 * dof)
     says = (
-        f"The random error, the standard deviation of {len(found.volumes)} deliveries, is "
-        f"{significant(s)} mL ({found.cv_percent:.3f} %); permitted are {permitted} mL."
+        f"The random error, the standard deviation of one delivery ({dof:g} degrees of freedom), "
+        f"is {significant(s)} mL{cv}; permitted are {permitted} mL."
     )
     return conformity_check(
-        "random error", judge(s, float(permitted), rule=run.rule, U=U), basis=_basis(limit),
+        "random error", judge(s, float(permitted), rule=rule, U=U), basis=_basis(limit),
         unit="mL", says=says, shown=(f"{significant(s)} mL", f"{permitted} mL"),
     )  # fmt: skip
 
@@ -212,7 +213,7 @@ def _curve_checks(run: WaterRun, curve: CurveOfErrors, limit: Tolerance) -> tupl
         f"permitted are {limit.systematic_mL} mL."
     )
     most = f"{limit.systematic_mL} mL"
-    return (
+    checks = [
         conformity_check(
             "error at a point", judge(curve.largest_mL, permitted, rule=run.rule, U=U),
             basis=_basis(limit), unit="mL", says=at_point,
@@ -226,7 +227,11 @@ def _curve_checks(run: WaterRun, curve: CurveOfErrors, limit: Tolerance) -> tupl
             unit="mL", says=between, shown=(f"{curve.largest_between_mL:.4f} mL", most),
         ),
         _uncertainty_check(U, limit),
-    )  # fmt: skip
+    ]  # fmt: skip
+    if limit.random_mL is not None:
+        pooled = (curve.pooled_s_mL, curve.pooled_dof)
+        checks.append(_random_check(*pooled, limit, rule=run.rule, cv=", pooled over the points"))
+    return tuple(checks)
 
 
 def _uncertainty_check(U: float, limit: Tolerance) -> Check:

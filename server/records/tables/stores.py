@@ -55,7 +55,10 @@ class Instrument(Table):
 
 
 class Calibration(Table):
-    """One calibration of an instrument; the newest version serves, old ones stay."""
+    """One calibration of an instrument; the newest version serves, old ones stay.
+
+    ``run`` is the calibration as it was done here, reading by reading, as typed.
+    """
 
     __tablename__ = "calibration"
     __table_args__ = (UniqueConstraint("instrument_id", "version"),)
@@ -68,9 +71,28 @@ class Calibration(Table):
     due_at: Mapped[When]
     due_basis: Mapped[str] = mapped_column(Text)
     document: Mapped[Document]
+    run: Mapped[Document | None]
     file_id: Mapped[Uuid | None] = mapped_column(ForeignKey("file.id"))
     made_by: Mapped[Uuid] = mapped_column(ForeignKey("person.id"))
     made_at: Mapped[When]
+
+
+class Log(Table):
+    """One line in the log of a standard lot or instrument: drying, use, opened, check weighing.
+
+    In ink: a line is struck by another one, with a reason.
+    """
+
+    __tablename__ = "log"
+    id: Mapped[Uuid] = mapped_column(primary_key=True)
+    kind: Mapped[str] = mapped_column(Text)
+    thing_id: Mapped[Uuid] = mapped_column(index=True)
+    what: Mapped[str] = mapped_column(Text)
+    document: Mapped[Document]
+    strikes: Mapped[Uuid | None] = mapped_column(ForeignKey("log.id"), unique=True)
+    reason: Mapped[str | None] = mapped_column(Text)
+    person_id: Mapped[Uuid] = mapped_column(ForeignKey("person.id"))
+    at: Mapped[When]
 
 
 class File(Table):

@@ -1,6 +1,5 @@
 """What the printed certificate is told: every figure, name and sentence of it, as text."""
 
-import re
 from collections.abc import Iterator, Mapping
 from datetime import datetime
 from typing import Any
@@ -20,8 +19,6 @@ from server.sheets.parts.telling import (
     typed_day_words,
 )
 
-_UNBROKEN = re.compile(r"\S{40,}")
-_PIECE = 20
 _LONG_REMARK = 240
 _TITLES = {"measured": "analyst", "countersigned": "countersigner"}
 
@@ -31,7 +28,7 @@ def certificate_told(issued: Issued) -> dict[str, Any]:
     document, zone = issued.document, issued.document["laboratory"]["zone"]
     result, notes = document["result"], Notes(document, zone)
     shown = outcome.printed(result)
-    told = {
+    return {
         "number": issued.number,
         "title": document["title"],
         "laboratory": document["laboratory"]["name"],
@@ -75,8 +72,6 @@ def certificate_told(issued: Issued) -> dict[str, Any]:
         "digests": _digests(issued),
         "url": issued.url or "",
     }
-    broken: dict[str, Any] = _breakable(told)
-    return broken
 
 
 def _name(lot: Mapping[str, Any]) -> str:
@@ -192,17 +187,3 @@ def _digests(issued: Issued) -> list[list[str]]:
         ["bench record", document["input_digest"]],
         [f"trail, act {issued.anchor.seq}", issued.anchor.hash],
     ]
-
-
-def _breakable(value: Any) -> Any:
-    """Return texts with places to break in what is long and has no space."""
-    if isinstance(value, Mapping):
-        return {key: _breakable(one) for key, one in value.items()}
-    if isinstance(value, list):
-        return [_breakable(one) for one in value]
-    return _UNBROKEN.sub(_pieces, value) if isinstance(value, str) else value
-
-
-def _pieces(found: re.Match[str]) -> str:
-    text = found.group()
-    return "\u200b".join(text[at : at + _PIECE] for at in range(0, len(text), _PIECE))

@@ -1,8 +1,12 @@
 // A typed reading is text from the key to the ledger: nothing here turns it into a float.
 
 const NUMBER = /^[-\u2212]?\d+(?:[.,]\d+)?$/;
-const LINE = /^\s*(?:([A-Za-z*?]{1,4})[\s,:]+)?([+-]?)\s*(\d+(?:[.,]\d+)?)\s*(?:\[?(mg|g|kg|mL|ml|L|°C|C|mV|pH|hPa|%)\]?)?\s*([A-Za-z*?]{1,3})?\s*$/;
-const SETTLED = new Set(["", "N", "NET", "G", "S", "ST"]);
+const MARK = "[A-Za-z*?]{1,4}";
+const LINE = new RegExp(
+  `^\\s*((?:${MARK}[\\s,:]+){0,2})([+-]?)\\s*(\\d+(?:[.,]\\d+)?)\\s*(?:\\[?(mg|g|kg|mL|ml|L|°C|C|mV|pH|hPa|%)\\]?)?\\s*(${MARK})?\\s*$`,
+);
+const SETTLED = new Set(["N", "NET", "G", "S", "ST"]);
+const SPELLED = { ml: "mL", C: "°C" };
 
 /** The digits after the point or comma of a number as typed. */
 export function decimalsOf(text) {
@@ -21,12 +25,13 @@ export function echo(text, unit) {
 export function readLine(line) {
   const found = LINE.exec(line);
   if (!found) return null;
-  const [, before = "", sign, digits, unit = null, after = ""] = found;
+  const [, before, sign, digits, unit = null, after = ""] = found;
   if (!unit && !before) return null;
+  const marks = `${before} ${after}`.toUpperCase().match(/[A-Z*?]+/g) ?? [];
   return {
     text: sign === "-" ? `-${digits}` : digits,
-    unit: unit === "ml" ? "mL" : unit,
-    settled: SETTLED.has(before.toUpperCase()) && SETTLED.has(after.toUpperCase()),
+    unit: SPELLED[unit] ?? unit,
+    settled: marks.every((mark) => SETTLED.has(mark)),
     raw: line,
   };
 }

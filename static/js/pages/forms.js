@@ -21,3 +21,23 @@ document.querySelector("[aria-invalid=true], .problem")?.focus();
 
 const present = document.querySelector(".places [aria-current]");
 if (present) present.parentElement.parentElement.scrollLeft = present.offsetLeft - 16;
+
+// A refusal leads back to the page where it happened, which still holds what was typed.
+const back = document.getElementById("back");
+if (back && history.length > 1) {
+  back.hidden = false;
+  back.addEventListener("click", () => history.back());
+}
+
+// What is folded away is printed, also by browsers that cannot do so by style alone.
+const opened = new Set();
+window.addEventListener("beforeprint", () => {
+  for (const fold of document.querySelectorAll("main details:not([open])")) {
+    opened.add(fold);
+    fold.open = true;
+  }
+});
+window.addEventListener("afterprint", () => {
+  for (const fold of opened) fold.open = false;
+  opened.clear();
+});

@@ -136,6 +136,17 @@ def test_piston_pipette_has_a_limit_for_the_random_error(spread, verdict):
     assert check.limit == 0.003
 
 
+def test_evaporation_is_added_by_the_minutes_of_each_weighing():
+    weighings = [{"net": grams(10.0), "water": "20.0"} for _ in range(10)]
+    weighings[0]["minutes"] = "3"
+    run = a_run([], weighings=weighings, evaporation={"rate": "0.0010", "minutes": "1"})
+    outcome = judge_ware(read_water_run(run))
+    lost = [one.found.evaporated_g for one in outcome.rows]
+    assert lost == pytest.approx([0.003] + [0.001] * 9)
+    assert outcome.rows[0].found.volume_mL == pytest.approx(10.0 + 0.003 * Z, abs=1e-6)
+    assert "evaporation" in named(outcome, "budget").says
+
+
 def burette(points, **changed):
     weighings = [{"net": grams(volume), "water": "20.0", "point": at} for at, volume in points]
     run = a_run([], kind="burette", nominal="20", weighings=weighings) | {"class": "A"}
@@ -197,6 +208,17 @@ def test_burette_whose_points_differ_by_more_than_the_tolerance_fails_between_po
     outcome = judge_ware(read_water_run(burette(points, nominal="25", division="0.05")))
     assert named(outcome, "error at a point").verdict == "holds"
     assert named(outcome, "error between points").verdict == "fails"
+
+
+@pytest.mark.parametrize(("apart", "verdict"), [(0.0282, "holds"), (0.0284, "fails")])
+def test_piston_burette_has_a_limit_for_the_random_error(apart, verdict):
+    # ISO 8655-3:2002, 20 mL (from memory): 40 µL systematic, 20 µL random; s of a pair is d/√2
+    points = [(at, float(at) + sign * apart / 2) for at in ("10", "20") for sign in (-1, 1)]
+    run = burette(points, kind="piston burette")
+    del run["class"]
+    check = named(judge_ware(read_water_run(run)), "random error")
+    assert check.verdict == verdict
+    assert "from memory" in check.basis
 
 
 def test_class_tolerance_serves_without_a_run_and_says_so():

@@ -197,9 +197,7 @@ def test_certificate_signature_that_does_not_hold_is_called_out(issued) -> None:
     assert broken.count("This signature does not hold") == 1
 
 
-def test_certificate_without_a_second_person_says_not_independently_reviewed(
-    issued, text
-) -> None:
+def test_certificate_without_a_second_person_says_not_independently_reviewed(issued, text) -> None:
     alone = changed(issued, independently_reviewed=False)
     assert "Not independently reviewed." in text_of(certificate_pdf(alone))
     assert "Not independently reviewed" not in text
@@ -207,7 +205,7 @@ def test_certificate_without_a_second_person_says_not_independently_reviewed(
 
 MARKUP = [
     '#panic("stop")',
-    "#read(\"/etc/passwd\")",
+    '#read("/etc/passwd")',
     "$x^2$ *bold* _it_ `raw` @ref <label> \\ // /* = -",
     "<script>alert(1)</script> {{7*7}} {% x %}",
     "]] }} ) \" ' \\u{41}",
@@ -236,9 +234,7 @@ def test_certificate_spells_letters_that_no_font_has(issued) -> None:
 def test_certificate_prints_a_remark_of_ten_thousand_characters_whole(issued, remark) -> None:
     entry = {**issued.document["entries"][0], "slot": "remark", "text": remark, "reason": None}
     signatures = [{**one, "remark": remark} for one in issued.document["signatures"]]
-    long = changed(
-        issued, entries=[*issued.document["entries"], entry], signatures=signatures
-    )
+    long = changed(issued, entries=[*issued.document["entries"], entry], signatures=signatures)
     flat = text_of(certificate_pdf(long)).replace(" ", "")
     letter = remark[0]
     assert flat.count(letter) >= 3 * remark.count(letter)

@@ -1,0 +1,155 @@
+"""What stands on a bottle's label."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from datetime import date, datetime
+from typing import Any
+from urllib.parse import urlsplit
+
+from server.lab.codes import holds
+from server.lab.refusal import Unacceptable
+from server.lab.validity import local_day
+from server.sheets.parts.telling import day_words
+
+PICTOGRAMS: Mapping[str, str] = {
+    "GHS01": "exploding bomb",
+    "GHS02": "flame",
+    "GHS03": "flame over circle",
+    "GHS04": "gas cylinder",
+    "GHS05": "corrosion",
+    "GHS06": "skull and crossbones",
+    "GHS07": "exclamation mark",
+    "GHS08": "health hazard",
+    "GHS09": "environment",
+}
+SIGNAL_WORDS = ("", "Danger", "Warning")
+
+
+@dataclass(frozen=True, slots=True)
+class ConfirmedHazards:
+    """Pictograms, signal word and statements that the laboratory's responsible person confirmed."""
+
+    pictograms: tuple[str, ...]
+    signal_word: str
+    statements: tuple[str, ...]
+    confirmed_by: str
+    confirmed_on: date
+
+
+@dataclass(frozen=True, slots=True)
+class PrintedValue:
+    """The certified concentration, where the laboratory wants it on the label all the same."""
+
+    reported: str
+    certificate: str
+    valid_until: str
+
+
+@dataclass(frozen=True, slots=True)
+class Reprint:
+    """Why a label is printed again, and when."""
+
+    reason: str
+    at: datetime
+
+
+@dataclass(frozen=True, slots=True)
+class BottleLabel:
+    """One bottle's label: by default no number but the nominal one.
+
+    ``nominal`` is in words, with its unit. ``zone`` is the laboratory's, for the day of a reprint.
+    """
+
+    code: str
+    titrant: str
+    nominal: str
+    lot: str
+    bottle: int
+    made_on: str
+    laboratory: str
+    address: str
+    zone: str
+    hazards: ConfirmedHazards | None = None
+    value: PrintedValue | None = None
+    reprint: Reprint | None = None
+
+
+def bottle_url(base_url: str, code: str) -> str:
+    """Return the address behind a label: upper case, so that its QR code is small.
+
+    Raises:
+        Unacceptable: the base is no http address, or the code none of a bottle.
+    """
+    if not holds(code):
+        raise Unacceptable(f"“{code[:40]}” is no code of a bottle.", field="code")
+    parts = urlsplit(base_url)
+    if parts.scheme not in {"http", "https"} or not parts.netloc or parts.query or parts.fragment:
+        says = "The laboratory's own address must be an http address without question marks."
+        raise Unacceptable(says, field="base_url", example="https://ledger.example")
+    host = f"{parts.scheme}://{parts.netloc}".upper()
+    return f"{host}{parts.path.rstrip('/')}/B/{code}"
+
+
+def label_told(label: BottleLabel) -> dict[str, Any]:
+    """Return what a label shows, as texts.
+
+    Raises:
+        Unacceptable: hazards without who confirmed them, a pictogram that is none, a reprint or a
+            printed value that lacks its words.
+    """
+    return {
+        "code": f"{label.code[:4]} {label.code[4:]}",
+        "titrant": label.titrant,
+        "nominal": f"nominal {label.nominal}",
+        "lot": f"Lot {label.lot}, bottle {label.bottle}",
+        "made": f"Made {label.made_on}" if label.made_on else "",
+        "laboratory": ", ".join(one for one in (label.laboratory, label.address) if one),
+        "value": _value(label.value),
+        "hazards": _hazards(label.hazards),
+        "reprint": _reprint(label),
+    }
+
+
+def _value(value: PrintedValue | None) -> list[str]:
+    if value is None:
+        return ["Value and state: scan, or look up the code."]
+    if not (value.reported.strip() and value.certificate.strip() and value.valid_until.strip()):
+        says = "A value is printed only with its certificate and the day until which it is valid."
+        raise Unacceptable(says, field="value")
+    return [
+        value.reported,
+        f"Certificate {value.certificate}, valid until {value.valid_until}. Scan for today's.",
+    ]
+
+
+def _hazards(hazards: ConfirmedHazards | None) -> dict[str, Any] | None:
+    if hazards is None:
+        return None
+    if not hazards.confirmed_by.strip():
+        says = "Hazards are printed only where the laboratory's responsible person confirmed them."
+        raise Unacceptable(says, field="hazards.confirmed_by", example="a name")
+    for one in hazards.pictograms:
+        if one not in PICTOGRAMS:
+            says = f"“{one[:40]}” is no pictogram; it is one of {', '.join(PICTOGRAMS)}."
+            raise Unacceptable(says, field="hazards.pictograms", example="GHS05")
+    if hazards.signal_word not in SIGNAL_WORDS:
+        says = f"“{hazards.signal_word[:40]}” is no signal word."
+        raise Unacceptable(says, field="hazards.signal_word", example="Danger")
+    return {
+        "pictograms": [
+            {"key": one, "name": PICTOGRAMS[one]} for one in dict.fromkeys(hazards.pictograms)
+        ],
+        "signal_word": hazards.signal_word,
+        "statements": " ".join(hazards.statements),
+        "confirmed": (f"Confirmed {day_words(hazards.confirmed_on)}, {hazards.confirmed_by}."),
+    }
+
+
+def _reprint(label: BottleLabel) -> str:
+    if label.reprint is None:
+        return ""
+    if not label.reprint.reason.strip():
+        says = "A label is printed again with a reason."
+        raise Unacceptable(says, field="reprint.reason", example="label lost in the wash")
+    day = day_words(local_day(label.reprint.at, label.zone))
+    return f"Printed again {day}: {label.reprint.reason}"
