@@ -13,7 +13,7 @@ _STANDS = 0.2
 """A variance that changes by less than this leaves the parameters where they are, as far as shows."""
 _LEAST_READING_U = 5e-4
 _LEAST_VOLUME_U = 2e-6
-_DRAWN_TO, _DRAWN_BY = 3e-4, 3.0
+_DRAWN_TO, _DRAWN_BY = 4e-4, 2.0
 """Towards which scatter of a volume (mL) the weights' is drawn, and by how many points' worth."""
 _MEDIAN_OF_CHI2 = 0.4549
 """Median of chi-squared with one degree of freedom."""

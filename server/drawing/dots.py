@@ -65,7 +65,7 @@ def _interval(scale: Scale, low: float | None, high: float | None) -> list[str]:
     }
     return [
         element("rect", band),
-        words("95 % interval of the mean", _RIGHT, max(top - 6, 12), anchor="end"),
+        words("95 % interval of the mean", _RIGHT, 14, anchor="end"),
     ]
 
 

@@ -2,6 +2,8 @@
 
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
+from decimal import Decimal
+from itertools import pairwise
 from typing import Any
 
 _MASS_SLOTS = {
@@ -17,6 +19,7 @@ _AIR_SLOTS = (
     ("air_humidity", "humidity", "%", "air humidity"),
 )
 _STATEMENT_KEYS = frozenset({"u", "U", "half_width"})
+_MICROKELVIN = Decimal("0.000001")
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,7 +39,8 @@ class SheetMaterials:
 
     ``standard``, ``solution``, ``reference``, ``balance``, ``burette`` and ``pipette`` are the
     objects of a bench record (``balance`` without ``buoyancy``); ``thermometer`` is
-    ``{"reading": bound}``, ``room`` ``{"temperature", "pressure", "humidity": bound}``; ``blank``
+    ``{"reading": bound, "error_table"?}`` (what is added to a reading; the record then holds the
+    corrected temperature), ``room`` ``{"temperature", "pressure", "humidity": bound}``; ``blank``
     is the uncertainty statement of a blank that the sheet reads, such as ``{"u": "0.005"}``.
     ``roots`` names the certificate or calibration of ``standard``, ``balance``, ``burette``,
     ``pipette``, ``thermometer``, ``room`` and ``reference``: it becomes the root of every quantity
@@ -225,7 +229,22 @@ def _temperature(materials: SheetMaterials, written: _Written) -> dict[str, Any]
     text = next((one for one in texts if one is not None), None)
     if text is None:
         return None
-    return _reading(text, "Cel", (_rooted(materials, "thermometer") or {}).get("reading"))
+    thermometer = _rooted(materials, "thermometer") or {}
+    return _reading(_corrected(text, thermometer), "Cel", thermometer.get("reading"))
+
+
+def _corrected(text: str, thermometer: Mapping[str, Any]) -> str:
+    """Return a temperature with what the thermometer's table adds, linear between its points.
+
+    The bench refuses readings outside the table; without a table a reading stays as typed.
+    """
+    table = [(Decimal(at), Decimal(added)) for at, added in thermometer.get("error_table") or ()]
+    reading = Decimal(text)
+    for (low, first), (high, second) in pairwise(table):
+        if low <= reading <= high:
+            added = first + (second - first) * (reading - low) / (high - low)
+            return f"{(reading + added).quantize(_MICROKELVIN).normalize():f}"
+    return text
 
 
 def _blank(materials: SheetMaterials, written: _Written) -> dict[str, Any] | None:
@@ -248,7 +267,10 @@ def _replicate(materials: SheetMaterials, written: _Written, number: int) -> dic
         for one in written.segments(number)
     ]
     found["burette"] = pairs if all(None not in pair for pair in pairs) else None
-    found["temperature"] = written.decimal(number, "temperature")
+    temperature = written.decimal(number, "temperature")
+    if temperature is not None:
+        temperature = _corrected(temperature, materials.thermometer or {})
+    found["temperature"] = temperature
     found["excluded"] = written.text(number, "excluded")
     if found["excluded"] is not None:
         found = _without_half_masses(found)

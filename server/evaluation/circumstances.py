@@ -98,10 +98,15 @@ class InDate:
 
 @dataclass(frozen=True, slots=True)
 class Drying:
-    """Drying as the lot's certificate asks for it, and as it was recorded (None: not recorded)."""
+    """Drying as the lot's certificate asks for it, and as it was recorded (None: not recorded).
+
+    ``verdict`` and ``says`` are there where the log was judged by what the certificate asks for.
+    """
 
     required: str
     recorded: str | None = None
+    verdict: str | None = None
+    says: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -143,6 +148,23 @@ class Probe:
 
 
 @dataclass(frozen=True, slots=True)
+class Interim:
+    """The last check of an instrument between two calibrations, and the day it was used.
+
+    ``name`` is the finding's (check weighing, buffer check); days as ISO text; ``on`` and
+    ``verdict`` are None where there was no check before the use.
+    """
+
+    name: str
+    thing: str
+    used: str
+    on: str | None = None
+    verdict: str | None = None
+    says: str = ""
+    basis: str = ""
+
+
+@dataclass(frozen=True, slots=True)
 class Circumstances:
     """Everything around a record that its findings need; what is not known stays out.
 
@@ -164,6 +186,7 @@ class Circumstances:
     own_where_larger: bool = False
     between_days: BetweenDays | None = None
     probe: Probe | None = None
+    interim: tuple[Interim, ...] = ()
     analysts: tuple[str, ...] = ()
     two_people: bool = False
 
@@ -199,6 +222,7 @@ def read_circumstances(document: Mapping[str, Any]) -> Circumstances:
         if values.get(name) is not None:
             values[name] = part(**values[name])
     values["in_date"] = tuple(InDate(**one) for one in values.get("in_date", ()))
+    values["interim"] = tuple(Interim(**one) for one in values.get("interim", ()))
     values["analysts"] = tuple(values.get("analysts", ()))
     return Circumstances(**values)
 

@@ -1,32 +1,37 @@
 """From a bench sheet's facts to its record, its circumstances and its evaluation."""
 
-from collections.abc import Mapping
-from dataclasses import dataclass, fields
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, fields, replace
 from typing import Any
 
 from server.evaluation.assembly import EntryValue, Missing, SheetMaterials, assemble
 from server.evaluation.bench_record import RecordProblem
 from server.evaluation.circumstances import (
     Circumstances,
-    Drying,
     EndPoint,
     InDate,
+    Interim,
     LastCertificate,
     Limits,
+    Probe,
     Resolution,
     SampleMass,
     to_document,
 )
+from server.evaluation.drying_of_sheet import drying_of_sheet
 from server.evaluation.entrance import evaluate
 from server.evaluation.snapshot import make_snapshot
+from server.lab.calibration.check_log import CHECK_OF_KIND, charts_of, last_checked
 from server.lab.canonical import canonical, digest
 from server.lab.in_use import InUse, things_in_use
 from server.lab.ink import COUNTS_AGAIN, WrittenEntry, excluded, standing
+from server.lab.recipe import RecipeDocument
 from server.lab.refusal import Unacceptable
 from server.lab.rig import rig_of
 from server.lab.sheet_facts import (
     BALANCE,
     BURETTE,
+    PROBE,
     ROOM,
     THERMOMETER,
     CertificateFact,
@@ -42,7 +47,7 @@ HAND_IN_TRIALS = 100_000
 _RECORD_PARTS = {
     BALANCE: ("linearity", "error_table", "error_u"),
     BURETTE: ("capacity", "delivery", "error_table", "glass_expansion"),
-    THERMOMETER: ("reading",),
+    THERMOMETER: ("reading", "error_table"),
     ROOM: ("temperature", "pressure", "humidity"),
 }
 
@@ -121,8 +126,20 @@ def evaluate_sheet(prepared: PreparedSheet, *, trials: int = HAND_IN_TRIALS) -> 
 
 def materials_of(facts: SheetFacts) -> SheetMaterials:
     """Return a sheet's facts as the fragments of a bench record."""
-    recipe = facts.recipe.document
-    instruments = {one.kind: one for one in facts.instruments}
+    entries = tuple(
+        EntryValue(one.replicate, one.slot, one.segment, _text(one), one.unit)
+        for one in standing(facts.entries).values()
+        if one.text != COUNTS_AGAIN
+    )
+    papers = materials_on(facts.recipe.document, facts.standard_lot, facts.instruments)
+    return replace(papers, entries=entries)
+
+
+def materials_on(
+    recipe: RecipeDocument, lot: StandardLotFact | None, used: Sequence[InstrumentFact]
+) -> SheetMaterials:
+    """Return what a sheet would rest on before anything is written on it."""
+    instruments = {one.kind: one for one in used}
     return SheetMaterials(
         titrant_substance=recipe.titrant.substance,
         nominal=recipe.titrant.nominal,
@@ -130,7 +147,7 @@ def materials_of(facts: SheetFacts) -> SheetMaterials:
         route=recipe.route,
         ratio=recipe.ratio,
         liquid_expansion=recipe.liquid_expansion,
-        standard=_standard(facts.standard_lot),
+        standard=_standard(lot),
         balance=_fragment(instruments.get(BALANCE)),
         buoyancy=recipe.buoyancy,
         burette=_fragment(instruments.get(BURETTE)) or {},
@@ -142,12 +159,8 @@ def materials_of(facts: SheetFacts) -> SheetMaterials:
         excess=recipe.excess,
         replicates_wanted=recipe.replicates,
         weighing=recipe.weighing,
-        entries=tuple(
-            EntryValue(one.replicate, one.slot, one.segment, _text(one), one.unit)
-            for one in standing(facts.entries).values()
-            if one.text != COUNTS_AGAIN
-        ),
-        roots=_roots(facts),
+        entries=(),
+        roots=_roots(lot, used),
     )
 
 
@@ -167,8 +180,10 @@ def circumstances_of(facts: SheetFacts) -> Circumstances:
         resolution=_resolution(facts),
         sample_mass=_sample_mass(facts),
         in_date=tuple(_in_date(one, facts.laboratory.zone) for one in things_in_use(facts)),
-        drying=_drying(facts),
+        drying=drying_of_sheet(facts),
         last_certificate=_last(facts.last_certificate),
+        probe=_probe(facts.instrument(PROBE)),
+        interim=tuple(_interim(facts)),
         own_where_larger=recipe.repeatability is not None,
         analysts=_analysts(facts),
     )
@@ -238,11 +253,11 @@ def _text(entry: WrittenEntry) -> str:
     return f"{entry.text}: {entry.reason}" if entry.slot == "excluded" else entry.text
 
 
-def _roots(facts: SheetFacts) -> dict[str, str]:
+def _roots(lot: StandardLotFact | None, used: Sequence[InstrumentFact]) -> dict[str, str]:
     names = {BALANCE: "balance", BURETTE: "burette", THERMOMETER: "thermometer", ROOM: "room"}
-    roots = {names[one.kind]: f"calibration {one.calibration_id}" for one in facts.instruments}
-    if facts.standard_lot is not None:
-        roots["standard"] = f"standard lot {facts.standard_lot.id}"
+    roots = {names[one.kind]: f"calibration {one.calibration_id}" for one in used}
+    if lot is not None:
+        roots["standard"] = f"standard lot {lot.id}"
     return roots
 
 
@@ -264,7 +279,11 @@ def _step(instrument: InstrumentFact | None) -> float | None:
 def _sample_mass(facts: SheetFacts) -> SampleMass:
     balance, lot = facts.instrument(BALANCE), facts.standard_lot
     of_lot = lot.document.get("minimum_sample_g") if lot else None
-    of_balance = balance.identity.get("minimum_g") if balance else None
+    of_balance = None
+    if balance is not None:
+        # what the serving calibration found goes before what was registered
+        stated = balance.document.get("minimum_g")
+        of_balance = stated or balance.identity.get("minimum_g")
     return SampleMass(
         lot_minimum_g=float(of_lot) if of_lot else None,
         balance_minimum_g=float(of_balance) if of_balance else None,
@@ -281,15 +300,34 @@ def _in_date(one: InUse, zone: str) -> InDate:
     )
 
 
-def _drying(facts: SheetFacts) -> Drying | None:
-    lot = facts.standard_lot
-    if lot is None or lot.document.get("basis") != "dried":
+def _probe(instrument: InstrumentFact | None) -> Probe | None:
+    if instrument is None:
         return None
-    dried = standing(facts.entries).get((0, "step:dried", 1))
-    return Drying(
-        required=str(lot.document.get("drying") or "dried, as its certificate says"),
-        recorded=dried.text if dried else None,
+    document = instrument.document
+    return Probe(
+        slope_percent=float(document["slope_percent"]),
+        offset_mV=float(document["offset_mV"]),
+        source=f"calibration of {instrument.name}, {instrument.certificate_number}",
     )
+
+
+def _interim(facts: SheetFacts) -> Iterator[Interim]:
+    """Yield the checks of the instruments of which checks are kept."""
+    zone, as_of = facts.laboratory.zone, facts.log_as_of
+    for used in things_in_use(facts):
+        instrument = facts.instrument(used.kind)
+        if instrument is None or not charts_of(instrument.log, used.kind, as_of=as_of):
+            continue
+        last = last_checked(instrument.log, used.kind, at=used.used_at, as_of=as_of)
+        yield Interim(
+            name=CHECK_OF_KIND[used.kind],
+            thing=instrument.name,
+            used=local_day(used.used_at, zone).isoformat(),
+            on=local_day(last.line.at, zone).isoformat() if last else None,
+            verdict=last.outcome.verdict if last else None,
+            says=last.outcome.says if last else "",
+            basis=last.outcome.basis if last else "",
+        )
 
 
 def _last(certificate: CertificateFact | None) -> LastCertificate | None:

@@ -4,10 +4,14 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from datetime import datetime
 
+from server.lab.calibration.check_log import last_checked
 from server.lab.ink import standing
 from server.lab.sheet_facts import (
     BALANCE,
     BURETTE,
+    FLASK,
+    PIPETTE,
+    PROBE,
     ROOM,
     STANDARD_LOT,
     THERMOMETER,
@@ -20,11 +24,14 @@ from server.lab.sheet_facts import (
 from server.lab.states import HELD, IN_DATE, LAPSED
 from server.lab.validity import last_day
 
-_MASSES = frozenset({"container_and_standard", "container_less_standard", "mass", "tare_load"})
+MASS_SLOTS = frozenset({"container_and_standard", "container_less_standard", "mass", "tare_load"})
 _SLOTS = {
-    STANDARD_LOT: _MASSES,
-    BALANCE: _MASSES,
+    STANDARD_LOT: MASS_SLOTS,
+    BALANCE: MASS_SLOTS,
     BURETTE: frozenset({"burette_start", "burette_end", "blank"}),
+    PIPETTE: frozenset(),
+    FLASK: frozenset(),
+    PROBE: frozenset({"burette_end", "blank"}),
     THERMOMETER: frozenset({"temperature"}),
     ROOM: frozenset({"air_temperature", "air_pressure", "air_humidity"}),
 }
@@ -35,6 +42,7 @@ class InUse:
     """One thing that a sheet rests on, at its last time of use.
 
     ``state``: in date, lapsed or held; ``says`` is a sentence; ``override`` a keeper's word.
+    ``flag`` says what speaks against it without stopping it: a check that failed.
     """
 
     kind: str
@@ -45,11 +53,17 @@ class InUse:
     state: str
     says: str
     override: OverrideFact | None
+    flag: str = ""
 
     @property
     def blocks(self) -> bool:
         """Whether it may not be used and nobody has let it."""
         return self.state != IN_DATE and self.override is None
+
+
+def is_mass(slot: str) -> bool:
+    """Say whether a slot holds a weighing of the standard or of what it stands in."""
+    return slot in MASS_SLOTS
 
 
 def kind_of_slot(slot: str) -> tuple[str, ...]:
@@ -90,7 +104,21 @@ def _in_use(
         state=state,
         says=says,
         override=words[-1] if words else None,
+        flag=(
+            ""
+            if isinstance(thing, StandardLotFact)
+            else flag_of(thing, at=used_at, as_of=facts.log_as_of)
+        ),
     )
+
+
+def flag_of(instrument: InstrumentFact, *, at: datetime, as_of: datetime | None = None) -> str:
+    """Return what speaks against an instrument at an instant, empty where nothing does."""
+    last = last_checked(instrument.log, instrument.kind, at=at, as_of=as_of)
+    says = [f"Its calibration: {one}" for one in instrument.failing]
+    if last is not None and last.outcome.verdict != "holds":
+        says.append(f"Last {last.line.what}: {last.outcome.says}")
+    return " ".join(says)
 
 
 def judge(

@@ -113,6 +113,8 @@ def _end_of(row: Row, beside: Beside) -> str:
     table = beside.rig.balance_table if mass else None
     if row.slot.startswith("burette"):
         table = beside.rig.burette_table
+    if row.slot == "temperature":
+        table = beside.rig.thermometer_table
     if table is not None:
         return "the error table of the calibration ends"
     return "the scale ends"

@@ -30,6 +30,7 @@ class Rig:
     burette: Span | None
     burette_table: Span | None
     thermometer_decimals: int | None
+    thermometer_table: Span | None = None
 
 
 def rig_of(instruments: Sequence[InstrumentFact]) -> Rig:
@@ -47,6 +48,7 @@ def rig_of(instruments: Sequence[InstrumentFact]) -> Rig:
         thermometer_decimals=(
             read_decimals(THERMOMETER, thermometer.identity) if thermometer else None
         ),
+        thermometer_table=_table_span(thermometer.document) if thermometer else None,
     )
 
 

@@ -25,6 +25,7 @@ class Act(StrEnum):
     HOLD = "hold a lot or bottle"
     RELEASE = "release a hold"
     KEEP = "keep standard lots, instruments and recipes"
+    LOG = "write in the log of a standard lot or instrument"
     OVERRIDE = "let something out of date be used"
     PROPOSE_PULL = "propose a pull"
     CONFIRM_PULL = "confirm a pull"
@@ -41,6 +42,7 @@ _HOLDERS: dict[Act, frozenset[Role]] = {
     Act.HOLD: frozenset({Role.ANALYST, Role.COUNTERSIGNER, Role.KEEPER}),
     Act.RELEASE: frozenset({Role.KEEPER, Role.COUNTERSIGNER}),
     Act.KEEP: frozenset({Role.KEEPER}),
+    Act.LOG: frozenset({Role.ANALYST, Role.KEEPER}),
     Act.OVERRIDE: frozenset({Role.KEEPER}),
     Act.PROPOSE_PULL: frozenset({Role.KEEPER}),
     Act.CONFIRM_PULL: frozenset({Role.COUNTERSIGNER}),

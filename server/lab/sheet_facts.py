@@ -10,7 +10,8 @@ from server.lab.recipe import RecipeDocument
 from server.lab.states import sheet_state
 
 BALANCE, BURETTE, THERMOMETER, ROOM = "balance", "burette", "thermometer", "room monitor"
-INSTRUMENT_KINDS = (BALANCE, BURETTE, THERMOMETER, ROOM)
+PIPETTE, FLASK, PROBE = "pipette", "flask", "probe"
+INSTRUMENT_KINDS = (BALANCE, BURETTE, PIPETTE, FLASK, PROBE, THERMOMETER, ROOM)
 STANDARD_LOT = "standard lot"
 
 
@@ -44,6 +45,27 @@ class HoldFact:
 
 
 @dataclass(frozen=True, slots=True)
+class StrikeFact:
+    """A line of a log struck through: who, when, why."""
+
+    by: PersonFact
+    at: datetime
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
+class LogFact:
+    """One line in the log of a standard lot or instrument, in ink; ``struck`` where it was."""
+
+    id: str
+    what: str
+    document: Mapping[str, Any]
+    by: PersonFact
+    at: datetime
+    struck: StrikeFact | None = None
+
+
+@dataclass(frozen=True, slots=True)
 class LotFact:
     """The titrant lot that is standardized."""
 
@@ -71,7 +93,10 @@ class RecipeFact:
 
 @dataclass(frozen=True, slots=True)
 class StandardLotFact:
-    """The delivery of the primary standard that is weighed."""
+    """The delivery of the primary standard that is weighed.
+
+    ``due_at`` and ``due_basis`` are the earliest of its rules: certificate, opening, re-test.
+    """
 
     id: str
     name: str
@@ -82,6 +107,7 @@ class StandardLotFact:
     due_basis: str
     document: Mapping[str, Any]
     holds: tuple[HoldFact, ...]
+    log: tuple[LogFact, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -89,7 +115,8 @@ class InstrumentFact:
     """An instrument with the version of its calibration that serves this sheet.
 
     ``identity`` is the instrument's own document (resolution, capacity, serial number);
-    ``document`` the calibration's record fragment.
+    ``document`` the calibration's record fragment. ``failing`` says what of the calibration does
+    not hold; ``log`` holds the checks between two calibrations, oldest first.
     """
 
     kind: str
@@ -105,6 +132,8 @@ class InstrumentFact:
     due_basis: str
     document: Mapping[str, Any]
     holds: tuple[HoldFact, ...]
+    failing: tuple[str, ...] = ()
+    log: tuple[LogFact, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -192,6 +221,11 @@ class SheetFacts:
             abandoned_at=self.abandoned_at,
         )
 
+    @property
+    def log_as_of(self) -> datetime | None:
+        """Return the instant whose logs count: of the standing hand in; None while it is open."""
+        return logs_count_at(self.handed_in_at, self.sent_back_at)
+
     def instrument(self, kind: str) -> InstrumentFact | None:
         """Return the instrument of a kind, or None where the sheet uses none."""
         return next((one for one in self.instruments if one.kind == kind), None)
@@ -207,3 +241,11 @@ class SheetFacts:
             if one.meaning == "measured" and one.evaluation_id == self.evaluation.id
         ]
         return found[-1] if found else None
+
+
+def logs_count_at(handed_in_at: datetime | None, sent_back_at: datetime | None) -> datetime | None:
+    """Return the instant at which logs counted for a sheet; what is written later changes nothing.
+
+    While the sheet is open, or was sent back, they count as they stand (None).
+    """
+    return None if sent_back_at is not None else handed_in_at

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
+from decimal import Decimal
 
 from server.lab.ink import COUNTS_AGAIN, EXCLUSION_CRITERIA, Place, WrittenEntry, excluded, standing
 from server.lab.recipe import RecipeDocument
@@ -198,12 +199,15 @@ def _narrower(scale: Span | None, table: Span | None) -> Span | None:
 
 def _temperature(replicate: int, recipe: RecipeDocument, rig: Rig) -> Row:
     # Volumes are reckoned by the density of water where no expansion is stated: 0 to 40 °C.
-    high = "40" if recipe.liquid_expansion is None else "100"
+    span = Span("0", "40" if recipe.liquid_expansion is None else "100")
+    table = rig.thermometer_table
+    if table is not None:
+        span = Span(max(span.low, table.low, key=Decimal), min(span.high, table.high, key=Decimal))
     return Row(
         replicate, "temperature", 1, "Temperature of the titrant", "Cel",
         "Read in the titrant at the burette.",
         decimals=rig.thermometer_decimals,
-        low="0", high=high, usual_low="15", usual_high="30",
+        low=span.low, high=span.high, usual_low="15", usual_high="30",
     )  # fmt: skip
 
 

@@ -32,9 +32,9 @@ from server.records.queries.load_lots import lot_is_pulled, lot_of_code
 from server.records.queries.load_papers import (
     load_instrument_fact,
     load_recipe_fact,
-    load_standard_lot_fact,
 )
 from server.records.queries.load_sheet import load_sheet_facts
+from server.records.queries.load_standard_lots import load_standard_lot_fact
 from server.records.queries.loading import (
     newest_calibration,
     newest_recipe_version,

@@ -32,9 +32,9 @@ from server.records.queries.list_stores import (
     ListedInstrument,
     listed_instruments,
     newest_recipes,
-    standard_lot_facts,
 )
 from server.records.queries.load_lots import lot_is_pulled
+from server.records.queries.load_standard_lots import standard_lot_facts
 from server.records.tables.lots import Lot
 from server.records.tables.stores import Recipe
 from server.sheets.bench import BeginPage, BenchHome, Choice

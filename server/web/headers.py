@@ -35,7 +35,7 @@ class SecurityHeaders:
             if message["type"] == "http.response.start":
                 headers = MutableHeaders(scope=message)
                 for name, value in _ALWAYS.items():
-                    headers[name] = value
+                    headers.setdefault(name, value)  # a file's own policy is stricter
                 headers.setdefault("Cache-Control", "no-store")
                 secure = self._secure or scope["scheme"] == "https"
                 # plain http tells no Sec-Fetch-Site, and without a referrer forms name no origin

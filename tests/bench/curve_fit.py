@@ -134,12 +134,17 @@ def case(points, activities, carbonate, volume_u, *, curves):
         ("known", Given(reading_u=READING_U, volume_u=max(volume_u, 2e-6))),
         ("learnt", Given()),
     ):
-        errors = np.array(
-            [
-                fit_model(balance, V, y, start_mL=truth.effective_mL + 0.03, given=given).effective_mL
-                for V, y in made
-            ]
-        ) - truth.effective_mL
+        errors = (
+            np.array(
+                [
+                    fit_model(
+                        balance, V, y, start_mL=truth.effective_mL + 0.03, given=given
+                    ).effective_mL
+                    for V, y in made
+                ]
+            )
+            - truth.effective_mL
+        )
         answers[name] = errors
     least = np.mean([bound(balance, truth, V, volume_u) ** 2 for V, _ in made]) ** 0.5
     V, y = made[0]

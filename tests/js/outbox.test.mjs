@@ -157,6 +157,18 @@ test("an entry written while another is on its way goes with the next request", 
   assert.deepEqual(store.all(), []);
 });
 
+test("a call that comes while a request fails makes it try once more", async () => {
+  const store = storeOn(new Storage());
+  let tap;
+  const server = serverOf([() => (tap(), Promise.reject(noNetwork()))]);
+  store.keep(entry(1));
+  const { sender } = senderOf(store, server);
+  tap = () => sender.flush();
+  await sender.flush();
+  assert.deepEqual(server.sent.map((one) => one.ids), [["u-1"], ["u-1"]]);
+  assert.equal(sender.state, "idle");
+});
+
 test("without a network everything stays, and is sent again under the same uuids", async () => {
   const store = storeOn(new Storage());
   const server = serverOf([noNetwork()]);

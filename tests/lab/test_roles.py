@@ -12,6 +12,7 @@ TABLE = {
     Act.HOLD: {"analyst", "countersigner", "keeper"},
     Act.RELEASE: {"keeper", "countersigner"},
     Act.KEEP: {"keeper"},
+    Act.LOG: {"analyst", "keeper"},
     Act.OVERRIDE: {"keeper"},
     Act.PROPOSE_PULL: {"keeper"},
     Act.CONFIRM_PULL: {"countersigner"},

@@ -9,10 +9,11 @@ from server.evaluation.findings.setting import Setting
 
 
 def paper_findings(setting: Setting) -> Iterator[Finding]:
-    """Yield the findings about dates, drying, probe, end point and the last certificate."""
+    """Yield the findings about dates, drying, probe, checks, end point, last certificate."""
     yield from _in_date(setting)
     yield from _drying(setting)
     yield from _probe(setting)
+    yield from _interim(setting)
     if setting.circumstances.end_point is not None:
         yield _end_point(setting.circumstances.end_point)
     if setting.circumstances.last_certificate is not None:
@@ -56,6 +57,14 @@ def _drying(setting: Setting) -> Iterator[Finding]:
             says = "The mass fraction is on the dried basis; no drying entry is at hand."
             yield Finding("drying", "look", says, basis)
         return
+    if drying.verdict is not None:
+        judged: Verdict = "holds" if drying.verdict == "holds" else "look"
+        if drying.verdict == "fails":
+            judged = "fails"
+        says = f"The certificate asks for {drying.required}. {drying.says}"
+        done = drying.recorded or "none"
+        yield Finding("drying", judged, says, basis, figure_text=done, limit_text=drying.required)
+        return
     if drying.recorded is not None:
         says = f"The certificate asks for {drying.required}; recorded: {drying.recorded}."
         yield Finding("drying", "holds", says, basis, figure_text=drying.recorded)
@@ -88,6 +97,27 @@ def _probe(setting: Setting) -> Iterator[Finding]:
         figure_text=f"{probe.slope_percent:.1f} %, {probe.offset_mV:+.1f} mV",
         limit_text=f"{low:g} to {high:g} %, ±{limits.offset_most_mV:g} mV",
     )
+
+
+def _interim(setting: Setting) -> Iterator[Finding]:
+    """Tell the checks between two calibrations; one is wanted on the day of use."""
+    for one in setting.circumstances.interim:
+        if one.on is None or one.on != one.used:
+            last = f"the last was on {one.on}" if one.on else "there was none before"
+            says = f"{one.thing}: no {one.name} on the day of use, {one.used}; {last}."
+            verdict: Verdict = "fails" if one.verdict == "fails" else "look"
+            says += f" {one.says}" if one.verdict == "fails" else ""
+        else:
+            verdict = {"fails": "fails", "look": "look"}.get(one.verdict or "", "holds")  # type: ignore[assignment]
+            says = f"{one.thing}, {one.name} on {one.on}: {one.says}"
+        yield Finding(
+            name=one.name,
+            verdict=verdict,
+            says=says,
+            basis=f"ISO/IEC 17025, 6.4.10: intermediate checks. {one.basis}".strip(),
+            figure_text=one.on or "none",
+            limit_text=one.used,
+        )
 
 
 def _end_point(seen: EndPoint) -> Finding:

@@ -9,10 +9,12 @@ from server.lab import reading_documents as reading
 from server.lab.calibration.check import Check
 from server.lab.calibration.typed_numbers import list_at, number_at, optional_number, read_number
 from server.lab.refusal import Unacceptable
+from server.metrology.conformity import Verdict
 from server.metrology.weighing_calibration import ChartLimits, chart_limits
 
 _BASIS = "Shewhart: warning at 2 s, action at 3 s"
 _STATED = "limits set by the laboratory"
+_TWICE = "two of three beyond warning (Nordtest TR 569, from memory)"
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,21 +63,16 @@ def judge_check(weight: CheckWeight, text: str, before: Sequence[str] = ()) -> C
     value = read_number(text, "reading", example=str(weight.centre), low="0")
     off = value - weight.centre
     earlier = [read_number(one, "before", example="100.0001") - weight.centre for one in before]
-    side = [one for one in earlier[-2:] if one * off > 0 and abs(one) > weight.warning]
-    verdict, words, basis = "holds", "within the warning limit", weight.basis
-    if abs(off) > weight.action:
-        verdict, words = "fails", "beyond the action limit: do not weigh with this balance"
-    elif abs(off) > weight.warning and side:
-        verdict = "fails"
-        words = "beyond the warning limit on one side twice within three: do not weigh with it"
-        basis = f"{weight.basis}; two of three beyond warning (Nordtest TR 569, from memory)"
-    elif abs(off) > weight.warning:
-        verdict, words = "look", "beyond the warning limit: clean, adjust, weigh it again"
+    verdict, words = place_of(
+        off, earlier, warning=weight.warning, action=weight.action,
+        stop="do not weigh with this balance", look="clean, adjust, weigh it again",
+    )  # fmt: skip
+    twice = verdict == "fails" and abs(off) <= weight.action
     return Check(
         name="check weight",
-        verdict=verdict,  # type: ignore[arg-type]
+        verdict=verdict,
         says=f"{weight.name}: {text.strip()} g is {off:+f} g from {weight.centre} g, {words}.",
-        basis=basis,
+        basis=f"{weight.basis}; {_TWICE}" if twice else weight.basis,
         figure=float(off),
         limit=float(weight.action),
         unit="g",
@@ -84,9 +81,35 @@ def judge_check(weight: CheckWeight, text: str, before: Sequence[str] = ()) -> C
     )
 
 
+def place_of(
+    off: Decimal,
+    before: Sequence[Decimal],
+    *,
+    warning: Decimal,
+    action: Decimal,
+    stop: str,
+    look: str,
+) -> tuple[Verdict, str]:
+    """Return the verdict on a deviation and where it lies in words; ``before`` oldest first.
+
+    Within warning it *holds*; between warning and action it is *looked at*; beyond action, or as
+    the second of the last three beyond warning on one side, it *fails*.
+    """
+    side = [one for one in before[-2:] if one * off > 0 and abs(one) > warning]
+    if abs(off) > action:
+        return "fails", f"beyond the action limit: {stop}"
+    if abs(off) > warning and side:
+        return "fails", f"beyond the warning limit on one side twice within three: {stop}"
+    if abs(off) > warning:
+        return "look", f"beyond the warning limit: {look}"
+    return "holds", "within the warning limit"
+
+
 def judge_history(weight: CheckWeight, readings: Sequence[str]) -> tuple[Check, ...]:
     """Return the outcome of every reading of a chart, oldest first, each with those before it."""
-    return tuple(judge_check(weight, one, readings[:i]) for i, one in enumerate(readings))
+    return tuple(
+        judge_check(weight, one, readings[max(0, i - 2) : i]) for i, one in enumerate(readings)
+    )
 
 
 def _from_first(doc: Mapping[str, Any]) -> ChartLimits:

@@ -1,4 +1,4 @@
-"""Standard lots, recipes and instruments in lists, in a fixed number of selects."""
+"""Recipes and instruments in lists, in a fixed number of selects."""
 
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -6,9 +6,9 @@ from dataclasses import dataclass
 from sqlalchemy import func, select
 from sqlalchemy.orm import Session
 
-from server.lab.sheet_facts import HoldFact, InstrumentFact, StandardLotFact
+from server.lab.sheet_facts import HoldFact, InstrumentFact
 from server.records.tables.people import Person
-from server.records.tables.stores import Calibration, Hold, Instrument, Recipe, StandardLot
+from server.records.tables.stores import Calibration, Hold, Instrument, Recipe
 
 
 @dataclass(frozen=True, slots=True)
@@ -25,16 +25,6 @@ class KeptCalibration:
 
     row: Calibration
     recorded_by: str
-
-
-def standard_lot_facts(session: Session, *, substance: str | None = None) -> list[StandardLotFact]:
-    """Return the standard lots with their holds, by name; of one substance where it is named."""
-    asked = select(StandardLot).order_by(StandardLot.name)
-    if substance is not None:
-        asked = asked.where(StandardLot.substance == substance)
-    rows = session.scalars(asked).all()
-    holds = holds_by_thing(session, "standard lot", [row.id for row in rows])
-    return [standard_lot_fact(row, holds.get(row.id, ())) for row in rows]
 
 
 def listed_instruments(session: Session) -> list[ListedInstrument]:
@@ -108,21 +98,6 @@ def holds_by_thing(
         one = HoldFact(row.held_at, row.released_at, row.reason)
         found[row.thing_id] = (*found.get(row.thing_id, ()), one)
     return found
-
-
-def standard_lot_fact(row: StandardLot, holds: tuple[HoldFact, ...]) -> StandardLotFact:
-    """Return a standard lot's row as a plain value."""
-    return StandardLotFact(
-        id=row.id,
-        name=row.name,
-        substance=row.substance,
-        certificate_number=row.certificate_number,
-        issuer=row.issuer,
-        due_at=row.due_at,
-        due_basis=row.due_basis,
-        document=row.document,
-        holds=holds,
-    )
 
 
 def instrument_fact(

@@ -13,11 +13,10 @@ from server.lab.sheet_facts import (
     LaboratoryFact,
     PersonFact,
     RecipeFact,
-    StandardLotFact,
 )
 from server.records.queries.loading import holds_of, laboratory_row
 from server.records.tables.people import Person
-from server.records.tables.stores import Calibration, Instrument, Recipe, StandardLot
+from server.records.tables.stores import Calibration, Instrument, Recipe
 
 
 def load_people(session: Session, ids: Iterable[str]) -> dict[str, PersonFact]:
@@ -42,28 +41,6 @@ def load_recipe_fact(session: Session, recipe_id: str) -> RecipeFact:
     if row is None:
         raise NotFound("There is no such recipe.", field="recipe_id")
     return RecipeFact(row.id, row.name, row.version, read_recipe(row.document))
-
-
-def load_standard_lot_fact(session: Session, standard_lot_id: str) -> StandardLotFact:
-    """Return one standard lot with its holds.
-
-    Raises:
-        NotFound: there is no such standard lot.
-    """
-    row = session.get(StandardLot, standard_lot_id)
-    if row is None:
-        raise NotFound("There is no such standard lot.", field="standard_lot_id")
-    return StandardLotFact(
-        id=row.id,
-        name=row.name,
-        substance=row.substance,
-        certificate_number=row.certificate_number,
-        issuer=row.issuer,
-        due_at=row.due_at,
-        due_basis=row.due_basis,
-        document=row.document,
-        holds=_holds(session, "standard lot", row.id),
-    )
 
 
 def load_instrument_fact(session: Session, calibration_id: str) -> InstrumentFact:

@@ -14,6 +14,7 @@ from server.lab.recipe import read_recipe
 from server.lab.refusal import NotFound
 from server.lab.sheet_facts import (
     INSTRUMENT_KINDS,
+    STANDARD_LOT,
     CertificateFact,
     EvaluationFact,
     InstrumentFact,
@@ -23,9 +24,13 @@ from server.lab.sheet_facts import (
     RecipeFact,
     SheetFacts,
     SignatureFact,
+    StandardLotFact,
+    logs_count_at,
 )
-from server.records.queries.list_stores import holds_by_thing, instrument_fact, standard_lot_fact
+from server.records.queries.list_log import log_lines
+from server.records.queries.list_stores import holds_by_thing, instrument_fact
 from server.records.queries.load_papers import load_laboratory_fact, load_people
+from server.records.queries.load_standard_lots import standard_lot_fact
 from server.records.tables.bench import Certificate, Entry, Evaluation, Sheet, Signature
 from server.records.tables.lots import Lot, Pull
 from server.records.tables.stores import Calibration, Instrument, Recipe, StandardLot
@@ -68,7 +73,8 @@ class _Loaded:
         self.standard_lots = _by_id(
             session, StandardLot, {sheet.standard_lot_id for sheet in sheets}
         )
-        self.lot_holds = holds_by_thing(session, "standard lot", list(self.standard_lots))
+        self.lot_holds = holds_by_thing(session, STANDARD_LOT, list(self.standard_lots))
+        self.lot_logs = log_lines(session, STANDARD_LOT, list(self.standard_lots))
         used = {one for sheet in sheets for one in sheet.calibrations.values()}
         self.instruments = _instruments(session, used)
         self.entries = _by_sheet(session, Entry, ids, Entry.position)
@@ -89,7 +95,6 @@ class _Loaded:
 
     def _facts(self, sheet: Sheet) -> SheetFacts:
         recipe = self.recipes[sheet.recipe_id]
-        standard = self.standard_lots.get(sheet.standard_lot_id or "")
         evaluation = self.evaluations.get(sheet.evaluation_id or "")
         used = [sheet.calibrations.get(kind) for kind in INSTRUMENT_KINDS]
         return SheetFacts(
@@ -98,11 +103,7 @@ class _Loaded:
             revision=sheet.revision,
             lot=_lot(self.lots[sheet.lot_id], self.people, pulled=sheet.lot_id in self.pulled),
             recipe=RecipeFact(recipe.id, recipe.name, recipe.version, read_recipe(recipe.document)),
-            standard_lot=(
-                standard_lot_fact(standard, self.lot_holds.get(standard.id, ()))
-                if standard
-                else None
-            ),
+            standard_lot=self._standard_lot(sheet),
             instruments=tuple(self.instruments[one] for one in used if one),
             overrides=tuple(_override(one, self.people) for one in sheet.overrides),
             begun_by=self.people[sheet.begun_by],
@@ -118,6 +119,15 @@ class _Loaded:
             laboratory=self.laboratory,
             last_certificate=self._last_certificate(sheet),
         )
+
+    def _standard_lot(self, sheet: Sheet) -> StandardLotFact | None:
+        """Return the standard that a sheet weighs, its log as it counts for the sheet."""
+        row = self.standard_lots.get(sheet.standard_lot_id or "")
+        if row is None:
+            return None
+        holds, log = self.lot_holds.get(row.id, ()), self.lot_logs.get(row.id, ())
+        at = logs_count_at(sheet.handed_in_at, sheet.sent_back_at)
+        return standard_lot_fact(row, holds, log, zone=self.laboratory.zone, as_of=at)
 
     def _last_certificate(self, sheet: Sheet) -> CertificateFact | None:
         """Return the lot's certificate before this sheet's own."""

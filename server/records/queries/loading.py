@@ -7,7 +7,7 @@ from sqlalchemy.orm import Session
 
 from server.lab.refusal import NotFound
 from server.records.tables.people import Laboratory, Person
-from server.records.tables.stores import Calibration, Hold, Instrument, Recipe, StandardLot
+from server.records.tables.stores import Calibration, Hold, Instrument, Log, Recipe, StandardLot
 from server.records.tables.trail import Counter
 
 
@@ -83,6 +83,11 @@ def standing_hold(session: Session, kind: str, thing_id: str) -> Hold | None:
     return session.scalar(
         select(Hold).where(Hold.kind == kind, Hold.thing_id == thing_id, Hold.released_at.is_(None))
     )
+
+
+def line_that_strikes(session: Session, line_id: str) -> Log | None:
+    """Return the line that strikes a line of a log through, or None where it stands."""
+    return session.scalar(select(Log).where(Log.strikes == line_id))
 
 
 def next_number(session: Session, series: str) -> int:

@@ -34,19 +34,7 @@ def certificate_told(issued: Issued) -> dict[str, Any]:
         "laboratory": document["laboratory"]["name"],
         "address": document["laboratory"]["address"],
         "band": _band(issued, zone),
-        "value": {
-            "name": _name(document["lot"]),
-            "digits": shown.value,
-            "uncertainty": shown.uncertainty,
-            "unit": shown.unit,
-            "says": f"Amount concentration at {result['concentration']['temperature_C']} °C. "
-            f"Expanded uncertainty U, in the same unit, with k = {shown.k} for a coverage of "
-            f"{shown.coverage}.",
-            "factor": shown.factor,
-            "valid_for": document["valid_for"],
-            "valid_until": typed_day_words(document["validity"]["last_day"]),
-            "rule": document["validity"]["rule"],
-        },
+        "value": _value(document, shown),
         "facts": _facts(issued, zone),
         "statements": list(_statements(document)),
         "signatures": list(_signatures(issued, notes)),
@@ -71,6 +59,31 @@ def certificate_told(issued: Issued) -> dict[str, Any]:
         "(RFC 7515)",
         "digests": _digests(issued),
         "url": issued.url or "",
+    }
+
+
+def _value(document: Mapping[str, Any], shown: outcome.Printed) -> dict[str, str]:
+    """Return the certified value: with U, or with the Monte Carlo interval where that is printed."""
+    result, validity = document["result"], document["validity"]
+    temperature = f"Amount concentration at {result['concentration']['temperature_C']} °C."
+    says = (
+        f"Expanded uncertainty U, in the same unit, with k = {shown.k} for a coverage of "
+        f"{shown.coverage}."
+    )
+    if shown.interval:
+        percent = f"{100 * result['concentration']['coverage']:g} %"
+        says = f"Coverage interval of {percent}: {shown.interval}; it is not told by U and k."
+    return {
+        "name": _name(document["lot"]),
+        "digits": shown.value,
+        "uncertainty": "" if shown.interval else shown.uncertainty,
+        "unit": shown.unit,
+        "says": f"{temperature} {says}",
+        "reported": result["concentration"]["reported"],
+        "factor": shown.factor,
+        "valid_for": document["valid_for"],
+        "valid_until": typed_day_words(validity["last_day"]),
+        "rule": validity["rule"],
     }
 
 

@@ -75,7 +75,7 @@ def _first_that_fits(
             if _TOO_SMALL not in str(found):
                 raise
             problem = found
-        except _CodeTooSmall as found:
+        except _CodeTooSmall:
             if problem is None:
                 raise
             break

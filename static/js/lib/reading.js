@@ -6,6 +6,8 @@ const LINE = new RegExp(
   `^\\s*((?:${MARK}[\\s,:]+){0,2})([+-]?)\\s*(\\d+(?:[.,]\\d+)?)\\s*(?:\\[?(mg|g|kg|mL|ml|L|°C|C|mV|pH|hPa|%)\\]?)?\\s*(${MARK})?\\s*$`,
 );
 const SETTLED = new Set(["N", "NET", "G", "S", "ST"]);
+const MOST_WORDS = 2000;
+const MOST_REASON = 1000;
 const SPELLED = { ml: "mL", C: "°C" };
 
 /** The digits after the point or comma of a number as typed. */
@@ -63,6 +65,24 @@ export function readTyped(typed, row) {
   const wrong = decimalsSay(text, row) ?? signSays(text, row);
   if (wrong) return { says: wrong };
   return { text, unit: row.unit, raw: line ? line.raw : null, settled: line ? line.settled : true };
+}
+
+/** What a row of words makes of a text: `{text}` as it will be written, or `{says}` what is wrong. */
+export function readWords(typed, row) {
+  const text = typed.trim();
+  if (text === "") return { says: `Type the ${row.label} first.` };
+  return tooLong(text, MOST_WORDS, row.label) ?? { text };
+}
+
+/** The reason for a strike or for leaving out, in the same shape; `says` is asked where there is none. */
+export function readReason(typed, says) {
+  const text = typed.trim();
+  return text === "" ? { says } : (tooLong(text, MOST_REASON, "The reason") ?? { text });
+}
+
+function tooLong(text, most, what) {
+  const count = [...text].length;
+  return count > most ? { says: `${what} takes up to ${most} characters; this has ${count}. Shorten it.` } : null;
 }
 
 /** The unit of a row or reading as people write it; empty where there is none. */

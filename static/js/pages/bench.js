@@ -4,7 +4,7 @@ import { clockOf, newEntry } from "../lib/entry.js";
 import { COUNTS_AGAIN, keyOf, layOver, nextOf, rowsOf } from "../lib/overlay.js";
 import { press } from "../lib/pad.js";
 import { questionFor } from "../lib/questions.js";
-import { readTyped, unitOf } from "../lib/reading.js";
+import { readReason, readTyped, readWords, unitOf } from "../lib/reading.js";
 import { entries } from "../lib/strip.js";
 import { Sender } from "../outbox/sender.js";
 import { Store } from "../outbox/store.js";
@@ -165,6 +165,10 @@ function taken(newSheet) {
   const before = view.lit && keyOf(view.lit);
   draw();
   if (view.lit && keyOf(view.lit) !== before) showLit();
+  if (newSheet && !view.lit && document.activeElement === document.body) {
+    spot("hand-in")?.focus({ preventScroll: true });
+    showLit();
+  }
   const odd = store.refused()[0];
   if (odd) say(`Not taken: ${wordsOf(odd.problem)}`);
 }
@@ -202,8 +206,8 @@ const acts = {
   write() {
     const { lit, typed, rows } = view;
     if (lit.kind === "text") {
-      const text = typed.trim();
-      return text ? put(lit, { text }, null) : ask({ says: `Type the ${lit.label} first.` });
+      const words = readWords(typed, lit);
+      return words.says ? ask(words) : put(lit, words, null);
     }
     const reading = readTyped(typed, lit);
     if (reading.says) return ask(reading);
@@ -250,11 +254,10 @@ function refill() {
 
 function put(row, reading, confirmed) {
   const strikes = row.value?.id ?? null;
-  if (strikes && !here.reason.trim()) {
-    return ask({ says: "Say why the old value is struck through: choose a reason or write one." });
-  }
+  const struckFor = readReason(here.reason, "Say why the old value is struck through: choose a reason or write one.");
+  if (strikes && struckFor.says) return ask(struckFor);
   if (row.refused) store.drop(row.refused.id);
-  keepAndSend(row, reading, { strikes, reason: strikes ? here.reason.trim() : confirmed });
+  keepAndSend(row, reading, { strikes, reason: strikes ? struckFor.text : confirmed });
   store.draft(keyOf(row), "");
   Object.assign(here, { chosen: null, note: null, reason: "", confirmed: null });
   draw({ focus: true });
@@ -301,11 +304,11 @@ function excludeForm(group, row) {
     event.preventDefault();
     const given = new FormData(event.target);
     const text = group.excluded ? COUNTS_AGAIN : given.get("criterion");
-    const reason = String(given.get("why") ?? "").trim();
-    if (!text || !reason) return say("Choose a criterion and say what happened.");
+    const why = readReason(String(given.get("why") ?? ""), "Choose a criterion and say what happened.");
+    if (!text || why.says) return say(why.says ?? "Choose a criterion.");
     here.excluding = null;
     if (row.refused) store.drop(row.refused.id);
-    keepAndSend(row, { text }, { strikes: row.value?.id ?? null, reason });
+    keepAndSend(row, { text }, { strikes: row.value?.id ?? null, reason: why.text });
     draw({ focus: true });
     return say(group.excluded ? `Replicate ${number} counts again.` : `Replicate ${number} is left out of the mean. It stays on the sheet.`);
   };
@@ -322,7 +325,7 @@ function excludeForm(group, row) {
       el("legend", {}, question),
       group.excluded ? null : el("div", { class: "chips" }, criteriaOf(row)),
       el("label", { for: "why" }, group.excluded ? "Why" : "What happened"),
-      el("input", { id: "why", name: "why", type: "text", maxlength: "300", autocomplete: "off", required: true }),
+      el("input", { id: "why", name: "why", type: "text", autocomplete: "off", required: true }),
     ),
     el(
       "div",

@@ -44,26 +44,41 @@ export function echoOf(row, typed) {
 function fieldOf(row, view, acts) {
   if (row.kind === "step") return stepButton(row, acts);
   if (row.kind === "choice") return choices(row, acts);
+  const described = { "aria-describedby": "hint echo note", "aria-invalid": view.note ? "true" : false };
+  const input = (event) => acts.type(event.target.value);
   return el(
     "span",
     { class: "values" },
     row.value ? el("s", { class: "struck" }, unseen("to be struck through: "), row.value.text) : null,
-    el("input", {
-      id: "reading",
-      class: row.kind === "number" ? "reading" : "reading words",
-      type: "text",
-      inputmode: row.kind === "number" && !row.signed ? "decimal" : "text",
-      autocomplete: "off",
-      autocapitalize: "off",
-      spellcheck: "false",
-      enterkeyhint: "next",
-      maxlength: row.kind === "number" ? "80" : "500",
-      value: view.typed,
-      "aria-describedby": "hint echo note",
-      "aria-invalid": view.note ? "true" : false,
-      on: { input: (event) => acts.type(event.target.value) },
-    }),
+    row.kind === "text" ? wordsOf(view, acts, described, input) : numberOf(row, view, described, input),
   );
+}
+
+function numberOf(row, view, described, input) {
+  return el("input", {
+    id: "reading",
+    class: "reading",
+    type: "text",
+    inputmode: row.signed ? "text" : "decimal",
+    autocomplete: "off",
+    autocapitalize: "off",
+    spellcheck: "false",
+    enterkeyhint: "next",
+    value: view.typed,
+    ...described,
+    on: { input },
+  });
+}
+
+/** Enter writes here too; Shift and Enter begin a new line. */
+function wordsOf(view, acts, described, input) {
+  const keydown = (event) => {
+    if (event.key !== "Enter" || event.shiftKey || event.isComposing) return;
+    event.preventDefault();
+    acts.write();
+  };
+  const attributes = { id: "reading", class: "words", rows: "3", enterkeyhint: "next", ...described, on: { input, keydown } };
+  return el("textarea", attributes, view.typed);
 }
 
 function stepButton(row, acts) {
@@ -129,7 +144,6 @@ function reasonsOf(row, view, acts) {
     el("input", {
       id: "own-reason",
       type: "text",
-      maxlength: "300",
       autocomplete: "off",
       value: own,
       on: { input: (event) => acts.reason(event.target.value) },

@@ -36,7 +36,7 @@ function rowOf(row, view, acts) {
 }
 
 function wordy(row) {
-  return row.kind === "number" ? "" : " is-words";
+  return row.kind === "choice" || row.kind === "text" ? " is-words" : "";
 }
 
 function writtenRow(row, view, acts) {

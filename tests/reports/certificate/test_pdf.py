@@ -3,6 +3,7 @@
 import io
 import json
 import re
+from concurrent.futures import ThreadPoolExecutor
 from copy import deepcopy
 from dataclasses import replace
 
@@ -164,6 +165,23 @@ def test_certificate_prints_every_correction_finding_and_root(issued, text) -> N
     stated += [one["source"] for one in issued.document["result"]["budget"]]
     flat = text.replace(" ", "")
     assert [one for one in stated if one.replace(" ", "") not in flat] == []
+
+
+def test_certificate_of_a_monte_carlo_result_prints_its_interval_and_no_u(laboratory) -> None:
+    first = laboratory.issued("TL-2026-0001")
+    reported = first.document["result"]["concentration"]["reported"]
+    value, _, interval = reported.partition(" mol/L, 95 % interval ")
+    flat = text_of(certificate_pdf(first))
+    assert f"{value} mol/L Amount concentration" in flat
+    assert f"Coverage interval of 95 %: {interval}" in flat
+    assert "Expanded uncertainty U" not in flat
+
+
+def test_certificate_made_by_many_at_once_is_each_its_own(issued, replaced) -> None:
+    wanted = {one.number: certificate_pdf(one) for one in (issued, replaced)}
+    with ThreadPoolExecutor(6) as pool:
+        made = list(pool.map(certificate_pdf, [issued, replaced] * 6))
+    assert made == [wanted[issued.number], wanted[replaced.number]] * 6
 
 
 def test_certificate_that_was_replaced_says_so_on_every_page(replaced) -> None:

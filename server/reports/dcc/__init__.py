@@ -1,0 +1,1 @@
+"""The certificate as a digital calibration certificate (DCC) in XML."""
