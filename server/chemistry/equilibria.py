@@ -66,7 +66,7 @@ def davies_A(temperature_C: float) -> float:
     the CODATA constants).
     """
     T = _kelvin(temperature_C)
-    return (
+    return float(
         1.82483e6
         * _water_density_g_cm3(temperature_C) ** 0.5
         / (water_permittivity(temperature_C) * T) ** 1.5
@@ -166,7 +166,7 @@ def davies_log_gamma(ionic_strength: float, *, temperature_C: float = 25.0) -> f
     about 0.01 to I = 0.1 mol/L (Davies, Ion Association, 1962).
     """
     root = ionic_strength**0.5
-    return -davies_A(temperature_C) * (root / (1 + root) - DAVIES_SLOPE * ionic_strength)
+    return float(-davies_A(temperature_C) * (root / (1 + root) - DAVIES_SLOPE * ionic_strength))
 
 
 def davies_gamma(ionic_strength: float, charge: int, *, temperature_C: float = 25.0) -> float:

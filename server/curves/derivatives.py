@@ -15,6 +15,8 @@ _STEEP = 1 / 6
 
 _WIDEST_HALF = 8
 """The second derivative is smoothed over at most twice this many points and one."""
+_MAY = 2.0
+"""A segment may be the steepest if its slope comes within twice the difference's scatter."""
 _QUIET = 0.25
 """The scatter may move the crossing by this fraction of the distance it is interpolated over."""
 
@@ -31,22 +33,38 @@ def difference_columns(V: Floats, y: Floats) -> tuple[Floats, Floats, Floats, Fl
 
 
 def steepest_segment(clean: CleanCurve, jump: int) -> EndPoint:
-    """Return the middle of a curve's steepest segment; u is half its width over sqrt(3)."""
+    """Return the middle of a curve's steepest segment; u is half its width over sqrt(3).
+
+    Where the scatter makes several segments equally likely to be the steepest, u is that of the
+    whole run of them.
+    """
     V = clean.V
-    width = float(V[jump + 1] - V[jump])
-    says = (
-        "Read off the raw points: it can only fall on the middle of a step, here "
-        f"{width:.3g} mL wide."
-    )
+    low, high = _likely_steepest(clean, jump)
+    width = float(V[high + 1] - V[low])
+    says = "Read off the raw points: it can only fall on the middle of a step, here "
+    says += f"{float(V[jump + 1] - V[jump]):.3g} mL wide."
+    if high > low:
+        says += f" The scatter leaves open which of {high - low + 1} steps is the steepest."
     if clean.bubbles:
         says += " Readings thrown off by bubbles were left out."
-    return EndPoint(
-        "steepest segment",
-        float(V[jump] + V[jump + 1]) / 2,
-        width / (2 * 3**0.5),
-        clean.at[jump : jump + 2],
-        says,
-    )
+    middle = clean.middle(jump)
+    # the middle need not be that of the run: the farther end counts
+    reach = max(float(V[high + 1]) - middle, middle - float(V[low]), width / 2)
+    used = clean.at[jump : jump + 2]
+    return EndPoint("steepest segment", middle, reach / 3**0.5, used, says)
+
+
+def _likely_steepest(clean: CleanCurve, jump: int) -> tuple[int, int]:
+    """Return the first and last segment of the run that may be the steepest for the scatter."""
+    slope = slopes(clean.V, clean.y)
+    noise = 2**0.5 * clean.scatter / np.diff(clean.V)
+    may = slope + _MAY * np.hypot(noise, noise[jump]) >= slope[jump]
+    low = high = jump
+    while low > 0 and may[low - 1]:
+        low -= 1
+    while high < slope.size - 1 and may[high + 1]:
+        high += 1
+    return low, high
 
 
 def second_derivative(clean: CleanCurve, jump: int) -> EndPoint:

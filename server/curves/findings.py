@@ -5,9 +5,9 @@ from typing import Any, Literal
 
 import numpy as np
 
-from server.curves.fit_uncertainty import EndPointUncertainty, neighbours_correlation
 from server.curves.jumps import CleanCurve
-from server.curves.model_fit import ModelFit
+from server.curves.model.fit import ModelFit
+from server.curves.model.uncertainty import EndPointUncertainty, neighbours_correlation
 from server.curves.outcome import EndPoint
 from server.curves.points import TitrationCurve
 
@@ -98,7 +98,7 @@ def _gravity(verdict: str) -> int:
 def of_probe(fit: ModelFit) -> CurveFinding:
     """Return slope and offset of the probe as the fit has them."""
     slope, offset = 100 * fit.value("slope"), fit.value("offset")
-    u = 100 * float(fit.covariance[2, 2]) ** 0.5
+    u = 100 * fit.u("slope")
     verdict: Literal["holds", "look", "fails"] = "holds"
     if not 95 <= slope <= 102 or abs(offset) > 0.2:
         verdict = "look"
@@ -133,16 +133,18 @@ def of_constants(fit: ModelFit) -> CurveFinding:
     return CurveFinding("pK", verdict, says, sources, figure=worst, limit=2.0, unit="u")
 
 
+def of_carbon_dioxide(residuals: CurveFinding, constants: CurveFinding) -> CurveFinding:
+    """Return the words on the flask of carbonate and acid, which the model takes as closed."""
+    shows = residuals.verdict != "holds" or constants.verdict != "holds"
+    says = "The model takes the flask as closed. Above the first step carbon dioxide escapes: " + (
+        "residuals or pK show that it may have." if shows else "residuals and pK do not show it."
+    )
+    return CurveFinding("carbon dioxide", "look" if shows else "holds", says, "closed flask")
+
+
 def of_carbonate(fit: ModelFit) -> CurveFinding:
-    """Return the carbonate of the titrant, or the words on an open flask of carbonate and acid."""
-    if not fit.balance.system.takes_up_carbonate:
-        says = (
-            "The model takes the flask as closed; above the first step carbon dioxide escapes, "
-            "which shows as residuals that go together and a first pK out of place."
-        )
-        return CurveFinding("carbon dioxide", "look", says, "closed flask in the model")
-    at = fit.names.index("carbonate")
-    f, u = float(fit.values[at]), float(fit.covariance[at, at]) ** 0.5
+    """Return the carbonate in the titrant with its u."""
+    f, u = fit.value("carbonate"), fit.u("carbonate")
     amount, u_amount = f * fit.chemistry.c, u * fit.chemistry.c
     percent = 100 * f
     says = (

@@ -10,6 +10,7 @@ square of the line there.
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from server.curves.jumps import CleanCurve
 from server.curves.outcome import CannotTell, EndPoint, Method
@@ -73,7 +74,7 @@ def gran_line(
     return _named(clean, picked, G, method, "(V0 + V)·10^±pH beyond the end point")
 
 
-def _before(  # noqa: PLR0913 - one curve's circumstances
+def _before(
     clean: CleanCurve,
     power: Floats,
     method: Method,
@@ -83,7 +84,7 @@ def _before(  # noqa: PLR0913 - one curve's circumstances
 ) -> GranLine:
     V, reach = clean.V, near_mL - inner_mL
     low, high = near_mL - _FAR * reach, near_mL - _NEAR * reach
-    picked = np.flatnonzero((low <= V) & (high >= V) & (V > inner_mL))
+    picked = np.flatnonzero((low <= V) & (high >= V) & (inner_mL < V))
     powers = np.exp(_LN10 * power)
     weak = _named(clean, picked, (V - inner_mL) * powers, method, "V·10^±pH, weak in the flask")
     if flask_volume_mL is None or inner_mL:
@@ -95,16 +96,17 @@ def _before(  # noqa: PLR0913 - one curve's circumstances
         method,
         "(V0 + V)·10^±pH, strong in the flask",
     )
-    return min(weak, strong, key=lambda one: _bend(clean, one))
+    return min(weak, strong, key=_bend)
 
 
-def _bend(clean: CleanCurve, line: GranLine) -> float:
+def _bend(line: GranLine) -> float:
     fitted = line.intercept + line.gradient * line.V
-    del clean
     return float(np.mean(((line.G - fitted) / np.maximum(np.abs(fitted), 1e-12)) ** 2))
 
 
-def _named(clean: CleanCurve, picked: Floats, G: Floats, method: Method, form: str) -> GranLine:
+def _named(
+    clean: CleanCurve, picked: NDArray[np.intp], G: Floats, method: Method, form: str
+) -> GranLine:
     if picked.size < _FEWEST:
         says = f"Only {picked.size} points lie on that side; a line needs at least {_FEWEST}."
         raise CannotTell(says)

@@ -29,6 +29,10 @@ class CleanCurve:
     scatter: float
     bubbles: tuple[int, ...]
 
+    def middle(self, segment: int) -> float:
+        """Return the volume in the middle of the segment that begins at a point, in mL."""
+        return float(self.V[segment] + self.V[segment + 1]) / 2
+
 
 def cleaned(curve: TitrationCurve) -> CleanCurve:
     """Return the curve without bubbles and repeated volumes, turned so that it rises."""
@@ -86,3 +90,12 @@ def _next_jump(slope: Floats, clear: Floats, *, main_slope: float) -> int | None
     if beyond.size < 2 or float(np.median(beyond[-5:])) > _VALLEY * slope[best]:
         return None
     return best
+
+
+def steepest_about(clean: CleanCurve, volume_mL: float) -> int | None:
+    """Return the steepest segment within a tenth of a volume; None where no points lie there."""
+    middles = (clean.V[1:] + clean.V[:-1]) / 2
+    near = np.abs(middles - volume_mL) <= 0.1 * volume_mL
+    if not near.any():
+        return None
+    return int(np.argmax(np.where(near, slopes(clean.V, clean.y), -np.inf)))

@@ -11,16 +11,13 @@ from server.lab.calibration.drying_log import Drying, DryingDemand, judge_drying
 from server.lab.calibration.standard_lot import (
     BY_CERTIFICATE,
     Expiry,
-    Remaining,
     expiry_of,
-    remaining_mass,
 )
 from server.lab.log_lines import standing_lines
 from server.lab.sheet_facts import LogFact, StandardLotFact
 from server.lab.validity import last_day
 
-OPENED, DRYING, USE, RETEST = "opened", "drying", "use", "re-test"
-LINES = (OPENED, DRYING, USE, RETEST)
+OPENED, DRYING, USE, RETEST, COUNT = "opened", "drying", "use", "re-test", "count"
 _GRAVITY = ("holds", "look", "fails")
 
 
@@ -125,12 +122,3 @@ def judge_lot_drying(
     log = [drying_of(one) for one in standing_lines(lot.log, DRYING, as_of=as_of)]
     checks = [judge_drying(demand, log, used_at=at) for at in used_at]
     return max(checks, key=lambda one: _GRAVITY.index(one.verdict), default=None)
-
-
-def remaining_of(document: Mapping[str, Any], taken_g: Sequence[str]) -> Remaining | None:
-    """Return what is left of a lot after all uses, None where nobody wrote how much came."""
-    received = document.get("received_g")
-    if not received:
-        return None
-    least = document.get("minimum_sample_g")
-    return remaining_mass(received, taken_g, minimum_sample_g=least)

@@ -1,5 +1,6 @@
-"""Instruments and their calibrations, kept by a keeper."""
+"""Instruments, their identity, and calibrations by certificate, kept by a keeper."""
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import datetime
 from typing import Any
@@ -8,18 +9,25 @@ from uuid import uuid4
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
-from server.lab.free_text import read_text
+from server.lab.free_text import read_reason, read_text
+from server.lab.identity import DESCRIBED, check_described
 from server.lab.papers import check_kind, read_calibration
 from server.lab.people import check_name
-from server.lab.refusal import NotFound, Unacceptable
+from server.lab.refusal import SavedFirst, Unacceptable
 from server.lab.roles import Act
-from server.lab.validity import end_of_day, local_day, read_day
 from server.metrology.decimal_text import DecimalProblem, read_wire_decimal
 from server.procedures.acts import Thing, note_act
-from server.records.queries.loading import instrument_by_name, newest_calibration
-from server.records.tables.stores import Calibration, Instrument
+from server.procedures.calibration_papers import (
+    Kept,
+    Papers,
+    keep_calibration,
+    locked_instrument,
+)
+from server.records.queries.loading import instrument_by_name
+from server.records.tables.stores import Instrument
 
 _MOST_TEXT = 200
+_MOST_DESCRIBED = 500
 _DECIMALS = ("", "0", "1", "2", "3", "4", "5", "6")
 
 
@@ -28,7 +36,8 @@ class RegisterInstrument:
     """An instrument's identity.
 
     ``resolution`` is the smallest step that is shown or drawn, in the unit of its readings (g,
-    mL, °C); ``decimals`` how many decimals a reading has, where the resolution does not say.
+    mL, °C); ``decimals`` how many decimals a reading has, where the resolution does not say. What
+    describes it may be "not applicable" with the reason.
     """
 
     kind: str
@@ -42,11 +51,32 @@ class RegisterInstrument:
     decimals: str = ""
     minimum_g: str = ""
     software: str = ""
+    verification: str = ""
+    adjustments: str = ""
+    acceptance: str = ""
+    references: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class DescribeInstrument:
+    """What describes an instrument anew, with the reason; ``seen`` is what stood when it was read.
+
+    ``described``: maker, type, serial, location, software, verification, adjustments, acceptance,
+    references; a key that is absent stays as it is.
+    """
+
+    instrument_id: str
+    described: dict[str, str]
+    reason: str
+    seen: dict[str, str]
 
 
 @dataclass(frozen=True, slots=True)
 class RecordCalibration:
-    """A calibration: its certificate, its due day, and its statements as in a bench record."""
+    """A calibration: its certificate, its due day, and its statements as in a bench record.
+
+    ``file_id`` is the original that was handed over before, where there is one.
+    """
 
     instrument_id: str
     certificate_number: str
@@ -55,6 +85,7 @@ class RecordCalibration:
     due_on: str
     due_basis: str
     document: dict[str, Any]
+    file_id: str | None = None
 
 
 def register_instrument(
@@ -74,9 +105,9 @@ def register_instrument(
     if kind in {"balance", "burette"} and not command.resolution:
         says = f"A {kind} needs its resolution, for the digits of a reading depend on it."
         raise Unacceptable(says, field="resolution", example="0.0001")
-    keys = ("maker", "type", "serial", "location", "resolution", "capacity", "decimals",
-            "minimum_g", "software")  # fmt: skip
-    stated = {key: read_text(getattr(command, key), key, most=_MOST_TEXT) for key in keys}
+    scale = ("resolution", "capacity", "decimals", "minimum_g")
+    stated = {key: read_text(getattr(command, key), key, most=_MOST_TEXT) for key in scale}
+    stated |= _described({key: getattr(command, key) for key in DESCRIBED})
     row = Instrument(
         id=str(uuid4()),
         kind=kind,
@@ -93,6 +124,42 @@ def register_instrument(
     return row.id
 
 
+def describe_instrument(
+    session: Session, command: DescribeInstrument, *, actor: Actor, now: datetime
+) -> None:
+    """Describe an instrument anew; the trail keeps what stood before.
+
+    Its scale (resolution, capacity, decimals) stays: readings that were written rest on it.
+
+    Raises:
+        SavedFirst: somebody described it since it was read.
+        Unacceptable: a key that cannot be changed, "not applicable" without why, no reason.
+    """
+    actor.need(Act.KEEP)
+    row = locked_instrument(session, command.instrument_id)
+    unknown = sorted(set(command.described) - set(DESCRIBED))
+    if unknown:
+        says = f"described.{unknown[0]} is not known here; known are {', '.join(DESCRIBED)}."
+        raise Unacceptable(says, field=f"described.{unknown[0]}", example=DESCRIBED[0])
+    stands = {key: row.document.get(key, "") for key in DESCRIBED}
+    if any(stands[key] != command.seen.get(key, "") for key in command.described):
+        says = "Somebody described this instrument meanwhile; look at it and write from there."
+        raise SavedFirst(says, field="described", shown={"standing": stands})
+    reason = read_reason(
+        command.reason, says="Give the reason for the change.", example="moved to bench 3"
+    )
+    described = {**stands, **_described(command.described)}
+    changed = {key: value for key, value in described.items() if value != stands[key]}
+    if not changed:
+        raise Unacceptable("Nothing was changed.", field="described")
+    kept = {**row.document, **described}
+    row.document = {key: value for key, value in kept.items() if value}
+    session.flush()
+    thing = Thing("instrument", row.id, row.name)
+    body = {"before": {key: stands[key] for key in changed}, "after": changed}
+    note_act(session, "described an instrument", thing, actor=actor, now=now, why=reason, body=body)
+
+
 def record_calibration(
     session: Session, command: RecordCalibration, *, actor: Actor, now: datetime
 ) -> str:
@@ -101,45 +168,26 @@ def record_calibration(
     Sheets that began with an older version keep it.
     """
     actor.need(Act.KEEP)
-    instrument = session.get(Instrument, command.instrument_id, with_for_update=True)
-    if instrument is None:
-        raise NotFound("There is no such instrument.", field="instrument_id")
-    done_on = read_day(command.done_on, "done_on")
-    due_on = read_day(command.due_on, "due_on")
-    if done_on > local_day(now, actor.zone):
-        raise Unacceptable("The calibration's day lies in the future.", field="done_on")
-    if due_on < done_on:
-        says = "The due day lies before the day of the calibration."
-        raise Unacceptable(says, field="due_on", example=command.done_on)
-    newest = newest_calibration(session, instrument.id)
-    row = Calibration(
-        id=str(uuid4()),
-        instrument_id=instrument.id,
-        version=newest.version + 1 if newest else 1,
-        certificate_number=check_name(
-            command.certificate_number, "certificate_number", example="C-2026-118"
-        ),
-        issuer=check_name(command.issuer, "issuer", example="calibration laboratory"),
-        done_on=done_on.isoformat(),
-        due_at=end_of_day(due_on, actor.zone),
-        due_basis=check_name(command.due_basis, "due_basis", example="12 months, own plan"),
-        document=read_calibration(instrument.kind, command.document),
-        made_by=actor.person_id,
-        made_at=now,
+    instrument = locked_instrument(session, command.instrument_id)
+    papers = Papers(
+        certificate_number=command.certificate_number,
+        issuer=command.issuer,
+        done_on=command.done_on,
+        due_on=command.due_on,
+        due_basis=command.due_basis,
     )
-    session.add(row)
-    session.flush()
-    thing = Thing("instrument", instrument.id, instrument.name)
-    body = {
-        "calibration": row.id,
-        "version": row.version,
-        "certificate_number": row.certificate_number,
-        "done_on": row.done_on,
-        "due_on": due_on.isoformat(),
-        "document": row.document,
-    }
-    note_act(session, "recorded a calibration", thing, actor=actor, now=now, body=body)
-    return row.id
+    document = read_calibration(instrument.kind, command.document)
+    return keep_calibration(
+        session, instrument, papers, Kept(document, file_id=command.file_id or None),
+        act="recorded a calibration", actor=actor, now=now,
+    )  # fmt: skip
+
+
+def _described(texts: Mapping[str, str]) -> dict[str, str]:
+    found = {key: read_text(text, key, most=_MOST_DESCRIBED) for key, text in texts.items()}
+    for key, text in found.items():
+        check_described(text, key)
+    return found
 
 
 def _check_positive(text: str, field: str) -> None:

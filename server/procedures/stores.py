@@ -1,7 +1,7 @@
 """The stores: standard lots and recipes, kept by a keeper."""
 
 from dataclasses import dataclass
-from datetime import datetime
+from datetime import date, datetime
 from typing import Any
 from uuid import uuid4
 
@@ -10,15 +10,19 @@ from sqlalchemy.orm import Session
 from server.chemistry.formula import FormulaProblem, molar_mass
 from server.chemistry.reactions import ratio
 from server.chemistry.substances import SUBSTANCES
+from server.intake.kept_files import read_original
 from server.lab import reading_documents as reading
 from server.lab.actor import Actor
+from server.lab.calibration.drying_log import read_demand
+from server.lab.calibration.standard_lot import after_period
 from server.lab.free_text import read_text
 from server.lab.people import check_name
 from server.lab.recipe import RecipeDocument, read_recipe
 from server.lab.refusal import SavedFirst, Unacceptable
 from server.lab.roles import Act
-from server.lab.validity import end_of_day, read_day
+from server.lab.validity import end_of_day, local_day, read_day
 from server.procedures.acts import Thing, note_act
+from server.procedures.files import keep_file
 from server.records.queries.loading import newest_recipe_version, standard_lot_by_name
 from server.records.tables.stores import Recipe, StandardLot
 
@@ -32,7 +36,10 @@ class ReceiveStandardLot:
     """A delivery of a primary standard with what its certificate states.
 
     ``mass_fraction``, ``molar_mass`` (g/mol) and ``density`` (g/cm3) are quantities as in a bench
-    record; days are written year-month-day.
+    record; days are written year-month-day. ``due_on`` is the certificate's own end; the period
+    after opening (``12 months``) and the re-test day are further rules, and the earliest counts.
+    ``drying_demand`` is what ``server.lab.calibration.drying_log`` reads. ``content_base64`` is the
+    certificate's file, kept with its SHA-256.
     """
 
     name: str
@@ -48,6 +55,13 @@ class ReceiveStandardLot:
     density: dict[str, Any] | None = None
     minimum_sample_g: str = ""
     storage: str = ""
+    received_g: str = ""
+    received_on: str = ""
+    period_after_opening: str = ""
+    retest_on: str = ""
+    drying_demand: dict[str, Any] | None = None
+    file_name: str = ""
+    content_base64: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,9 +91,15 @@ def receive_standard_lot(
     due_at = end_of_day(read_day(command.due_on, "due_on"), actor.zone)
     if due_at <= now:
         raise Unacceptable("This standard lot's due day is past.", field="due_on")
+    retest_on = read_day(command.retest_on, "retest_on") if command.retest_on.strip() else None
+    if retest_on is not None and end_of_day(retest_on, actor.zone) <= now:
+        raise Unacceptable("This standard lot's re-test day is past.", field="retest_on")
     substance = check_name(command.substance, "substance", example="KHP")
     if command.molar_mass is None:
         _need_formula(substance)
+    original = None
+    if command.content_base64 or command.file_name:
+        original = read_original(command.file_name, command.content_base64)
     row = StandardLot(
         id=str(uuid4()),
         name=name,
@@ -90,7 +110,8 @@ def receive_standard_lot(
         issuer=check_name(command.issuer, "issuer", example="producer of the standard"),
         due_at=due_at,
         due_basis=check_name(command.due_basis, "due_basis", example="expiry on the certificate"),
-        document=_statements(command),
+        document=_statements(command) | _in_the_store(command, today=local_day(now, actor.zone)),
+        file_id=keep_file(session, original, actor=actor, now=now) if original else None,
         made_by=actor.person_id,
         made_at=now,
     )
@@ -98,6 +119,8 @@ def receive_standard_lot(
     session.flush()
     thing = Thing("standard lot", row.id, row.name)
     body = {"substance": row.substance, "due_on": command.due_on, **row.document}
+    if original is not None:
+        body["file"] = {"id": row.file_id, "name": original.name, "sha256": original.sha256}
     note_act(session, "received a standard lot", thing, actor=actor, now=now, body=body)
     return row.id
 
@@ -183,11 +206,32 @@ def _statements(command: ReceiveStandardLot) -> dict[str, Any]:
     read["drying"] = read_text(command.drying, "drying") or None
     read["storage"] = read_text(command.storage, "storage") or None
     if command.minimum_sample_g:
-        read["minimum_sample_g"] = _grams(command.minimum_sample_g)
+        read["minimum_sample_g"] = _grams(command.minimum_sample_g, "minimum_sample_g")
     return {key: value for key, value in read.items() if value is not None}
 
 
-def _grams(text: str) -> str:
-    quantity = {"minimum_sample_g": {"value": text, "unit": "g"}}
-    reading.positive_at(quantity, "minimum_sample_g", "", unit="g")
+def _in_the_store(command: ReceiveStandardLot, *, today: date) -> dict[str, Any]:
+    """Return what the laboratory adds to a certificate: how much came, when, rules of its end."""
+    read: dict[str, Any] = {}
+    if command.received_g:
+        read["received_g"] = _grams(command.received_g, "received_g")
+    if command.received_on.strip():
+        day = read_day(command.received_on, "received_on")
+        if day > today:
+            raise Unacceptable("This day lies in the future.", field="received_on")
+        read["received_on"] = day.isoformat()
+    period = command.period_after_opening.strip()
+    if period:
+        after_period(today, period)
+        read["period_after_opening"] = period
+    if command.retest_on.strip():
+        read["retest_on"] = read_day(command.retest_on, "retest_on").isoformat()
+    if command.drying_demand:
+        read_demand(command.drying_demand)
+        read["drying_demand"] = command.drying_demand
+    return read
+
+
+def _grams(text: str, field: str) -> str:
+    reading.positive_at({field: {"value": text, "unit": "g"}}, field, "", unit="g")
     return text

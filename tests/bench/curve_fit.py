@@ -18,10 +18,10 @@ import lmfit
 import numpy as np
 from scipy.optimize import brentq
 
-from server.curves.charge_balance import ChargeBalance, Chemistry, Flask
-from server.curves.fit_scatter import Given
-from server.curves.model_fit import fit_model
-from server.curves.systems import SYSTEMS
+from server.curves.model.charge_balance import ChargeBalance, Chemistry, Flask
+from server.curves.model.fit import fit_model
+from server.curves.model.scatter import Given
+from server.curves.model.systems import SYSTEMS
 
 HERE = Path(__file__).resolve().parent
 _spec = importlib.util.spec_from_file_location("second_way", HERE.parent / "curves" / "conftest.py")

@@ -1,6 +1,6 @@
 """A run's outcome as it is shown: facts, its rows, its curve of errors, its budget."""
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from typing import Any
 
@@ -9,7 +9,8 @@ from server.lab.calibration.probe import ProbeOutcome
 from server.lab.calibration.thermometer import ThermometerOutcome
 from server.lab.calibration.ware_verdict import WareOutcome, WeighedRow
 from server.lab.calibration.water_run import WaterRun
-from server.metrology.gravimetry import BudgetLine
+from server.metrology.burette_points import CurveOfErrors
+from server.metrology.gravimetry import BudgetLine, Run
 from server.metrology.rounding import significant
 
 
@@ -69,8 +70,9 @@ def read_told(document: Mapping[str, Any]) -> Told:
 def told_water(document: Mapping[str, Any], run: WaterRun, outcome: WareOutcome) -> Told:
     """Return a gravimetric run: every weighing with its V20 and Z, the mean or the curve."""
     limit = outcome.tolerance
+    grade = f", class {run.grade}" if run.grade else ""
     facts = [
-        ("Ware", f"{run.kind}, {run.nominal} mL" + (f", class {run.grade}" if run.grade else "")),
+        ("Ware", f"{run.kind}, {run.nominal} mL{grade}"),
         ("Water", "air-saturated" if run.ware.air_saturated else "degassed"),
         ("Cubic expansion", f"{run.glass_expansion} /K"),
     ]
@@ -79,28 +81,19 @@ def told_water(document: Mapping[str, Any], run: WaterRun, outcome: WareOutcome)
     if limit is not None:
         facts.append(("Tolerance", f"± {limit.systematic_mL} mL ({limit.row})"))
     facts.append(("Decision rule", run.rule))
-    budget, budget_of = (), ""
+    budget_of = ""
+    budget: tuple[tuple[str, ...], ...] = ()
     curve: tuple[CurvePoint, ...] = ()
     if outcome.run is not None:
-        found = outcome.run
-        facts += [
-            ("Mean at 20 °C", (f"{found.mean_mL:.5f} mL, U = {significant(found.U_mL)} mL "
-             f"(k = {found.k:.2f})")),
-            ("Systematic error", f"{found.systematic_mL:+.5f} mL"),
-            ("Random error, s", f"{significant(found.s_mL)} mL" if found.s_mL else "0 mL"),
-        ]  # fmt: skip
-        budget, budget_of = _budget(found.budget), "the mean"
+        facts += _run_facts(outcome.run)
+        budget_of, budget = "the mean", _budget(outcome.run.budget)
     if outcome.curve is not None:
         points = outcome.curve.points
-        curve = tuple(CurvePoint(one.reading_mL, one.correction_mL, 2.0 * one.u_mL)
-                      for one in points)  # fmt: skip
+        curve = tuple(CurvePoint(p.reading_mL, p.correction_mL, 2.0 * p.u_mL) for p in points)
         worst = max(points, key=lambda one: one.u_mL)
-        budget, budget_of = _budget(worst.run.budget), f"the point at {worst.reading_mL:g} mL"
-        facts += [
-            ("Repeatability, s", (f"{significant(outcome.curve.pooled_s_mL)} mL, "
-             f"{outcome.curve.pooled_dof:g} degrees of freedom")),
-            ("u of one delivery", f"{significant(outcome.curve.delivery_u_mL)} mL"),
-        ]  # fmt: skip
+        facts += _curve_facts(outcome.curve)
+        budget_of = f"the point at {worst.reading_mL:g} mL"
+        budget = _budget(worst.run.budget)
     return Told(
         facts=tuple(facts),
         heads=_water_heads(run),
@@ -111,6 +104,24 @@ def told_water(document: Mapping[str, Any], run: WaterRun, outcome: WareOutcome)
         budget_of=budget_of,
         budget=budget,
     )
+
+
+def _run_facts(found: Run) -> list[tuple[str, str]]:
+    U = f"U = {significant(found.U_mL)} mL (k = {found.k:.2f})"
+    spread = significant(found.s_mL) if found.s_mL else "0"
+    return [
+        ("Mean at 20 °C", f"{found.mean_mL:.5f} mL, {U}"),
+        ("Systematic error", f"{found.systematic_mL:+.5f} mL"),
+        ("Random error, s", f"{spread} mL"),
+    ]
+
+
+def _curve_facts(curve: CurveOfErrors) -> list[tuple[str, str]]:
+    s = significant(curve.pooled_s_mL) if curve.pooled_s_mL else "0"
+    return [
+        ("Repeatability, s", f"{s} mL, {curve.pooled_dof:g} degrees of freedom"),
+        ("u of one delivery", f"{significant(curve.delivery_u_mL)} mL"),
+    ]
 
 
 def _water_heads(run: WaterRun) -> tuple[str, ...]:
@@ -148,22 +159,7 @@ def _budget(lines: tuple[BudgetLine, ...]) -> tuple[tuple[str, ...], ...]:
 
 def told_balance(document: Mapping[str, Any], outcome: BalanceOutcome) -> Told:
     """Return a balance's calibration: every load with its error, what is added, U."""
-    found = outcome.found
-    repeated = document["repeatability"]
-    facts = [
-        ("Step of the scale", f"{document['step']} g"),
-        ("Repeatability", f"s = {significant(found.s_g)} g from "
-         + ", ".join(str(one) for one in repeated["readings"]) + " g"),
-        ("Smallest mass for 0.10 %", f"{outcome.minimum_g} g (USP <41>)"),
-        ("Linearity of one reading", f"± {significant(found.linearity_g)} g"),
-    ]  # fmt: skip
-    if outcome.eccentricity is not None:
-        off = ", ".join(outcome.eccentricity.positions)
-        facts.append(("Off the centre", f"{off} g; in the centre {outcome.eccentricity.centre} g"))
-    if document.get("air"):
-        air = document["air"]
-        facts.append(("Air", (f"{air['temperature']} °C, {air['pressure']} hPa, "
-                      f"{air['humidity']} %")))  # fmt: skip
+    found, limits = outcome.found, document.get("limits") or {}
     rows = tuple(
         (
             str(typed.get("name") or typed.get("nominal") or typed["conventional"]),
@@ -176,17 +172,36 @@ def told_balance(document: Mapping[str, Any], outcome: BalanceOutcome) -> Told:
         )
         for typed, one in zip(document["weights"], found.errors, strict=True)
     )
-    limits = document.get("limits") or {}
     return Told(
-        facts=tuple(facts),
+        facts=tuple(_balance_facts(document, outcome)),
         heads=("weight", "conventional, g", "up, g", "down, g", "error, g", "added, g",
                "U (k = 2), g"),
         rows=rows,
         unit="g",
-        curve=tuple(CurvePoint(one.indication_g, one.correction_g, 2.0 * one.u_g)
-                    for one in found.errors),
+        curve=tuple(
+            CurvePoint(one.indication_g, one.correction_g, 2.0 * one.u_g) for one in found.errors
+        ),
         limit=float(limits["error"]) if limits.get("error") else None,
     )  # fmt: skip
+
+
+def _balance_facts(
+    document: Mapping[str, Any], outcome: BalanceOutcome
+) -> Iterator[tuple[str, str]]:
+    found = outcome.found
+    repeated = ", ".join(str(one) for one in document["repeatability"]["readings"])
+    yield "Step of the scale", f"{document['step']} g"
+    s = significant(found.s_g) if found.s_g else "0"
+    yield "Repeatability", f"s = {s} g, {found.s_dof} degrees of freedom"
+    yield "Readings of one load", f"{repeated} g"
+    yield "Smallest mass for 0.10 %", f"{outcome.minimum_g} g (USP <41>)"
+    yield "Linearity of one reading", f"± {significant(found.linearity_g)} g"
+    if outcome.eccentricity is not None:
+        off = ", ".join(outcome.eccentricity.positions)
+        yield "Off the centre", f"{off} g; in the centre {outcome.eccentricity.centre} g"
+    if document.get("air"):
+        air = document["air"]
+        yield "Air", f"{air['temperature']} °C, {air['pressure']} hPa, {air['humidity']} %"
 
 
 def told_probe(document: Mapping[str, Any], outcome: ProbeOutcome) -> Told:

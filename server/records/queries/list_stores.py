@@ -2,13 +2,20 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from datetime import datetime, timedelta
 
 from sqlalchemy import func, select
 from sqlalchemy.orm import Session
 
-from server.lab.sheet_facts import HoldFact, InstrumentFact
+from server.lab.calibration.check_log import CHARTS
+from server.lab.sheet_facts import HoldFact, InstrumentFact, LogFact
+from server.records.queries.list_log import log_lines
 from server.records.tables.people import Person
 from server.records.tables.stores import Calibration, Hold, Instrument, Recipe
+
+
+#: A check between two calibrations that is older says nothing about today.
+CHECK_SPAN = timedelta(days=31)
 
 
 @dataclass(frozen=True, slots=True)
@@ -27,8 +34,13 @@ class KeptCalibration:
     recorded_by: str
 
 
-def listed_instruments(session: Session) -> list[ListedInstrument]:
-    """Return the instruments, each with the calibration that serves, by kind and name."""
+def listed_instruments(
+    session: Session, *, since: datetime | None = None
+) -> list[ListedInstrument]:
+    """Return the instruments, each with the calibration that serves, by kind and name.
+
+    ``since``: with the checks of each from then on; None: without.
+    """
     newest = (
         select(Calibration.instrument_id, func.max(Calibration.version).label("version"))
         .group_by(Calibration.instrument_id)
@@ -44,14 +56,25 @@ def listed_instruments(session: Session) -> list[ListedInstrument]:
         )
         .order_by(Instrument.kind, Instrument.name)
     ).all()
-    holds = holds_by_thing(session, "instrument", [row.id for row, _ in rows])
+    ids = [row.id for row, _ in rows]
+    holds = holds_by_thing(session, "instrument", ids)
+    logs = {} if since is None else checks_since(session, ids, since)
     return [
         ListedInstrument(
             row,
-            instrument_fact(row, calibration, holds.get(row.id, ())) if calibration else None,
+            instrument_fact(row, calibration, holds.get(row.id, ()), logs.get(row.id, ()))
+            if calibration
+            else None,
         )
         for row, calibration in rows
     ]
+
+
+def checks_since(
+    session: Session, instrument_ids: Sequence[str], since: datetime
+) -> dict[str, tuple[LogFact, ...]]:
+    """Return the charts of instruments, and the checks on them from an instant on."""
+    return log_lines(session, "instrument", instrument_ids, since=since, always=CHARTS)
 
 
 def calibrations_of(session: Session, instrument_id: str) -> list[KeptCalibration]:
@@ -101,9 +124,13 @@ def holds_by_thing(
 
 
 def instrument_fact(
-    row: Instrument, calibration: Calibration, holds: tuple[HoldFact, ...]
+    row: Instrument,
+    calibration: Calibration,
+    holds: tuple[HoldFact, ...],
+    log: tuple[LogFact, ...] = (),
 ) -> InstrumentFact:
     """Return an instrument's row with one of its calibrations as a plain value."""
+    checks = (calibration.run or {}).get("checks", ())
     return InstrumentFact(
         kind=row.kind,
         instrument_id=row.id,
@@ -118,4 +145,6 @@ def instrument_fact(
         due_basis=calibration.due_basis,
         document=calibration.document,
         holds=holds,
+        failing=tuple(one["says"] for one in checks if one["verdict"] == "fails"),
+        log=log,
     )

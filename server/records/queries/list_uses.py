@@ -1,13 +1,17 @@
-"""Where standard lots were weighed, with the readings of each weighing that stands."""
+"""Where standard lots were weighed and what was taken of them."""
 
 from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime
+from decimal import Decimal
 
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from server.lab.in_use import MASS_SLOTS
+from server.lab.lot_uses import Taken, taken_by_hand, weighed_masses
+from server.lab.sheet_facts import STANDARD_LOT
+from server.records.queries.list_log import log_lines
 from server.records.tables.bench import Certificate, Entry, Sheet
 from server.records.tables.people import Person
 
@@ -41,21 +45,54 @@ def sheets_on_lots(session: Session, lot_ids: Sequence[str]) -> dict[str, tuple[
         .where(Sheet.standard_lot_id.in_(lot_ids))
         .order_by(Sheet.begun_at, Sheet.id)
     ).all()
-    entries = session.scalars(
-        select(Entry)
-        .join(Sheet, Sheet.id == Entry.sheet_id)
-        .where(Sheet.standard_lot_id.in_(lot_ids), Entry.slot.in_(MASS_SLOTS))
-        .order_by(Entry.sheet_id, Entry.position)
-    ).all()
-    struck = {one.strikes for one in entries if one.strikes}
-    weighings: dict[str, tuple[WeighedEntry, ...]] = {}
-    for one in entries:
-        if one.id not in struck and one.text.strip():
-            read = WeighedEntry(one.replicate, one.slot, one.text, one.received_at)
-            weighings[one.sheet_id] = (*weighings.get(one.sheet_id, ()), read)
+    weighings = _weighings(session, lot_ids)
     found: dict[str, tuple[SheetOnLot, ...]] = {}
     for sheet, name, number in rows:
         lot_id = sheet.standard_lot_id or ""
         used = SheetOnLot(sheet, name, number, weighings.get(sheet.id, ()))
         found[lot_id] = (*found.get(lot_id, ()), used)
+    return found
+
+
+def all_taken(
+    session: Session, lot_id: str, sheets: Sequence[SheetOnLot] | None = None
+) -> tuple[Taken, ...]:
+    """Return all that was taken of one lot: on sheets, and by hand in its log."""
+    found = sheets_on_lots(session, (lot_id,)).get(lot_id, ()) if sheets is None else sheets
+    log = log_lines(session, STANDARD_LOT, (lot_id,)).get(lot_id, ())
+    return (*taken_on_sheets(found), *taken_by_hand(log))
+
+
+def taken_on_sheets(sheets: Sequence[SheetOnLot]) -> tuple[Taken, ...]:
+    """Return what each sheet took, at the time of its last weighing."""
+    return tuple(
+        Taken(
+            at=max(one.at for one in used.weighings),
+            mass_g=sum(masses, Decimal(0)),
+            what=f"{len(masses)} weighing{'s' if len(masses) != 1 else ''}",
+            by=used.begun_by,
+            sheet_id=used.sheet.id,
+        )
+        for used in sheets
+        if (masses := weighed_masses((one.replicate, one.slot, one.text) for one in used.weighings))
+    )
+
+
+def _weighings(session: Session, lot_ids: Sequence[str]) -> dict[str, tuple[WeighedEntry, ...]]:
+    """Return the readings of balances that nobody struck through, by sheet."""
+    rows = session.execute(
+        select(
+            Entry.id, Entry.sheet_id, Entry.strikes, Entry.replicate, Entry.slot, Entry.text,
+            Entry.received_at,
+        )
+        .join(Sheet, Sheet.id == Entry.sheet_id)
+        .where(Sheet.standard_lot_id.in_(lot_ids), Entry.slot.in_(MASS_SLOTS))
+        .order_by(Entry.sheet_id, Entry.position)
+    ).all()  # fmt: skip
+    struck = {row.strikes for row in rows if row.strikes}
+    found: dict[str, tuple[WeighedEntry, ...]] = {}
+    for row in rows:
+        if row.id not in struck and row.text.strip():
+            read = WeighedEntry(row.replicate, row.slot, row.text, row.received_at)
+            found[row.sheet_id] = (*found.get(row.sheet_id, ()), read)
     return found

@@ -14,6 +14,7 @@ from server.lab.sheet_facts import (
     PersonFact,
     RecipeFact,
 )
+from server.records.queries.list_stores import instrument_fact
 from server.records.queries.loading import holds_of, laboratory_row
 from server.records.tables.people import Person
 from server.records.tables.stores import Calibration, Instrument, Recipe
@@ -47,21 +48,7 @@ def load_instrument_fact(session: Session, calibration_id: str) -> InstrumentFac
     """Return an instrument with one version of its calibration."""
     calibration = session.get_one(Calibration, calibration_id)
     instrument = session.get_one(Instrument, calibration.instrument_id)
-    return InstrumentFact(
-        kind=instrument.kind,
-        instrument_id=instrument.id,
-        name=instrument.name,
-        identity=instrument.document,
-        calibration_id=calibration.id,
-        version=calibration.version,
-        certificate_number=calibration.certificate_number,
-        issuer=calibration.issuer,
-        done_on=calibration.done_on,
-        due_at=calibration.due_at,
-        due_basis=calibration.due_basis,
-        document=calibration.document,
-        holds=_holds(session, "instrument", instrument.id),
-    )
+    return instrument_fact(instrument, calibration, _holds(session, "instrument", instrument.id))
 
 
 def _holds(session: Session, kind: str, thing_id: str) -> tuple[HoldFact, ...]:

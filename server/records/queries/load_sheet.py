@@ -28,7 +28,12 @@ from server.lab.sheet_facts import (
     logs_count_at,
 )
 from server.records.queries.list_log import log_lines
-from server.records.queries.list_stores import holds_by_thing, instrument_fact
+from server.records.queries.list_stores import (
+    CHECK_SPAN,
+    checks_since,
+    holds_by_thing,
+    instrument_fact,
+)
 from server.records.queries.load_papers import load_laboratory_fact, load_people
 from server.records.queries.load_standard_lots import standard_lot_fact
 from server.records.tables.bench import Certificate, Entry, Evaluation, Sheet, Signature
@@ -76,7 +81,8 @@ class _Loaded:
         self.lot_holds = holds_by_thing(session, STANDARD_LOT, list(self.standard_lots))
         self.lot_logs = log_lines(session, STANDARD_LOT, list(self.standard_lots))
         used = {one for sheet in sheets for one in sheet.calibrations.values()}
-        self.instruments = _instruments(session, used)
+        since = min((sheet.begun_at for sheet in sheets), default=None)
+        self.instruments = _instruments(session, used, since)
         self.entries = _by_sheet(session, Entry, ids, Entry.position)
         self.signatures = _by_sheet(session, Signature, ids, Signature.at, Signature.meaning.desc())
         self.evaluations = _by_id(session, Evaluation, {sheet.evaluation_id for sheet in sheets})
@@ -163,15 +169,22 @@ def _grouped(rows: Iterable[Any], key: Callable[[Any], str]) -> dict[str, list[A
     return found
 
 
-def _instruments(session: Session, calibration_ids: set[Any]) -> dict[str, InstrumentFact]:
+def _instruments(
+    session: Session, calibration_ids: set[Any], since: datetime | None
+) -> dict[str, InstrumentFact]:
+    """Return instruments by their calibrations, with the checks of a month before the sheets."""
     rows = session.execute(
         select(Instrument, Calibration)
         .join(Calibration, Calibration.instrument_id == Instrument.id)
         .where(Calibration.id.in_([one for one in calibration_ids if one]))
     ).all()
-    holds = holds_by_thing(session, "instrument", [row.id for row, _ in rows])
+    ids = list({row.id for row, _ in rows})
+    holds = holds_by_thing(session, "instrument", ids)
+    logs = checks_since(session, ids, since - CHECK_SPAN) if since else {}
     return {
-        calibration.id: instrument_fact(row, calibration, holds.get(row.id, ()))
+        calibration.id: instrument_fact(
+            row, calibration, holds.get(row.id, ()), logs.get(row.id, ())
+        )
         for row, calibration in rows
     }
 

@@ -63,7 +63,7 @@ def certificate_told(issued: Issued) -> dict[str, Any]:
 
 
 def _value(document: Mapping[str, Any], shown: outcome.Printed) -> dict[str, str]:
-    """Return the certified value: with U, or with the Monte Carlo interval where that is printed."""
+    """Return the certified value: with U, or the Monte Carlo interval where that is printed."""
     result, validity = document["result"], document["validity"]
     temperature = f"Amount concentration at {result['concentration']['temperature_C']} °C."
     says = (

@@ -115,6 +115,7 @@ function drawAside() {
 
 function writeLabel() {
   const { lit, typed } = view;
+  if (lit.kind !== "number") return [lit.value ? "Strike the old one and write" : "Write"];
   const what = [typed.trim(), typed.trim() ? unitOf(lit) : ""].filter(Boolean).join(" ");
   const verb = lit.value ? `Strike ${lit.value.text}, write` : "Write";
   return [el("span", { class: "verb" }, verb), " ", el("span", { class: "what" }, what)];
@@ -137,6 +138,11 @@ function drawEnd() {
 
 function say(words) {
   spot("said").textContent = words;
+}
+
+/** A value as it is said aloud; words are too long for that. */
+function spoken(row, text) {
+  return row.kind === "text" ? "" : `${text} ${unitOf(row)}`.trim();
 }
 
 /** The lit row whole between the top and the pad; a row taller than that shows its beginning. */
@@ -178,7 +184,7 @@ const acts = {
     Object.assign(here, { chosen: keyOf(row), note: null, reason: "", confirmed: null });
     draw({ focus: true });
     showLit();
-    say(`${row.label}: ${row.value ? `correcting ${row.value.text}` : "next"}.`);
+    say(`${row.label}: ${row.value ? ["correcting", spoken(row, row.value.text)].filter(Boolean).join(" ") : "next"}.`);
   },
   leave() {
     store.draft(here.chosen, "");
@@ -262,7 +268,8 @@ function put(row, reading, confirmed) {
   Object.assign(here, { chosen: null, note: null, reason: "", confirmed: null });
   draw({ focus: true });
   showLit();
-  say(`${row.label} ${reading.text} ${unitOf(reading)} written on this tablet. ${view.lit ? `Next: ${view.lit.label}.` : ""}`);
+  const what = [row.label, spoken(row, reading.text)].filter(Boolean).join(" ");
+  say(`${what} written on this tablet. ${view.lit ? `Next: ${view.lit.label}.` : ""}`);
   return undefined;
 }
 

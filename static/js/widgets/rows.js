@@ -36,7 +36,8 @@ function rowOf(row, view, acts) {
 }
 
 function wordy(row) {
-  return row.kind === "choice" || row.kind === "text" ? " is-words" : "";
+  if (row.kind === "text") return " is-words is-text";
+  return row.kind === "choice" ? " is-words" : "";
 }
 
 function writtenRow(row, view, acts) {

@@ -4,13 +4,13 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from server.curves.lag import LagModel
+from server.curves.model.lag import LagModel
 from server.curves.points import Floats
 
 _ENOUGH, _FAR = 4.0, 10.0
 """A residual within 4 standard deviations has full weight; at 10 a point weighs nothing."""
 _STANDS = 0.2
-"""A variance that changes by less than this leaves the parameters where they are, as far as shows."""
+"""A variance that changes by less than this leaves the parameters as they are, for all it shows."""
 _LEAST_READING_U = 5e-4
 _LEAST_VOLUME_U = 2e-6
 _DRAWN_TO, _DRAWN_BY = 4e-4, 2.0

@@ -10,7 +10,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from server.chemistry.equilibria import CARBONIC, U_PKW
-from server.curves.model_fit import ModelFit
+from server.curves.model.fit import ModelFit
 from server.curves.points import Floats
 
 _FLASK_VOLUME_U = 0.02

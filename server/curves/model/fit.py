@@ -11,9 +11,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from server.curves.charge_balance import ChargeBalance, Chemistry, Volumes
-from server.curves.fit_scatter import Given, Priors, ScatterEstimate
-from server.curves.lag import LagModel
+from server.curves.model.charge_balance import ChargeBalance, Chemistry, Volumes
+from server.curves.model.lag import LagModel
+from server.curves.model.scatter import Given, Priors, ScatterEstimate
 from server.curves.points import Floats
 
 PIVOT_pH = 7.0
@@ -69,6 +69,11 @@ class ModelFit:
     def value(self, name: str) -> float:
         """Return a parameter's value; ValueError where it is not part of this fit."""
         return float(self.values[self.names.index(name)])
+
+    def u(self, name: str) -> float:
+        """Return a parameter's standard uncertainty, priors included."""
+        at = self.names.index(name)
+        return float(np.sqrt(self.covariance[at, at]))
 
     @property
     def effective_mL(self) -> float:
@@ -164,7 +169,13 @@ def fit_model(
     Raises:
         FitProblem: it does not settle, or settles outside what a titration can be.
     """
-    given = given or Given()
+    with np.errstate(over="ignore", invalid="ignore", divide="ignore"):
+        return _fit(balance, V, pH, start_mL=start_mL, given=given or Given())
+
+
+def _fit(
+    balance: ChargeBalance, V: Floats, pH: Floats, *, start_mL: float, given: Given
+) -> ModelFit:
     lag = given.lag
     rounds = _Rounds(balance, start_mL, given.priors, lag)
     scatter = ScatterEstimate(given, V.size)
@@ -172,7 +183,7 @@ def fit_model(
     chemistry = rounds.chemistry()
     ln_gamma = balance.ln_gamma(balance.start_ionic_strength(V, chemistry.c))
     size = len(rounds.names)
-    for count in range(1, _MOST_ROUNDS + 1):  # noqa: B007 - said in the result
+    for count in range(1, _MOST_ROUNDS + 1):
         _, offset, slope = rounds.values[:3].tolist()
         if lag is not None:
             pH = lag.freed(float(rounds.values[-1]))
@@ -189,7 +200,7 @@ def fit_model(
         weighted = rows * weights
         normal = weighted @ rows.T
         normal.ravel()[:: size + 1] += rounds.precision
-        covariance = np.linalg.inv(normal)
+        covariance: Floats = np.asarray(np.linalg.inv(normal), dtype=float)
         pull = weighted @ gap - rounds.precision * (rounds.values - rounds.centre)
         step = rounds.bounded(covariance @ pull)
         left = gap - step @ rows

@@ -5,9 +5,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from server.curves.findings import CurveFinding
-from server.curves.fit_scatter import Given
-from server.curves.lag import LagModel, LagScore, lag_model, lag_score
-from server.curves.model_fit import FitProblem, ModelFit, fit_model
+from server.curves.model.fit import FitProblem, ModelFit, fit_model
+from server.curves.model.lag import LagModel, LagScore, lag_model, lag_score
+from server.curves.model.scatter import Given
 from server.curves.points import Floats
 
 _SHOWS = 3.5
@@ -33,7 +33,7 @@ class LagLook:
     part_mL: float
 
 
-def look_for_lag(  # noqa: PLR0913 - a curve's columns
+def look_for_lag(
     fit: ModelFit,
     V: Floats,
     readings: Floats,

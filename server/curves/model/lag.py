@@ -101,7 +101,7 @@ class LagScore:
         return self.share / self.u if self.u > 0 else 0.0
 
 
-def lag_score(  # noqa: PLR0913 - a finished fit's parts
+def lag_score(
     *,
     rows: Floats,
     covariance: Floats,

@@ -16,8 +16,8 @@ from typing import NamedTuple
 import numpy as np
 
 from server.chemistry.equilibria import CARBONIC, DAVIES_SLOPE, davies_A, water_pKw
+from server.curves.model.systems import AcidBaseSystem
 from server.curves.points import Floats
-from server.curves.systems import AcidBaseSystem
 
 LN10 = float(np.log(10.0))
 
@@ -114,8 +114,7 @@ class ChargeBalance:
 
     def at(self, pH: Floats, chemistry: Chemistry, *, ln_gamma: Floats) -> Volumes:
         """Return the volumes at given pH (of activity) and activity coefficients."""
-        steps, flask = self._steps, self.flask
-        exponents = self._exponents
+        flask, exponents = self.flask, self._exponents
         total = 0.0
         for at, pK in enumerate(chemistry.pK):
             total += pK
