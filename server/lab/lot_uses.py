@@ -9,7 +9,7 @@ from typing import Any
 from server.lab.calibration.standard_lot import Remaining, remaining_mass
 from server.lab.log_lines import standing_lines
 from server.lab.lot_log import COUNT, USE
-from server.lab.sheet_facts import LogFact
+from server.lab.sheet_facts import LogFact, StandardLotFact
 from server.metrology.decimal_text import DecimalProblem, read_typed_decimal
 
 
@@ -35,6 +35,11 @@ class Use:
 
     taken: Taken
     left_g: Decimal | None
+
+
+def is_counted(lot: StandardLotFact) -> bool:
+    """Say whether anybody wrote how much of a lot there was: what is left can be told."""
+    return bool(lot.document.get("received_g") or standing_lines(lot.log, COUNT))
 
 
 def weighed_masses(readings: Iterable[tuple[int, str, str]]) -> tuple[Decimal, ...]:

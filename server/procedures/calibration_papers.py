@@ -8,6 +8,7 @@ from uuid import uuid4
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
+from server.lab.canonical import canonical, digest
 from server.lab.people import check_name
 from server.lab.refusal import NotFound, Unacceptable
 from server.lab.validity import end_of_day, local_day, read_day
@@ -109,7 +110,8 @@ def keep_calibration(
         "document": row.document,
     }
     if kept.run is not None:
-        body["run"] = kept.run
+        told = {"sha256": digest(canonical(kept.run)), "verdict": kept.run.get("verdict")}
+        body["run"] = told
     if original is not None:
         body["file"] = {"id": original.id, "name": original.name, "sha256": original.sha256}
     thing = Thing("instrument", instrument.id, instrument.name)
@@ -117,9 +119,7 @@ def keep_calibration(
     return row.id
 
 
-def _number(
-    session: Session, papers: Papers, kept: Kept, *, actor: Actor, now: datetime
-) -> str:
+def _number(session: Session, papers: Papers, kept: Kept, *, actor: Actor, now: datetime) -> str:
     if kept.run is not None and not papers.certificate_number.strip():
         year = local_day(now, actor.zone).year
         return f"R-{year}-{next_number(session, f'run {year}'):04d}"

@@ -1,6 +1,6 @@
 """One standard lot with its life: certificate, end, drying, uses, what rests on it."""
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping
 from datetime import datetime
 from typing import Any
 
@@ -8,24 +8,19 @@ from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.calibration.check import Check
-from server.lab.log_lines import standing_lines
 from server.lab.lot_log import (
-    COUNT,
     DRYING,
     OPENED,
     RETEST,
-    USE,
     LotExpiry,
     demand_of,
-    done_words,
-    drying_of,
     expiry_of_lot,
     judge_lot_drying,
     opened_on,
 )
-from server.lab.lot_uses import Use, remaining_of, running_uses, taken_by_hand
+from server.lab.lot_uses import remaining_of, running_uses, taken_by_hand
 from server.lab.roles import Act
-from server.lab.sheet_facts import STANDARD_LOT, LogFact, StandardLotFact
+from server.lab.sheet_facts import STANDARD_LOT, StandardLotFact
 from server.lab.states import due_state, sheet_state
 from server.lab.validity import local_day, read_zone
 from server.records.queries.list_holds import PastHold, hold_history, standing_holds
@@ -35,6 +30,7 @@ from server.records.queries.load_papers import load_people
 from server.records.queries.load_standard_lots import load_standard_lot_fact
 from server.records.tables.stores import StandardLot
 from server.sheets.parts.doors import may_hold, may_release, need_reader
+from server.sheets.parts.lot_log import LotLog, use_views
 from server.sheets.parts.shelf_state import held_says
 from server.sheets.parts.telling import (
     day_words,
@@ -44,15 +40,7 @@ from server.sheets.parts.telling import (
     quantity_words,
     typed_day_words,
 )
-from server.sheets.standard_lots import (
-    CheckView,
-    FileView,
-    LineView,
-    RuleView,
-    StandardLotPage,
-    UsedOn,
-    UseView,
-)
+from server.sheets.standard_lots import CheckView, FileView, RuleView, StandardLotPage, UsedOn
 from server.sheets.stores import Fact
 
 
@@ -74,7 +62,7 @@ def open_standard_lot(
     uses = running_uses(one.document, (*taken_on_sheets(sheets), *taken_by_hand(one.log)))
     remaining = remaining_of(one.document, uses)
     ends = expiry_of_lot(one.document, (row.due_at, row.due_basis), one.log, zone=zone)
-    log = _Log(one, reader)
+    log = LotLog(one, reader)
     opened = opened_on(one.log)
     return StandardLotPage(
         id=one.id,
@@ -95,7 +83,7 @@ def open_standard_lot(
         drying_now=_check(judge_lot_drying(one, used_at=(now,))),
         left=f"{remaining.left_g} g" if remaining else "",
         left_check=_check(remaining.check) if remaining else None,
-        uses=tuple(reversed(_uses(uses, log, {used.sheet.id: used for used in sheets}))),
+        uses=tuple(reversed(use_views(uses, log, {used.sheet.id: used for used in sheets}))),
         sheets=tuple(_used_on(used, zone) for used in reversed(sheets)),
         holds=tuple(_hold_words(past, zone) for past in hold_history(session, STANDARD_LOT, one.id)),
         now_local=f"{now.astimezone(read_zone(zone)):%Y-%m-%dT%H:%M}",
@@ -122,87 +110,85 @@ def asked_words(document: Mapping[str, Any]) -> str:
     return f"{words} ({demand.words})" if words and words != demand.words else demand.words
 
 
-def line_words(line: LogFact, zone: str) -> tuple[str, str]:
-    """Return the day of a line of a lot's log, and what it says."""
-    document = line.document
-    if line.what == OPENED:
-        return typed_day_words(document["day"]), "opened"
-    if line.what == RETEST:
-        says = f"re-tested: {document['says']}; next on {typed_day_words(document['next_on'])}"
-        return typed_day_words(document["done_on"]), says
-    if line.what == DRYING:
-        done = drying_of(line)
-        more = f"; {document['says']}" if document.get("says") else ""
-        return moment_words(done.ended_at, zone), f"{done_words(done)}{more}"
-    return moment_words(line.at, zone), str(document.get("says") or "")
-
-
-class _Log:
-    """The lines of one lot's log for one reader, the newest first."""
-
-    def __init__(self, lot: StandardLotFact, reader: Actor) -> None:
-        self._lines = {one.id: one for one in lot.log}
-        self._zone = reader.zone
-        self._may = {
-            what: reader.may(Act.KEEP if what == RETEST else Act.LOG)
-            for what in (OPENED, RETEST, DRYING, USE, COUNT)
-        }
-
-    def lines(self, *whats: str) -> tuple[LineView, ...]:
-        """Return the lines of some kinds, struck ones among them."""
-        found = [one for one in reversed(self._lines.values()) if one.what in whats]
-        return tuple(self._view(one) for one in found)
-
-    def struck(self, *whats: str) -> list[LogFact]:
-        """Return the lines of some kinds that were struck through."""
-        return [one for one in self._lines.values() if one.what in whats and one.struck]
-
-    def struck_words(self, line_id: str | None) -> str:
-        """Return who struck a line through, when and why; empty where it stands."""
-        line = self._lines.get(line_id or "")
-        if line is None or line.struck is None:
-            return ""
-        at = moment_words(line.struck.at, self._zone)
-        return f"struck through by {line.struck.by.printed_name}, {at}: {line.struck.reason}"
-
-    def may_strike(self, line_id: str | None) -> bool:
-        """Say whether the reader may strike a line through."""
-        line = self._lines.get(line_id or "")
-        return line is not None and line.struck is None and self._may[line.what]
-
-    def _view(self, line: LogFact) -> LineView:
-        day, says = line_words(line, self._zone)
-        return LineView(
-            id=line.id,
-            what=line.what,
-            day=day,
-            says=says,
-            by=f"{line.by.printed_name}, {moment_words(line.at, self._zone)}",
-            struck=self.struck_words(line.id),
-            may_strike=self.may_strike(line.id),
-        )
-
-
-def _uses(uses: Sequence[Use], log: _Log, sheets: Mapping[str, SheetOnLot]) -> list[UseView]:
-    """Return the uses in the order of time; a struck one stays where it was written."""
-    views = [(one.taken.at, _use(one, log, sheets)) for one in uses]
-    views += [(line.at, _struck_use(line, log)) for line in log.struck(USE, COUNT)]
-    return [view for _, view in sorted(views, key=lambda one: one[0])]
-
-
-def _use(one: Use, log: _Log, sheets: Mapping[str, SheetOnLot]) -> UseView:
-    taken, used = one.taken, sheets.get(one.taken.sheet_id or "")
-    return UseView(
-        day=moment_words(taken.at, log._zone),  # noqa: SLF001 - this module's own
-        what=taken.what or ("counted" if taken.counted else ""),
-        name=used.sheet.number if used else "counted" if taken.counted else "by hand",
-        url=f"/bench/{used.sheet.id}" if used else None,
-        taken="" if taken.counted else f"{taken.mass_g} g",
-        left="" if one.left_g is None else f"{one.left_g} g",
-        below=one.left_g is not None and one.left_g < 0,
-        by=taken.by,
-        counted=taken.counted,
-        line_id=taken.line_id,
-        struck="",
-        may_strike=log.may_strike(taken.line_id),
+def _rules(ends: LotExpiry) -> tuple[RuleView, ...]:
+    return tuple(
+        RuleView(rule=rule, day=day_words(day), sets=rule == ends.basis)
+        for rule, day in sorted(ends.candidates, key=lambda one: one[1])
     )
+
+
+def _stated(one: StandardLotFact) -> list[Fact]:
+    """Return what the certificate states."""
+    held = one.document
+    facts = (
+        Fact("Substance", one.substance),
+        Fact("Certificate", one.certificate_number),
+        Fact("Issued by", one.issuer),
+        Fact("Mass fraction", quantity_words(held.get("mass_fraction"))),
+        Fact("Holds for the substance", str(held.get("basis", ""))),
+        Fact("Drying", asked_words(held)),
+        Fact("Molar mass", quantity_words(held.get("molar_mass"))),
+        Fact("Density", quantity_words(held.get("density"))),
+        Fact("Smallest sample", _grams(held, "minimum_sample_g")),
+    )
+    return [fact for fact in facts if fact.value]
+
+
+def _in_the_store(one: StandardLotFact, written: str) -> list[Fact]:
+    """Return what the laboratory wrote beside it."""
+    held = one.document
+    facts = (
+        Fact("Came", _grams(held, "received_g")),
+        Fact("Received", typed_day_words(held.get("received_on"))),
+        Fact("Kept", str(held.get("storage") or "")),
+        Fact("Good after opening for", str(held.get("period_after_opening") or "")),
+        Fact("Written", written),
+    )
+    return [fact for fact in facts if fact.value]
+
+
+def _grams(held: Mapping[str, Any], key: str) -> str:
+    return f"{held[key]} g" if held.get(key) else ""
+
+
+def _file(found: FileFact | None, zone: str) -> FileView | None:
+    if found is None:
+        return None
+    return FileView(
+        name=found.name,
+        url=f"/files/{found.id}",
+        size=f"{max(1, round(found.size / 1000))} kB",
+        sha256=found.sha256,
+        kept=f"{moment_words(found.kept_at, zone)} by {found.kept_by}",
+    )
+
+
+def _check(check: Check | None) -> CheckView | None:
+    return None if check is None else CheckView(check.verdict, check.says, check.basis)
+
+
+def _used_on(used: SheetOnLot, zone: str) -> UsedOn:
+    row = used.sheet
+    state = sheet_state(
+        handed_in_at=row.handed_in_at,
+        sent_back_at=row.sent_back_at,
+        countersigned_at=row.countersigned_at,
+        abandoned_at=row.abandoned_at,
+    )
+    return UsedOn(
+        number=row.number,
+        url=f"/bench/{row.id}",
+        begun=f"{moment_words(row.begun_at, zone)} by {used.begun_by}",
+        state=state,
+        certificate=used.certificate or "",
+        certificate_url=f"/certificates/{used.certificate}" if used.certificate else "",
+    )
+
+
+def _hold_words(past: PastHold, zone: str) -> str:
+    """Return a hold with its release, as one would tell it."""
+    says = f"Held by {past.held_by}, {moment_words(past.held_at, zone)}: {past.reason}"
+    if past.released_at is None:
+        return f"{says} (not released)"
+    at = moment_words(past.released_at, zone)
+    return f"{says}. Released by {past.released_by}, {at}: {past.release_reason}"

@@ -1,28 +1,8 @@
-"""Standard lots as they are read: in the list, and one with its life."""
+"""One standard lot as it is read, with its life."""
 
 from dataclasses import dataclass
 
 from server.sheets.stores import Fact
-
-
-@dataclass(frozen=True, slots=True)
-class StandardLotLine:
-    """A standard lot in the list; ``left`` is empty where nobody wrote how much came."""
-
-    id: str
-    url: str
-    kind: str
-    name: str
-    says: str
-    state: str
-    due: str
-    due_in: str
-    due_rule: str
-    certificate: str
-    issuer: str
-    opened: str
-    left: str
-    left_verdict: str
 
 
 @dataclass(frozen=True, slots=True)

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 @dataclass(frozen=True, slots=True)
 class StoreLine:
-    """A standard lot or instrument in a list; ``state``: in date, due soon, lapsed, held."""
+    """An instrument in a list; ``state``: in date, due soon, lapsed, held."""
 
     id: str
     url: str
@@ -15,6 +15,26 @@ class StoreLine:
     state: str
     due: str
     certificate: str
+
+
+@dataclass(frozen=True, slots=True)
+class StandardLotLine:
+    """A standard lot in the list; ``left`` is empty where nobody wrote how much came."""
+
+    id: str
+    url: str
+    kind: str
+    name: str
+    says: str
+    state: str
+    due: str
+    due_in: str
+    due_rule: str
+    certificate: str
+    issuer: str
+    opened: str
+    left: str
+    left_verdict: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -34,7 +54,7 @@ class RecipeLine:
 class Stores:
     """The stores page."""
 
-    standard_lots: tuple[StoreLine, ...]
+    standard_lots: tuple[StandardLotLine, ...]
     recipes: tuple[RecipeLine, ...]
     may_keep: bool
 
@@ -91,22 +111,6 @@ class InstrumentPage:
     held_says: str
     facts: tuple[Fact, ...]
     calibrations: tuple[CalibrationView, ...]
-    may_keep: bool
-    may_hold: bool
-    may_release: bool
-
-
-@dataclass(frozen=True, slots=True)
-class StandardLotPage:
-    """One standard lot: what its certificate states, and where it was used."""
-
-    id: str
-    name: str
-    substance: str
-    state: str
-    held_says: str
-    facts: tuple[Fact, ...]
-    sheets: tuple[tuple[str, str], ...]
     may_keep: bool
     may_hold: bool
     may_release: bool

@@ -1,44 +1,37 @@
-"""The stores: standard lots and recipes, and one of each."""
+"""The stores: standard lots and recipes, and one recipe."""
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from datetime import datetime
-from typing import Any
 
 from sqlalchemy.orm import Session
 
 from server.evaluation.from_sheet import limits_of
 from server.lab.actor import Actor
 from server.lab.limits import LIMITS
+from server.lab.lot_log import opened_on
+from server.lab.lot_uses import is_counted, remaining_of, running_uses, taken_by_hand
 from server.lab.recipe import RecipeDocument, read_recipe
 from server.lab.refusal import NotFound
 from server.lab.roles import Act
-from server.lab.sheet_facts import STANDARD_LOT, StandardLotFact
-from server.lab.states import DUE_SOON, HELD, IN_DATE, LAPSED, due_state
-from server.records.queries.list_holds import standing_holds
-from server.records.queries.list_sheets import sheets_on_standard_lot
-from server.records.queries.list_stores import newest_recipes, recipe_versions, standard_lot_facts
-from server.records.queries.load_papers import (
-    load_laboratory_fact,
-    load_people,
-    load_standard_lot_fact,
-)
-from server.records.tables.stores import Recipe, StandardLot
-from server.sheets.parts.doors import may_hold, may_release, need_reader
-from server.sheets.parts.shelf_state import held_says, nominal_words
+from server.lab.sheet_facts import StandardLotFact
+from server.lab.states import DUE_SOON, HELD, IN_DATE, LAPSED
+from server.records.queries.list_stores import newest_recipes, recipe_versions
+from server.records.queries.list_uses import SheetOnLot, sheets_on_lots, taken_on_sheets
+from server.records.queries.load_papers import load_laboratory_fact, load_people
+from server.records.queries.load_standard_lots import standard_lot_facts
+from server.records.tables.stores import Recipe
+from server.sheets.parts.doors import need_reader
+from server.sheets.parts.shelf_state import nominal_words
 from server.sheets.parts.telling import (
     count_words,
+    day_words,
+    due_words,
     last_day_words,
     moment_words,
     quantity_words,
 )
-from server.sheets.stores import (
-    Fact,
-    RecipeLine,
-    RecipePage,
-    StandardLotPage,
-    StoreLine,
-    Stores,
-)
+from server.sheets.standard_lot_page import state_of_standard_lot
+from server.sheets.stores import Fact, RecipeLine, RecipePage, StandardLotLine, Stores
 
 _ORDER = (DUE_SOON, IN_DATE, HELD, LAPSED)
 
@@ -50,43 +43,13 @@ def open_stores(session: Session, *, actor: Actor | None, now: datetime) -> Stor
         NotSignedIn: a visitor.
     """
     reader = need_reader(actor)
-    lines = [_line(one, now, reader.zone) for one in standard_lot_facts(session)]
+    lots = standard_lot_facts(session)
+    sheets = sheets_on_lots(session, [one.id for one in lots if is_counted(one)])
+    lines = [_line(one, sheets.get(one.id, ()), now, reader.zone) for one in lots]
     return Stores(
         standard_lots=tuple(sorted(lines, key=lambda line: _ORDER.index(line.state))),
         recipes=tuple(_recipe_line(one) for one in newest_recipes(session)),
         may_keep=reader.may(Act.KEEP),
-    )
-
-
-def open_standard_lot(
-    session: Session, standard_lot_id: str, *, actor: Actor | None, now: datetime
-) -> StandardLotPage:
-    """Return one standard lot: what its certificate states, and where it was used.
-
-    Raises:
-        NotFound: there is no such standard lot.
-        NotSignedIn: a visitor.
-    """
-    reader = need_reader(actor)
-    one = load_standard_lot_fact(session, standard_lot_id)
-    row = session.get_one(StandardLot, one.id)
-    hold = standing_holds(session, (STANDARD_LOT,), thing_ids=(one.id,)).get((STANDARD_LOT, one.id))
-    by = load_people(session, (row.made_by,))[row.made_by].printed_name
-    received = Fact("Received", f"{moment_words(row.made_at, reader.zone)} by {by}")
-    return StandardLotPage(
-        id=one.id,
-        name=one.name.removeprefix(f"{one.substance}, lot "),
-        substance=one.substance,
-        state=_state(one, now),
-        held_says=held_says(hold, STANDARD_LOT, reader.zone),
-        facts=(*_stated(one, reader.zone), received),
-        sheets=tuple(
-            (sheet.number, f"/bench/{sheet.id}")
-            for sheet in sheets_on_standard_lot(session, one.id)
-        ),
-        may_keep=reader.may(Act.KEEP),
-        may_hold=may_hold(reader, hold),
-        may_release=may_release(reader, hold),
     )
 
 
@@ -125,21 +88,26 @@ def open_recipe(
     )
 
 
-def _state(one: StandardLotFact, now: datetime) -> str:
-    held = any(hold.released_at is None for hold in one.holds)
-    return due_state(due_at=one.due_at, held=held, now=now)
-
-
-def _line(one: StandardLotFact, now: datetime, zone: str) -> StoreLine:
-    return StoreLine(
+def _line(
+    one: StandardLotFact, sheets: Sequence[SheetOnLot], now: datetime, zone: str
+) -> StandardLotLine:
+    uses = running_uses(one.document, (*taken_on_sheets(sheets), *taken_by_hand(one.log)))
+    remaining, opened = remaining_of(one.document, uses), opened_on(one.log)
+    return StandardLotLine(
         id=one.id,
         url=f"/stores/standard-lots/{one.id}",
         kind=one.substance,
         name=one.name,
         says=f"mass fraction {quantity_words(one.document.get('mass_fraction'))}",
-        state=_state(one, now),
+        state=state_of_standard_lot(one, now),
         due=last_day_words(one.due_at, zone),
+        due_in=due_words(one.due_at, now, zone),
+        due_rule=one.due_basis,
         certificate=one.certificate_number,
+        issuer=one.issuer,
+        opened=day_words(opened) if opened else "",
+        left=f"{remaining.left_g} g" if remaining else "",
+        left_verdict=remaining.check.verdict if remaining else "",
     )
 
 
@@ -154,28 +122,6 @@ def _recipe_line(row: Recipe) -> RecipeLine:
         against=recipe.standard,
         says=recipe.title,
     )
-
-
-def _stated(one: StandardLotFact, zone: str) -> Iterable[Fact]:
-    held = one.document
-    facts = (
-        Fact("Substance", one.substance),
-        Fact("Certificate", one.certificate_number),
-        Fact("Issued by", one.issuer),
-        Fact("Mass fraction", quantity_words(held.get("mass_fraction"))),
-        Fact("Holds for the substance", str(held.get("basis", ""))),
-        Fact("Drying", str(held.get("drying") or "")),
-        Fact("Molar mass", quantity_words(held.get("molar_mass"))),
-        Fact("Density", quantity_words(held.get("density"))),
-        Fact("Smallest sample", _grams(held)),
-        Fact("Storage", str(held.get("storage") or "")),
-        Fact("Good until", f"{last_day_words(one.due_at, zone)} ({one.due_basis})"),
-    )
-    return (fact for fact in facts if fact.value)
-
-
-def _grams(held: Mapping[str, Any]) -> str:
-    return f"{held['minimum_sample_g']} g" if held.get("minimum_sample_g") else ""
 
 
 def _fixed(recipe: RecipeDocument) -> Sequence[Fact]:

@@ -18,7 +18,8 @@ from server.sheets.lot_page import open_lot
 from server.sheets.people import open_people
 from server.sheets.queue import open_queue
 from server.sheets.shelf_page import open_shelf
-from server.sheets.stores_page import open_recipe, open_standard_lot, open_stores
+from server.sheets.standard_lot_page import open_standard_lot
+from server.sheets.stores_page import open_recipe, open_stores
 
 
 def grow(demo, session: Session) -> None:

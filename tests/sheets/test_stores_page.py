@@ -11,7 +11,8 @@ from server.procedures.holds import HoldThing, hold_thing
 from server.procedures.laboratory import ChangeSettings, change_settings
 from server.procedures.stores import WriteRecipe, write_recipe
 from server.records.tables.stores import Recipe, StandardLot
-from server.sheets.stores_page import open_recipe, open_standard_lot, open_stores
+from server.sheets.standard_lot_page import open_standard_lot
+from server.sheets.stores_page import open_recipe, open_stores
 
 
 def khp(demo):

@@ -139,7 +139,10 @@ def with_instruments(document: Mapping[str, Any], used: Sequence[UsedInstrument]
     """
     filled: dict[str, Any] = deepcopy(dict(document))
     by_kind = {one.kind: one.document for one in used}
-    bounds = dict(filled.get("uncertainty") or {})
+    stated = filled.get("uncertainty") or {}
+    if not isinstance(stated, Mapping):
+        return filled  # refused by its name when it is read
+    bounds = dict(stated)
     balance = by_kind.get(BALANCE)
     if balance is not None and not filled.get("balance"):
         keys = ("linearity", "error_table", "error_u")

@@ -13,7 +13,6 @@ from server.records.queries.list_log import log_lines
 from server.records.tables.people import Person
 from server.records.tables.stores import Calibration, Hold, Instrument, Recipe
 
-
 #: A check between two calibrations that is older says nothing about today.
 CHECK_SPAN = timedelta(days=31)
 

@@ -10,7 +10,8 @@ from server.procedures.stores import (
     receive_standard_lot,
     write_recipe,
 )
-from server.sheets.stores_page import open_recipe, open_standard_lot, open_stores
+from server.sheets.standard_lot_page import open_standard_lot
+from server.sheets.stores_page import open_recipe, open_stores
 from server.web.api.desk import AtApi, answer, made
 from server.web.bodies import Given, body_of
 from server.web.visits import AtDesk

@@ -7,7 +7,8 @@ from fastapi import APIRouter, Query, Response
 from server.lab.refusal import SavedFirst
 from server.procedures.stores import receive_standard_lot, write_recipe
 from server.records.queries.load_papers import load_recipe_fact
-from server.sheets.stores_page import open_recipe, open_standard_lot, open_stores
+from server.sheets.standard_lot_page import open_standard_lot
+from server.sheets.stores_page import open_recipe, open_stores
 from server.web.forms.posts import Again, Posted
 from server.web.forms.stores import fill_recipe_form, read_recipe_form, read_standard_lot
 from server.web.pages.keeping import open_for_keeper
