@@ -1,6 +1,7 @@
 """The application, composed from settings, and served."""
 
 import random
+import socket
 from collections.abc import Callable
 from datetime import UTC, datetime
 from importlib.metadata import PackageNotFoundError, version
@@ -16,7 +17,7 @@ from server.records.database import open_database
 from server.records.migrating import migrate
 from server.records.queries.loading import there_is_a_laboratory
 from server.records.transaction import Transactions
-from server.settings import Settings
+from server.settings import Settings, SettingsProblem
 from server.web.parts import Parts
 from server.web.static_files import StaticFiles
 from server.web.templating import Templating
@@ -68,7 +69,8 @@ def build_app(
 def serve(settings: Settings, *, demo: bool) -> int:
     """Migrate and serve until stopped; ``demo`` fills an empty database first."""
     if settings.keeps_file:
-        settings.data.mkdir(mode=0o700, parents=True, exist_ok=True)
+        _make_folder(settings.data)
+    listener = _listener(settings)
     database = open_database(settings.database_url)
     report = migrate(database)
     if report.before != report.after:
@@ -81,17 +83,37 @@ def serve(settings: Settings, *, demo: bool) -> int:
     _say(f"Titrant Ledger: {_address(settings)}")
     if not transactions.read(there_is_a_laboratory):
         _say(f"Nobody is here yet: open {_address(settings)}setup with the code {setup_code}")
-    uvicorn.run(
+    config = uvicorn.Config(
         app,
-        host=settings.host,
-        port=settings.port,
         ssl_certfile=settings.tls_cert,
         ssl_keyfile=settings.tls_key,
         proxy_headers=settings.behind_proxy,
         server_header=False,
         log_level="warning",
     )
+    uvicorn.Server(config).run(sockets=[listener])
     return 0
+
+
+def _make_folder(folder: Path) -> None:
+    try:
+        folder.mkdir(mode=0o700, parents=True, exist_ok=True)
+    except OSError as problem:
+        says = f"The data folder {folder} cannot be made: {problem.strerror}."
+        raise SettingsProblem(says) from problem
+
+
+def _listener(settings: Settings) -> socket.socket:
+    """Return the socket to serve on, taken before anything is written or announced."""
+    try:
+        address = socket.getaddrinfo(settings.host, settings.port, type=socket.SOCK_STREAM)[0]
+        listener = socket.socket(address[0], socket.SOCK_STREAM)
+        listener.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
+        listener.bind(address[4])
+    except OSError as problem:
+        says = f"{settings.host}, port {settings.port} cannot be used: {problem.strerror}."
+        raise SettingsProblem(says) from problem
+    return listener
 
 
 def _show_demo(transactions: Transactions, kept: Path) -> None:

@@ -20,6 +20,7 @@ from server.settings import (
 )
 
 GOOD, NOT_SO, REFUSED = 0, 1, 2
+MOST_TRIALS = 10_000_000
 
 
 @dataclass(frozen=True, slots=True)
@@ -84,7 +85,13 @@ def _add_serve(verbs: Any) -> None:
 def _add_evaluate(verbs: Any) -> None:
     evaluating = verbs.add_parser("evaluate", help="a bench record in, a bench result out")
     evaluating.add_argument("file", type=Path, metavar="FILE.json")
-    evaluating.add_argument("--monte-carlo", type=int, default=0, metavar="N", help="trials")
+    evaluating.add_argument(
+        "--monte-carlo",
+        type=int,
+        default=0,
+        metavar="N",
+        help="trials at least; more are drawn until it settles",
+    )
     evaluating.add_argument("--seed", type=int, default=1, metavar="S")
     evaluating.set_defaults(do=_evaluate)
 
@@ -119,8 +126,9 @@ def _serve(given: argparse.Namespace, verbs: Verbs) -> int:
 def _evaluate(given: argparse.Namespace, _: Verbs) -> int:
     from server.evaluation.entrance import RecordProblem, evaluate  # noqa: PLC0415 - numpy waits
 
-    if given.monte_carlo < 0 or given.seed < 0:
-        return _problem("--monte-carlo and --seed take whole numbers from 0.", "--monte-carlo")
+    if not 0 <= given.monte_carlo <= MOST_TRIALS or given.seed < 0:
+        says = f"--monte-carlo takes a whole number from 0 to {MOST_TRIALS}, --seed one from 0."
+        return _problem(says, "--monte-carlo")
     try:
         document = json.loads(given.file.read_bytes(), object_pairs_hook=_no_key_twice)
     except OSError as problem:

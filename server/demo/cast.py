@@ -167,8 +167,16 @@ STANDARD_LOTS: Mapping[str, Mapping[str, Any]] = MappingProxyType(
             "mass_fraction": {"value": "0.99986", "U": "0.00034", "k": "2"},
             "basis": "dried",
             "drying": "2 h at 120 °C, then in a desiccator",
+            "drying_demand": {
+                "low_C": "110",
+                "high_C": "125",
+                "hours": "2",
+                "desiccator": True,
+            },
             "minimum_sample_g": "0.1",
             "storage": "desiccator, weighing room",
+            "received_g": "60.00",
+            "period_after_opening": "12 months",
         },
         "TRIS": {
             "name": "TRIS, lot TM-0870",
@@ -179,6 +187,8 @@ STANDARD_LOTS: Mapping[str, Mapping[str, Any]] = MappingProxyType(
             "basis": "as is",
             "minimum_sample_g": "0.1",
             "storage": "desiccator, weighing room",
+            "received_g": "25.00",
+            "period_after_opening": "9 months",
         },
     }
 )

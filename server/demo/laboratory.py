@@ -7,7 +7,7 @@ from datetime import datetime, timedelta
 from functools import partial
 from random import Random
 
-from server.demo import cast
+from server.demo import cast, stores
 from server.demo.cast import BASHIR, IMKE, JONAS, OTTILIE, STEWARD, Member
 from server.demo.hands import Hands, minutes
 from server.demo.simulated import Line, Truth, replicate_lines, sheet_lines
@@ -136,7 +136,13 @@ class _Story:
         for tool in cast.TOOLS:
             self._instruments[tool.name] = self._register(tool, at)
         for substance, stated in cast.STANDARD_LOTS.items():
-            command = ReceiveStandardLot(substance=substance, due_on=self._day(-300), **stated)
+            command = ReceiveStandardLot(
+                substance=substance,
+                due_on=self._day(-300),
+                received_on=self._day(119),
+                **stated,
+                **stores.certificate_file(substance, stated),
+            )
             self._standards[substance] = self._hands.do(receive_standard_lot, command, JONAS, at)
         for name, document in cast.RECIPES.items():
             written = WriteRecipe(name, dict(document))
@@ -159,6 +165,7 @@ class _Story:
     def _acid(self) -> None:
         self._make_up("acid", "HCl", BASHIR, 62, made_from="ampoule of concentrate, 1 L flask")
         self.in_force += self._fill("acid", BASHIR, 62, place="Shelf 2", count=1)
+        stores.opened(self._hands, self._standards["TRIS"], BASHIR, self._before(61.2))
         sheet = self._begin("acid", "TRIS", BASHIR, 61)
         self._titrate(sheet, Truth("TRIS", 0.09985, 21.2), BASHIR, 61, count=4)
         self._certify(sheet, BASHIR, 61)
@@ -173,6 +180,9 @@ class _Story:
     def _lapsed_lye(self) -> None:
         self._make_up("old lye", "NaOH", IMKE, 41, made_from="50 % caustic, clear supernatant")
         self._fill("old lye", IMKE, 41, place="Shelf 1", count=1)
+        stores.opened(self._hands, self._standards["KHP"], IMKE, self._before(40.4))
+        stores.used_by_hand(self._hands, self._standards["KHP"], self._before(40.3))
+        self._dry(IMKE, 40)
         sheet = self._begin("old lye", "KHP", IMKE, 40)
         self._titrate(sheet, Truth("KHP", 0.10042, 20.3), IMKE, 40, count=6)
         self._certify(sheet, IMKE, 40)
@@ -180,9 +190,12 @@ class _Story:
     def _lye_in_force(self) -> None:
         self._make_up("lye", "NaOH", IMKE, 12, made_from="50 % caustic, clear supernatant")
         used_up, held, good = self._fill("lye", IMKE, 12, place="Shelf 1", count=3)
+        self._dry(IMKE, 11)
         first = self._begin("lye", "KHP", IMKE, 11)
         self._titrate(first, Truth("KHP", 0.10216, 20.6), IMKE, 11, count=6)
         self._certify(first, IMKE, 11)
+        at = self._before(4) - minutes(40)
+        stores.dried_with_a_slip(self._hands, self._standards["KHP"], BASHIR, at)
         second = self._begin("lye", "KHP", BASHIR, 4)
         self._titrate(second, Truth("KHP", 0.10211, 21.1), BASHIR, 4, count=6, slip=3)
         self._certify(second, BASHIR, 4)
@@ -192,6 +205,7 @@ class _Story:
         self.in_force.append(good)
 
     def _sent_back(self) -> None:
+        self._dry(IMKE, 1.9)
         sheet = self._begin("old lye", "KHP", IMKE, 1.9)
         truth = Truth("KHP", 0.10031, 20.4)
         self._titrate(sheet, truth, IMKE, 1.9, count=4, off={3: -0.55})
@@ -203,6 +217,7 @@ class _Story:
     def _waiting(self) -> None:
         self._make_up("new lye", "NaOH", IMKE, 1.5, made_from="50 % caustic, clear supernatant")
         self._fill("new lye", IMKE, 1.5, place="Shelf 1", count=1)
+        self._dry(BASHIR, 0.5)
         sheet = self._begin("new lye", "KHP", BASHIR, 0.5)
         truth = Truth("KHP", 0.10118, 21.4)
         self._titrate(sheet, truth, BASHIR, 0.5, count=5, off={2: 0.62})
@@ -253,6 +268,11 @@ class _Story:
             room_id=self._instruments[cast.ROOM.name],
         )
         return self._hands.begin(command, member, self._before(days))
+
+    def _dry(self, member: Member, days: float) -> None:
+        """Let somebody dry the KHP before a sheet is begun."""
+        at = self._before(days) - minutes(40)
+        stores.dried(self._hands, self._standards["KHP"], member, at)
 
     def _titrate(
         self,

@@ -68,6 +68,7 @@ def make_task(
     Raises:
         RecordProblem: the record cannot be read, or a table lacks what it leaves out.
     """
+    _need_text(document)
     return Task(
         document=document,
         circumstances=circumstances or Circumstances(),
@@ -140,6 +141,15 @@ def _running_value(document: Mapping[str, Any], replicate: Any, index: int) -> d
     except RecordProblem as problem:
         return {**found, "says": problem.says}
     return {**found, "value": value}
+
+
+def _need_text(document: Mapping[str, Any]) -> None:
+    """Refuse a record whose text cannot be written down, for its digest could not be either."""
+    try:
+        canonical(document).encode()
+    except (UnicodeEncodeError, TypeError, ValueError) as problem:
+        says = "The record holds a character or number that no text has."
+        raise RecordProblem("(record)", says) from problem
 
 
 def _simulate(evaluation: Evaluation, task: Task) -> Simulated:

@@ -1,5 +1,6 @@
 """The fields of a bench record, read one by one: each refusal names its path and an example."""
 
+import re
 from collections.abc import Collection, Mapping, Sequence
 from difflib import get_close_matches
 from fractions import Fraction
@@ -8,6 +9,8 @@ from typing import Any, NoReturn
 
 from server.metrology.decimal_text import DecimalProblem, read_wire_decimal
 from server.metrology.quantity import Quantity, QuantityProblem, read_quantity
+
+_RATIO = re.compile(r"[0-9]{1,9}([./][0-9]{1,9})?")
 
 Table = tuple[tuple[float, float], ...]
 
@@ -144,10 +147,10 @@ class Fields:
         if text is None:
             return None
         try:
-            ratio = Fraction(text)
-        except (ValueError, ZeroDivisionError):
+            ratio = Fraction(text) if _RATIO.fullmatch(text) else Fraction(0)
+        except ZeroDivisionError:
             ratio = Fraction(0)
-        if ratio <= 0 or any(mark in text for mark in "eE_ "):
+        if ratio <= 0:
             self.refuse(key, f"{text!r} is no ratio: whole numbers, or one over another.", "2/5")
         return ratio
 

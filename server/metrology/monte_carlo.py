@@ -60,7 +60,8 @@ def simulate(
     """
     draw = _Draw(inputs, seed)
     values = np.empty(0)
-    wanted = min(max(trials or 0, _LEAST_TRIALS), MOST_TRIALS)
+    wanted = max(trials or 0, _LEAST_TRIALS)
+    most = max(wanted, MOST_TRIALS)
     delta = numerical_tolerance(u, digits=2)
     while True:
         values = _extended(values, wanted, function, draw)
@@ -68,10 +69,10 @@ def simulate(
         (low, low_error), (high, high_error) = _end_points(values, coverage)
         error = 2.0 * max(low_error, high_error)
         settled = error < delta / 5.0
-        if settled or wanted >= MOST_TRIALS:
+        if settled or wanted >= most:
             break
         needed = 1.2 * wanted * (error / (delta / 5.0)) ** 2
-        wanted = min(MOST_TRIALS, max(int(needed), wanted * 2))
+        wanted = min(most, max(int(needed), wanted * 2))
     digits = 2 if settled else 1
     delta = numerical_tolerance(u, digits=digits)
     apart = max(abs(first_order[0] - low), abs(first_order[1] - high))

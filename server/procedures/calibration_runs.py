@@ -8,36 +8,23 @@ from typing import Any
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
-from server.lab.calibration.run import (
-    KINDS,
-    WARE_OF_KIND,
-    JudgedRun,
-    UsedInstrument,
-    judge_run,
-    used_instrument,
-)
+from server.lab.calibration.run import WARE_OF_KIND, JudgedRun, judge_run
 from server.lab.calibration.typed_numbers import number_at, optional_number
 from server.lab.calibration.ware_verdict import class_statement
 from server.lab.free_text import MOST_REASON, read_text
-from server.lab.in_use import judge
 from server.lab.papers import read_calibration
-from server.lab.refusal import NotFound, Unacceptable
+from server.lab.refusal import Unacceptable
 from server.lab.roles import Act
-from server.lab.sheet_facts import BALANCE, ROOM, THERMOMETER
-from server.lab.states import IN_DATE
 from server.procedures.calibration_papers import (
     Kept,
     Papers,
     keep_calibration,
     locked_instrument,
 )
-from server.records.queries.load_papers import load_instrument_fact
-from server.records.queries.loading import newest_calibration
-from server.records.tables.stores import Instrument
+from server.records.queries.load_used import USED_FIELDS, used_for_run
 
 #: The format of a run as it is kept beside its calibration.
 RUN_FORMAT = "calibration-run/1"
-_FIELDS = {BALANCE: "balance_id", THERMOMETER: "thermometer_id", ROOM: "room_id"}
 
 
 @dataclass(frozen=True, slots=True)
@@ -94,7 +81,7 @@ def record_run(session: Session, command: RecordRun, *, actor: Actor, now: datet
     """
     actor.need(Act.KEEP)
     instrument = locked_instrument(session, command.instrument_id)
-    used = used_for_run(session, command, instrument, actor=actor, now=now)
+    used = used_for_run(session, instrument.kind, weighed_with(command), now=now, zone=actor.zone)
     judged = judge_run(instrument.kind, command.run, used)
     reason = read_text(command.reason, "reason", most=MOST_REASON)
     _need_reason(judged, reason)
@@ -161,56 +148,9 @@ def state_class(session: Session, command: StateClass, *, actor: Actor, now: dat
     )  # fmt: skip
 
 
-def used_for_run(
-    session: Session, command: RecordRun, instrument: Instrument, *, actor: Actor, now: datetime
-) -> tuple[UsedInstrument, ...]:
-    """Return the instruments that a gravimetric run is done with, each in date now.
-
-    Raises:
-        Unacceptable: there is no such instrument, or it is not in date, or held.
-    """
-    if instrument.kind not in KINDS:
-        says = f"A {instrument.kind} is calibrated elsewhere: record its certificate."
-        raise Unacceptable(says, field="instrument_id")
-    wanted = {
-        BALANCE: command.balance_id, THERMOMETER: command.thermometer_id, ROOM: command.room_id,
-    }  # fmt: skip
-    named = {kind: key for kind, key in wanted.items() if key}
-    if named and instrument.kind not in WARE_OF_KIND:
-        field = _FIELDS[next(iter(named))]
-        says = f"A {instrument.kind} is not weighed: leave {field} empty."
-        raise Unacceptable(says, field=field)
-    return tuple(_used(session, kind, key, actor=actor, now=now) for kind, key in named.items())
-
-
-def find_instrument(session: Session, instrument_id: str) -> Instrument:
-    """Return an instrument.
-
-    Raises:
-        NotFound: there is no such instrument.
-    """
-    row = session.get(Instrument, instrument_id)
-    if row is None:
-        raise NotFound("There is no such instrument.", field="instrument_id")
-    return row
-
-
-def _used(
-    session: Session, kind: str, instrument_id: str, *, actor: Actor, now: datetime
-) -> UsedInstrument:
-    field = _FIELDS[kind]
-    row = session.get(Instrument, instrument_id)
-    calibration = newest_calibration(session, instrument_id) if row else None
-    if row is None or row.kind != kind or calibration is None:
-        raise Unacceptable(f"There is no such {kind} with a calibration.", field=field)
-    fact = load_instrument_fact(session, calibration.id)
-    state, says = judge(
-        fact.name, due_at=fact.due_at, basis=fact.due_basis, holds=fact.holds,
-        used_at=now, zone=actor.zone, what="calibration",
-    )  # fmt: skip
-    if state != IN_DATE:
-        raise Unacceptable(f"{says} Weigh with another one.", field=field)
-    return used_instrument(fact)
+def weighed_with(command: Any) -> dict[str, str]:
+    """Return the instruments that a command names for the weighing, by kind."""
+    return {kind: getattr(command, field) for kind, field in USED_FIELDS.items()}
 
 
 def _need_reason(judged: JudgedRun, reason: str) -> None:

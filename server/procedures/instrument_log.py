@@ -22,9 +22,10 @@ from server.lab.roles import Act
 from server.lab.sheet_facts import BURETTE, LogFact, PersonFact
 from server.procedures.acts import Thing
 from server.procedures.calibration_papers import locked_instrument
-from server.procedures.calibration_runs import RecordRun, used_for_run
+from server.procedures.calibration_runs import weighed_with
 from server.procedures.log import strike_line, write_line
 from server.records.queries.list_log import log_lines
+from server.records.queries.load_used import used_for_run
 from server.records.tables.stores import Instrument
 
 _KIND = "instrument"
@@ -150,12 +151,7 @@ def measure_drop(session: Session, command: MeasureDrop, *, actor: Actor, now: d
     if row.kind != BURETTE:
         says = f"A {row.kind} gives no drops; a burette does."
         raise Unacceptable(says, field="instrument_id")
-    asked = RecordRun(
-        row.id, command.run, "", "", "",
-        balance_id=command.balance_id, thermometer_id=command.thermometer_id,
-        room_id=command.room_id,
-    )  # fmt: skip
-    used = used_for_run(session, asked, row, actor=actor, now=now)
+    used = used_for_run(session, row.kind, weighed_with(command), now=now, zone=actor.zone)
     drop = judge_drop(command.run, command.drops, used)
     document = {
         "drops": str(command.drops),

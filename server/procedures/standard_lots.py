@@ -122,9 +122,7 @@ def record_drying(session: Session, command: RecordDrying, *, actor: Actor, now:
     says = read_text(command.says, "says", most=MOST_REASON)
     if says:
         document["says"] = says
-    return _write(
-        session, lot, DRYING, document, act="dried a standard lot", actor=actor, now=now
-    )
+    return _write(session, lot, DRYING, document, act="dried a standard lot", actor=actor, now=now)
 
 
 def record_use(session: Session, command: RecordUse, *, actor: Actor, now: datetime) -> str:
@@ -155,9 +153,7 @@ def count_lot(session: Session, command: CountStandardLot, *, actor: Actor, now:
     read_number(command.mass_g, "mass_g", example="23.10", low="0", high=_MOST_G)
     says = read_text(command.says, "says", most=MOST_REASON)
     document = {"mass_g": command.mass_g.strip()} | ({"says": says} if says else {})
-    return _write(
-        session, lot, COUNT, document, act="counted a standard lot", actor=actor, now=now
-    )
+    return _write(session, lot, COUNT, document, act="counted a standard lot", actor=actor, now=now)
 
 
 def record_retest(session: Session, command: RecordRetest, *, actor: Actor, now: datetime) -> str:

@@ -2,6 +2,8 @@
 
 from dataclasses import dataclass
 
+from server.sheets.plan import PlanView
+
 
 @dataclass(frozen=True, slots=True)
 class EntryView:
@@ -222,7 +224,10 @@ class BenchHome:
 
 @dataclass(frozen=True, slots=True)
 class BeginPage:
-    """What the new sheet will rest on, proposed in date, the cautions, and which rows it asks."""
+    """What the new sheet will rest on, proposed in date, the cautions, and which rows it asks.
+
+    ``plan`` is made with what is proposed; ``plan_url`` leads to the planner with the same.
+    """
 
     lot_code: str
     lot_name: str
@@ -235,6 +240,8 @@ class BeginPage:
     thermometers: tuple[Choice, ...]
     rooms: tuple[Choice, ...]
     mass_window: str
+    plan: PlanView
+    plan_url: str
     asked: tuple[str, ...]
     cautions: tuple[CautionView, ...]
     deferral: str

@@ -3,47 +3,29 @@
 from collections.abc import Iterable, Sequence
 from datetime import datetime
 from decimal import Decimal
-from fractions import Fraction
 
 from sqlalchemy.orm import Session
 
 from server.chemistry.cautions import DEFERRAL
-from server.evaluation.mass_window import mass_window
 from server.lab.actor import Actor
-from server.lab.in_use import judge
-from server.lab.recipe import RecipeDocument, read_recipe
+from server.lab.recipe import read_recipe
 from server.lab.refusal import NotAllowed
-from server.lab.rig import rig_of
 from server.lab.roles import Act
-from server.lab.sheet_facts import (
-    BALANCE,
-    BURETTE,
-    ROOM,
-    THERMOMETER,
-    InstrumentFact,
-    StandardLotFact,
-)
-from server.lab.slots import replicate_rows, sheet_rows
-from server.lab.states import IN_DATE
-from server.metrology.rounding import significant
+from server.lab.sheet_facts import BALANCE, BURETTE, ROOM, THERMOMETER
 from server.records.queries.list_sheets import open_sheets, sheets_written_on
 from server.records.queries.list_shelf import LotOnShelf, all_lots
-from server.records.queries.list_stores import (
-    ListedInstrument,
-    listed_instruments,
-    newest_recipes,
-)
+from server.records.queries.list_stores import newest_recipes
 from server.records.queries.load_lots import lot_is_pulled
-from server.records.queries.load_standard_lots import standard_lot_facts
 from server.records.tables.lots import Lot
 from server.records.tables.stores import Recipe
 from server.sheets.bench import BeginPage, BenchHome, Choice
 from server.sheets.parts.by_code import find_lot
 from server.sheets.parts.doors import need_reader
+from server.sheets.parts.offered import Offered
+from server.sheets.parts.planned import plan_view, planned_with
 from server.sheets.parts.roots import caution_views
 from server.sheets.parts.sheet_lines import lot_words, sheet_line, sheet_title
 from server.sheets.parts.shelf_state import state_of_lot
-from server.sheets.parts.telling import last_day_words, quantity_words
 
 _NOT_HERE = "Sheets by aliquot or against a titrant are not written here yet."
 
@@ -90,7 +72,8 @@ def open_begin(
         raise NotAllowed(says, field="recipe_id")
     chosen = _chosen(recipes, recipe_id)
     recipe = read_recipe(chosen.document)
-    shelf = _Offered(session, recipe, now, reader.zone)
+    shelf = Offered(session, recipe, now, reader.zone)
+    planned = plan_view(planned_with(session, shelf.materials(), recipe, recipe_name=chosen.name))
     return BeginPage(
         lot_code=lot.code,
         lot_name=lot.name,
@@ -102,89 +85,14 @@ def open_begin(
         burettes=shelf.of_kind(BURETTE),
         thermometers=shelf.of_kind(THERMOMETER),
         rooms=shelf.of_kind(ROOM) if recipe.buoyancy else (),
-        mass_window=shelf.mass_window(),
+        mass_window=planned.window,
+        plan=planned,
+        plan_url=shelf.plan_url(chosen.id),
         asked=shelf.asked(),
         cautions=caution_views((lot.titrant, recipe.standard)),
         deferral=DEFERRAL,
         may_override=may_override,
     )
-
-
-class _Offered:
-    """What a recipe may rest on now, in date first."""
-
-    def __init__(self, session: Session, recipe: RecipeDocument, now: datetime, zone: str) -> None:
-        self._recipe, self._now, self._zone = recipe, now, zone
-        self._instruments = listed_instruments(session)
-        lots = standard_lot_facts(session, substance=recipe.standard)
-        self.standard_lots = _usable_first(self._standard_lot(one) for one in lots)
-
-    def of_kind(self, kind: str) -> tuple[Choice, ...]:
-        """Return the instruments of a kind."""
-        found = (one for one in self._instruments if one.instrument.kind == kind)
-        return _usable_first(self._instrument(one) for one in found)
-
-    def mass_window(self) -> str:
-        """Return the masses that use the proposed burette well, empty where nobody can tell."""
-        recipe, burette = self._recipe, self._proposed(BURETTE)
-        capacity = rig_of([burette]).burette if burette else None
-        if capacity is None or burette is None:
-            return ""
-        window = mass_window(
-            recipe.titrant.substance,
-            recipe.standard,
-            nominal_mol_L=float(recipe.titrant.nominal),
-            capacity_mL=float(capacity.high),
-            ratio=Fraction(recipe.ratio) if recipe.ratio else None,
-        )
-        if window is None:
-            return ""
-        low, high = significant(window.low_g, 3), significant(window.high_g, 3)
-        return (
-            f"{low} to {high} g of {recipe.standard} for 60 to 90 % of {burette.name} "
-            f"({capacity.high} mL)"
-        )
-
-    def asked(self) -> tuple[str, ...]:
-        """Return the rows that the sheet will ask for, each once."""
-        proposed = [self._proposed(kind) for kind in (BALANCE, BURETTE, THERMOMETER, ROOM)]
-        rig = rig_of([one for one in proposed if one is not None])
-        rows = (*sheet_rows(self._recipe, rig), *replicate_rows(self._recipe, rig, 1))
-        return tuple(dict.fromkeys(row.label for row in rows if row.required))
-
-    def _proposed(self, kind: str) -> InstrumentFact | None:
-        """Return the instrument that the page picks by itself: the first that is in date."""
-        first = next((one for one in self.of_kind(kind) if one.refused is None), None)
-        facts = (one.fact for one in self._instruments if first and one.instrument.id == first.id)
-        return next(facts, None)
-
-    def _standard_lot(self, one: StandardLotFact) -> Choice:
-        fraction = quantity_words(one.document.get("mass_fraction"))
-        drying = one.document.get("drying")
-        good = f"good until {last_day_words(one.due_at, self._zone)}"
-        says = ", ".join(part for part in (f"mass fraction {fraction}", drying, good) if part)
-        return Choice(one.id, one.name, says, self._refused(one, "certificate"))
-
-    def _instrument(self, one: ListedInstrument) -> Choice:
-        row, fact = one.instrument, one.fact
-        if fact is None:
-            refused = "It has no calibration yet; a keeper records one."
-            return Choice(row.id, row.name, row.document.get("type", ""), refused)
-        about = (row.document.get("type"), row.document.get("location"))
-        due = f"calibrated until {last_day_words(fact.due_at, self._zone)}"
-        says = ", ".join(part for part in (*about, due) if part)
-        return Choice(row.id, row.name, says, self._refused(fact, "calibration"))
-
-    def _refused(self, thing: StandardLotFact | InstrumentFact, what: str) -> str | None:
-        state, says = judge(
-            thing.name, due_at=thing.due_at, basis=thing.due_basis, holds=thing.holds,
-            used_at=self._now, zone=self._zone, what=what,
-        )  # fmt: skip
-        return None if state == IN_DATE else says
-
-
-def _usable_first(choices: Iterable[Choice]) -> tuple[Choice, ...]:
-    return tuple(sorted(choices, key=lambda one: one.refused is not None))
 
 
 def _lot_choices(session: Session, now: datetime) -> Iterable[Choice]:

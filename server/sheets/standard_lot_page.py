@@ -21,16 +21,19 @@ from server.lab.lot_log import (
 from server.lab.lot_uses import remaining_of, running_uses, taken_by_hand
 from server.lab.roles import Act
 from server.lab.sheet_facts import STANDARD_LOT, StandardLotFact
-from server.lab.states import due_state, sheet_state
+from server.lab.states import due_state
 from server.lab.validity import local_day, read_zone
-from server.records.queries.list_holds import PastHold, hold_history, standing_holds
+from server.records.queries.list_holds import hold_history, standing_holds
 from server.records.queries.list_uses import SheetOnLot, sheets_on_lots, taken_on_sheets
-from server.records.queries.load_files import FileFact, file_fact
+from server.records.queries.load_files import file_fact
 from server.records.queries.load_papers import load_people
 from server.records.queries.load_standard_lots import load_standard_lot_fact
 from server.records.tables.stores import StandardLot
 from server.sheets.parts.doors import may_hold, may_release, need_reader
+from server.sheets.parts.kept_files import file_view
 from server.sheets.parts.lot_log import LotLog, use_views
+from server.sheets.parts.past_holds import hold_words
+from server.sheets.parts.sheet_lines import sheet_url, state_of_sheet
 from server.sheets.parts.shelf_state import held_says
 from server.sheets.parts.telling import (
     day_words,
@@ -40,7 +43,7 @@ from server.sheets.parts.telling import (
     quantity_words,
     typed_day_words,
 )
-from server.sheets.standard_lots import CheckView, FileView, RuleView, StandardLotPage, UsedOn
+from server.sheets.standard_lots import CheckView, RuleView, StandardLotPage, UsedOn
 from server.sheets.stores import Fact
 
 
@@ -62,8 +65,8 @@ def open_standard_lot(
     uses = running_uses(one.document, (*taken_on_sheets(sheets), *taken_by_hand(one.log)))
     remaining = remaining_of(one.document, uses)
     ends = expiry_of_lot(one.document, (row.due_at, row.due_basis), one.log, zone=zone)
-    log = LotLog(one, reader)
-    opened = opened_on(one.log)
+    log, pasts = LotLog(one, reader), hold_history(session, STANDARD_LOT, one.id)
+    opened, original = opened_on(one.log), file_fact(session, row.file_id)
     return StandardLotPage(
         id=one.id,
         name=one.name.removeprefix(f"{one.substance}, lot "),
@@ -75,7 +78,7 @@ def open_standard_lot(
         due_rule=one.due_basis,
         rules=_rules(ends),
         facts=(*_stated(one), *_in_the_store(one, f"{moment_words(row.made_at, zone)} by {by}")),
-        file=_file(file_fact(session, row.file_id), zone),
+        file=file_view(original, zone) if original else None,
         opened=day_words(opened) if opened else "",
         log=log.lines(OPENED, RETEST),
         drying_asked=asked_words(one.document),
@@ -85,7 +88,7 @@ def open_standard_lot(
         left_check=_check(remaining.check) if remaining else None,
         uses=tuple(reversed(use_views(uses, log, {used.sheet.id: used for used in sheets}))),
         sheets=tuple(_used_on(used, zone) for used in reversed(sheets)),
-        holds=tuple(_hold_words(past, zone) for past in hold_history(session, STANDARD_LOT, one.id)),
+        holds=tuple(hold_words(past, zone) for past in pasts),
         now_local=f"{now.astimezone(read_zone(zone)):%Y-%m-%dT%H:%M}",
         today=local_day(now, zone).isoformat(),
         may_keep=reader.may(Act.KEEP),
@@ -151,44 +154,18 @@ def _grams(held: Mapping[str, Any], key: str) -> str:
     return f"{held[key]} g" if held.get(key) else ""
 
 
-def _file(found: FileFact | None, zone: str) -> FileView | None:
-    if found is None:
-        return None
-    return FileView(
-        name=found.name,
-        url=f"/files/{found.id}",
-        size=f"{max(1, round(found.size / 1000))} kB",
-        sha256=found.sha256,
-        kept=f"{moment_words(found.kept_at, zone)} by {found.kept_by}",
-    )
-
-
 def _check(check: Check | None) -> CheckView | None:
     return None if check is None else CheckView(check.verdict, check.says, check.basis)
 
 
 def _used_on(used: SheetOnLot, zone: str) -> UsedOn:
     row = used.sheet
-    state = sheet_state(
-        handed_in_at=row.handed_in_at,
-        sent_back_at=row.sent_back_at,
-        countersigned_at=row.countersigned_at,
-        abandoned_at=row.abandoned_at,
-    )
+    state = state_of_sheet(row)
     return UsedOn(
         number=row.number,
-        url=f"/bench/{row.id}",
+        url=sheet_url(row, state),
         begun=f"{moment_words(row.begun_at, zone)} by {used.begun_by}",
         state=state,
         certificate=used.certificate or "",
         certificate_url=f"/certificates/{used.certificate}" if used.certificate else "",
     )
-
-
-def _hold_words(past: PastHold, zone: str) -> str:
-    """Return a hold with its release, as one would tell it."""
-    says = f"Held by {past.held_by}, {moment_words(past.held_at, zone)}: {past.reason}"
-    if past.released_at is None:
-        return f"{says} (not released)"
-    at = moment_words(past.released_at, zone)
-    return f"{says}. Released by {past.released_by}, {at}: {past.release_reason}"

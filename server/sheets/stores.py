@@ -1,20 +1,6 @@
-"""Standard lots, recipes and instruments as they are read."""
+"""Standard lots in lists, and recipes, as they are read."""
 
 from dataclasses import dataclass
-
-
-@dataclass(frozen=True, slots=True)
-class StoreLine:
-    """An instrument in a list; ``state``: in date, due soon, lapsed, held."""
-
-    id: str
-    url: str
-    kind: str
-    name: str
-    says: str
-    state: str
-    due: str
-    certificate: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,60 +46,11 @@ class Stores:
 
 
 @dataclass(frozen=True, slots=True)
-class Instruments:
-    """The instruments page."""
-
-    instruments: tuple[StoreLine, ...]
-    may_keep: bool
-
-
-@dataclass(frozen=True, slots=True)
 class Fact:
     """A labelled value."""
 
     label: str
     value: str
-
-
-@dataclass(frozen=True, slots=True)
-class ErrorTable:
-    """A table of indications and errors as typed."""
-
-    caption: str
-    heads: tuple[str, ...]
-    rows: tuple[tuple[str, ...], ...]
-
-
-@dataclass(frozen=True, slots=True)
-class CalibrationView:
-    """One calibration, newest first on the instrument's page."""
-
-    version: int
-    certificate: str
-    issuer: str
-    done_on: str
-    due: str
-    due_basis: str
-    state: str
-    facts: tuple[Fact, ...]
-    table: ErrorTable | None
-    serves: bool
-
-
-@dataclass(frozen=True, slots=True)
-class InstrumentPage:
-    """One instrument with its calibrations."""
-
-    id: str
-    kind: str
-    name: str
-    state: str
-    held_says: str
-    facts: tuple[Fact, ...]
-    calibrations: tuple[CalibrationView, ...]
-    may_keep: bool
-    may_hold: bool
-    may_release: bool
 
 
 @dataclass(frozen=True, slots=True)

@@ -36,7 +36,7 @@ def open_trail(
     del now
     reader = need_reader(actor)
     page = min(max(page, 1), _MOST_PAGES)
-    wanted = _filter(person, thing, day, reader.zone)
+    wanted = trail_filter(person, thing, day, reader.zone)
     rows = trail_rows(session, wanted, offset=(page - 1) * LINES, most=LINES + 1)
     checked = check(session)
     more = len(rows) > LINES
@@ -54,7 +54,12 @@ def open_trail(
     )
 
 
-def _filter(person: str, thing: str, day: str, zone: str) -> TrailFilter:
+def trail_filter(person: str, thing: str, day: str, zone: str) -> TrailFilter:
+    """Return the filter that a person typed.
+
+    Raises:
+        Unacceptable: ``day`` is no day.
+    """
     start, end = None, None
     if day.strip():
         wanted = read_day(day, "day")

@@ -9,12 +9,15 @@ from starlette.middleware import Middleware
 from server.web.api import bottles as api_bottles
 from server.web.api import certificates as api_certificates
 from server.web.api import countersigning as api_countersigning
+from server.web.api import files as api_files
 from server.web.api import health
 from server.web.api import instruments as api_instruments
 from server.web.api import lots as api_lots
 from server.web.api import people as api_people
+from server.web.api import planner as api_planner
 from server.web.api import session as api_session
 from server.web.api import sheets as api_sheets
+from server.web.api import standard_lots as api_standard_lots
 from server.web.api import stores as api_stores
 from server.web.api import trail as api_trail
 from server.web.api.desk import PROBLEMS
@@ -24,14 +27,19 @@ from server.web.headers import SecurityHeaders
 from server.web.pages import (
     about,
     bench,
+    calibrations,
     certificates,
     countersign,
+    files,
     holds,
     instruments,
+    lists,
     lots,
     people,
+    planner,
     session,
     shelf,
+    standard_lots,
     stores,
     trail,
 )
@@ -39,12 +47,13 @@ from server.web.parts import Parts
 from server.web.static_files import StaticFiles, static_router
 
 _PAGES = (
-    shelf, session, bench, countersign, certificates, stores, instruments, lots, holds, trail,
-    people, about,
+    # lists first: an address such as /lots/list.csv is not that of a lot
+    lists, shelf, session, bench, planner, countersign, certificates, stores, standard_lots,
+    files, instruments, calibrations, lots, holds, trail, people, about,
 )  # fmt: skip
 _API = (
     api_session, api_bottles, api_sheets, api_countersigning, api_certificates, api_lots,
-    api_stores, api_instruments, api_trail, api_people,
+    api_stores, api_standard_lots, api_planner, api_files, api_instruments, api_trail, api_people,
 )  # fmt: skip
 API_PREFIX = "/api"
 #: Every router with the beginning of its addresses; tests go through all of their routes.

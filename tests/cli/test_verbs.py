@@ -318,3 +318,31 @@ def test_serve_of_an_empty_folder_prints_the_set_up_code(tmp_path: Path) -> None
 
     assert re.search(r"setup with the code \w{8}", told)
     assert (tmp_path / "data").stat().st_mode & 0o077 == 0
+
+
+def test_serve_on_a_busy_port_ends_with_2_before_anything_is_written(tmp_path: Path) -> None:
+    with socket.socket() as busy:
+        busy.bind(("127.0.0.1", 0))
+        busy.listen()
+        port = busy.getsockname()[1]
+        done = run("serve", "--data", tmp_path / "data", "--port", port)
+
+    assert done.returncode == 2
+    assert f"port {port} cannot be used" in done.stderr
+    assert not list((tmp_path / "data").iterdir())
+
+
+def test_serve_in_a_folder_that_cannot_be_made_ends_with_2(tmp_path: Path) -> None:
+    (tmp_path / "file").write_text("in the way")
+
+    done = run("serve", "--data", tmp_path / "file" / "data")
+
+    assert done.returncode == 2
+    assert "cannot be made" in done.stderr
+
+
+def test_evaluate_with_too_many_trials_ends_with_2() -> None:
+    done = run("evaluate", RECORDS / "quam-a2.json", "--monte-carlo", "99999999999")
+
+    assert done.returncode == 2
+    assert json.loads(done.stderr)["field"] == "--monte-carlo"

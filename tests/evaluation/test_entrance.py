@@ -92,6 +92,8 @@ def broken(path, value):
         (("burette", "delivery", "value"), "0.02", "burette.delivery.value"),
         (("ratio",), "0/1", "ratio"),
         (("ratio",), "1e3", "ratio"),
+        (("ratio",), "1/" + "9" * 400, "ratio"),
+        (("replicates", 0, "label"), "\ud800", "(record)"),
         (("repeatability",), {"from": "replicates"}, "repeatability"),
         (("blank",), {"value": "20", "unit": "mL", "kind": "reagent"}, "replicates[0].burette"),
         (

@@ -67,7 +67,8 @@ def test_standard_lot_tells_where_it_was_used_and_who_holds_it(own_demo) -> None
     assert len(page.sheets) == 5
     assert (page.state, page.may_hold, page.may_release) == ("held", False, True)
     assert page.held_says.endswith("lid was off.")
-    assert facts_of(page)["Drying"] == "2 h at 120 °C, then in a desiccator"
+    asked = "2 h at 120 °C, then in a desiccator (110 to 125 °C, 2 h, cooled in a desiccator)"
+    assert facts_of(page)["Drying"] == page.drying_asked == asked
     assert own_demo.read(open_stores, who="jonas").standard_lots[1].state == "held"
 
 

@@ -70,6 +70,11 @@ def test_plain_text_is_number_and_unit_on_one_line(visitor: Any, good: str) -> N
     assert answer.headers["content-type"].startswith("text/plain")
     assert re.fullmatch(r"0\.\d{4,5} mol/L\n", answer.text)
 
+    address = f"/api/bottles/{good}?at=30.0"
+    warm = visitor.get(address, headers={"Accept": "text/plain"}).text
+    assert warm.split()[0] == visitor.get(address).json()["at_temperature"]["reported"].split()[0]
+    assert warm != answer.text
+
 
 def test_bottle_that_is_not_in_force_has_no_number_in_any_form(
     visitor: Any, out: list[str]

@@ -92,8 +92,9 @@ def read_drying(document: Any, ended_at: datetime, path: str = "drying") -> Dryi
     hours = _hours(doc, "hours", path)
     if (temperature is None) != (hours is None):
         absent = "temperature" if temperature is None else "hours"
-        says = f"{path}.{absent} is missing: an oven has a temperature and a time."
-        raise Unacceptable(says, field=f"{path}.{absent}", example="120")
+        where = f"{path}.{absent}" if path else absent
+        says = f"{where} is missing: an oven has a temperature and a time."
+        raise Unacceptable(says, field=where, example="120")
     desiccator = reading.truth_at(doc, "desiccator", path, default=False)
     return Drying(temperature, hours, desiccator, ended_at)
 

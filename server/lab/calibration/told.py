@@ -13,6 +13,8 @@ from server.metrology.burette_points import CurveOfErrors
 from server.metrology.gravimetry import BudgetLine, Run
 from server.metrology.rounding import significant
 
+_UNITS = {"Cel": "°C", "1": "", "1/K": "/K"}
+
 
 @dataclass(frozen=True, slots=True)
 class CurvePoint:
@@ -28,6 +30,7 @@ class Told:
     """How a run is shown. ``rows`` fit ``heads``; ``limit`` bounds the curve where one is set.
 
     ``budget`` are rows of source, u with unit, contribution, share; ``budget_of`` says of what.
+    ``volumes`` are the V20 of a gravimetric run's rows in mL, with all their digits.
     """
 
     facts: tuple[tuple[str, str], ...]
@@ -38,6 +41,7 @@ class Told:
     limit: float | None = None
     budget_of: str = ""
     budget: tuple[tuple[str, ...], ...] = ()
+    volumes: tuple[float, ...] = ()
 
     def to_document(self) -> dict[str, Any]:
         """Return it as a JSON-able document, as a run keeps it."""
@@ -50,6 +54,7 @@ class Told:
             "limit": self.limit,
             "budget_of": self.budget_of,
             "budget": [list(one) for one in self.budget],
+            "volumes": list(self.volumes),
         }
 
 
@@ -64,6 +69,7 @@ def read_told(document: Mapping[str, Any]) -> Told:
         limit=document["limit"],
         budget_of=document["budget_of"],
         budget=tuple(tuple(one) for one in document["budget"]),
+        volumes=tuple(document["volumes"]),
     )
 
 
@@ -103,6 +109,7 @@ def told_water(document: Mapping[str, Any], run: WaterRun, outcome: WareOutcome)
         limit=None if limit is None else float(limit.systematic_mL),
         budget_of=budget_of,
         budget=budget,
+        volumes=tuple(one.found.volume_mL for one in outcome.rows),
     )
 
 
@@ -149,7 +156,7 @@ def _budget(lines: tuple[BudgetLine, ...]) -> tuple[tuple[str, ...], ...]:
     return tuple(
         (
             one.source,
-            f"{significant(one.u)} {one.unit}",
+            f"{significant(one.u)} {_UNITS.get(one.unit, one.unit)}".strip(),
             f"{significant(one.contribution_mL)} mL",
             f"{one.share_percent:.1f} %",
         )

@@ -5,7 +5,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass, field
 from typing import Any
 
-from sqlalchemy import or_, select
+from sqlalchemy import func, or_, select
 from sqlalchemy.orm import InstrumentedAttribute, Session, aliased
 
 from server.records.queries.list_holds import StandingHold, standing_holds
@@ -72,6 +72,12 @@ def bottles_of_lot(session: Session, lot: LotOnShelf) -> list[BottleOnShelf]:
 def all_lots(session: Session) -> list[LotOnShelf]:
     """Return all lots, made up last first."""
     return _lots(session, None)
+
+
+def bottles_by_lot(session: Session) -> dict[str, int]:
+    """Return how many bottles each lot was filled into, used up ones among them."""
+    rows = session.execute(select(Bottle.lot_id, func.count()).group_by(Bottle.lot_id))
+    return {row[0]: row[1] for row in rows}
 
 
 def bottle_codes_with(session: Session, pieces: Iterable[str]) -> list[str]:

@@ -10,6 +10,7 @@ from sqlalchemy.orm import Session
 from server.lab.calibration.check_log import CHARTS
 from server.lab.sheet_facts import HoldFact, InstrumentFact, LogFact
 from server.records.queries.list_log import log_lines
+from server.records.queries.load_files import FileFact, file_fact, file_facts
 from server.records.tables.people import Person
 from server.records.tables.stores import Calibration, Hold, Instrument, Recipe
 
@@ -27,10 +28,11 @@ class ListedInstrument:
 
 @dataclass(frozen=True, slots=True)
 class KeptCalibration:
-    """A calibration with who recorded it."""
+    """A calibration with who recorded it, and its original where there is one."""
 
     row: Calibration
     recorded_by: str
+    file: FileFact | None = None
 
 
 def listed_instruments(
@@ -84,7 +86,27 @@ def calibrations_of(session: Session, instrument_id: str) -> list[KeptCalibratio
         .where(Calibration.instrument_id == instrument_id)
         .order_by(Calibration.version.desc())
     )
-    return [KeptCalibration(row, name) for row, name in rows]
+    found = [(row, name) for row, name in rows]
+    files = file_facts(session, [row.file_id for row, _ in found if row.file_id])
+    return [KeptCalibration(row, name, files.get(row.file_id or "")) for row, name in found]
+
+
+def calibration_of(
+    session: Session, instrument_id: str, version: int
+) -> tuple[KeptCalibration, int] | None:
+    """Return one version of an instrument's calibration and the newest version's number."""
+    asked = (
+        select(Calibration, Person.printed_name)
+        .join(Person, Person.id == Calibration.made_by)
+        .where(Calibration.instrument_id == instrument_id, Calibration.version == version)
+    )
+    found = session.execute(asked).first()
+    if found is None:
+        return None
+    row, name = found
+    of_one = select(func.max(Calibration.version)).where(Calibration.instrument_id == instrument_id)
+    newest = session.scalar(of_one) or version
+    return KeptCalibration(row, name, file_fact(session, row.file_id)), newest
 
 
 def newest_recipes(session: Session) -> list[Recipe]:

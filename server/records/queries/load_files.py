@@ -1,5 +1,6 @@
 """Originals that were kept, with and without their bytes."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime
 
@@ -25,15 +26,17 @@ class FileFact:
 
 def file_fact(session: Session, file_id: str | None) -> FileFact | None:
     """Return an original without its bytes, or None where there is none."""
-    if file_id is None:
-        return None
+    return None if file_id is None else file_facts(session, [file_id]).get(file_id)
+
+
+def file_facts(session: Session, file_ids: Sequence[str]) -> dict[str, FileFact]:
+    """Return originals without their bytes, by id."""
     asked = (
         select(
             File.id, File.name, File.media_type, func.length(File.content), File.sha256,
             Person.printed_name, File.made_at,
         )
         .join(Person, Person.id == File.made_by)
-        .where(File.id == file_id)
+        .where(File.id.in_(file_ids))
     )  # fmt: skip
-    row = session.execute(asked).first()
-    return None if row is None else FileFact(*row)
+    return {row[0]: FileFact(*row) for row in session.execute(asked)}

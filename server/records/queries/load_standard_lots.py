@@ -53,7 +53,7 @@ def standard_lot_fact(
     zone: str,
     as_of: datetime | None = None,
 ) -> StandardLotFact:
-    """Return a standard lot's row as a plain value, its end by the log as it stood at an instant."""
+    """Return a standard lot's row as a plain value; its end by the log as it stood ``as_of``."""
     end = expiry_of_lot(row.document, (row.due_at, row.due_basis), log, zone=zone, as_of=as_of)
     return StandardLotFact(
         id=row.id,

@@ -8,6 +8,7 @@ from server.lab.lot_uses import Use
 from server.lab.roles import Act
 from server.lab.sheet_facts import LogFact, StandardLotFact
 from server.records.queries.list_uses import SheetOnLot
+from server.sheets.parts.sheet_lines import sheet_url, state_of_sheet
 from server.sheets.parts.telling import moment_words, typed_day_words
 from server.sheets.standard_lots import LineView, UseView
 
@@ -73,9 +74,7 @@ class LotLog:
         )
 
 
-def use_views(
-    uses: Sequence[Use], log: LotLog, sheets: Mapping[str, SheetOnLot]
-) -> list[UseView]:
+def use_views(uses: Sequence[Use], log: LotLog, sheets: Mapping[str, SheetOnLot]) -> list[UseView]:
     """Return the uses in the order of time; a struck one stays where it was written."""
     views = [(one.taken.at, _use(one, log, sheets)) for one in uses]
     views += [(line.at, _struck_use(line, log)) for line in log.struck(USE, COUNT)]
@@ -88,7 +87,7 @@ def _use(one: Use, log: LotLog, sheets: Mapping[str, SheetOnLot]) -> UseView:
         day=moment_words(taken.at, log.zone),
         what=taken.what or ("counted" if taken.counted else ""),
         name=used.sheet.number if used else "counted" if taken.counted else "by hand",
-        url=f"/bench/{used.sheet.id}" if used else None,
+        url=sheet_url(used.sheet, state_of_sheet(used.sheet)) if used else None,
         taken="" if taken.counted else f"{taken.mass_g} g",
         left="" if one.left_g is None else f"{one.left_g} g",
         below=one.left_g is not None and one.left_g < 0,

@@ -25,6 +25,14 @@ def typed_day_words(text: str | None) -> str:
         return text or ""
 
 
+def iso_day(words: str) -> str:
+    """Return a day told by ``day_words`` as year-month-day; other text stays as it is."""
+    parts = words.split()
+    if len(parts) != 3 or parts[1] not in _MONTHS or not (parts[0] + parts[2]).isdigit():
+        return words
+    return f"{int(parts[2]):04d}-{_MONTHS.index(parts[1]) + 1:02d}-{int(parts[0]):02d}"
+
+
 def moment_words(at: datetime, zone: str) -> str:
     """Return an instant in the laboratory's zone like ``1 Dec 2026, 14:05``."""
     local = at.astimezone(read_zone(zone))

@@ -21,7 +21,7 @@ router = APIRouter(tags=["shelf"])
 async def bottle(request: Request, code: str, at: str | None = None) -> Response:
     """Tell the number of a bottle, or why it has none; ``at`` is a temperature of use in °C.
 
-    ``Accept: text/plain`` answers with number and unit on one line.
+    ``Accept: text/plain`` answers with number and unit on one line, at that temperature if asked.
     """
     parts = parts_of(request)
     now = parts.clock()
@@ -63,7 +63,7 @@ def use_up(desk: AtApi, code: str) -> Response:
 
 def one_line(found: dict[str, Any]) -> str:
     """Return number and unit on one line, or in words why there is no number."""
-    concentration = found["concentration"]
+    concentration = found.get("at_temperature") or found["concentration"]
     if not found["in_force"] or concentration is None:
         return f"not in force: {found['state']}\n"
     return f"{concentration['reported'].split()[0]} {concentration['unit']}\n"

@@ -16,6 +16,7 @@ from server.procedures.lots import (
     propose_pull,
 )
 from server.sheets.lot_page import open_lot
+from server.sheets.lots_page import open_lots
 from server.web.api.desk import AtApi, answer, made
 from server.web.bodies import Given, body_of
 from server.web.visits import AtDesk
@@ -31,6 +32,12 @@ def make_up(desk: AtApi, given: Annotated[Given, Depends(_MAKE_UP)]) -> Response
     """Keep a lot that was made up."""
     code = desk.act(make_up_lot, MakeUpLot(**given))
     return made(f"/api/lots/{code}", code=code)
+
+
+@router.get("/lots")
+def lots(visit: AtDesk, state: str = "") -> Response:
+    """List the lots, made up last first; ``state`` keeps those in one state."""
+    return answer(visit.read(open_lots, state=state))
 
 
 @router.get("/lots/{code}")

@@ -15,6 +15,7 @@ _EACH = "each:"
 
 def read_standard_lot(form: Typed) -> ReceiveStandardLot:
     """Return a standard lot as its certificate states it."""
+    file = form.file("certificate_file")
     return ReceiveStandardLot(
         name=form.text("name"),
         substance=form.text("substance"),
@@ -27,7 +28,30 @@ def read_standard_lot(form: Typed) -> ReceiveStandardLot:
         drying=form.text("drying"),
         molar_mass=quantity(form, "molar_mass"),
         density=quantity(form, "density"),
+        minimum_sample_g=form.decimal("minimum_sample_g"),
+        storage=form.text("storage"),
+        received_g=form.decimal("received_g"),
+        received_on=form.text("received_on"),
+        period_after_opening=form.text("period_after_opening"),
+        retest_on=form.text("retest_on"),
+        drying_demand=_drying_demand(form),
+        file_name=file.name if file else "",
+        content_base64=file.base64 if file else "",
     )
+
+
+def _drying_demand(form: Typed) -> dict[str, Any] | None:
+    """Return what a certificate asks for before weighing in figures, None where nothing is."""
+    names = ("low_C", "high_C", "hours", "hours_most", "good_for_hours")
+    read: dict[str, Any] = {
+        name: value for name in names if (value := form.decimal(f"drying_demand_{name}"))
+    }
+    kind = form.text("drying_demand_kind")
+    if kind == "never":
+        return {"oven": False}
+    if read and form.text("drying_demand_desiccator") == "yes":
+        read["desiccator"] = True
+    return read or None
 
 
 def read_recipe_form(form: Typed) -> WriteRecipe:

@@ -6,7 +6,7 @@ from urllib.parse import quote
 from fastapi import APIRouter, Response
 
 from server.sheets.files import open_file
-from server.web.visits import AtDesk
+from server.web.visits import AtDesk, Visit
 
 router = APIRouter()
 
@@ -14,6 +14,11 @@ router = APIRouter()
 @router.get("/files/{file_id}")
 def original(visit: AtDesk, file_id: str) -> Response:
     """Hand out an original: saved by the browser, run by nobody."""
+    return hand_out(visit, file_id)
+
+
+def hand_out(visit: Visit, file_id: str) -> Response:
+    """Return an original with its SHA-256 (``Repr-Digest``)."""
     found = visit.read(open_file, file_id)
     digest = base64.b64encode(bytes.fromhex(found.sha256)).decode("ascii")
     response = attachment(found.content, found.name, found.media_type)

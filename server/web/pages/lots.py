@@ -11,12 +11,23 @@ from server.procedures.lots import (
     propose_pull,
 )
 from server.sheets.lot_page import open_lot, open_make_up
+from server.sheets.lots_page import open_lots
 from server.web.forms.lots import read_fill, read_make_up
 from server.web.forms.posts import Again, Posted
 from server.web.showing import show
 from server.web.visits import AtDesk
 
 router = APIRouter()
+
+
+@router.get("/lots")
+def home(visit: AtDesk, state: str = "") -> Response:
+    """Show all lots, made up last first."""
+    return show(
+        visit,
+        "lots/home.html",
+        lambda session, **who: open_lots(session, state=state, **who),
+    )
 
 
 @router.get("/lots/new")

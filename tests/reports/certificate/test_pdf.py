@@ -120,7 +120,7 @@ def test_certificate_ends_with_its_end_mark(issued, pdf) -> None:
         ("d number", "Certificate TL-2026-0005"),
         ("e customer", "Prepared for the laboratory itself"),
         ("f method", "(recipe NaOH 0.1 against KHP, version 1)"),
-        ("g item", "lot NaOH 0.1 mol/L, 2026-11-19, code XH55FH58"),
+        ("g item", "lot NaOH 0.1 mol/L, 2026-11-19, code "),
         ("h made", "made by Imke Thorvald, 19 Nov 2026"),
         ("i performed", "27 Nov 2026, 14:10 to 15:22 (Europe/Zurich, UTC+01:00)"),
         ("j issued", "Issued 27 Nov 2026, 18:00 (Europe/Zurich, UTC+01:00)"),

@@ -1,0 +1,36 @@
+// What was typed in a long form, kept on this tablet until it is recorded.
+
+const SKIPPED = new Set(["form_token", "key", "rows", "do"]);
+
+export function keep(form, place) {
+  const typed = {};
+  for (const field of form.elements) {
+    if (field.name && !SKIPPED.has(field.name) && field.type !== "submit") typed[field.name] = field.value;
+  }
+  try {
+    localStorage.setItem(place, JSON.stringify(typed));
+  } catch {
+    // a full or closed store: the form itself still holds everything
+  }
+}
+
+export function restore(form, place) {
+  let typed = {};
+  try {
+    typed = JSON.parse(localStorage.getItem(place) ?? "{}");
+  } catch {
+    return;
+  }
+  for (const [name, value] of Object.entries(typed)) {
+    const field = form.elements.namedItem(name);
+    if (field && "value" in field && typeof value === "string") field.value = value;
+  }
+}
+
+export function forget(place) {
+  try {
+    localStorage.removeItem(place);
+  } catch {
+    // nothing was kept
+  }
+}
