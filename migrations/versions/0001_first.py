@@ -571,6 +571,28 @@ def _triggers_of_sqlite():
             f"CREATE TRIGGER {name} BEFORE {event} ON {table} FOR EACH ROW {when} "
             f"BEGIN SELECT RAISE(ABORT, '{words}'); END"
         )
+    for table in (*INK, *KEPT, "trail_head"):
+        _no_replacing(table)
+
+
+def _no_replacing(table):
+    """Refuse INSERT OR REPLACE and UPDATE OR REPLACE: they delete rows past the DELETE triggers."""
+    connection = op.get_bind()
+    columns = connection.exec_driver_sql(f"PRAGMA table_info({table})").fetchall()
+    keys = {tuple(row[1] for row in sorted(columns, key=lambda row: row[5]) if row[5])}
+    for index in connection.exec_driver_sql(f"PRAGMA index_list({table})").fetchall():
+        if index[2]:
+            parts = connection.exec_driver_sql(f"PRAGMA index_info({index[1]})").fetchall()
+            keys.add(tuple(row[2] for row in parts))
+    same = " OR ".join(
+        "(" + " AND ".join(f'"{name}" = NEW."{name}"' for name in key) + ")" for key in sorted(keys)
+    )
+    for event, other in (("INSERT", ""), ("UPDATE", " AND rowid <> OLD.rowid")):
+        op.execute(
+            f"CREATE TRIGGER {table}_no_replace_by_{event.lower()} BEFORE {event} ON {table} "
+            f"FOR EACH ROW WHEN EXISTS (SELECT 1 FROM {table} WHERE ({same}){other}) "
+            f"BEGIN SELECT RAISE(ABORT, '{table} has this row already: no REPLACE'); END"
+        )
 
 
 def _triggers_of_postgresql():

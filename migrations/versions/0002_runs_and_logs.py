@@ -50,3 +50,8 @@ def upgrade():
             f"CREATE TRIGGER log_no_{event.lower()} BEFORE {event} ON log FOR EACH ROW "
             f"BEGIN SELECT RAISE(ABORT, 'log is in ink: no {event}'); END"
         )
+    op.execute(
+        "CREATE TRIGGER log_no_replace_by_insert BEFORE INSERT ON log FOR EACH ROW "
+        "WHEN EXISTS (SELECT 1 FROM log WHERE id = NEW.id OR strikes = NEW.strikes) "
+        "BEGIN SELECT RAISE(ABORT, 'log has this row already: no REPLACE'); END"
+    )

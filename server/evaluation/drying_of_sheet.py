@@ -4,18 +4,18 @@ from datetime import datetime
 
 from server.evaluation.circumstances import Drying
 from server.lab.in_use import is_mass
-from server.lab.ink import standing
+from server.lab.ink import WrittenEntry, standing
 from server.lab.log_lines import standing_lines
 from server.lab.lot_log import (
     DRYING,
     demand_of,
-    done_words,
     drying_of,
+    is_drying_step,
     judge_lot_drying,
     last_drying,
+    logged_words,
 )
-from server.lab.sheet_facts import LogFact, SheetFacts
-from server.lab.validity import read_zone
+from server.lab.sheet_facts import SheetFacts
 
 
 def drying_of_sheet(facts: SheetFacts) -> Drying | None:
@@ -25,10 +25,11 @@ def drying_of_sheet(facts: SheetFacts) -> Drying | None:
     if lot is None or (lot.document.get("basis") != "dried" and demand is None):
         return None
     used = _weighed_at(facts)
-    row = standing(facts.entries).get((0, "step:dried", 1))
+    row = _row(facts)
     line = last_drying(lot.log, before=used[0], as_of=facts.log_as_of)
-    logged = _logged(line, facts.laboratory.zone) if line else None
-    both = "; log: ".join(one for one in (row.text if row else None, logged) if one)
+    logged = logged_words(line, facts.laboratory.zone) if line else None
+    told = (row.text if row else None, logged if not row or logged != row.text else None)
+    both = "; log: ".join(one for one in told if one)
     stated = str(lot.document.get("drying") or "")
     if demand is None or (line is None and row is not None):
         words = stated or (demand.words if demand else "dried, as its certificate says")
@@ -41,6 +42,13 @@ def drying_of_sheet(facts: SheetFacts) -> Drying | None:
     return Drying(stated or demand.words, both or None, verdict, says)
 
 
+def _row(facts: SheetFacts) -> WrittenEntry | None:
+    """Return what was written in the sheet's row of drying, None where there is none."""
+    written = standing(facts.entries).items()
+    found = [entry for place, entry in written if place[0] == 0 and is_drying_step(place[1])]
+    return found[0] if found else None
+
+
 def _weighed_at(facts: SheetFacts) -> tuple[datetime, ...]:
     """Return the first and the last weighing of the standard; before any, the latest drying."""
     masses = [one.received_at for one in standing(facts.entries).values() if is_mass(one.slot)]
@@ -49,9 +57,3 @@ def _weighed_at(facts: SheetFacts) -> tuple[datetime, ...]:
     lot = facts.standard_lot
     dried = standing_lines(lot.log, DRYING, as_of=facts.log_as_of) if lot else ()
     return (max((facts.begun_at, *(drying_of(one).ended_at for one in dried))),)
-
-
-def _logged(line: LogFact, zone: str) -> str:
-    done = drying_of(line)
-    ended = done.ended_at.astimezone(read_zone(zone))
-    return f"{done_words(done)}, ended {ended:%Y-%m-%d, %H:%M}"

@@ -7,11 +7,11 @@ from typing import Any
 from server.evaluation.entrance import evaluate, running_values
 from server.evaluation.from_sheet import PreparedSheet
 from server.evaluation.record_fields import RecordProblem
+from server.lab.lot_log import is_drying_step
 from server.statistics.spread import summarize
 
 #: What findings say of a sheet that is still being written is told by its missing rows instead.
 _WAITS_FOR_ROW = {
-    "drying": ("step:dried",),
     "end point": ("indicator",),
     "temperature": ("temperature",),
     "blank": ("blank",),
@@ -76,7 +76,9 @@ def _first_that_does_not_hold(
     missing = {one.slot for one in prepared.missing if one.replicate == 0}
     for one in findings:
         unfinished = one["name"] == "replicates" and to_go > 0
-        waits = missing.intersection(_WAITS_FOR_ROW.get(one["name"], ()))
+        waits = missing.intersection(_WAITS_FOR_ROW.get(one["name"], ())) or (
+            one["name"] == "drying" and any(is_drying_step(slot) for slot in missing)
+        )
         if one["verdict"] != "holds" and not unfinished and not waits:
             return dict(one)
     return None

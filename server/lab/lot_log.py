@@ -15,7 +15,7 @@ from server.lab.calibration.standard_lot import (
 )
 from server.lab.log_lines import standing_lines
 from server.lab.sheet_facts import LogFact, StandardLotFact
-from server.lab.validity import last_day
+from server.lab.validity import last_day, read_zone
 
 OPENED, DRYING, USE, RETEST, COUNT = "opened", "drying", "use", "re-test", "count"
 _GRAVITY = ("holds", "look", "fails")
@@ -91,6 +91,18 @@ def done_words(one: Drying) -> str:
     """Return what was done, as one would say it: ``120 °C, 2 h, desiccator``."""
     oven = "no oven" if one.temperature_C is None else f"{one.temperature_C} °C, {one.hours} h"
     return f"{oven}, desiccator" if one.desiccator else oven
+
+
+def logged_words(line: LogFact, zone: str) -> str:
+    """Return a drying line with when it ended, as a sheet's row takes it over."""
+    done = drying_of(line)
+    ended = done.ended_at.astimezone(read_zone(zone))
+    return f"{done_words(done)}, ended {ended:%Y-%m-%d %H:%M}"
+
+
+def is_drying_step(slot: str) -> bool:
+    """Say whether a slot is a step of a recipe in which drying is ticked."""
+    return slot.startswith("step:") and ("dried" in slot or "drying" in slot)
 
 
 def demand_of(document: Mapping[str, Any]) -> DryingDemand | None:

@@ -16,7 +16,7 @@ from server.lab.refusal import NotAllowed, NotFound, Unacceptable
 from server.lab.roles import Act
 from server.lab.segregation import pull_refusal
 from server.lab.validity import local_day, read_day
-from server.metrology.decimal_text import DecimalProblem, read_wire_decimal
+from server.metrology.decimal_text import DecimalProblem, read_typed_decimal, read_wire_decimal
 from server.procedures.acts import Thing, note_act
 from server.records.queries.load_lots import (
     bottle_by_code,
@@ -96,7 +96,7 @@ def make_up_lot(
     """Keep a lot that was made up; return its code."""
     actor.need(Act.MAKE_UP)
     titrant = check_name(command.titrant, "titrant", example="NaOH")
-    nominal = _positive(command.nominal, "nominal", example="0.1")
+    nominal = _positive(command.nominal, "nominal", unit="mol/L", most=30, example="0.1")
     today = local_day(now, actor.zone)
     day = read_day(command.prepared_on, "prepared_on") if command.prepared_on else today
     if day > today:
@@ -146,7 +146,7 @@ def fill_bottles(
     if not 1 <= command.count <= MOST_BOTTLES:
         says = f"count must be from 1 to {MOST_BOTTLES}."
         raise Unacceptable(says, field="count", example="2")
-    volume = _positive(command.volume_mL, "volume_mL", example="1000")
+    volume = _positive(command.volume_mL, "volume_mL", unit="mL", most=1_000_000, example="1000")
     place = check_name(command.place, "place", example="Shelf 3")
     first = last_bottle_number(session, lot.id) + 1
     codes = []
@@ -260,13 +260,17 @@ def _free_code(session: Session, source: Random | None) -> str:
             return code
 
 
-def _positive(text: str, field: str, *, example: str) -> str:
+def _positive(text: str, field: str, *, unit: str, most: int, example: str) -> str:
     try:
-        good = read_wire_decimal(text, field) > 0
+        read_wire_decimal(text, field)
+        number = read_typed_decimal(text, field)  # and no exponent
     except DecimalProblem as problem:
         raise Unacceptable(problem.says, field=field, example=example) from problem
-    if not good:
+    if number <= 0:
         raise Unacceptable(f"{field} must be more than zero.", field=field, example=example)
+    if number > most:
+        says = f"{field}: {text} {unit} cannot be; {most} {unit} is the most."
+        raise Unacceptable(says, field=field, example=example)
     return text
 
 

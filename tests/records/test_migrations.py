@@ -54,3 +54,28 @@ def test_ink_tables_all_refuse_update_and_delete(database):
 def test_trail_head_cannot_be_deleted(database):
     with database.engine.connect() as connection, pytest.raises(DBAPIError, match="kept"):
         connection.execute(text("DELETE FROM trail_head"))
+
+
+@pytest.mark.parametrize("table", ["trail", "device"])
+def test_replacing_a_row_is_refused_where_rows_are_kept(sqlite_database, table):
+    columns = {
+        "trail": "(seq, at, zone, person_name, act, kind, thing_id, thing_name, body, "
+        "previous_hash, hash) VALUES (1, 1, 'UTC', 'x', '{act}', 'k', 't', 'n', '{{}}', 'p', 'h')",
+        "device": "(id, name, first_seen_at) VALUES ('d', '{act}', 1)",
+    }[table]
+    insert = f"INSERT OR REPLACE INTO {table} {columns}"
+    with sqlite_database.engine.connect() as connection:
+        connection.execute(text(insert.format(act="first")))
+        if table == "device":
+            connection.execute(text(insert.format(act="second")))  # nothing rests on it
+            return
+        with pytest.raises(DBAPIError, match="no REPLACE"):
+            connection.execute(text(insert.format(act="second")))
+
+
+def test_every_kept_table_refuses_replacing(sqlite_database):
+    names = "SELECT name FROM sqlite_master WHERE type = 'trigger'"
+    with sqlite_database.engine.connect() as connection:
+        triggers = set(connection.execute(text(names)).scalars())
+    kept = (*INK, "sheet", "lot", "bottle", "pull", "hold", "person", "instrument", "standard_lot")
+    assert {f"{table}_no_replace_by_insert" for table in kept} <= triggers

@@ -4,6 +4,8 @@ from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import asdict, replace
 
 from server.lab.ink import Place, WrittenEntry, excluded, standing, strikes
+from server.lab.log_lines import standing_lines
+from server.lab.lot_log import DRYING, drying_of, is_drying_step, logged_words
 from server.lab.rig import rig_of
 from server.lab.sheet_facts import SheetFacts
 from server.lab.slots import (
@@ -17,6 +19,8 @@ from server.lab.slots import (
 )
 from server.sheets.bench import BenchGroup, BenchRow, EntryView, NextRow, StruckEntry
 from server.sheets.parts.telling import clock_words
+
+_AS_LOGGED = "The log of the standard lot holds its last drying: take it over where it is this one."
 
 
 def groups_of(facts: SheetFacts) -> tuple[BenchGroup, ...]:
@@ -50,6 +54,7 @@ class _Written:
     def __init__(self, facts: SheetFacts) -> None:
         self._zone = facts.laboratory.zone
         self._standing = standing(facts.entries)
+        self._dried = _last_dried(facts)
         self._struck: dict[Place, list[StruckEntry]] = {}
         for one in strikes(facts.entries):
             shown = StruckEntry(
@@ -64,6 +69,8 @@ class _Written:
     def in_row(self, row: Row) -> BenchRow:
         """Return a row with its standing value and all that was struck through in it."""
         value = self._standing.get(row.place)
+        if value is None and self._dried and is_drying_step(row.slot):
+            row = replace(row, choices=(self._dried,), hint=_AS_LOGGED)
         return BenchRow(
             **asdict(row),
             value=self._view(value) if value else None,
@@ -83,6 +90,14 @@ class _Written:
             late=entry.late,
             reason=entry.reason,
         )
+
+
+def _last_dried(facts: SheetFacts) -> str:
+    """Return what the lot's log says of its last drying, empty where it says nothing."""
+    lot = facts.standard_lot
+    lines = standing_lines(lot.log, DRYING, as_of=facts.log_as_of) if lot else ()
+    last = max(lines, key=lambda one: drying_of(one).ended_at, default=None)
+    return logged_words(last, facts.laboratory.zone) if last else ""
 
 
 def _rows(facts: SheetFacts) -> list[Row]:

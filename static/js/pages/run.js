@@ -1,13 +1,13 @@
-// A run while it is done: what it comes to is shown after each row, and what is typed outlives a reload.
-import { restore, keep, forget } from "../widgets/draft.js";
+// A run while it is done: what it comes to is shown after each row; what is typed outlives a reload.
+import { forget, keep, restore } from "../widgets/draft.js";
 
 const form = document.querySelector("form[data-run]");
 if (form) watch(form);
 
 function watch(form) {
   const place = `run ${form.dataset.run}`;
-  // only a form that was not sent yet: after a refusal the server's answer holds what was typed
-  if (!form.querySelector("[name^=w][value]:not([value='']), [name^=m][name$=up]:not([value=''])")) restore(form, place);
+  // a form that the server answered with holds what was typed already
+  if (!("typed" in form.dataset) && restore(form, place)) tell(form, place);
   let timer = 0;
   form.addEventListener("input", () => keep(form, place));
   form.addEventListener("change", () => {
@@ -17,6 +17,18 @@ function watch(form) {
   form.addEventListener("submit", (event) => {
     if (event.submitter?.value === "record") forget(place);
   });
+}
+
+function tell(form, place) {
+  const note = document.getElementById("restored");
+  note.hidden = false;
+  note.querySelector("button").addEventListener("click", () => {
+    forget(place);
+    form.reset();
+    note.hidden = true;
+    void workOut(form);
+  });
+  void workOut(form);
 }
 
 async function workOut(form) {

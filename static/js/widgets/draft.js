@@ -14,17 +14,22 @@ export function keep(form, place) {
   }
 }
 
+// Returns whether anything that was typed stands in the form again.
 export function restore(form, place) {
-  let typed = {};
+  let typed = null;
   try {
-    typed = JSON.parse(localStorage.getItem(place) ?? "{}");
+    typed = JSON.parse(localStorage.getItem(place) ?? "null");
   } catch {
-    return;
+    return false;
   }
-  for (const [name, value] of Object.entries(typed)) {
+  let changed = false;
+  for (const [name, value] of Object.entries(typed ?? {})) {
     const field = form.elements.namedItem(name);
-    if (field && "value" in field && typeof value === "string") field.value = value;
+    if (!field || !("value" in field) || typeof value !== "string" || field.value === value) continue;
+    field.value = value;
+    changed = true;
   }
+  return changed;
 }
 
 export function forget(place) {

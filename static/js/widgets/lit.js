@@ -82,8 +82,14 @@ function wordsOf(view, acts, described, input) {
 }
 
 function stepButton(row, acts) {
-  const press = { click: () => acts.choose("done") };
-  return el("button", { type: "button", id: "reading", class: "button point", on: press }, `Done: ${row.label}`);
+  const press = (text) => ({ click: () => acts.choose(text) });
+  const done = { type: "button", id: "reading", class: "button point", on: press("done") };
+  const offered = (row.choices ?? []).map((text) =>
+    el("button", { type: "button", class: "button", on: press(text) }, text),
+  );
+  const button = el("button", done, `Done: ${row.label}`);
+  if (!offered.length) return button;
+  return el("span", { class: "choices", role: "group", "aria-label": row.label }, [...offered, button]);
 }
 
 function choices(row, acts) {
