@@ -210,7 +210,11 @@ NAOH_RECIPE: Mapping[str, Any] = MappingProxyType(
         "notice_days": 3,
         "steps": [
             {"key": "mixed", "label": "Lot mixed thoroughly", "when": "before"},
-            {"key": "dried", "label": "KHP dried: how long, how hot", "when": "before"},
+            {
+                "key": "dried",
+                "label": "KHP dried 2 h at 120 °C, cooled in the desiccator",
+                "when": "before",
+            },
         ],
     }
 )

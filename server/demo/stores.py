@@ -22,7 +22,7 @@ from server.procedures.standard_lots import (
 _HOUR = timedelta(hours=1)
 
 
-def certificate_file(substance: str, stated: Mapping[str, Any]) -> dict[str, str]:
+def certificate_file(substance: str, stated: Mapping[str, Any]) -> dict[str, Any]:
     """Return a standard lot's certificate as a file: a text, for all of it is invented."""
     fraction = stated["mass_fraction"]
     text = (

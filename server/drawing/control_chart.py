@@ -40,8 +40,8 @@ def control_chart(points: Sequence[CheckPoint], limits: Limits) -> str:
     parts = [
         words(f"off, {limits.unit}", _LEFT - 78, 16),
         *_scale(up),
-        *_limit(up, limits.action, "action", dashes=""),
-        *_limit(up, limits.warning, "warning", dashes="7 5"),
+        *_limit(up, limits.action, "action", dashes="", below=-5.0),
+        *_limit(up, limits.warning, "warning", dashes="7 5", below=13.0),
         _zero(up),
         _line(points, up, along),
         *(_point(one, along.at(i), up.at(one.off)) for i, one in enumerate(points)),
@@ -62,14 +62,15 @@ def _scale(up: Scale) -> list[str]:
     ]  # fmt: skip
 
 
-def _limit(up: Scale, value: float, word: str, *, dashes: str) -> list[str]:
+def _limit(up: Scale, value: float, word: str, *, dashes: str, below: float) -> list[str]:
+    """Return the two lines of a limit; its word stands away from the other limit's."""
     parts = []
     for one in (value, -value):
         y = up.at(one)
         line = {"x1": _LEFT, "x2": _RIGHT, "y1": y, "y2": y, "stroke": "currentColor",
                 "stroke-width": 1.2, "class": f"chart-{word}"}  # fmt: skip
         parts.append(element("line", {**line, "stroke-dasharray": dashes} if dashes else line))
-    parts.append(words(word, _RIGHT, up.at(value) - 5, anchor="end"))
+    parts.append(words(word, _LEFT + 4, up.at(value) + below))
     return parts
 
 

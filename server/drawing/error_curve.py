@@ -8,6 +8,8 @@ from server.drawing.svg import element, picture, words
 
 _WIDTH, _HEIGHT, _LEFT, _RIGHT, _TOP, _BOTTOM = 560.0, 260.0, 86.0, 540.0, 30.0, 212.0
 _RULE = "#ded8ca"
+#: A limit that is so many times what the points reach would flatten the curve.
+_MOST_ROOM = 3.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -28,12 +30,16 @@ class CurveWords:
 
 
 def error_curve(points: Sequence[ErrorPoint], *, told: CurveWords, limit: float | None) -> str:
-    """Return the picture of a curve of errors through its points; ``limit`` is drawn as ±."""
+    """Return the picture of a curve of errors through its points.
+
+    ``limit`` is drawn as ± where it does not flatten the curve, and told in words where it would.
+    """
     ordered = sorted(points, key=lambda one: one.reading)
     if not ordered:
         return picture(_WIDTH, _TOP * 2, says="No point yet.", parts=[], kind="error-curve")
     ends = [end for one in ordered for end in (one.added - one.U, one.added + one.U)]
-    ends += [0.0] if limit is None else [-limit, 0.0, limit]
+    far = limit is not None and limit > _MOST_ROOM * max(abs(end) for end in ends)
+    ends += [0.0] if limit is None or far else [-limit, 0.0, limit]
     up = scale_around(ends, start=_BOTTOM, end=_TOP, least=1e-9)
     along = scale_around(
         [0.0, *(one.reading for one in ordered)], start=_LEFT, end=_RIGHT, room=0.04, least=1e-6
@@ -41,7 +47,7 @@ def error_curve(points: Sequence[ErrorPoint], *, told: CurveWords, limit: float 
     parts = [
         words(f"added, {told.unit}", _LEFT - 78, 16),
         *_grid(up, along, told.unit),
-        *([] if limit is None else _limits(up, limit)),
+        *_limits(up, limit, told.unit, far=far),
         _line(ordered, up, along),
         *(_point(one, up, along) for one in ordered),
     ]
@@ -79,7 +85,11 @@ def _grid(up: Scale, along: Scale, unit: str) -> list[str]:
     return parts
 
 
-def _limits(up: Scale, limit: float) -> list[str]:
+def _limits(up: Scale, limit: float | None, unit: str, *, far: bool) -> list[str]:
+    if limit is None:
+        return []
+    if far:
+        return [words(f"permitted: ± {limit:g} {unit}, far outside", _RIGHT, 16, anchor="end")]
     parts = []
     for value in (limit, -limit):
         y = up.at(value)

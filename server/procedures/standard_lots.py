@@ -138,10 +138,10 @@ def record_use(session: Session, command: RecordUse, *, actor: Actor, now: datet
     )
     left = remaining_of(lot.document, running_uses(lot.document, all_taken(session, lot.id)))
     if left is not None and mass > left.left_g:
-        text = (
-            f"Only {left.left_g} g of {lot.name} are left by this log. If more is there, write "
-            "first what you count."
-        )
+        text = f"Only {left.left_g} g of {lot.name} are left by this log."
+        if left.left_g < 0:
+            text = f"By this log {left.taken_g} g of {left.received_g} g were taken already."
+        text += " If more is there, write first what you count."
         raise Unacceptable(text, field="mass_g", example=str(max(left.left_g, Decimal(0))))
     document = {"mass_g": command.mass_g.strip(), "says": says}
     return _write(session, lot, USE, document, act="used a standard lot", actor=actor, now=now)

@@ -40,8 +40,16 @@ class InstrumentLine(Protocol):
         """The last day of its calibration."""
 
     @property
+    def due_basis(self) -> str:
+        """What sets that day."""
+
+    @property
     def certificate(self) -> str:
         """The number of the calibration that serves."""
+
+    @property
+    def flag(self) -> str:
+        """What speaks against it, empty where nothing does."""
 
 
 def shelf_csv(shelf: Shelf) -> bytes:
@@ -90,11 +98,15 @@ def standard_lots_csv(stores: Stores) -> bytes:
 
 def instruments_csv(lines: Iterable[InstrumentLine]) -> bytes:
     """Return the instruments as they are shown."""
-    heads = ("instrument", "kind", "what and where", "state", "due", "certificate")
+    heads = ("instrument", "kind", "what and where", "state", "due", "set by", "certificate",
+             "speaks against it")  # fmt: skip
     rows = [
-        (one.name, one.kind, one.says, one.state, iso_day(one.due), one.certificate)
+        (
+            one.name, one.kind, one.says, one.state, iso_day(one.due), one.due_basis,
+            one.certificate, one.flag,
+        )
         for one in lines
-    ]
+    ]  # fmt: skip
     return write_csv(heads, rows)
 
 

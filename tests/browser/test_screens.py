@@ -80,3 +80,24 @@ def test_reading_written_without_network_waits_on_the_tablet_and_is_sent_later(d
     page.locator(".row.written", has_text="20.4").filter(has_text="on the server").wait_for()
     page.reload()
     page.locator(".row.written", has_text="20.4").wait_for()
+
+
+def test_two_browsers_in_one_row_see_both_values_and_the_second_decides(desks, laboratory):
+    first, second = desks("ida"), desks("nils")
+    first.page.goto(f"/bench/begin?lot={laboratory.lot}")
+    first.page.get_by_role("radio", name="Thermometer 1").check()
+    first.page.get_by_role("button", name="Begin the sheet").click()
+    first.page.locator("#lit").get_by_role("button", name="phenolphthalein", exact=True).click()
+    first.page.locator(".row.written", has_text="on the server").wait_for()
+    second.page.goto(first.page.url)
+    for page, text in ((first.page, "20.4"), (second.page, "20.9")):
+        page.locator("#lit input#reading").fill(text)
+        page.locator("#lit input#reading").press("Enter")
+        page.locator(".row.written", has_text="Temperature").first.wait_for()
+    row = second.page.locator(".row.written", has_text="Temperature")
+    row.get_by_text("Yours, 20.9, was not taken").wait_for()
+    row.get_by_role("button", name="Strike 20.4, write 20.9").click()
+    second.page.locator("#lit .chip").first.click()
+    second.page.locator("#lit input#reading").press("Enter")
+    second.page.locator(".row.written s.struck", has_text="20.4").wait_for()
+    second.page.locator(".row.written", has_text="20.9").filter(has_text="on the server").wait_for()

@@ -15,7 +15,7 @@ _LEAST_READING_U = 5e-4
 _LEAST_VOLUME_U = 2e-6
 _DRAWN_TO, _DRAWN_BY = 4e-4, 2.0
 """Towards which scatter of a volume (mL) the weights' is drawn, and by how many points' worth."""
-_NOT_SEEN, _CLEARLY_SEEN = 4.0, 16.0
+_NOT_SEEN, _CLEARLY_SEEN = 0.5, 8.0
 """Degrees of freedom below which the volumes' scatter is not seen, and from which it is."""
 _MEDIAN_OF_CHI2 = 0.4549
 """Median of chi-squared with one degree of freedom."""
@@ -117,7 +117,7 @@ class ScatterEstimate:
             dof = seen * seen * (bb - ab * ab / aa)
             clear = min(max((dof - _NOT_SEEN) / (_CLEARLY_SEEN - _NOT_SEEN), 0.0), 1.0)
             seen *= 1 + min(1.0, 4 / max(dof, 1e-9))
-            self.volume_seen = clear * seen + (1 - clear) * self.volume_u**2
+            self.volume_seen = clear * seen
             volume = min(max(volume, self.volume_u**2 / 100), self.volume_u**2 * 16)
             self.volume_u = max(volume, _LEAST_VOLUME_U**2) ** 0.5
         if self._given.reading_u is None:

@@ -10,6 +10,7 @@ from server.lab.calibration.check import Check
 from server.lab.calibration.typed_numbers import list_at, number_at, optional_number, read_number
 from server.lab.refusal import Unacceptable
 from server.metrology.conformity import Verdict
+from server.metrology.decimal_text import decimals_of
 from server.metrology.weighing_calibration import ChartLimits, chart_limits
 
 _BASIS = "Shewhart: warning at 2 s, action at 3 s"
@@ -68,16 +69,21 @@ def judge_check(weight: CheckWeight, text: str, before: Sequence[str] = ()) -> C
         stop="do not weigh with this balance", look="clean, adjust, weigh it again",
     )  # fmt: skip
     twice = verdict == "fails" and abs(off) <= weight.action
+    digits = decimals_of(text) + 1
+    apart, centre = _shown(off, digits), _shown(weight.centre, digits)
     return Check(
         name="check weight",
         verdict=verdict,
-        says=f"{weight.name}: {text.strip()} g is {off:+f} g from {weight.centre} g, {words}.",
+        says=f"{weight.name}: {text.strip()} g is {apart:+f} g from {centre} g, {words}.",
         basis=f"{weight.basis}; {_TWICE}" if twice else weight.basis,
         figure=float(off),
         limit=float(weight.action),
         unit="g",
-        figure_text=f"{off:+f} g",
-        limit_text=f"warning ± {weight.warning} g, action ± {weight.action} g",
+        figure_text=f"{apart:+f} g",
+        limit_text=(
+            f"warning ± {_shown(weight.warning, digits)} g, "
+            f"action ± {_shown(weight.action, digits)} g"
+        ),
     )
 
 
@@ -110,6 +116,12 @@ def judge_history(weight: CheckWeight, readings: Sequence[str]) -> tuple[Check, 
     return tuple(
         judge_check(weight, one, readings[max(0, i - 2) : i]) for i, one in enumerate(readings)
     )
+
+
+def _shown(value: Decimal, digits: int) -> Decimal:
+    """Return a value to so many decimals; one that has fewer keeps its own."""
+    places = -int(value.as_tuple().exponent)
+    return value if places <= digits else value.quantize(Decimal(1).scaleb(-digits))
 
 
 def _from_first(doc: Mapping[str, Any]) -> ChartLimits:

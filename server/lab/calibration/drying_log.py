@@ -94,7 +94,7 @@ def read_drying(document: Any, ended_at: datetime, path: str = "drying") -> Dryi
         absent = "temperature" if temperature is None else "hours"
         where = f"{path}.{absent}" if path else absent
         says = f"{where} is missing: an oven has a temperature and a time."
-        raise Unacceptable(says, field=where, example="120")
+        raise Unacceptable(says, field=where, example="120" if temperature is None else "2")
     desiccator = reading.truth_at(doc, "desiccator", path, default=False)
     return Drying(temperature, hours, desiccator, ended_at)
 

@@ -17,8 +17,15 @@ from server.lab.calibration.check_log import (
 from server.lab.roles import Act
 from server.lab.sheet_facts import LogFact
 from server.lab.validity import local_day
+from server.metrology.rounding import rounded, rounding_exponent
 from server.sheets.instruments import ChartView
-from server.sheets.parts.telling import count_words, day_words, moment_words, quantity_words
+from server.sheets.parts.telling import (
+    count_words,
+    day_words,
+    moment_words,
+    plain_words,
+    quantity_words,
+)
 from server.sheets.standard_lots import LineView
 
 #: So many checks stand on a chart, and so many lines below it; the log keeps them all.
@@ -62,10 +69,13 @@ def _chart(chart: Chart, log: Sequence[LogFact], kind: str, zone: str) -> ChartV
 
 
 def _limit_words(chart: Chart) -> str:
-    around = f"around {chart.centre:g} {chart.unit}, " if chart.centre else ""
-    return (
-        f"{around}warning ± {chart.warning:g} {chart.unit}, action ± {chart.action:g} {chart.unit}"
-    )
+    """Return the limits to two digits and the centre to the same decimal, as JCGM 100 prints U."""
+    warning, action = (plain_words(one, 2) for one in (chart.warning, chart.action))
+    around = ""
+    if chart.centre:
+        centre = rounded(chart.centre, rounding_exponent(chart.warning))
+        around = f"around {centre} {chart.unit}, "
+    return f"{around}warning ± {warning} {chart.unit}, action ± {action} {chart.unit}"
 
 
 def _line(line: LogFact, checked: Checked | None, reader: Actor) -> LineView:

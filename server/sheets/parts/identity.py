@@ -43,7 +43,7 @@ def identity_fields(
         ("Next due", due),
         ("Reference materials", str(document.get("references") or "") or _references(newest)),
     ]
-    named = IdentityField("What it is", f"{kind} {name}", STATED)
+    named = IdentityField("What it is", f"{name} ({kind})", STATED)
     return (named, *(_field(label, value) for label, value in told))
 
 
@@ -83,10 +83,10 @@ def _result(newest: Any) -> str:
 
 
 def _criteria(newest: Any) -> str:
-    """Return the specifications that the serving run was judged by, with their decision rules."""
+    """Return the specification that the serving run was judged by, with its decision rule."""
     checks = ((newest.run if newest else None) or {}).get("checks", ())
-    named = {f"{one['basis']}, by {one['rule']}" for one in checks if one["rule"]}
-    return "; ".join(sorted(named))
+    named = (f"{one['basis']}, by {one['rule']}" for one in checks if one["rule"])
+    return next(named, "")
 
 
 def _references(newest: Any) -> str:

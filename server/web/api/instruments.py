@@ -1,6 +1,6 @@
 """Instruments, their calibrations and checks over the API."""
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Annotated, Any
 
 from fastapi import APIRouter, Depends, Path, Query, Response
@@ -179,7 +179,8 @@ def check(desk: AtApi, instrument_id: str, given: Annotated[Given, Depends(_CHEC
     """Write a check down, whatever it says."""
     command = WriteCheck(instrument_id=instrument_id, **given)
     line = desk.act(write_check, command)
-    page = desk.visit.read(open_instrument, instrument_id)
+    after = replace(desk.visit, now=desk.visit.parts.clock())
+    page = after.read(open_instrument, instrument_id)
     return made(_url(instrument_id), id=line, flag=page.flag)
 
 

@@ -49,7 +49,7 @@ export class Sender {
         single = true;
       } else if (REFUSED.has(answer.status)) {
         this.store.refuse(sent[0].id, answer.problem);
-        this.#become("idle", "");
+        this.#become("idle", "", answer.status === 409 ? await this.#sheet() : null);
       } else {
         return this.#become(stateFor(answer.status), answer.problem.detail ?? "");
       }
@@ -75,6 +75,17 @@ export class Sender {
       return answer.ok && said.written ? said : { status: answer.status, problem: said };
     } catch {
       return { status: 0, problem: {} };
+    }
+  }
+
+  /** The sheet as the server has it now: somebody else was first, and both values are to be seen. */
+  async #sheet() {
+    try {
+      const headers = { Accept: "application/json" };
+      const answer = await this.fetcher(this.door.replace(/\/entries$/, ""), { credentials: "same-origin", headers });
+      return answer.ok ? await answer.json() : null;
+    } catch {
+      return null;
     }
   }
 

@@ -231,6 +231,16 @@ const acts = {
     store.draft(keyOf(view.lit), "");
     return draw({ focus: true });
   },
+  drop(row) {
+    store.drop(row.refused.id);
+    draw({ focus: true });
+    say(`${row.label}: ${row.value.text} stands.`);
+  },
+  insist(row) {
+    store.draft(keyOf(row), row.refused.text);
+    store.drop(row.refused.id);
+    acts.light(row);
+  },
   exclude(replicate) {
     here.excluding = replicate;
     draw();

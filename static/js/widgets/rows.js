@@ -64,6 +64,20 @@ function writtenRow(row, view, acts) {
     el("span", { class: "unit" }, unitOf(row)),
     whereOf(row),
     row.struck.map(reasonOf),
+    row.refused ? bothOf(row, view, acts) : null,
+  );
+}
+
+/** Somebody else was first in this row: both values, and what can be done. */
+function bothOf(row, view, acts) {
+  const says = `Yours, ${row.refused.text}, was not taken: ${row.refused.problem.detail ?? ""}`;
+  const keep = el("button", { type: "button", class: "button", on: { click: () => acts.drop(row) } }, `Keep ${row.value.text}`);
+  const strike = el("button", { type: "button", class: "button main", on: { click: () => acts.insist(row) } }, `Strike ${row.value.text}, write ${row.refused.text}`);
+  return el(
+    "div",
+    { class: "ask" },
+    el("p", { class: "fails" }, says),
+    view.mayWrite ? el("div", { class: "answers" }, keep, strike) : null,
   );
 }
 
