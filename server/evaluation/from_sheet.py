@@ -255,7 +255,9 @@ def _text(entry: WrittenEntry) -> str:
 
 def _roots(lot: StandardLotFact | None, used: Sequence[InstrumentFact]) -> dict[str, str]:
     names = {BALANCE: "balance", BURETTE: "burette", THERMOMETER: "thermometer", ROOM: "room"}
-    roots = {names[one.kind]: f"calibration {one.calibration_id}" for one in used}
+    roots = {
+        names[one.kind]: f"calibration {one.calibration_id}" for one in used if one.kind in names
+    }
     if lot is not None:
         roots["standard"] = f"standard lot {lot.id}"
     return roots

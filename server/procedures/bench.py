@@ -19,6 +19,7 @@ from server.lab.roles import Act
 from server.lab.sheet_facts import (
     BALANCE,
     BURETTE,
+    PROBE,
     ROOM,
     THERMOMETER,
     InstrumentFact,
@@ -49,6 +50,7 @@ _FIELDS = {
     BURETTE: "burette_id",
     THERMOMETER: "thermometer_id",
     ROOM: "room_id",
+    PROBE: "probe_id",
 }
 
 
@@ -56,7 +58,8 @@ _FIELDS = {
 class BeginSheet:
     """A new bench sheet: what is standardized, how, and with what.
 
-    ``lot_code`` may be the code of one of its bottles. ``override_reason`` is a keeper's reason to
+    ``lot_code`` may be the code of one of its bottles. ``probe_id`` is the probe of a
+    potentiometric end point, where a pH probe is used. ``override_reason`` is a keeper's reason to
     use something out of date.
     """
 
@@ -67,6 +70,7 @@ class BeginSheet:
     burette_id: str
     thermometer_id: str | None = None
     room_id: str | None = None
+    probe_id: str | None = None
     override_reason: str | None = None
 
 
@@ -261,6 +265,11 @@ def _instruments(
     wanted[THERMOMETER] = command.thermometer_id or ""
     if recipe.buoyancy:
         wanted[ROOM] = command.room_id or ""
+    if command.probe_id:
+        if recipe.end_point.mode != "potentiometric":
+            says = "This recipe's end point is seen, not measured: it takes no probe."
+            raise Unacceptable(says, field="probe_id")
+        wanted[PROBE] = command.probe_id
     return tuple(_instrument(session, kind, key) for kind, key in wanted.items())
 
 

@@ -107,7 +107,10 @@ class Margin:
 
 @dataclass(frozen=True, slots=True)
 class RestsOn:
-    """Something the sheet rests on, with its state at the time of use."""
+    """Something the sheet rests on, with its state at the time of use.
+
+    ``flag`` says what speaks against it without stopping it: a check that failed.
+    """
 
     kind: str
     name: str
@@ -115,6 +118,7 @@ class RestsOn:
     state: str
     override: str | None
     url: str | None
+    flag: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -204,12 +208,16 @@ class SheetLine:
 
 @dataclass(frozen=True, slots=True)
 class Choice:
-    """Something to pick; ``refused`` says why it cannot be picked."""
+    """Something to pick; ``refused`` says why it cannot be picked, ``flag`` what speaks against it.
+
+    What is flagged can be picked all the same.
+    """
 
     id: str
     name: str
     says: str
     refused: str | None
+    flag: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -239,6 +247,7 @@ class BeginPage:
     burettes: tuple[Choice, ...]
     thermometers: tuple[Choice, ...]
     rooms: tuple[Choice, ...]
+    probes: tuple[Choice, ...]
     mass_window: str
     plan: PlanView
     plan_url: str

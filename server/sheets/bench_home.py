@@ -11,7 +11,7 @@ from server.lab.actor import Actor
 from server.lab.recipe import read_recipe
 from server.lab.refusal import NotAllowed
 from server.lab.roles import Act
-from server.lab.sheet_facts import BALANCE, BURETTE, ROOM, THERMOMETER
+from server.lab.sheet_facts import BALANCE, BURETTE, PROBE, ROOM, THERMOMETER
 from server.records.queries.list_sheets import open_sheets, sheets_written_on
 from server.records.queries.list_shelf import LotOnShelf, all_lots
 from server.records.queries.list_stores import newest_recipes
@@ -85,6 +85,7 @@ def open_begin(
         burettes=shelf.of_kind(BURETTE),
         thermometers=shelf.of_kind(THERMOMETER),
         rooms=shelf.of_kind(ROOM) if recipe.buoyancy else (),
+        probes=shelf.of_kind(PROBE) if recipe.end_point.mode == "potentiometric" else (),
         mass_window=planned.window,
         plan=planned,
         plan_url=shelf.plan_url(chosen.id),

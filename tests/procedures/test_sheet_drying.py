@@ -1,4 +1,4 @@
-"""The drying of a standard on a sheet: from the log of its lot, from the sheet's row, or neither."""
+"""The drying of a standard on a sheet: from its lot's log, from the sheet's row, or neither."""
 
 import pytest
 
@@ -15,10 +15,16 @@ from server.procedures.stores import (
     receive_standard_lot,
     write_recipe,
 )
+from server.records.tables.stores import Recipe
 from server.sheets.bench_sheet import open_bench_sheet
 
-from .conftest import RECIPE, SHEET_LINES, all_lines
-
+SLOTS = ("container_and_standard", "container_less_standard", "burette_start", "burette_end")
+SHEET = ((0, "step:mixed", "done"), (0, "indicator", "phenolphthalein"), (0, "temperature", "20.4"))
+GOOD = (
+    ("60.4084", "60.0000", "0.00", "20.00"),
+    ("60.4102", "60.0000", "0.00", "20.08"),
+    ("60.4066", "60.0000", "0.00", "19.91"),
+)
 DEMAND = {"low_C": "110", "high_C": "120", "hours": "2", "desiccator": True}
 
 
@@ -35,6 +41,21 @@ def dried_lab(sqlite_lab):
     return lab
 
 
+def lines():
+    found = list(SHEET)
+    for number, readings in enumerate(GOOD, start=1):
+        found += [(number, slot, text) for slot, text in zip(SLOTS, readings, strict=True)]
+    return found
+
+
+def with_step(lab, key):
+    """Write the laboratory's recipe anew with a step of drying."""
+    document = lab.transactions.read(lambda session: session.get_one(Recipe, lab.recipe).document)
+    steps = [*document["steps"], {"key": key, "label": "KHP dried", "when": "before"}]
+    command = WriteRecipe("NaOH against dried KHP", {**document, "steps": steps})
+    return lab.act(write_recipe, command, "keeper")
+
+
 def dry(lab, temperature="115", hours="2", **more):
     ended = lab.clock().isoformat()
     command = RecordDrying(lab.standard_lot, ended, temperature, hours, desiccator=True, **more)
@@ -49,7 +70,7 @@ def finding(lab, sheet):
 def written(lab, **begin):
     sheet = lab.begin(**begin)
     lab.clock.move(minutes=10)
-    lab.write_lines(all_lines(), sheet=sheet)
+    lab.write_lines(lines(), sheet=sheet)
     return sheet
 
 
@@ -104,23 +125,18 @@ def test_drying_struck_through_after_the_hand_in_leaves_the_sheet_as_it_was_sign
 
 
 def test_sheets_row_is_enough_where_the_log_is_empty(dried_lab):
-    steps = [*RECIPE["steps"], {"key": "dried", "label": "KHP dried", "when": "before"}]
-    recipe = {**RECIPE, "steps": steps}
-    written_recipe = WriteRecipe("NaOH against dried KHP", recipe)
-    recipe_id = dried_lab.act(write_recipe, written_recipe, "keeper")
+    recipe_id = with_step(dried_lab, "dried")
     sheet = dried_lab.begin(recipe_id=recipe_id)
-    dried_lab.write_lines([(0, "step:dried", "2 h at 115 °C"), *all_lines()], sheet=sheet)
+    dried_lab.write_lines([(0, "step:dried", "2 h at 115 °C"), *lines()], sheet=sheet)
     found = finding(dried_lab, sheet)
     assert (found["verdict"], found["figure_text"]) == ("holds", "2 h at 115 °C")
 
 
 def test_sheets_row_against_a_log_that_is_short_wants_a_look(dried_lab):
-    steps = [*RECIPE["steps"], {"key": "dried", "label": "KHP dried", "when": "before"}]
-    written_recipe = WriteRecipe("NaOH against dried KHP", {**RECIPE, "steps": steps})
-    recipe_id = dried_lab.act(write_recipe, written_recipe, "keeper")
+    recipe_id = with_step(dried_lab, "dried")
     dry(dried_lab, hours="1.5")
     sheet = dried_lab.begin(recipe_id=recipe_id)
-    dried_lab.write_lines([(0, "step:dried", "done"), *all_lines()], sheet=sheet)
+    dried_lab.write_lines([(0, "step:dried", "done"), *lines()], sheet=sheet)
     found = finding(dried_lab, sheet)
     assert found["verdict"] == "look"
     assert "1.5 h are less than 2 h" in found["says"]
@@ -128,9 +144,7 @@ def test_sheets_row_against_a_log_that_is_short_wants_a_look(dried_lab):
 
 
 def test_row_of_drying_offers_what_the_log_says(dried_lab):
-    steps = [*RECIPE["steps"], {"key": "khp-dried-how-long", "label": "Dried", "when": "before"}]
-    written_recipe = WriteRecipe("NaOH against dried KHP", {**RECIPE, "steps": steps})
-    recipe_id = dried_lab.act(write_recipe, written_recipe, "keeper")
+    recipe_id = with_step(dried_lab, "khp-dried-how-long")
     dry(dried_lab)
     sheet = dried_lab.begin(recipe_id=recipe_id)
 
@@ -144,7 +158,7 @@ def test_row_of_drying_offers_what_the_log_says(dried_lab):
 
     (offered,) = row().choices
     assert offered == "115 °C, 2 h, desiccator, ended 2026-05-04 10:30"
-    dried_lab.write_lines([(0, "step:khp-dried-how-long", offered), *SHEET_LINES], sheet=sheet)
+    dried_lab.write_lines([(0, "step:khp-dried-how-long", offered), *SHEET], sheet=sheet)
     assert row().choices == ()
     assert row().value.text == offered
 

@@ -37,6 +37,8 @@ ANALYST, KEEPER, STEWARD = only("analyst"), only("keeper"), only("steward")
 COUNTERSIGNER = only("countersigner")
 HOLDERS = only("analyst", "countersigner", "keeper")
 RELEASERS = only("keeper", "countersigner")
+LOGGERS = only("analyst", "keeper")
+NO_LOT = f"/stores/standard-lots/{NOBODY}"
 PULL = {"reason": "the flask was not clean"}
 BEGIN = {
     "lot_code": "NOCODE00",
@@ -66,6 +68,7 @@ HOLD = {"kind": "lot", "thing": "NOCODE00", "reason": "cloudy"}
 # there, 422 for a value that cannot be taken, 409 for a revision that is none.
 PAGES: dict[str, Case] = {
     "GET /": Case(EVERYBODY, 200),
+    "GET /shelf/list.csv": Case(EVERYBODY, 200),
     "GET /b/{code}": Case(EVERYBODY, 200),
     "GET /B/{code}": Case(EVERYBODY, 200),
     "POST /b/{code}/used-up": Case(ANALYST, 404, f"/b/{NO_CODE}/used-up"),
@@ -101,15 +104,30 @@ PAGES: dict[str, Case] = {
     "GET /stores/standard-lots/new": Case(KEEPER, 200),
     "POST /stores/standard-lots/new": Case(KEEPER, 422),
     "GET /stores/standard-lots/{standard_lot_id}": Case(SIGNED_IN, 200),
+    "POST /stores/standard-lots/{standard_lot_id}/opened": Case(LOGGERS, 404, f"{NO_LOT}/opened"),
+    "POST /stores/standard-lots/{standard_lot_id}/dryings": Case(LOGGERS, 404, f"{NO_LOT}/dryings"),
+    "POST /stores/standard-lots/{standard_lot_id}/uses": Case(LOGGERS, 404, f"{NO_LOT}/uses"),
+    "POST /stores/standard-lots/{standard_lot_id}/counts": Case(LOGGERS, 404, f"{NO_LOT}/counts"),
+    "POST /stores/standard-lots/{standard_lot_id}/retests": Case(KEEPER, 404, f"{NO_LOT}/retests"),
+    "POST /stores/standard-lots/{standard_lot_id}/strike": Case(LOGGERS, 404, f"{NO_LOT}/strike"),
+    "POST /stores/standard-lots/{standard_lot_id}/certificate": Case(
+        KEEPER, 404, f"{NO_LOT}/certificate"
+    ),
+    "GET /stores/standard-lots/list.csv": Case(SIGNED_IN, 200),
+    "GET /files/{file_id}": Case(SIGNED_IN, 200),
+    "GET /planner": Case(SIGNED_IN, 200),
     "GET /stores/recipes/new": Case(KEEPER, 200),
     "POST /stores/recipes/new": Case(KEEPER, 422),
     "GET /stores/recipes/{recipe_id}": Case(SIGNED_IN, 200),
     "GET /instruments": Case(SIGNED_IN, 200),
+    "GET /instruments/list.csv": Case(SIGNED_IN, 200),
     "GET /instruments/new": Case(KEEPER, 200),
     "POST /instruments/new": Case(KEEPER, 422, None, {"kind": "teapot"}),
     "GET /instruments/{instrument_id}": Case(SIGNED_IN, 200),
     "GET /instruments/{instrument_id}/calibrations/new": Case(KEEPER, 200),
     "POST /instruments/{instrument_id}/calibrations/new": Case(KEEPER, 422),
+    "GET /lots": Case(SIGNED_IN, 200),
+    "GET /lots/list.csv": Case(SIGNED_IN, 200),
     "GET /lots/new": Case(ANALYST, 200),
     "POST /lots/new": Case(ANALYST, 422),
     "GET /lots/{code}": Case(SIGNED_IN, 200, "/lots/{lot}"),
@@ -119,6 +137,7 @@ PAGES: dict[str, Case] = {
     "POST /hold": Case(HOLDERS, 404, None, HOLD),
     "POST /release": Case(RELEASERS, 404, None, HOLD),
     "GET /trail": Case(SIGNED_IN, 200),
+    "GET /trail/list.csv": Case(SIGNED_IN, 200),
     "GET /people": Case(STEWARD, 200),
     "POST /people/new": Case(STEWARD, 422, None, PERSON),
     "POST /people/{person_id}/roles": Case(
@@ -196,6 +215,36 @@ API: dict[str, Case] = {
         },
     ),
     "GET /api/standard-lots/{standard_lot_id}": Case(SIGNED_IN, 200),
+    "POST /api/standard-lots/{standard_lot_id}/opened": Case(
+        LOGGERS, 404, f"/api/standard-lots/{NOBODY}/opened", {"day": "2026-05-01"}
+    ),
+    "POST /api/standard-lots/{standard_lot_id}/dryings": Case(
+        LOGGERS, 404, f"/api/standard-lots/{NOBODY}/dryings", {"ended_at": "2026-05-01T10:00"}
+    ),
+    "POST /api/standard-lots/{standard_lot_id}/uses": Case(
+        LOGGERS, 404, f"/api/standard-lots/{NOBODY}/uses", {"mass_g": "1", "says": "x"}
+    ),
+    "POST /api/standard-lots/{standard_lot_id}/counts": Case(
+        LOGGERS, 404, f"/api/standard-lots/{NOBODY}/counts", {"mass_g": "1"}
+    ),
+    "POST /api/standard-lots/{standard_lot_id}/retests": Case(
+        KEEPER,
+        404,
+        f"/api/standard-lots/{NOBODY}/retests",
+        {"done_on": "2026-05-01", "next_on": "2027-05-01", "says": "unchanged"},
+    ),
+    "POST /api/standard-lots/{standard_lot_id}/strike": Case(
+        LOGGERS, 404, f"/api/standard-lots/{NOBODY}/strike", {"line_id": NOBODY, **REASON}
+    ),
+    "POST /api/standard-lots/{standard_lot_id}/certificate": Case(
+        KEEPER,
+        404,
+        f"/api/standard-lots/{NOBODY}/certificate",
+        {"file_name": "a.pdf", "content_base64": "JVBERi0="},
+    ),
+    "GET /api/files/{file_id}": Case(SIGNED_IN, 200),
+    "GET /api/planner": Case(SIGNED_IN, 200),
+    "GET /api/lots": Case(SIGNED_IN, 200),
     "POST /api/recipes": Case(KEEPER, 422, None, {"name": "", "document": {}}),
     "GET /api/recipes/{recipe_id}": Case(SIGNED_IN, 200),
     "GET /api/instruments": Case(SIGNED_IN, 200),
@@ -252,6 +301,8 @@ def things(shared_web: Any) -> dict[str, str]:
     bottle = shared_web.demo.bottles_in_force[0]
     card = reader.get(f"/api/bottles/{bottle}").json()
     stores = reader.get("/api/stores").json()
+    standard_lot = stores["standard_lots"][0]["id"]
+    kept = reader.get(f"/api/standard-lots/{standard_lot}").json()["file"]
     lots = [one["id"] for one in shared_web.client("imke").get("/api/sheets").json()["lots"]]
     return {
         "code": bottle,
@@ -259,7 +310,8 @@ def things(shared_web: Any) -> dict[str, str]:
         "number": card["certificate"]["number"],
         "sheet_id": shared_web.demo.waiting_sheet_id,
         "open_sheet_id": shared_web.demo.sent_back_sheet_id,
-        "standard_lot_id": stores["standard_lots"][0]["id"],
+        "standard_lot_id": standard_lot,
+        "file_id": kept["url"].removeprefix("/files/"),
         "recipe_id": stores["recipes"][0]["id"],
         "instrument_id": reader.get("/api/instruments").json()["instruments"][0]["id"],
     }

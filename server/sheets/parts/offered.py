@@ -7,7 +7,7 @@ from urllib.parse import urlencode
 
 from sqlalchemy.orm import Session
 
-from server.lab.in_use import judge
+from server.lab.in_use import flag_of, judge
 from server.lab.lot_log import done_words, drying_of, last_drying
 from server.lab.recipe import RecipeDocument
 from server.lab.rig import rig_of
@@ -21,7 +21,11 @@ from server.lab.sheet_facts import (
 )
 from server.lab.slots import replicate_rows, sheet_rows
 from server.lab.states import IN_DATE
-from server.records.queries.list_stores import ListedInstrument, listed_instruments
+from server.records.queries.list_stores import (
+    CHECK_SPAN,
+    ListedInstrument,
+    listed_instruments,
+)
 from server.records.queries.load_standard_lots import standard_lot_facts
 from server.sheets.bench import Choice
 from server.sheets.parts.telling import last_day_words, moment_words, quantity_words
@@ -58,7 +62,7 @@ class Offered:
     ) -> None:
         self._recipe, self._now, self._zone = recipe, now, zone
         self._picked = picked or {}
-        self._instruments = listed_instruments(session)
+        self._instruments = listed_instruments(session, since=now - CHECK_SPAN)
         self._lots = {one.id: one for one in standard_lot_facts(session, substance=recipe.standard)}
         self.standard_lots = _usable_first(self._standard_lot(one) for one in self._lots.values())
 
@@ -128,7 +132,8 @@ class Offered:
         about = (row.document.get("type"), row.document.get("location"))
         due = f"calibrated until {last_day_words(fact.due_at, self._zone)}"
         says = ", ".join(part for part in (*about, due) if part)
-        return Choice(row.id, row.name, says, self._refused(fact, "calibration"))
+        refused, flag = self._refused(fact, "calibration"), flag_of(fact, at=self._now)
+        return Choice(row.id, row.name, says, refused, flag)
 
     def _refused(self, thing: StandardLotFact | InstrumentFact, what: str) -> str | None:
         state, says = judge(

@@ -87,6 +87,7 @@ def _thing(facts: SheetFacts, one: InUse) -> RestsOn:
         state=one.state,
         override=override,
         url=_url(one.kind, one.thing_id),
+        flag=one.flag,
     )
 
 

@@ -18,6 +18,7 @@ def read_begin(form: Typed) -> BeginSheet:
         burette_id=form.text("burette_id"),
         thermometer_id=form.text("thermometer_id") or None,
         room_id=form.text("room_id") or None,
+        probe_id=form.text("probe_id") or None,
         override_reason=form.text("override_reason") or None,
     )
 

@@ -52,11 +52,10 @@ function unsettled(reading) {
   };
 }
 
-/** Where usual bounds are stated, `low` and `high` are what is possible at all. */
+/** `low` and `high` are what is possible at all, the usual bounds what is asked about. */
 function unusual(row, reading) {
-  const firm = stated(row.usual_low) || stated(row.usual_high);
   return (
-    outside(row, reading, [row.low, row.high], firm ? [AGAIN] : [AGAIN, ANYWAY]) ??
+    outside(row, reading, [row.low, row.high], [AGAIN]) ??
     outside(row, reading, [row.usual_low, row.usual_high], [AGAIN, ANYWAY])
   );
 }
