@@ -11,16 +11,11 @@ from server.demo import cast, stores
 from server.demo.cast import BASHIR, IMKE, JONAS, OTTILIE, STEWARD, Member
 from server.demo.hands import Hands, minutes
 from server.demo.simulated import Line, Truth, replicate_lines, sheet_lines
+from server.demo.workshop import Workshop
 from server.lab.validity import local_day
 from server.procedures.bench import BeginSheet
 from server.procedures.countersign import SendBack, send_back_sheet
 from server.procedures.holds import HoldThing, hold_thing
-from server.procedures.instruments import (
-    RecordCalibration,
-    RegisterInstrument,
-    record_calibration,
-    register_instrument,
-)
 from server.procedures.laboratory import SetUpLaboratory, set_up_laboratory
 from server.procedures.lots import (
     FillBottles,
@@ -93,7 +88,7 @@ class _Story:
 
     def __init__(self, hands: Hands, now: datetime) -> None:
         self._hands, self._now = hands, now
-        self._instruments: dict[str, str] = {}
+        self._workshop = Workshop(hands, now)
         self._standards: dict[str, str] = {}
         self._recipes: dict[str, str] = {}
         self._lots: dict[str, str] = {}
@@ -133,8 +128,7 @@ class _Story:
     def stock(self) -> None:
         """Let the keeper register instruments, standard lots and recipes."""
         at = self._before(119)
-        for tool in cast.TOOLS:
-            self._instruments[tool.name] = self._register(tool, at)
+        self._workshop.stock(at)
         for substance, stated in cast.STANDARD_LOTS.items():
             command = ReceiveStandardLot(
                 substance=substance,
@@ -152,14 +146,21 @@ class _Story:
 
     def parts(self) -> list[tuple[str, Callable[[], None]]]:
         """Return the parts of the story with what to say before each."""
+        shop = self._workshop
         return [
+            ("Check weighings …", partial(shop.check_balance, range(110, 62, -6))),
             ("An acid …", self._acid),
+            ("More check weighings …", partial(shop.check_balance, range(57, 41, -5))),
             ("A lye that lapsed …", self._lapsed_lye),
+            ("A crumb on the pan …", shop.find_a_crumb),
             ("The acid again; its next check is due …", self._acid_again),
+            ("Check weighings once more …", partial(shop.check_balance, range(22, 12, -3))),
             ("A lye in force …", self._lye_in_force),
             ("A sheet sent back …", self._sent_back),
+            ("A probe in its buffers …", shop.calibrate_probe),
             ("A lye that waits for a second person …", self._waiting),
             ("A sheet open half-way …", self._open),
+            ("The probe once more …", shop.check_probe),
         ]
 
     def _acid(self) -> None:
@@ -262,11 +263,12 @@ class _Story:
             lot_code=self._lots[key],
             recipe_id=self._recipes["NaOH" if standard == "KHP" else "HCl"],
             standard_lot_id=self._standards[standard],
-            balance_id=self._instruments[cast.BALANCE.name],
-            burette_id=self._instruments[cast.BURETTE.name],
-            thermometer_id=self._instruments[cast.THERMOMETER.name],
-            room_id=self._instruments[cast.ROOM.name],
+            balance_id=self._workshop.ids[cast.BALANCE.name],
+            burette_id=self._workshop.ids[cast.BURETTE.name],
+            thermometer_id=self._workshop.ids[cast.THERMOMETER.name],
+            room_id=self._workshop.ids[cast.ROOM.name],
         )
+        self._workshop.check_balance([days])
         return self._hands.begin(command, member, self._before(days))
 
     def _dry(self, member: Member, days: float) -> None:
@@ -322,21 +324,6 @@ class _Story:
         facts = self._hands.transactions.read(lambda session: load_sheet_facts(session, sheet))
         command = SendBack(sheet, facts.revision, remark)
         self._hands.do(send_back_sheet, command, OTTILIE, self._before(days))
-
-    def _register(self, tool: cast.Tool, at: datetime) -> str:
-        command = RegisterInstrument(kind=tool.kind, name=tool.name, **tool.identity)
-        instrument_id = self._hands.do(register_instrument, command, JONAS, at)
-        calibration = RecordCalibration(
-            instrument_id=instrument_id,
-            certificate_number=tool.certificate_number,
-            issuer=tool.issuer,
-            done_on=self._day(tool.done_days_ago),
-            due_on=self._day(-tool.due_in_days),
-            due_basis="12 months, own plan" if tool.due_in_days > 90 else "6 months, own plan",
-            document=dict(tool.document),
-        )
-        self._hands.do(record_calibration, calibration, JONAS, at)
-        return instrument_id
 
     def _before(self, days: float) -> datetime:
         return self._now - timedelta(days=days)

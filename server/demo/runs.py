@@ -1,23 +1,12 @@
-"""What the demo laboratory's keeper calibrated himself, reading by reading. All of it is invented."""
+"""What the demo laboratory calibrated itself, reading by reading. All of it is invented."""
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 from types import MappingProxyType
 from typing import Any
 
 from server.demo.cast import Tool
 
 _AIR = {"temperature": "21.2", "pressure": "1008.6", "humidity": "47"}
-
-
-@dataclass(frozen=True, slots=True)
-class OwnRun:
-    """An instrument that is calibrated here, and the run as typed; due so many days from now."""
-
-    tool: Tool
-    run: Mapping[str, Any]
-    due_in_days: int
-    due_basis: str
 
 
 def _weighings(keys: Sequence[str], rows: Sequence[str]) -> list[dict[str, str]]:
@@ -48,7 +37,7 @@ BURETTE_RUN: Mapping[str, Any] = MappingProxyType(
         ),
     }
 )  # fmt: skip
-_PIPETTE_RUN: Mapping[str, Any] = MappingProxyType(
+PIPETTE_RUN: Mapping[str, Any] = MappingProxyType(
     {
         "kind": "pipette",
         "nominal": "10",
@@ -68,39 +57,42 @@ _PIPETTE_RUN: Mapping[str, Any] = MappingProxyType(
         ),
     }
 )  # fmt: skip
-PIPETTE = OwnRun(
-    Tool(
-        "pipette",
-        "Pipette V-10",
-        {
-            "maker": "Glashafen Works (invented)",
-            "type": "single mark, 10 mL, class A",
-            "serial": "GH-10-552",
-            "location": "Bench 2",
-            "capacity": "10",
-            "software": "not applicable: glass",
-            "adjustments": "not applicable: a mark on glass is not adjusted",
-        },
-        "", "", 119, 246, {},
-    ),
-    _PIPETTE_RUN,
+PIPETTE = Tool(
+    "pipette",
+    "Pipette V-10",
+    {
+        "maker": "Glashafen Works (invented)",
+        "type": "single mark, 10 mL, class A",
+        "serial": "GH-10-552",
+        "location": "Bench 2",
+        "capacity": "10",
+        "software": "not applicable: glass",
+        "adjustments": "not applicable: a mark on glass is not adjusted",
+    },
+    "TB-G-0094",
+    "own gravimetric calibration (ISO 4787)",
+    119,
     246,
-    "12 months, own plan",
-)  # fmt: skip
-PROBE = OwnRun(
-    Tool(
-        "probe",
-        "Probe E-3",
-        {
-            "maker": "Kvist Instruments (invented)",
-            "type": "combined glass electrode",
-            "serial": "KV-E-3310",
-            "location": "Bench 1",
-            "software": "not applicable: no electronics of its own",
-            "references": "buffers of the set, bottles opened this month",
-        },
-        "", "", 1, 6, {},
-    ),
+    {},
+)
+PROBE = Tool(
+    "probe",
+    "Probe E-3",
+    {
+        "maker": "Kvist Instruments (invented)",
+        "type": "combined glass electrode",
+        "serial": "KV-E-3310",
+        "location": "Bench 1",
+        "software": "not applicable: no electronics of its own",
+        "references": "buffers of the set, bottles opened this month",
+    },
+    "",
+    "own calibration in buffers",
+    2,
+    5,
+    {},
+)
+PROBE_RUN: Mapping[str, Any] = MappingProxyType(
     {
         "set": "JIS Z 8802:2011",
         "buffers": [
@@ -112,10 +104,8 @@ PROBE = OwnRun(
             "reading": {"unit": "mV", "half_width": "0.3", "shape": "rectangular"},
             "temperature": {"unit": "Cel", "U": "0.2", "k": "2"},
         },
-    },
-    6,
-    "weekly, own plan",
-)  # fmt: skip
+    }
+)
 FLASK = Tool(
     "flask",
     "Flask F-1000",
@@ -128,8 +118,12 @@ FLASK = Tool(
         "software": "not applicable: glass",
         "adjustments": "not applicable: a mark on glass is not adjusted",
     },
-    "", "", 119, 246, {},
-)  # fmt: skip
+    "",
+    "",
+    119,
+    246,
+    {},
+)
 #: The daily check of the balance: ten first readings, then how far later ones lie off, in 0.1 mg.
 CHECK_WEIGHT = "100 g, W-3"
 FIRST_READINGS = (

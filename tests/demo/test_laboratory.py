@@ -7,8 +7,9 @@ import pytest
 from sqlalchemy import select
 
 from server.credentials.passwords import verify_password
-from server.demo import cast
+from server.demo import cast, runs
 from server.demo.laboratory import fill_demo
+from server.lab.actor import Actor
 from server.lab.refusal import NotAllowed
 from server.lab.signing import signature_holds
 from server.lab.states import may_be_used
@@ -19,9 +20,11 @@ from server.records.tables.bench import Certificate, Sheet
 from server.records.tables.people import Person
 from server.records.tables.trail import TrailRow
 from server.records.transaction import Transactions
+from server.sheets.instruments_page import open_calibration, open_instruments
 from server.sheets.look_up import look_up
 
 NOW = datetime(2026, 5, 4, 8, 30, tzinfo=UTC)
+READER = Actor("nobody", "Nobody", "N", frozenset({"reader"}), "Europe/Berlin")
 # no sheet is countersigned by who has a part in it, and nobody else works here
 CAST = {one.printed_name for one in cast.MEMBERS}
 
@@ -102,7 +105,10 @@ def test_demo_trail_holds_and_tells_every_kind_of_act(demo):
         "recorded a calibration", "received a standard lot", "wrote a recipe", "made up a lot",
         "filled a bottle", "used up a bottle", "held a bottle", "began a bench sheet",
         "wrote entries", "corrected entries", "handed in a bench sheet", "sent back a bench sheet",
-        "countersigned", "issued a certificate",
+        "countersigned", "issued a certificate", "opened a standard lot", "dried a standard lot",
+        "used a standard lot", "struck a line of a log through", "calibrated an instrument",
+        "let a class tolerance serve", "set limits of a check", "wrote a check weighing",
+        "wrote a buffer check",
     } == acts  # fmt: skip
 
 
@@ -130,12 +136,26 @@ def test_demo_shows_a_correction_a_replicate_left_out_and_a_replaced_certificate
     assert any(one["replaces"] for one in documents)
 
 
+def test_demo_burette_is_calibrated_by_a_run_of_its_own_that_holds(demo):
+    page = demo.transactions.read(lambda session: open_instruments(session, actor=READER, now=NOW))
+    burette = next(one for one in page.instruments if one.name == cast.BURETTE.name)
+    found = demo.transactions.read(
+        lambda session: open_calibration(session, burette.id, 1, actor=READER, now=NOW)
+    )
+    assert found.run.verdict == "holds"
+    assert len(found.run.rows) == len(runs.BURETTE_RUN["weighings"]) == 15
+    assert [one.name for one in found.run.used] == ["Balance B-2", "Thermometer T-7",
+                                                    "Room monitor R-1"]  # fmt: skip
+    assert [row[0] for row in found.calibration.table.rows] == ["0", "5", "10", "15", "20", "25"]
+    assert all(line.flag == "" for line in page.instruments)
+
+
 def test_demo_names_nobody_but_its_invented_cast(demo):
     assert {one.printed_name for one in rows(demo, Person)} == CAST
     assert {row.person_name for row in rows(demo, TrailRow)} <= CAST
-    for tool in cast.TOOLS:
+    for tool in (*cast.TOOLS, runs.PIPETTE, runs.FLASK, runs.PROBE):
         assert "invented" in tool.identity["maker"]
-        assert "invented" in tool.issuer or tool.issuer.startswith("own ")
+        assert "invented" in tool.issuer or tool.issuer.startswith("own ") or not tool.issuer
     assert all("invented" in lot["issuer"] for lot in cast.STANDARD_LOTS.values())
 
 

@@ -8,7 +8,7 @@ from server.records.queries.load_sheet import load_sheet_facts
 from server.records.tables.bench import Entry, Evaluation, Sheet
 from server.sheets.countersigning import open_countersign
 from server.sheets.instruments_page import open_instrument
-from server.sheets.stores_page import open_standard_lot
+from server.sheets.standard_lot_page import open_standard_lot
 
 
 @pytest.fixture

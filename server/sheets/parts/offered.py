@@ -132,8 +132,8 @@ class Offered:
         about = (row.document.get("type"), row.document.get("location"))
         due = f"calibrated until {last_day_words(fact.due_at, self._zone)}"
         says = ", ".join(part for part in (*about, due) if part)
-        refused, flag = self._refused(fact, "calibration"), flag_of(fact, at=self._now)
-        return Choice(row.id, row.name, says, refused, flag)
+        flag = flag_of(fact, at=self._now)
+        return Choice(row.id, row.name, says, self._refused(fact, "calibration"), flag)
 
     def _refused(self, thing: StandardLotFact | InstrumentFact, what: str) -> str | None:
         state, says = judge(
