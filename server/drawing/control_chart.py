@@ -112,7 +112,7 @@ def _says(points: Sequence[CheckPoint], limits: Limits) -> str:
     looked = [one.label for one in points if one.verdict == "look"]
     last = points[-1]
     says = (
-        f"{limits.name}: {len(points)} checks from {points[0].label} to {last.label}; warning ± "
+        f"{limits.name}: {_counted(points)}; warning ± "
         f"{limits.warning:g} {limits.unit}, action ± {limits.action:g} {limits.unit}. "
         f"The last is {last.off:+.6g} {limits.unit} off."
     )
@@ -121,3 +121,9 @@ def _says(points: Sequence[CheckPoint], limits: Limits) -> str:
     if failed:
         says += f" Failed: {', '.join(failed)}."
     return says
+
+
+def _counted(points: Sequence[CheckPoint]) -> str:
+    if len(points) == 1:
+        return f"one check, {points[0].label}"
+    return f"{len(points)} checks from {points[0].label} to {points[-1].label}"

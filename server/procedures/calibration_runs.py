@@ -126,14 +126,18 @@ def state_class(session: Session, command: StateClass, *, actor: Actor, now: dat
     given = {"nominal": command.nominal, "division": command.division}
     nominal = number_at(given, "nominal", "", example="10", low="0.0001", high="10000")
     division = optional_number(given, "division", "", example="0.05", low="0")
-    document = class_statement(
-        ware,
-        nominal,
-        grade=command.grade or None,
-        division=division,
-        glass_expansion=command.glass_expansion or None,
-        shape=command.shape,
-    )
+    try:
+        document = class_statement(
+            ware,
+            nominal,
+            grade=command.grade or None,
+            division=division,
+            glass_expansion=command.glass_expansion or None,
+            shape=command.shape,
+        )
+    except Unacceptable as problem:
+        field = {"class": "grade", "kind": "ware"}.get(problem.field or "", problem.field)
+        raise Unacceptable(problem.says, field=field, example=problem.example) from problem
     grade = f"class {command.grade}" if command.grade else "type tolerance"
     papers = Papers(
         certificate_number=f"{grade}, {_plain(nominal)} mL",

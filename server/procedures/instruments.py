@@ -28,6 +28,7 @@ from server.records.tables.stores import Instrument
 
 _MOST_TEXT = 200
 _MOST_DESCRIBED = 500
+_LONG = frozenset({"verification", "adjustments", "acceptance", "references", "software"})
 _DECIMALS = ("", "0", "1", "2", "3", "4", "5", "6")
 
 
@@ -184,7 +185,10 @@ def record_calibration(
 
 
 def _described(texts: Mapping[str, str]) -> dict[str, str]:
-    found = {key: read_text(text, key, most=_MOST_DESCRIBED) for key, text in texts.items()}
+    found = {
+        key: read_text(text, key, most=_MOST_DESCRIBED if key in _LONG else _MOST_TEXT)
+        for key, text in texts.items()
+    }
     for key, text in found.items():
         check_described(text, key)
     return found

@@ -15,7 +15,9 @@ from server.sheets.bench_sheet import open_bench_sheet
 from server.sheets.countersigning import open_countersign
 from server.sheets.instruments_page import open_instrument, open_instruments
 from server.sheets.lot_page import open_lot
+from server.sheets.lots_page import open_lots
 from server.sheets.people import open_people
+from server.sheets.planner_page import PlanAsked, open_planner
 from server.sheets.queue import open_queue
 from server.sheets.shelf_page import open_shelf
 from server.sheets.standard_lot_page import open_standard_lot
@@ -87,6 +89,8 @@ def test_lists_take_the_same_statements_for_one_row_and_for_three(demo, grown) -
         "instruments": (open_instruments, (), {"who": "jonas"}),
         "instrument": (open_instrument, (keys["instrument"],), {"who": "jonas"}),
         "lot": (open_lot, (keys["lot"],), {"who": "jonas"}),
+        "lots": (open_lots, (), {"who": "jonas", "state": ""}),
+        "planner": (open_planner, (PlanAsked(),), {"who": "jonas"}),
         "people": (open_people, (), {"who": "marisol"}),
     }
     for name, (opened, given, more) in pages.items():

@@ -55,6 +55,8 @@ CALIBRATION = {
     "due_basis": "own plan",
     "document": {},
 }
+NO_INSTRUMENT = f"/api/instruments/{NOBODY}"
+PLAN = {"done_on": "2026-05-01", "due_on": "2027-05-01", "due_basis": "own plan"}
 PERSON = {
     "sign_in_name": "",
     "printed_name": "Nobody Yet",
@@ -126,6 +128,25 @@ PAGES: dict[str, Case] = {
     "GET /instruments/{instrument_id}": Case(SIGNED_IN, 200),
     "GET /instruments/{instrument_id}/calibrations/new": Case(KEEPER, 200),
     "POST /instruments/{instrument_id}/calibrations/new": Case(KEEPER, 422),
+    "GET /instruments/{instrument_id}/calibrations/{version}": Case(
+        SIGNED_IN, 200, "/instruments/{instrument_id}/calibrations/1"
+    ),
+    "POST /instruments/{instrument_id}/identity": Case(KEEPER, 422),
+    "POST /instruments/{instrument_id}/limits": Case(KEEPER, 422),
+    "POST /instruments/{instrument_id}/checks": Case(LOGGERS, 422),
+    "POST /instruments/{instrument_id}/strike": Case(LOGGERS, 404),
+    "GET /instruments/{instrument_id}/class/new": Case(
+        KEEPER, 200, "/instruments/{ware_id}/class/new"
+    ),
+    "POST /instruments/{instrument_id}/class/new": Case(
+        KEEPER, 422, "/instruments/{ware_id}/class/new"
+    ),
+    "GET /instruments/{instrument_id}/runs/new": Case(KEEPER, 200),
+    "POST /instruments/{instrument_id}/runs/new": Case(KEEPER, 422, None, {"do": "record"}),
+    "GET /instruments/{instrument_id}/imports/new": Case(KEEPER, 200),
+    "POST /instruments/{instrument_id}/imports/new": Case(KEEPER, 422),
+    "GET /instruments/{instrument_id}/imports/{file_id}": Case(KEEPER, 200),
+    "POST /instruments/{instrument_id}/imports/{file_id}": Case(KEEPER, 422),
     "GET /lots": Case(SIGNED_IN, 200),
     "GET /lots/list.csv": Case(SIGNED_IN, 200),
     "GET /lots/new": Case(ANALYST, 200),
@@ -258,6 +279,41 @@ API: dict[str, Case] = {
     "POST /api/instruments/{instrument_id}/calibrations": Case(
         KEEPER, 404, f"/api/instruments/{NOBODY}/calibrations", CALIBRATION
     ),
+    "GET /api/instruments/{instrument_id}/calibrations/{version}": Case(
+        SIGNED_IN, 200, "/api/instruments/{instrument_id}/calibrations/1"
+    ),
+    "POST /api/instruments/{instrument_id}/identity": Case(
+        KEEPER,
+        404,
+        f"{NO_INSTRUMENT}/identity",
+        {"described": {"location": "x"}, "seen": {}, **REASON},
+    ),
+    "POST /api/instruments/{instrument_id}/runs": Case(
+        KEEPER, 404, f"{NO_INSTRUMENT}/runs", {"run": {}, **PLAN}
+    ),
+    "POST /api/instruments/{instrument_id}/runs/preview": Case(KEEPER, 200, None, {"run": {}}),
+    "POST /api/instruments/{instrument_id}/class": Case(
+        KEEPER, 404, f"{NO_INSTRUMENT}/class", {"nominal": "10", **PLAN}
+    ),
+    "POST /api/instruments/{instrument_id}/imports": Case(
+        KEEPER,
+        422,
+        None,
+        {"file_name": "a.csv", "content_base64": "PCFET0NUWVBFIHg+"},
+    ),
+    "GET /api/instruments/{instrument_id}/imports/{file_id}": Case(KEEPER, 200),
+    "POST /api/instruments/{instrument_id}/limits": Case(
+        KEEPER, 404, f"{NO_INSTRUMENT}/limits", {"document": {}}
+    ),
+    "POST /api/instruments/{instrument_id}/checks": Case(
+        LOGGERS, 404, f"{NO_INSTRUMENT}/checks", {"reading": "100.0"}
+    ),
+    "POST /api/instruments/{instrument_id}/drops": Case(
+        LOGGERS, 404, f"{NO_INSTRUMENT}/drops", {"drops": 20, "run": {}}
+    ),
+    "POST /api/instruments/{instrument_id}/log/{line_id}/strike": Case(
+        LOGGERS, 404, f"{NO_INSTRUMENT}/log/{NOBODY}/strike", REASON
+    ),
     "GET /api/trail": Case(SIGNED_IN, 200),
     "GET /api/people": Case(STEWARD, 200),
     "POST /api/people": Case(STEWARD, 422, None, PERSON),
@@ -303,6 +359,7 @@ def things(shared_web: Any) -> dict[str, str]:
     stores = reader.get("/api/stores").json()
     standard_lot = stores["standard_lots"][0]["id"]
     kept = reader.get(f"/api/standard-lots/{standard_lot}").json()["file"]
+    instruments = reader.get("/api/instruments").json()["instruments"]
     lots = [one["id"] for one in shared_web.client("imke").get("/api/sheets").json()["lots"]]
     return {
         "code": bottle,
@@ -313,7 +370,8 @@ def things(shared_web: Any) -> dict[str, str]:
         "standard_lot_id": standard_lot,
         "file_id": kept["url"].removeprefix("/files/"),
         "recipe_id": stores["recipes"][0]["id"],
-        "instrument_id": reader.get("/api/instruments").json()["instruments"][0]["id"],
+        "instrument_id": instruments[0]["id"],
+        "ware_id": next(one["id"] for one in instruments if one["kind"] == "pipette"),
     }
 
 

@@ -2,12 +2,14 @@
 
 import json
 from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import replace
 from datetime import datetime
 from typing import Any
 
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
+from server.lab.calibration.check_log import CHARTS
 from server.lab.canonical import digest
 from server.lab.ink import WrittenEntry
 from server.lab.recipe import read_recipe
@@ -110,7 +112,7 @@ class _Loaded:
             lot=_lot(self.lots[sheet.lot_id], self.people, pulled=sheet.lot_id in self.pulled),
             recipe=RecipeFact(recipe.id, recipe.name, recipe.version, read_recipe(recipe.document)),
             standard_lot=self._standard_lot(sheet),
-            instruments=tuple(self.instruments[one] for one in used if one),
+            instruments=tuple(_as_of(self.instruments[one], sheet) for one in used if one),
             overrides=tuple(_override(one, self.people) for one in sheet.overrides),
             begun_by=self.people[sheet.begun_by],
             begun_at=sheet.begun_at,
@@ -187,6 +189,13 @@ def _instruments(
         )
         for row, calibration in rows
     }
+
+
+def _as_of(one: InstrumentFact, sheet: Sheet) -> InstrumentFact:
+    """Return an instrument with the checks that a sheet may look at, whatever else was loaded."""
+    since = sheet.begun_at - CHECK_SPAN
+    log = tuple(line for line in one.log if line.at >= since or line.what in CHARTS)
+    return replace(one, log=log)
 
 
 def _lot(row: Lot, people: Mapping[str, PersonFact], *, pulled: bool) -> LotFact:

@@ -7,7 +7,7 @@ from urllib.parse import urlencode
 from fastapi import APIRouter, Path, Query, Response
 
 from server.intake.calibration_file import Asked, read_calibration_file
-from server.lab.refusal import Refusal, Unacceptable
+from server.lab.refusal import NotAllowed, Refusal, Unacceptable
 from server.procedures.calibration_files import HandOver, hand_over
 from server.procedures.calibration_runs import record_run, state_class
 from server.procedures.instruments import record_calibration
@@ -74,10 +74,17 @@ def calibration(
     return show(visit, _ONE, open_calibration, instrument_id, version)
 
 
+def _open_for_class(session: Any, instrument_id: str, **who: Any) -> Any:
+    page = _open_for_calibration(session, instrument_id, **who)
+    if not page.has_class:
+        raise NotAllowed(f"A {page.kind} has no class tolerance: calibrate it.")
+    return page
+
+
 @router.get("/instruments/{instrument_id}/class/new")
 def class_form(visit: AtDesk, instrument_id: str) -> Response:
     """Show the form by which a class tolerance serves."""
-    return show(visit, _CLASS, _open_for_calibration, instrument_id)
+    return show(visit, _CLASS, _open_for_class, instrument_id)
 
 
 @router.post("/instruments/{instrument_id}/class/new")
@@ -88,7 +95,7 @@ def serve_class(post: Posted, instrument_id: str) -> Response:
         post.act(state_class, read_class(post.form, instrument_id))
         return f"/instruments/{instrument_id}"
 
-    return post.answer(work, again=Again(_CLASS, _open_for_calibration, (instrument_id,)))
+    return post.answer(work, again=Again(_CLASS, _open_for_class, (instrument_id,)))
 
 
 @router.get("/instruments/{instrument_id}/runs/new")

@@ -29,7 +29,7 @@ def planner(visit: AtDesk, asked: Asked) -> Response:
     try:
         return _shown(visit, asked)
     except Unacceptable as refusal:
-        typed = {name: getattr(asked, name) for name in _NUMBERS}
+        typed = {name: text for name in _NUMBERS if (text := getattr(asked, name))}
         plain = PlanAsked(
             **{
                 name: "" if name in _NUMBERS else getattr(asked, name)

@@ -1,0 +1,298 @@
+"""Comparing end-point methods on one lot: precision, trueness, and whether it matters."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from itertools import combinations
+from math import sqrt
+from typing import Literal
+
+from server.statistics.groups import (
+    Difference,
+    GroupProblem,
+    TestResult,
+    brown_forsythe,
+    holm_adjusted,
+    paired_difference,
+    paired_spread,
+    t_quantile,
+    t_test,
+    two_one_sided,
+    variance_ratio,
+    welch_anova,
+    welch_difference,
+)
+from server.statistics.spread import Summary, summarize
+
+_LEVEL = 0.05
+USUAL_MARGIN_PERCENT = 0.1
+_FEW = 3
+
+Equality = Literal["equal within the margin", "different", "not decided"]
+
+
+@dataclass(frozen=True, slots=True)
+class MethodValues:
+    """The values of one method, in the unit of the concentration, replicate by replicate.
+
+    ``u_systematic`` is the method's own part that its replicates share and the reference does not.
+    """
+
+    method: str
+    values: tuple[float, ...]
+    u_systematic: float = 0.0
+
+
+@dataclass(frozen=True, slots=True)
+class Reference:
+    """A stated value to be true to, with the part of its u that the methods do not share."""
+
+    value: float
+    u_unshared: float
+    name: str = "the stated value"
+
+
+@dataclass(frozen=True, slots=True)
+class Pair:
+    """Two methods side by side: difference in percent of their mean, its 95 % interval, verdict.
+
+    ``p`` is Holm-adjusted; ``p_equal`` that of the two one-sided tests against the margin.
+    """
+
+    first: str
+    second: str
+    difference_percent: float
+    ci95_percent: tuple[float, float]
+    p: float
+    p_equal: float
+    equality: Equality
+
+
+@dataclass(frozen=True, slots=True)
+class Trueness:
+    """A method against the reference: difference in percent and E_n (beyond 1: not true)."""
+
+    method: str
+    difference_percent: float
+    En: float
+
+
+@dataclass(frozen=True, slots=True)
+class Comparison:
+    """Methods compared: a summary of each, tests, pairs, and three plain sentences.
+
+    ``spread`` are the tests of equal scatter, ``means`` the test of equal means of more than two
+    unpaired methods. ``proposed`` is never taken by itself: a person chooses.
+    """
+
+    methods: tuple[str, ...]
+    summaries: tuple[Summary, ...]
+    paired: bool
+    margin_percent: float
+    spread: tuple[TestResult, ...]
+    means: TestResult | None
+    pairs: tuple[Pair, ...]
+    trueness: tuple[Trueness, ...]
+    precision_says: str
+    trueness_says: str
+    matters_says: str
+    proposed: str
+
+
+def compare_methods(
+    groups: Sequence[MethodValues],
+    *,
+    paired: bool,
+    margin_percent: float = USUAL_MARGIN_PERCENT,
+    reference: Reference | None = None,
+) -> Comparison:
+    """Return a comparison of two or more methods.
+
+    ``paired``: the values come from the same curves or flasks, in the same order.
+    ``margin_percent`` is the difference that does not matter in this laboratory.
+
+    Raises:
+        GroupProblem: fewer than two methods, fewer than two values, unequally many where paired,
+            or a margin that is not above zero.
+    """
+    if len(groups) < 2:
+        raise GroupProblem("A comparison needs at least two methods.")
+    if not margin_percent > 0:
+        raise GroupProblem("The margin must be above zero.")
+    for one in groups:
+        if len(one.values) < 2:
+            raise GroupProblem(f"The method “{one.method}” has fewer than two values.")
+    if paired and len({len(one.values) for one in groups}) > 1:
+        raise GroupProblem("Methods from the same curves must have equally many values.")
+    summaries = tuple(summarize(one.values) for one in groups)
+    pairs = _pairs(groups, summaries, paired=paired, margin_percent=margin_percent)
+    spread = _spread(groups, paired=paired)
+    true = tuple(
+        _trueness(one, summary, reference)
+        for one, summary in zip(groups, summaries, strict=True)
+        if reference is not None
+    )
+    precise = _most_precise(groups, summaries)
+    return Comparison(
+        methods=tuple(one.method for one in groups),
+        summaries=summaries,
+        paired=paired,
+        margin_percent=margin_percent,
+        spread=spread,
+        means=_means(groups, paired=paired),
+        pairs=pairs,
+        trueness=true,
+        precision_says=_precision_words(groups, summaries, spread),
+        trueness_says=_trueness_words(true, reference),
+        matters_says=_matters_words(pairs, margin_percent),
+        proposed=_proposed(precise, true, summaries, groups),
+    )
+
+
+def _pairs(
+    groups: Sequence[MethodValues],
+    summaries: Sequence[Summary],
+    *,
+    paired: bool,
+    margin_percent: float,
+) -> tuple[Pair, ...]:
+    between = paired_difference if paired else welch_difference
+    indices = list(combinations(range(len(groups)), 2))
+    apart = [between(groups[a].values, groups[b].values) for a, b in indices]
+    adjusted = holm_adjusted([t_test(one).p for one in apart])
+    made = []
+    for (a, b), difference, p in zip(indices, apart, adjusted, strict=True):
+        per = 100 / abs((summaries[a].mean + summaries[b].mean) / 2)
+        margin = margin_percent / per
+        half = t_quantile(0.975, difference.dof) * difference.u if difference.u else 0.0
+        p_equal = two_one_sided(difference, margin).p
+        made.append(
+            Pair(
+                groups[a].method,
+                groups[b].method,
+                per * difference.value,
+                (per * (difference.value - half), per * (difference.value + half)),
+                p,
+                p_equal,
+                _equality(difference, margin, p, p_equal),
+            )
+        )
+    return tuple(made)
+
+
+def _equality(difference: Difference, margin: float, p: float, p_equal: float) -> Equality:
+    if p_equal < _LEVEL:
+        return "equal within the margin"
+    if p < _LEVEL and abs(difference.value) > margin:
+        return "different"
+    return "not decided"
+
+
+def _spread(groups: Sequence[MethodValues], *, paired: bool) -> tuple[TestResult, ...]:
+    values = [one.values for one in groups]
+    tests = []
+    try:
+        if paired:
+            tests = [paired_spread(a, b) for a, b in combinations(values, 2)]
+        else:
+            tests.append(brown_forsythe(values))
+            if len(values) == 2:
+                tests.append(variance_ratio(*values))
+    except GroupProblem:
+        return tuple(tests)
+    return tuple(tests)
+
+
+def _means(groups: Sequence[MethodValues], *, paired: bool) -> TestResult | None:
+    if paired or len(groups) == 2:
+        return None
+    try:
+        return welch_anova([one.values for one in groups])
+    except GroupProblem:
+        return None
+
+
+def _trueness(one: MethodValues, summary: Summary, reference: Reference | None) -> Trueness:
+    if reference is None:
+        raise GroupProblem("There is no reference to be true to.")
+    scatter = (summary.s or 0.0) / sqrt(summary.n)
+    u = sqrt(scatter**2 + one.u_systematic**2 + reference.u_unshared**2)
+    apart = summary.mean - reference.value
+    En = abs(apart) / (2 * u) if u else float("inf") if apart else 0.0
+    return Trueness(one.method, 100 * apart / abs(reference.value), En)
+
+
+def _most_precise(groups: Sequence[MethodValues], summaries: Sequence[Summary]) -> str:
+    order = zip(groups, summaries, strict=True)
+    return min(order, key=lambda pair: pair[1].s or 0.0)[0].method
+
+
+def _precision_words(
+    groups: Sequence[MethodValues], summaries: Sequence[Summary], spread: Sequence[TestResult]
+) -> str:
+    ordered = sorted(
+        (
+            (summary.rsd_percent or 0.0, one.method)
+            for one, summary in zip(groups, summaries, strict=True)
+        )
+    )
+    (least, best), (most, worst) = ordered[0], ordered[-1]
+    few = min(summary.n for summary in summaries) <= _FEW
+    weak = " With so few values such a test sees only large differences." if few else ""
+    said = f"“{best}” scatters least ({least:.3f} %), “{worst}” most ({most:.3f} %)"
+    if not spread:
+        return f"{said}; too few values to test whether that is chance."
+    # Brown-Forsythe stands first; of many pairs the smallest p counts, times their number
+    pairs = [one.p for one in spread if one.name == "Pitman-Morgan"]
+    p = min(1.0, min(pairs) * len(pairs)) if pairs else spread[0].p
+    if p < _LEVEL:
+        return f"{said}; that is more than chance (p {p:.3f}).{weak}"
+    return f"{said}; chance alone may make that difference (p {p:.2f}).{weak}"
+
+
+def _trueness_words(true: Sequence[Trueness], reference: Reference | None) -> str:
+    if reference is None or not true:
+        return "No reference value was given, so which method is the truer cannot be said."
+    nearest = min(true, key=lambda one: abs(one.difference_percent))
+    off = [one for one in true if one.En > 1]
+    said = (
+        f"“{nearest.method}” lies nearest to {reference.name} ({nearest.difference_percent:+.3f} %)"
+    )
+    if not off:
+        return f"{said}; all methods agree with it within their uncertainty."
+    names = ", ".join(f"“{one.method}” ({one.difference_percent:+.3f} %)" for one in off)
+    return f"{said}; beyond their uncertainty lie {names}."
+
+
+def _matters_words(pairs: Sequence[Pair], margin_percent: float) -> str:
+    different = [one for one in pairs if one.equality == "different"]
+    open_ = [one for one in pairs if one.equality == "not decided"]
+    if different:
+        worst = max(different, key=lambda one: abs(one.difference_percent))
+        return (
+            f"It matters: “{worst.first}” and “{worst.second}” differ by "
+            f"{abs(worst.difference_percent):.3f} %, more than this laboratory's "
+            f"{margin_percent:g} %."
+        )
+    if open_:
+        worst = max(open_, key=lambda one: max(map(abs, one.ci95_percent)))
+        low, high = worst.ci95_percent
+        return (
+            f"Not decided at this laboratory's {margin_percent:g} %: “{worst.first}” less "
+            f"“{worst.second}” lies between {low:+.3f} and {high:+.3f} %. More replicates would "
+            "tell."
+        )
+    return f"It does not matter: all methods agree within this laboratory's {margin_percent:g} %."
+
+
+def _proposed(
+    precise: str,
+    true: Sequence[Trueness],
+    summaries: Sequence[Summary],
+    groups: Sequence[MethodValues],
+) -> str:
+    """Return the most precise of the methods that are true to the reference, if one was given."""
+    holding = {one.method for one in true if one.En <= 1}
+    if not holding or precise in holding:
+        return precise
+    ordered = sorted(zip(groups, summaries, strict=True), key=lambda pair: pair[1].s or 0.0)
+    return next(one.method for one, _ in ordered if one.method in holding)
