@@ -13,11 +13,11 @@ from fastapi import FastAPI
 from server.demo.laboratory import DemoSummary, fill_demo
 from server.files import find_folder
 from server.lab.codes import new_code
-from server.records.database import open_database
+from server.records.database import DatabaseProblem, open_database
 from server.records.migrating import migrate
 from server.records.queries.loading import there_is_a_laboratory
 from server.records.transaction import Transactions
-from server.settings import Settings, SettingsProblem
+from server.settings import DATABASE_VARIABLE, Settings, SettingsProblem
 from server.web.parts import Parts
 from server.web.static_files import StaticFiles
 from server.web.templating import Templating
@@ -71,7 +71,10 @@ def serve(settings: Settings, *, demo: bool) -> int:
     if settings.keeps_file:
         _make_folder(settings.data)
     listener = _listener(settings)
-    database = open_database(settings.database_url)
+    try:
+        database = open_database(settings.database_url)
+    except DatabaseProblem as problem:
+        raise SettingsProblem(f"{problem} ({DATABASE_VARIABLE} or --data)") from problem
     report = migrate(database)
     if report.before != report.after:
         _say(f"The database was brought from {report.before or 'empty'} to {report.after}.")

@@ -11,6 +11,7 @@ from pathlib import Path
 from typing import Any
 
 from server.settings import (
+    DATABASE_VARIABLE,
     DEFAULT_HOST,
     DEFAULT_PORT,
     Settings,
@@ -220,14 +221,27 @@ def _release() -> str:
         return "Titrant Ledger"
 
 
+def _open(settings: Settings) -> Any:
+    """Return the database of the settings.
+
+    Raises:
+        SettingsProblem: it cannot be opened; the sentence names the setting.
+    """
+    from server.records.database import DatabaseProblem, open_database  # noqa: PLC0415 - waits
+
+    try:
+        return open_database(settings.database_url)
+    except DatabaseProblem as problem:
+        raise SettingsProblem(f"{problem} ({DATABASE_VARIABLE} or --data)") from problem
+
+
 def _migrate(given: argparse.Namespace, _: Verbs) -> int:
-    from server.records.database import open_database  # noqa: PLC0415 - the database waits
     from server.records.migrating import migrate  # noqa: PLC0415 - the same
 
     settings = read_settings(os.environ, data=given.data)
     if settings.keeps_file:
         given.data.mkdir(parents=True, exist_ok=True)
-    database = open_database(settings.database_url)
+    database = _open(settings)
     try:
         report = migrate(database)
     finally:
@@ -240,11 +254,10 @@ def _migrate(given: argparse.Namespace, _: Verbs) -> int:
 
 
 def _trail_check(given: argparse.Namespace, _: Verbs) -> int:
-    from server.records.database import open_database  # noqa: PLC0415 - the database waits
     from server.records.transaction import Transactions  # noqa: PLC0415 - the same
     from server.upkeep.trail_check import check_trail  # noqa: PLC0415 - the same
 
-    transactions = Transactions(open_database(_settings(given).database_url))
+    transactions = Transactions(_open(_settings(given)))
     try:
         found = check_trail(transactions)
     finally:

@@ -7,25 +7,25 @@ from server.curves.points import Floats
 _REACH = 2
 """Neighbours looked at on each side."""
 _LIMIT = 12.0
-"""How many times the usual scatter a reading must stand off to be called thrown off."""
+"""How many times the scatter a reading must stand off to be called thrown off."""
 _CLEAR = {"pH": 0.15, "mV": 9.0}
 """No reading nearer than this is called thrown off, whatever the scatter."""
 
 
-def thrown_off(y: Floats, *, kind: str) -> list[int]:
+def thrown_off(V: Floats, y: Floats, *, kind: str) -> list[int]:
     """Return the indices of readings that stand far off the median of their neighbours.
 
     On a curve that only rises or only falls a reading is the median of itself and its neighbours
     however steep it is, so that the end point's jump is never mistaken for a bubble. The worst is
     taken first and the rest judged again without it. At most one reading in eight is taken.
     """
+    limit = max(_LIMIT * scatter_of(V, y), _CLEAR[kind])
     keep = np.arange(y.size)
     gone: list[int] = []
     for _ in range(y.size // 8):
         off = np.abs(_off_the_median(y[keep]))
-        scatter = 1.4826 * float(np.median(off[off > 0])) if np.any(off > 0) else 0.0
         worst = int(np.argmax(off))
-        if off[worst] <= max(_LIMIT * scatter, _CLEAR[kind]):
+        if off[worst] <= limit:
             break
         gone.append(int(keep[worst]))
         keep = np.delete(keep, worst)
@@ -47,14 +47,29 @@ def _off_the_median(y: Floats) -> Floats:
 def scatter_of(V: Floats, y: Floats) -> float:
     """Return the standard deviation of readings about a smooth curve, in the unit of the readings.
 
-    From each reading's distance to the straight line through its neighbours, by the median, so
-    that the jump and a few bubbles do not count.
+    From each reading's distance to the straight line and to the cubic through its neighbours,
+    whichever is smaller, by the median, so that the jump and a few bubbles do not count.
     """
-    span = V[2:] - V[:-2]
-    usable = span > 0
-    share = (V[1:-1][usable] - V[:-2][usable]) / span[usable]
-    off = y[1:-1][usable] - (1 - share) * y[:-2][usable] - share * y[2:][usable]
-    spread = np.sqrt(1 + share**2 + (1 - share) ** 2)
-    if off.size == 0:
+    return min(_about(V, y, 1), _about(V, y, 2))
+
+
+def _about(V: Floats, y: Floats, reach: int) -> float:
+    """Return the scatter about the polynomial through ``reach`` neighbours on each side."""
+    size = V.size - 2 * reach
+    starts = [at for at in range(2 * reach + 1) if at != reach]
+    places = [V[at : at + size] for at in starts]
+    middle = V[reach : reach + size]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        shares = np.array(
+            [
+                np.prod([(middle - o) / (p - o) for o in places if o is not p], axis=0)
+                for p in places
+            ]
+        )
+    readings = np.array([y[at : at + size] for at in starts])
+    off = y[reach : reach + size] - (shares * readings).sum(axis=0)
+    spread = np.sqrt(1 + np.square(shares).sum(axis=0))
+    usable = np.isfinite(spread)
+    if not usable.any():
         return 0.0
-    return 1.4826 * float(np.median(np.abs(off / spread)))
+    return 1.4826 * float(np.median(np.abs(off[usable] / spread[usable])))

@@ -15,10 +15,10 @@ _STEEP = 1 / 6
 
 _WIDEST_HALF = 8
 """The second derivative is smoothed over at most twice this many points and one."""
-_MAY = 2.0
-"""A segment may be the steepest if its slope comes within twice the difference's scatter."""
 _QUIET = 0.25
 """The scatter may move the crossing by this fraction of the distance it is interpolated over."""
+_MAY = 2.0
+"""A segment may be the steepest if its slope comes within twice the difference's scatter."""
 
 
 def difference_columns(V: Floats, y: Floats) -> tuple[Floats, Floats, Floats, Floats]:
@@ -55,14 +55,22 @@ def steepest_segment(clean: CleanCurve, jump: int) -> EndPoint:
 
 
 def _likely_steepest(clean: CleanCurve, jump: int) -> tuple[int, int]:
-    """Return the first and last segment of the run that may be the steepest for the scatter."""
+    """Return the first and last segment of the jump that may be the steepest for the scatter."""
     slope = slopes(clean.V, clean.y)
     noise = 2**0.5 * clean.scatter / np.diff(clean.V)
     may = slope + _MAY * np.hypot(noise, noise[jump]) >= slope[jump]
+    first, last = _broad_part(slope, jump)
+    likely = first + np.flatnonzero(may[first : last + 1])
+    return int(likely.min()), int(likely.max())
+
+
+def _broad_part(slope: Floats, jump: int) -> tuple[int, int]:
+    """Return the run of segments around a jump whose slope, of three together, is half of its."""
+    three = np.convolve(slope, np.full(3, 1 / 3), mode="same")
     low = high = jump
-    while low > 0 and may[low - 1]:
+    while low > 0 and three[low - 1] >= three[jump] / 2:
         low -= 1
-    while high < slope.size - 1 and may[high + 1]:
+    while high < slope.size - 1 and three[high + 1] >= three[jump] / 2:
         high += 1
     return low, high
 
@@ -77,19 +85,14 @@ def second_derivative(clean: CleanCurve, jump: int) -> EndPoint:
         CannotTell: the steepest slope stands at the end of the points.
     """
     _refuse_the_ends(clean.V, jump)
-    found = None
-    for half in range(1, _WIDEST_HALF + 1):
-        crossing = _zero_crossing(clean, jump, half)
-        if crossing is None:
-            break
-        found = crossing
-        if crossing.noise_mL <= crossing.apart_mL * _QUIET:
-            break
+    found = _zero_crossing(clean, jump, 1)
+    if found is None or found.noise_mL > _QUIET * found.apart_mL:
+        first, last = _broad_part(slopes(clean.V, clean.y), jump)
+        # as many neighbours as the jump itself has, and no more: others would blur it
+        half = min((last - first + 1) // 2, _WIDEST_HALF)
+        found = (_zero_crossing(clean, jump, half) if half > 1 else None) or found
     if found is None:
         raise CannotTell("The second derivative does not change sign at the jump.")
-    step = float(clean.V[jump + 1] - clean.V[jump])
-    # a crossing inside one step is known to about a quarter of it; a wider one has its scatter
-    u = float(np.hypot(found.noise_mL, step / 4))
     says = (
         "Where the second derivative changes sign, by interpolation "
         f"between {found.low_mL:.3f} and {found.low_mL + found.apart_mL:.3f} mL; "
@@ -98,7 +101,7 @@ def second_derivative(clean: CleanCurve, jump: int) -> EndPoint:
     if found.half > 1:
         says += f" Smoothed over {2 * found.half + 1} points because of the scatter."
     used = clean.at[found.first : found.last + 1]
-    return EndPoint("second derivative", found.volume_mL, u, used, says)
+    return EndPoint("second derivative", found.volume_mL, found.u_mL, used, says)
 
 
 @dataclass(frozen=True, slots=True)
@@ -112,6 +115,11 @@ class _Crossing:
     half: int
     first: int
     last: int
+
+    @property
+    def u_mL(self) -> float:
+        """Standard uncertainty: the scatter, and a quarter of the distance interpolated over."""
+        return float(np.hypot(self.noise_mL, self.apart_mL / 4))
 
 
 def _curvature(clean: CleanCurve, at: int, half: int) -> tuple[float, float, float]:

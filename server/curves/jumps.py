@@ -11,7 +11,8 @@ _SMALLER_JUMP = 0.08
 """An earlier jump counts from this fraction of the steepest slope on."""
 _VALLEY = 0.45
 """Between two jumps and beyond each, the slope falls below this fraction of the smaller one."""
-_CLEAR_OF_SCATTER = 6.0
+_CLEAR_OF_SCATTER, _MAIN_CLEAR = 6.0, 2.0
+"""How many standard deviations a slope must stand out: that of another jump, of the steepest."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -37,7 +38,7 @@ class CleanCurve:
 def cleaned(curve: TitrationCurve) -> CleanCurve:
     """Return the curve without bubbles and repeated volumes, turned so that it rises."""
     y = curve.rising
-    bubbles = thrown_off(y, kind=curve.kind)
+    bubbles = thrown_off(curve.V, y, kind=curve.kind)
     keep = np.ones(curve.size, dtype=bool)
     keep[bubbles] = False
     at = np.flatnonzero(keep)
@@ -61,9 +62,7 @@ def jumps(clean: CleanCurve) -> list[int]:
     slope = slopes(V, y)
     noise = clean.scatter * np.sqrt(2) / np.diff(V)
     clear = slope - _CLEAR_OF_SCATTER * noise
-    main = int(np.argmax(np.where(clear > 0, slope, -np.inf)))
-    if clear[main] <= 0:
-        main = int(np.argmax(slope))
+    main = int(np.argmax(slope - _MAIN_CLEAR * noise))
     earlier = _next_jump(slope[:main][::-1], clear[:main][::-1], main_slope=float(slope[main]))
     later = _next_jump(slope[main + 1 :], clear[main + 1 :], main_slope=float(slope[main]))
     found = [main]
@@ -81,7 +80,7 @@ def _next_jump(slope: Floats, clear: Floats, *, main_slope: float) -> int | None
     """
     if slope.size < 5:
         return None
-    valley = np.minimum.accumulate(slope)
+    valley = np.minimum.accumulate(np.maximum(slope, 0.0))
     stands = (slope >= _SMALLER_JUMP * main_slope) & (valley <= _VALLEY * slope) & (clear > valley)
     if not stands.any():
         return None

@@ -156,6 +156,7 @@ def materials_on(
         room=_fragment(instruments.get(ROOM)),
         repeatability=_without(recipe.repeatability, "source"),
         blank_kind=recipe.blank,
+        blank=_blank(instruments.get(BURETTE)),
         excess=recipe.excess,
         replicates_wanted=recipe.replicates,
         weighing=recipe.weighing,
@@ -226,6 +227,18 @@ def _missing_rows(facts: SheetFacts, already: tuple[Missing, ...]) -> tuple[Miss
 
 def _where(replicate: int) -> str:
     return f"Replicate {replicate}" if replicate else "Sheet"
+
+
+def _blank(burette: InstrumentFact | None) -> dict[str, str] | None:
+    """Return what is known of one blank: the difference of two readings of the burette.
+
+    Each lies within half a step; the difference of two rectangular errors is triangular.
+    """
+    step = _step(burette)
+    if step is None:
+        return None
+    source = "one blank, two readings of the burette"
+    return {"half_width": f"{step:.10f}".rstrip("0"), "shape": "triangular", "source": source}
 
 
 def _standard(lot: StandardLotFact | None) -> dict[str, Any] | None:

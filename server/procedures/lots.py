@@ -8,6 +8,8 @@ from uuid import uuid4
 
 from sqlalchemy.orm import Session
 
+from server.chemistry.formula import FormulaProblem, atoms_of
+from server.chemistry.substances import SUBSTANCES
 from server.lab.actor import Actor
 from server.lab.codes import new_code, read_code
 from server.lab.free_text import read_reason, read_text
@@ -95,7 +97,7 @@ def make_up_lot(
 ) -> str:
     """Keep a lot that was made up; return its code."""
     actor.need(Act.MAKE_UP)
-    titrant = check_name(command.titrant, "titrant", example="NaOH")
+    titrant = _titrant(command.titrant)
     nominal = _positive(command.nominal, "nominal", unit="mol/L", most=30, example="0.1")
     today = local_day(now, actor.zone)
     day = read_day(command.prepared_on, "prepared_on") if command.prepared_on else today
@@ -258,6 +260,18 @@ def _free_code(session: Session, source: Random | None) -> str:
         code = new_code(drawn)
         if not code_is_taken(session, code):
             return code
+
+
+def _titrant(text: str) -> str:
+    """Return a substance that is known here, or one whose formula can be read."""
+    titrant = check_name(text, "titrant", example="NaOH")
+    if titrant not in SUBSTANCES:
+        try:
+            atoms_of(titrant)
+        except FormulaProblem as problem:
+            says = f"titrant: {problem}."
+            raise Unacceptable(says, field="titrant", example="NaOH") from problem
+    return titrant
 
 
 def _positive(text: str, field: str, *, unit: str, most: int, example: str) -> str:

@@ -6,10 +6,15 @@ from pathlib import Path
 from typing import Any
 
 from sqlalchemy import URL, Connection, Engine, create_engine, event, make_url
+from sqlalchemy.exc import ArgumentError, NoSuchModuleError, OperationalError
 
 #: Execution option that makes SQLite take the write lock when a transaction begins.
 IMMEDIATE = "begin_immediate"
 _BUSY_MS = 10_000
+
+
+class DatabaseProblem(ValueError):
+    """A database that cannot be opened, in a sentence."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,8 +45,18 @@ def open_database(url: str) -> Database:
     """Return the database at a URL; ``postgresql://`` uses psycopg.
 
     Raises:
-        ValueError: a database of another kind.
+        DatabaseProblem: no URL, a database of another kind, or one that cannot be reached.
     """
+    try:
+        database = _opened(url)
+        with database.reader.connect():
+            return database
+    except (ArgumentError, OperationalError, NoSuchModuleError) as problem:
+        cause = str(getattr(problem, "orig", None) or problem).strip().splitlines()[0]
+        raise DatabaseProblem(f"The database cannot be opened: {cause}") from problem
+
+
+def _opened(url: str) -> Database:
     parsed = make_url(url)
     backend = parsed.get_backend_name()
     if backend == "sqlite":
@@ -49,7 +64,7 @@ def open_database(url: str) -> Database:
     if backend == "postgresql":
         return _postgresql(parsed.set(drivername="postgresql+psycopg"))
     says = f"The database is SQLite or PostgreSQL, not {backend}."
-    raise ValueError(says)
+    raise DatabaseProblem(says)
 
 
 def _sqlite(url: URL) -> Database:

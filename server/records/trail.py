@@ -1,5 +1,6 @@
 """The trail: append-only rows, each chained to the one before by SHA-256."""
 
+import json
 from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import datetime
@@ -93,6 +94,7 @@ def hash_of(row: TrailRow) -> str:
 def check(session: Session) -> TrailCheck:
     """Return whether every row, the head and the certificates' anchors hold; name the first not."""
     seq, last_hash = 0, GENESIS
+    issued: dict[str, str | None] = {}
     anchors = _anchors(session)
     rows = session.scalars(select(TrailRow).order_by(TrailRow.seq).execution_options(yield_per=500))
     for row in rows:
@@ -100,6 +102,8 @@ def check(session: Session) -> TrailCheck:
         if problem is not None:
             return TrailCheck(False, seq, problem, seq, last_hash)
         seq, last_hash = row.seq, row.hash
+        if row.kind == "certificate":
+            issued[row.thing_id] = json.loads(row.body).get("document_digest")
         for certificate in anchors.pop(seq, []):
             if certificate.trail_hash != last_hash:
                 says = f"Certificate {certificate.number} is anchored to another row {seq}."
@@ -111,6 +115,11 @@ def check(session: Session) -> TrailCheck:
     for certificates in anchors.values():
         says = f"Certificate {certificates[0].number} is anchored to a row that is not there."
         return TrailCheck(False, seq, says, seq, last_hash)
+    for certificate in session.scalars(select(Certificate).order_by(Certificate.number)):
+        made_anew = digest(certificate.document)
+        if not made_anew == certificate.document_digest == issued.get(certificate.id):
+            says = f"Certificate {certificate.number} is not the text that was issued."
+            return TrailCheck(False, seq, says, seq, last_hash)
     return TrailCheck(True, seq, f"The chain holds over {seq} rows.", seq, last_hash)
 
 

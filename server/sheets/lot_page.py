@@ -5,6 +5,7 @@ from datetime import datetime
 
 from sqlalchemy.orm import Session
 
+from server.chemistry.cautions import DEFERRAL
 from server.chemistry.reactions import RATIOS
 from server.chemistry.substances import name_of
 from server.lab.actor import Actor
@@ -27,6 +28,7 @@ from server.sheets.lots import LotPage, MakeUpPage
 from server.sheets.parts.by_code import find_lot
 from server.sheets.parts.doors import may_hold, may_release, need_reader
 from server.sheets.parts.history import history_chart, history_lines
+from server.sheets.parts.roots import caution_views
 from server.sheets.parts.sheet_lines import lot_words, sheet_line
 from server.sheets.parts.shelf_state import (
     bottle_line,
@@ -101,11 +103,12 @@ def open_make_up(session: Session, *, actor: Actor | None, now: datetime) -> Mak
     with_recipe = [one.titrant for one in newest_recipes(session)]
     known = sorted({titrant for titrant, _ in RATIOS})
     day = local_day(now, reader.zone).isoformat()
+    titrants = tuple(dict.fromkeys([*with_recipe, *known]))
     return MakeUpPage(
-        titrants=tuple(
-            (key, f"{key}, {name_of(key)}") for key in dict.fromkeys([*with_recipe, *known])
-        ),
+        titrants=tuple((key, f"{key}, {name_of(key)}") for key in titrants),
         proposed_name=_free_name(day, lot_names_like(session, day)),
+        cautions=caution_views(titrants),
+        deferral=DEFERRAL,
     )
 
 

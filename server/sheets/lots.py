@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from server.sheets.bench import SheetLine
+from server.sheets.bench import CautionView, SheetLine
 from server.sheets.shelf import BottleLine, HistoryLine
 from server.sheets.stores import Fact
 
@@ -37,3 +37,5 @@ class MakeUpPage:
 
     titrants: tuple[tuple[str, str], ...]
     proposed_name: str
+    cautions: tuple[CautionView, ...]
+    deferral: str

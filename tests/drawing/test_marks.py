@@ -1,5 +1,4 @@
 """Marks: a word and a shape for every state, and different shapes for different verdicts."""
-# ruff: noqa: S314 - the XML read here is drawn by the code under test
 
 import re
 from xml.etree import ElementTree as ET

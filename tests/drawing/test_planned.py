@@ -9,8 +9,12 @@ POINTS = [Expected(n, 0.2 + 0.3 / n, chosen=n == 4) for n in range(3, 9)]
 SVG = "{http://www.w3.org/2000/svg}"
 
 
+def parts(text, name):
+    return ET.fromstring(text).iter(f"{SVG}{name}")
+
+
 def dots(text):
-    return ET.fromstring(text).iter(f"{SVG}circle")
+    return parts(text, "circle")
 
 
 def test_expected_uncertainty_falls_from_left_to_right():
@@ -31,9 +35,7 @@ def test_expected_uncertainty_marks_the_number_planned():
 def test_expected_uncertainty_draws_heights_from_zero():
     double = [Expected(3, 0.2, chosen=False), Expected(4, 0.1, chosen=True)]
     text = expected_uncertainty(double)
-    stems = [
-        one for one in ET.fromstring(text).iter(f"{SVG}line") if one.get("class") == "chart-reach"
-    ]
+    stems = [one for one in parts(text, "line") if one.get("class") == "chart-reach"]
     high, low = (float(one.get("y1")) - float(one.get("y2")) for one in stems)
     assert high / low == pytest.approx(2.0, rel=1e-3)  # two decimals of a pixel
 

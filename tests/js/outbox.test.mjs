@@ -36,8 +36,9 @@ function senderOf(store, { fetcher }, person = "Imke Thorvald") {
 test("what waits survives a reload in the order in which it was written", () => {
   const storage = new Storage();
   const store = storeOn(storage);
-  store.keep(entry(2));
-  store.keep(entry(1));
+  assert.equal(store.keep(entry(2)), true);
+  assert.equal(store.keep(entry(1)), true);
+  assert.equal(store.isSafe(), true);
   const reloaded = storeOn(storage);
   assert.deepEqual(reloaded.waiting().map((one) => one.id), ["u-1", "u-2"]);
   assert.equal(reloaded.waiting()[0].text, "18.61");
@@ -83,8 +84,10 @@ test("the device has one name and its count goes on after a reload", () => {
 test("an entry that the browser will not keep is kept while the page is open, and said so", () => {
   const store = storeOn(new Storage(10));
   assert.equal(store.keep(entry(1)), false);
+  assert.equal(store.isSafe(), false);
   assert.deepEqual(store.waiting().map((one) => one.id), ["u-1"]);
   store.drop("u-1");
+  assert.equal(store.isSafe(), true);
   assert.deepEqual(store.all(), []);
 });
 

@@ -27,6 +27,11 @@ test("offline says how many entries wait and that nothing is lost", () => {
   );
 });
 
+test("a browser that stores nothing is told to keep the page open, and is promised nothing", () => {
+  const says = networkSays({ waiting: 1, refused: 0, state: "offline", stored: false });
+  assert.equal(says, "No network: 1 entry waits in this page alone, for this browser stores nothing: keep it open.");
+});
+
 test("signed out says to sign in again", () => {
   assert.match(networkSays({ waiting: 1, refused: 0, state: "signed out" }), /Sign in again to send\.$/);
 });

@@ -156,7 +156,14 @@ def by_hand(lab, calibrations):
             "error_table": READINGS, "glass_expansion": GLASS,
         },
         "temperature": {"value": "20.9", **root(WARMTH, "thermometer", "reading")},
-        "blank": {"value": "0.02", "unit": "mL", "kind": "indicator"},
+        "blank": {
+            "value": "0.02",
+            "unit": "mL",
+            "kind": "indicator",
+            "half_width": "0.01",
+            "shape": "triangular",
+            "source": "one blank, two readings of the burette",
+        },
         "replicates": [
             {"label": "1", "tare_load": "25.1013", "mass": "0.4084",
              "burette": [["0.00", "20.01"]], "temperature": "20.9"},

@@ -245,6 +245,12 @@ def _blank(setting: Setting) -> Iterator[Finding]:
         says = "An indicator blank already holds the visual overshoot: it is counted twice."
     elif stated:
         verdict, says = "holds", f"You took off the {stated}."
+        if record.blank is not None:
+            says += (
+                " It counts without an uncertainty."
+                if record.blank.volume.u == 0
+                else f" Its uncertainty is {record.blank.volume.u:.2g} mL."
+            )
     elif needs := _blank_needed(setting):
         verdict, says = "look", needs
     elif visual:

@@ -19,6 +19,7 @@ DROP_VOLUME = "drop volume"
 CHECK_OF_KIND: Mapping[str, str] = MappingProxyType({BALANCE: CHECK_WEIGHING, PROBE: BUFFER_CHECK})
 CHART_OF_KIND: Mapping[str, str] = MappingProxyType({BALANCE: WEIGHT_CHART, PROBE: BUFFER_CHART})
 CHARTS = tuple(CHART_OF_KIND.values())
+_GRAVITY = {"holds": 0, "look": 1, "fails": 2}
 #: How many readings before one count for its verdict.
 _BEFORE = 2
 
@@ -119,13 +120,20 @@ def judged_checks(
 def last_checked(
     log: Sequence[LogFact], kind: str, *, at: datetime, as_of: datetime | None = None
 ) -> Checked | None:
-    """Return the last check before an instant as the log stood at ``as_of``, or None."""
-    pairs = [one for one in _on_charts(log, kind, as_of=as_of) if one[0].at <= at]
-    if not pairs:
-        return None
-    line, chart = pairs[-1]
-    before = [one for one, other in pairs[:-1] if other.name == chart.name]
-    return judge_line(chart, line, before)
+    """Return the check before an instant that counts, as the log stood at ``as_of``, or None.
+
+    Of each chart the last one counts; where there are several charts, the gravest of them, for a
+    check of one weight does not heal that of another.
+    """
+    by_chart: dict[str, list[tuple[LogFact, Chart]]] = {}
+    for line, chart in _on_charts(log, kind, as_of=as_of):
+        if line.at <= at:
+            by_chart.setdefault(chart.name, []).append((line, chart))
+    last = [
+        judge_line(pairs[-1][1], pairs[-1][0], [line for line, _ in pairs[:-1]])
+        for pairs in by_chart.values()
+    ]
+    return max(last, key=lambda one: (_GRAVITY[one.outcome.verdict], one.line.at), default=None)
 
 
 def _on_charts(

@@ -133,7 +133,16 @@ def _curve_facts(curve: CurveOfErrors) -> list[tuple[str, str]]:
 
 def _water_heads(run: WaterRun) -> tuple[str, ...]:
     at = ("reading, mL",) if run.has_points else ()
-    return (*at, "before, g", "after, g", "net, corrected, g", "water, °C", "Z, mL/g", "V20, mL", "left out")
+    return (
+        *at,
+        "before, g",
+        "after, g",
+        "net, corrected, g",
+        "water, °C",
+        "Z, mL/g",
+        "V20, mL",
+        "left out",
+    )
 
 
 def _water_row(document: Mapping[str, Any], run: WaterRun, one: WeighedRow) -> tuple[str, ...]:

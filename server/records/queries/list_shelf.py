@@ -3,11 +3,13 @@
 import json
 from collections.abc import Iterable
 from dataclasses import dataclass, field
+from datetime import datetime
 from typing import Any
 
 from sqlalchemy import func, or_, select
 from sqlalchemy.orm import InstrumentedAttribute, Session, aliased
 
+from server.lab.canonical import digest
 from server.records.queries.list_holds import StandingHold, standing_holds
 from server.records.tables.bench import Certificate
 from server.records.tables.lots import Bottle, Lot, Pull
@@ -19,6 +21,14 @@ class StandingCertificate:
 
     row: Certificate
     document: dict[str, Any] = field(repr=False)
+
+    @property
+    def holds(self) -> bool:
+        """Whether the text is the one that was issued, and its last instant the one it states."""
+        stated = datetime.fromisoformat(self.document["validity"]["until"])
+        return digest(self.row.document) == self.row.document_digest and (
+            stated == self.row.valid_until
+        )
 
 
 @dataclass(frozen=True, slots=True)

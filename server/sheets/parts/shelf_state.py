@@ -28,10 +28,15 @@ def state_of_lot(lot: LotOnShelf, now: datetime) -> str:
     return lot_state(
         valid_until=certificate.row.valid_until if certificate else None,
         notice_days=certificate.document["validity"]["notice_days"] if certificate else 0,
-        held=lot.hold is not None,
+        held=lot.hold is not None or is_altered(lot),
         pulled=lot.pulled,
         now=now,
     )
+
+
+def is_altered(lot: LotOnShelf) -> bool:
+    """Say whether a lot's standing certificate is not the text that was issued."""
+    return lot.certificate is not None and not lot.certificate.holds
 
 
 def state_of_bottle(one: BottleOnShelf, now: datetime) -> str:
@@ -76,6 +81,11 @@ def nominal_words(nominal: str) -> str:
 
 def why(lot: LotOnShelf, state: str, zone: str, *, thing: str) -> str:
     """Return in a sentence what the state means for a ``thing`` (bottle or lot); no names."""
+    if state == HELD and is_altered(lot):
+        return (
+            "Its certificate does not match what was issued: out of use until the steward has "
+            "looked into it."
+        )
     day, number = "", ""
     if lot.certificate is not None:
         day = last_day_words(lot.certificate.row.valid_until, zone)

@@ -40,6 +40,7 @@ export function readLine(line) {
 
 /** A number like those that this row takes, for the example beside a refusal. */
 export function exampleFor(row) {
+  if (row.unit === "hPa" || row.unit === "%") return row.usual_low ?? (row.unit === "hPa" ? "1008.6" : "47");
   const whole = row.unit === "g" ? "60" : row.unit === "mL" ? "18" : "21";
   const digits = { g: "5450", mL: "6400" }[row.unit] ?? "4000";
   const places = row.decimals ?? 2;

@@ -6,11 +6,13 @@ export function entries(count) {
 }
 
 /** Where the entries are, in one sentence; empty while all of them are on the server. */
-export function networkSays({ waiting, refused, state, detail }) {
+export function networkSays({ waiting, refused, state, detail, stored = true }) {
   const asks = refused > 0 ? `${entries(refused)} not taken: see the row.` : "";
   if (waiting === 0) return asks;
   const wait = waiting === 1 ? "waits" : "wait";
-  const kept = `${entries(waiting)} ${wait} on this tablet, nothing is lost.`;
+  const kept = stored
+    ? `${entries(waiting)} ${wait} on this tablet, nothing is lost.`
+    : `${entries(waiting)} ${wait} in this page alone, for this browser stores nothing: keep it open.`;
   const says = {
     sending: `Sending ${entries(waiting)}.`,
     offline: `No network: ${kept}`,

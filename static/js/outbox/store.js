@@ -40,6 +40,11 @@ export class Store {
     return kept;
   }
 
+  /** Whether all that waits would outlive this page. */
+  isSafe() {
+    return this.loose.size === 0;
+  }
+
   refuse(id, problem) {
     const entry = this.all().find((one) => one.id === id);
     if (entry) this.keep({ ...entry, state: "refused", problem });

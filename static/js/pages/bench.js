@@ -5,7 +5,7 @@ import { COUNTS_AGAIN, keyOf, layOver, nextOf, rowsOf } from "../lib/overlay.js"
 import { press } from "../lib/pad.js";
 import { questionFor } from "../lib/questions.js";
 import { readReason, readTyped, readWords, unitOf } from "../lib/reading.js";
-import { entries } from "../lib/strip.js";
+import { entries, networkSays } from "../lib/strip.js";
 import { Sender } from "../outbox/sender.js";
 import { Store } from "../outbox/store.js";
 import { el } from "../widgets/dom.js";
@@ -97,7 +97,7 @@ function draw({ focus = false } = {}) {
 }
 
 function drawAside() {
-  const network = { waiting: view.waiting, refused: store.refused().length, state: sender.state, detail: sender.detail };
+  const network = { waiting: view.waiting, refused: store.refused().length, state: sender.state, detail: sender.detail, stored: store.isSafe() };
   const onToggle = (open) => (here.stripOpen = open);
   spot("strip").replaceChildren(
     cardOf(sheet.margin, network),
@@ -166,7 +166,7 @@ function taken(newSheet) {
     sheet = newSheet;
     if (store.waiting().length === 0) say("All entries are on the server.");
   } else if (sender.state === "offline") {
-    say(`No network: ${entries(store.waiting().length)} on this tablet, nothing is lost.`);
+    say(networkSays({ waiting: store.waiting().length, refused: 0, state: "offline", stored: store.isSafe() }));
   }
   const before = view.lit && keyOf(view.lit);
   draw();
@@ -187,6 +187,7 @@ const acts = {
     say(`${row.label}: ${row.value ? ["correcting", spoken(row, row.value.text)].filter(Boolean).join(" ") : "next"}.`);
   },
   leave() {
+    if (view.lit?.refused) store.drop(view.lit.refused.id);
     store.draft(here.chosen, "");
     Object.assign(here, { chosen: null, note: null, reason: "" });
     draw({ focus: true });

@@ -135,3 +135,15 @@ def test_flag_tells_a_failed_check_and_a_failing_calibration(line):
     says = flag_of(fact, at=NOW + timedelta(days=2))
     assert "Last check weighing" in says
     assert "do not weigh with this balance" in says
+
+
+def test_check_of_one_weight_does_not_heal_that_of_another(line):
+    heavy, light = (line("check weight", LIMITS | {"name": name}) for name in ("100 g", "20 g"))
+    bad = line("check weighing", {"chart": light.id, "reading": "100.0009"}, day=1)
+    good = line("check weighing", {"chart": heavy.id, "reading": "100.0000"}, day=2)
+    counts = last_checked([heavy, light, bad, good], "balance", at=NOW + timedelta(days=3))
+    assert counts.line is bad
+    healed = line("check weighing", {"chart": light.id, "reading": "100.0000"}, day=3)
+    counts = last_checked([heavy, light, bad, good, healed], "balance", at=NOW + timedelta(days=3))
+    assert counts.outcome.verdict == "holds"
+    assert counts.line is healed
