@@ -50,6 +50,7 @@ def _parser() -> argparse.ArgumentParser:
     verbs = parser.add_subparsers(required=True, metavar="VERB")
     _add_serve(verbs)
     _add_evaluate(verbs)
+    _add_equivalence(verbs)
     selfcheck = verbs.add_parser("selfcheck", help="check the calculations on published examples")
     selfcheck.add_argument("--pdf", type=Path, metavar="FILE", help="write the table as a PDF too")
     selfcheck.set_defaults(do=_selfcheck)
@@ -95,6 +96,16 @@ def _add_evaluate(verbs: Any) -> None:
     )
     evaluating.add_argument("--seed", type=int, default=1, metavar="S")
     evaluating.set_defaults(do=_evaluate)
+
+
+def _add_equivalence(verbs: Any) -> None:
+    curve = verbs.add_parser("equivalence", help="a curve in, every method's volume out")
+    curve.add_argument("file", type=Path, metavar="FILE.csv")
+    curve.add_argument("--system", metavar="NAME", help="khp-naoh, tris-hcl, carbonate-hcl, none")
+    curve.add_argument("--flask-volume-mL", type=float, dest="flask", metavar="V")
+    curve.add_argument("--amount-mmol", type=float, dest="amount", metavar="N")
+    curve.add_argument("--temperature-C", type=float, default=25.0, dest="celsius", metavar="T")
+    curve.set_defaults(do=_equivalence)
 
 
 def _say(*lines: object) -> None:
@@ -144,6 +155,31 @@ def _evaluate(given: argparse.Namespace, _: Verbs) -> int:
     return GOOD
 
 
+def _equivalence(given: argparse.Namespace, _: Verbs) -> int:
+    from server.curves.entrance import equivalence  # noqa: PLC0415 - numpy waits
+    from server.curves.points import CurveProblem  # noqa: PLC0415 - the same
+    from server.intake.curve_workbook import read_curve_file  # noqa: PLC0415 - the same
+    from server.lab.refusal import Unacceptable  # noqa: PLC0415 - the same
+
+    try:
+        points = read_curve_file(given.file.read_bytes()).points()
+        result = equivalence(
+            points,
+            system=given.system,
+            flask_volume_mL=given.flask,
+            amount_mmol=given.amount,
+            temperature_C=given.celsius,
+        )
+    except OSError as problem:
+        return _problem(f"{given.file} cannot be read: {problem.strerror}.", "FILE.csv")
+    except Unacceptable as refusal:
+        return _problem(refusal.says, refusal.field or "FILE.csv", refusal.example)
+    except CurveProblem as problem:
+        return _problem(str(problem), "FILE.csv")
+    _say(json.dumps(result, ensure_ascii=False, indent=2, allow_nan=False))
+    return GOOD
+
+
 def _no_key_twice(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
     found = dict(pairs)
     if len(found) < len(pairs):
@@ -157,7 +193,7 @@ def _problem(detail: str, field: str, example: str | None = None) -> int:
     """Say on stderr, as JSON, why a record cannot be read."""
     problem = {
         "type": "/about#cannot-be-taken",
-        "title": "The record cannot be read",
+        "title": "It cannot be read",
         "status": 422,
         "detail": detail,
         "field": field,

@@ -346,3 +346,33 @@ def test_evaluate_with_too_many_trials_ends_with_2() -> None:
 
     assert done.returncode == 2
     assert json.loads(done.stderr)["field"] == "--monte-carlo"
+
+
+def test_equivalence_of_a_simulated_curve_finds_its_known_volume(tmp_path: Path) -> None:
+    """Simulated by charge balance with Davies activities; the equivalence volume is known."""
+    held = json.loads((RECORDS.parent / "curves" / "simulated.json").read_text(encoding="utf-8"))
+    curve = held.get("curves", held)["khp-manual-burette"]
+    rows = zip(curve["V"], curve["y"], strict=True)
+    path = tmp_path / "curve.csv"
+    path.write_text("mL;pH\n" + "\n".join(f"{v};{y}".replace(".", ",") for v, y in rows))
+
+    done = run(
+        "equivalence", path, "--system", "khp-naoh", "--flask-volume-mL", curve["V0_mL"],
+        "--amount-mmol", curve["n_acid_mmol"],
+    )  # fmt: skip
+
+    assert done.returncode == 0, done.stderr
+    found = json.loads(done.stdout)
+    assert found["format"] == "equivalence/1"
+    fit = next(one for one in found["methods"] if one["method"] == "model fit")
+    assert abs(fit["volume_mL"] - curve["equivalence_mL"]) < 0.002
+
+
+def test_equivalence_of_a_file_that_is_no_curve_ends_with_2(tmp_path: Path) -> None:
+    path = tmp_path / "curve.csv"
+    path.write_text("mL,pH\n0.0,4.0\n")
+
+    done = run("equivalence", path)
+
+    assert done.returncode == 2
+    assert json.loads(done.stderr)["detail"]

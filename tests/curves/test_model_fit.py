@@ -55,7 +55,7 @@ def test_fit_of_a_known_curve_finds_the_equivalence(name, within_percent):
     assert abs(off) / set_["equivalence_mL"] * 100 < within_percent
     assert abs(off) < 2.5 * answer.u_mL
     concentration = found.to_document()["fit"]["effective_mol_L"]
-    assert concentration == pytest.approx(set_["c"] if "c" in set_ else concentration, rel=1.5e-3)
+    assert concentration == pytest.approx(set_.get("c", concentration), rel=1.5e-3)
 
 
 def test_fit_finds_slope_and_offset_of_the_probe():

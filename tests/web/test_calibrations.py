@@ -345,7 +345,7 @@ def test_class_identity_limits_check_and_strike_have_forms(web: Any) -> None:
     assert set(charts) == {"100 g, W-3", "20 g, W-1"}
     check = {"chart": charts["20 g, W-1"], "reading": "20,0009"}
     assert analyst.form(f"/instruments/{balance}/checks", **check).status_code == 303
-    web.clock.at = web.clock.at.replace(hour=9)
+    web.clock.at = web.clock.at.replace(minute=35)
     page = analyst.get(f"/instruments/{balance}").text
     assert "Flagged at the bench" in page
     lot = analyst.get("/api/sheets").json()["lots"][0]["id"]
