@@ -13,6 +13,11 @@ from server.curves.points import Floats
 _SHOWS = 3.5
 """A lag is looked at more closely when the residuals show it by this many u, either way."""
 _CERTAIN = 4.0
+_MISFIT = 2.0
+"""Or when, with exact volumes, the readings stand off by this much more than away from the jump."""
+_MUCH_NEARER = 0.5
+_STARTS = (0.2, 0.5, 0.75)
+"""Shares still to go from which a lag is fitted."""
 _MATTERS = 2e-4
 """A shift of the end point below this fraction of it does not matter."""
 
@@ -53,31 +58,43 @@ def look_for_lag(
         curve=readings - fit.off_pH,
         paces=model.paces,
     )
-    if abs(score.ratio) <= _SHOWS:
+    shows = abs(score.ratio) > _SHOWS
+    if not shows and _off_the_curve(fit) <= _MISFIT * fit.reading_u**2:
         return LagLook(fit, _nothing(model, score), None, 0.0, 0.0)
-    try:
-        lagged = fit_model(
-            fit.balance, V, readings, start_mL=fit.effective_mL, given=replace(given, lag=model)
-        )
-    except FitProblem:
-        return LagLook(fit, _unclear(score), None, 0.0, 0.0)
-    share, u = lagged.value("lag"), float(lagged.covariance[-1, -1]) ** 0.5
-    if share <= _CERTAIN * u or not _better(fit, lagged, model, readings):
-        return LagLook(fit, _unclear(score), None, 0.0, 0.0)
+    lagged = _lagged_fit(fit, V, readings, replace(given, lag=model))
+    if lagged is None or not _better(fit, lagged, model, readings):
+        finding = _unclear(score) if shows else _nothing(model, score)
+        return LagLook(fit, finding, None, 0.0, 0.0)
     return _found(fit, lagged, model, V)
 
 
-def _better(fit: ModelFit, lagged: ModelFit, model: LagModel, readings: Floats) -> bool:
-    """Tell whether the readings lie nearer to the lagged curve than to the one without lag.
+def _lagged_fit(fit: ModelFit, V: Floats, readings: Floats, given: Given) -> ModelFit | None:
+    """Return a fit with a lag, from several beginnings; None where none settles."""
+    for start in _STARTS:
+        lag = None if given.lag is None else replace(given.lag, start=start)
+        try:
+            return fit_model(
+                fit.balance, V, readings, start_mL=fit.effective_mL, given=replace(given, lag=lag)
+            )
+        except FitProblem:
+            continue
+    return None
 
-    Told by the volumes, which a fit without lag has to scatter, and the readings' own distance.
-    """
+
+def _off_the_curve(fit: ModelFit) -> float:
+    """Return the mean square of what readings stand off the curve, none of it put on volumes."""
+    trusted = fit.trust > 0.5
+    return float(np.mean(np.square(fit.off_mL / fit.per_reading)[trusted]))
+
+
+def _better(fit: ModelFit, lagged: ModelFit, model: LagModel, readings: Floats) -> bool:
+    """Tell whether the lag is certain and the readings lie much nearer to the lagged curve."""
     share = lagged.value("lag")
-    curve = model.freed(share) - lagged.off_pH
-    trusted = (fit.trust > 0.5) & (lagged.trust > 0.5)
-    with_lag = np.square(readings - model.lagged(share, curve))[trusted]
-    without = np.square(fit.off_mL / fit.per_reading)[trusted]
-    return float(np.mean(with_lag)) < 0.9 * float(np.mean(without))
+    if share <= _CERTAIN * lagged.u("lag"):
+        return False
+    curve = model.freed(share) - lagged.off_mL / lagged.per_reading
+    with_lag = np.square(readings - model.lagged(share, curve))[lagged.trust > 0.5]
+    return float(np.mean(with_lag)) < _MUCH_NEARER * _off_the_curve(fit)
 
 
 def _nothing(model: LagModel, score: LagScore) -> CurveFinding:
@@ -98,7 +115,7 @@ def _unclear(score: LagScore) -> CurveFinding:
 
 
 def _found(fit: ModelFit, lagged: ModelFit, model: LagModel, V: Floats) -> LagLook:
-    share, u = lagged.value("lag"), float(lagged.covariance[-1, -1]) ** 0.5
+    share, u = lagged.value("lag"), lagged.u("lag")
     constant, u_constant = model.constant(share), model.per_constant(share) * u
     shift = lagged.effective_mL - fit.effective_mL
     at = int(np.searchsorted(V, lagged.effective_mL))
