@@ -62,6 +62,16 @@ class LagModel:
             seen.append(now)
         return np.array(seen)
 
+    def lagged_variance(self, share: float, variance: Floats) -> Floats:
+        """Return the variance of what a probe with this lag reads of independent errors."""
+        now = float(variance[0])
+        seen = [now]
+        to_go = self.shares(share)[1:].tolist()
+        for one, left in zip(variance[1:].tolist(), to_go, strict=True):
+            now = left * left * now + (1 - left) ** 2 * one
+            seen.append(now)
+        return np.array(seen)
+
     def constant(self, share: float) -> float:
         """Return the time constant: in seconds, or in readings where no times were recorded."""
         unit = self.usual_s if self.usual_s is not None else 1.0

@@ -15,7 +15,8 @@ _SHOWS = 3.5
 _CERTAIN = 4.0
 _MISFIT = 2.0
 """Or when, with exact volumes, the readings stand off by this much more than away from the jump."""
-_MUCH_NEARER = 0.5
+_MUCH_MORE_LIKELY = 15.0
+"""Minus twice the difference of the logarithms of the likelihoods."""
 _STARTS = (0.2, 0.5, 0.75)
 """Shares still to go from which a lag is fitted."""
 _MATTERS = 2e-4
@@ -59,10 +60,10 @@ def look_for_lag(
         paces=model.paces,
     )
     shows = abs(score.ratio) > _SHOWS
-    if not shows and _off_the_curve(fit) <= _MISFIT * fit.reading_u**2:
+    if seconds is None and not shows and _off_the_curve(fit) <= _MISFIT * fit.reading_u**2:
         return LagLook(fit, _nothing(model, score), None, 0.0, 0.0)
     lagged = _lagged_fit(fit, V, readings, replace(given, lag=model))
-    if lagged is None or not _better(fit, lagged, model, readings):
+    if lagged is None or not _certain(fit, lagged, model):
         finding = _unclear(score) if shows else _nothing(model, score)
         return LagLook(fit, finding, None, 0.0, 0.0)
     return _found(fit, lagged, model, V)
@@ -87,14 +88,28 @@ def _off_the_curve(fit: ModelFit) -> float:
     return float(np.mean(np.square(fit.off_mL / fit.per_reading)[trusted]))
 
 
-def _better(fit: ModelFit, lagged: ModelFit, model: LagModel, readings: Floats) -> bool:
-    """Tell whether the lag is certain and the readings lie much nearer to the lagged curve."""
+def _certain(fit: ModelFit, lagged: ModelFit, model: LagModel) -> bool:
+    """Tell whether a lag stands clear of its u and makes the readings much more likely."""
     share = lagged.value("lag")
     if share <= _CERTAIN * lagged.u("lag"):
         return False
     curve = model.freed(share) - lagged.off_mL / lagged.per_reading
-    with_lag = np.square(readings - model.lagged(share, curve))[lagged.trust > 0.5]
-    return float(np.mean(with_lag)) < _MUCH_NEARER * _off_the_curve(fit)
+    off = model.readings - model.lagged(share, curve)
+    volumes = model.lagged_variance(share, np.square(lagged.volume_u / lagged.per_reading))
+    # the freed readings scatter more than those read: the lag's own sum of squares, undone
+    reading_u = lagged.reading_u * (1 - share) / float(np.hypot(1, share))
+    trusted = (fit.trust > 0.5) & (lagged.trust > 0.5)
+    without = _unlikeliness(
+        (fit.off_mL / fit.per_reading)[trusted],
+        fit.reading_u**2 + np.square(fit.volume_u / fit.per_reading)[trusted],
+    )
+    with_lag = _unlikeliness(off[trusted], reading_u**2 + volumes[trusted])
+    return without - with_lag > _MUCH_MORE_LIKELY
+
+
+def _unlikeliness(off: Floats, variance: Floats) -> float:
+    """Return minus twice the logarithm of the likelihood, a far-off point counted as 5 u."""
+    return float(np.sum(np.log(variance) + np.minimum(np.square(off) / variance, 25.0)))
 
 
 def _nothing(model: LagModel, score: LagScore) -> CurveFinding:
