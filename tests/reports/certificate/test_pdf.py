@@ -148,7 +148,7 @@ def test_certificate_carries(text, item, says) -> None:
 
 
 def test_certificate_carries_result_change_and_largest_part(laboratory, issued, text) -> None:
-    """Items m of 7.8.2.1 and 7.8.8, and the budget, as the document and its forerunner state them."""
+    """Items m of 7.8.2.1 and 7.8.8, and the budget, as the documents state them."""
     result = issued.document["result"]
     value, U = result["concentration"]["reported"].split(" mol/L")[0].split(" ± ")
     assert f"{value} ± {U} mol/L" in text
