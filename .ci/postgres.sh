@@ -2,7 +2,7 @@
 # TITRANT_LEDGER_TEST_DATABASE_URL, unless that is set already.
 if [ -z "${TITRANT_LEDGER_TEST_DATABASE_URL:-}" ]; then
   pg_bin=$(ls -d /usr/lib/postgresql/*/bin | sort -V | tail -1)
-  pg_home=$(mktemp -d /tmp/ledger-pg.XXXXXX)
+  pg_home=$(mktemp -d -t ledger-pg.XXXXXX)
   pg_port=$((20000 + RANDOM % 20000))
   if [ "$(id -u)" = 0 ]; then
     chown postgres "$pg_home"

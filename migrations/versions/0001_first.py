@@ -43,19 +43,6 @@ RULES = (
         "nobody countersigns the own work",
     ),
     (
-        "signature_by_countersigner",
-        "signature",
-        "INSERT",
-        """
-        NEW.meaning = 'countersigned'
-        AND NOT EXISTS (
-            SELECT 1 FROM person WHERE person.id = NEW.person_id
-            AND person.roles LIKE '%"countersigner"%'
-        )
-        """,
-        "only a countersigner countersigns",
-    ),
-    (
         "signature_no_steward",
         "signature",
         "INSERT",

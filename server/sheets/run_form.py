@@ -63,6 +63,27 @@ def open_run_form(
     """
     reader = need_reader(actor)
     reader.need(Act.KEEP)
+    return _form(session, instrument_id, reader, now)
+
+
+def open_drop_form(
+    session: Session, instrument_id: str, *, actor: Actor | None, now: datetime
+) -> RunForm:
+    """Return the form by which a burette's drops are weighed.
+
+    Raises:
+        NotFound: there is no such instrument.
+        NotSignedIn: a visitor.
+        NotAllowed: somebody who writes no logs, or an instrument that gives no drops.
+    """
+    reader = need_reader(actor)
+    reader.need(Act.LOG)
+    if find_instrument(session, instrument_id).kind != BURETTE:
+        raise NotAllowed("Only a burette gives drops.", field="instrument_id")
+    return _form(session, instrument_id, reader, now)
+
+
+def _form(session: Session, instrument_id: str, reader: Actor, now: datetime) -> RunForm:
     row = find_instrument(session, instrument_id)
     if row.kind not in KINDS:
         says = f"A {row.kind} is calibrated elsewhere: record its certificate."

@@ -29,6 +29,15 @@ def refusal(kind, document):
         ("burette", {"capacity": CAPACITY, "error_table": TABLE}),
         ("thermometer", {"reading": {"unit": "Cel", "U": "0.2", "k": "2"}}),
         (
+            "thermometer",
+            {"reading": {"unit": "Cel", "u": "0.05"}, "error_table": [["-5", "0.1"], ["20", "0"]]},
+        ),
+        ("balance", LINEAR | {"minimum_g": "0.020"}),
+        ("pipette", {"delivery": CAPACITY | {"U": "0.01", "k": "2"}, "glass_expansion": "9.9e-6"}),
+        ("flask", {"volume": CAPACITY | {"u": "0.01"}}),
+        ("probe", {"slope_percent": "98.6", "u_slope_percent": "0.3", "u_offset_mV": "0.5",
+                   "offset_mV": "-4.2"}),
+        (
             "room monitor",
             {
                 "temperature": {"unit": "Cel", "u": "0.2"},
@@ -69,6 +78,17 @@ def test_calibration_empty_table_counts_as_none():
         ("burette", STATED | {"glass_expansion": []}, "document.glass_expansion"),
         ("burette", STATED | {"glass_expansion": "9.9"}, "document.glass_expansion"),
         ("thermometer", {}, "document.reading"),
+        ("balance", LINEAR | {"minimum_g": "0"}, "document.minimum_g"),
+        ("balance", LINEAR | {"minimum_g": 1}, "document.minimum_g"),
+        ("pipette", {}, "document.delivery"),
+        ("pipette", {"delivery": CAPACITY}, "document.delivery"),
+        ("pipette", {"volume": CAPACITY | {"u": "0.01"}}, "document.volume"),
+        ("flask", {"volume": BOUND_ML}, "document.volume.value"),
+        ("flask", {"volume": NEGATIVE | {"u": "0.01"}}, "document.volume.value"),
+        ("probe", {"offset_mV": "1"}, "document.slope_percent"),
+        ("probe", {"slope_percent": "98"}, "document.offset_mV"),
+        ("probe", {"slope_percent": "98", "offset_mV": "x"}, "document.offset_mV"),
+        ("probe", {"slope_percent": "-1", "offset_mV": "1"}, "document.slope_percent"),
         ("room monitor", {"temperature": {"unit": "Cel", "u": "0.2"}}, "document.pressure"),
     ],
 )  # fmt: skip

@@ -1,3 +1,5 @@
+from dataclasses import replace
+
 import pytest
 
 from server.lab.refusal import Unacceptable
@@ -120,3 +122,14 @@ def test_row_at_place_that_the_recipe_does_not_ask_is_refused_by_field(recipe, p
 @pytest.mark.parametrize("place", [(0, "remark", 9), (3, "remark", 1), (20, "burette_end", 9)])
 def test_row_at_place_within_bounds_is_found(recipe, place):
     assert row_at(recipe(), RIG, place).place == place
+
+
+def test_temperature_ends_where_the_thermometers_table_ends(recipe):
+    def ends(table):
+        rig = replace(RIG, thermometer_table=table)
+        row = row_at(recipe(), rig, (0, "temperature", 1))
+        return row.low, row.high
+
+    assert ends(None) == ("0", "40")
+    assert ends(Span("10.0", "30.0")) == ("10.0", "30.0")
+    assert ends(Span("-5", "60")) == ("0", "40")

@@ -5,6 +5,7 @@ import hashlib
 import math
 import re
 import time
+from datetime import timedelta
 from pathlib import Path
 from typing import Any
 from uuid import uuid4
@@ -345,7 +346,7 @@ def test_class_identity_limits_check_and_strike_have_forms(web: Any) -> None:
     assert set(charts) == {"100 g, W-3", "20 g, W-1"}
     check = {"chart": charts["20 g, W-1"], "reading": "20,0009"}
     assert analyst.form(f"/instruments/{balance}/checks", **check).status_code == 303
-    web.clock.at = web.clock.at.replace(minute=35)
+    web.clock.at += timedelta(minutes=5)
     page = analyst.get(f"/instruments/{balance}").text
     assert "Flagged at the bench" in page
     lot = analyst.get("/api/sheets").json()["lots"][0]["id"]
@@ -356,3 +357,26 @@ def test_class_identity_limits_check_and_strike_have_forms(web: Any) -> None:
     page = analyst.get(f"/instruments/{balance}").text
     assert "Flagged at the bench" not in page
     assert "wrong weight on the pan" in page
+
+
+def test_drops_of_a_burette_are_weighed_in_a_form(web: Any) -> None:
+    analyst = web.client("imke")
+    burette = ids(analyst)["Piston burette P-25"]
+    url = f"/instruments/{burette}/drops/new"
+    typed = {
+        "drops": "20", "glass_expansion": "9.9e-6", "water": "degassed", "air_temperature": "21.3",
+        "air_pressure": "1003.1", "air_humidity": "46", "balance_id": ids(analyst)["Balance B-2"],
+        "w0_before": "20.0000", "w0_after": "20.9971", "w0_water": "20.0",
+        "w2_before": "21.0000", "w2_after": "20.9000", "w2_water": "20.0",
+    }  # fmt: skip
+    refused = analyst.form(url, **typed)
+    assert refused.status_code == 422
+    assert "Weighing 3: 20.9000 g is not more than before" in refused.text
+    assert 'value="20.9971"' in refused.text
+    assert analyst.form(url, **typed | {"w2_after": "21.9973"}).status_code == 303
+    page = analyst.get(f"/instruments/{burette}").text
+    said = re.search(r"one drop ([\d.]+) mL, u = ([\d.]+) mL, 2 weighings of 20 drops", page)
+    assert said is not None
+    assert float(said[1]) == pytest.approx(
+        (v20("20.0000", "20.9971", "20.0") + v20("21.0000", "21.9973", "20.0")) / 40, rel=1e-4
+    )

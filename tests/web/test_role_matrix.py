@@ -143,6 +143,12 @@ PAGES: dict[str, Case] = {
     ),
     "GET /instruments/{instrument_id}/runs/new": Case(KEEPER, 200),
     "POST /instruments/{instrument_id}/runs/new": Case(KEEPER, 422, None, {"do": "record"}),
+    "GET /instruments/{instrument_id}/drops/new": Case(
+        LOGGERS, 200, "/instruments/{burette_id}/drops/new"
+    ),
+    "POST /instruments/{instrument_id}/drops/new": Case(
+        LOGGERS, 422, "/instruments/{burette_id}/drops/new"
+    ),
     "GET /instruments/{instrument_id}/imports/new": Case(KEEPER, 200),
     "POST /instruments/{instrument_id}/imports/new": Case(KEEPER, 422),
     "GET /instruments/{instrument_id}/imports/{file_id}": Case(KEEPER, 200),
@@ -371,6 +377,7 @@ def things(shared_web: Any) -> dict[str, str]:
         "file_id": kept["url"].removeprefix("/files/"),
         "recipe_id": stores["recipes"][0]["id"],
         "instrument_id": instruments[0]["id"],
+        "burette_id": next(one["id"] for one in instruments if one["kind"] == "burette"),
         "ware_id": next(one["id"] for one in instruments if one["kind"] == "pipette"),
     }
 

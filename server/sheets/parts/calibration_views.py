@@ -9,6 +9,7 @@ from server.lab.calibration.check import Check
 from server.lab.calibration.told import Told, read_told
 from server.lab.sheet_facts import BALANCE, BURETTE, FLASK, PIPETTE, THERMOMETER
 from server.lab.states import REPLACED, due_state
+from server.metrology.rounding import significant
 from server.records.queries.list_stores import KeptCalibration
 from server.sheets.instruments import CalibrationView, CheckView, ErrorTable, RunView, UsedView
 from server.sheets.parts.kept_files import file_view
@@ -47,6 +48,7 @@ _HEADS = {
     BURETTE: ("reading, mL", "added, mL"),
     THERMOMETER: ("reading, °C", "added, °C"),
 }
+_COMPUTED = ("u", "half_width")
 _UNITS = {BALANCE: "g", BURETTE: "mL", THERMOMETER: "°C"}
 #: Which statement bounds the corrections of a table, by kind.
 _BOUND = {BALANCE: "error_u", BURETTE: "delivery", THERMOMETER: "reading"}
@@ -72,7 +74,7 @@ def calibration_view(
         due_basis=row.due_basis,
         state=state,
         verdict=str(run.get("verdict") or ""),
-        facts=(*stated_facts(kind, row.document), recorded),
+        facts=(*stated_facts(kind, _shortened(row.document) if run else row.document), recorded),
         table=table,
         checks=check_views(run.get("checks") or ()),
         curve=curve_of_run(name, told) if told else curve_of_table(kind, name, row.document),
@@ -150,6 +152,19 @@ def stated_facts(kind: str, document: Mapping[str, Any]) -> list[Fact]:
         elif stated:
             facts.append(Fact(label, f"{stated} {_PLAIN_UNITS.get(key, '')}".strip()))
     return facts
+
+
+def _shortened(document: Mapping[str, Any]) -> dict[str, Any]:
+    """Return what a run states with its computed uncertainties to three digits, to be read."""
+    shown: dict[str, Any] = {}
+    for key, value in document.items():
+        shown[key] = value
+        if isinstance(value, Mapping):
+            short = {k: significant(float(value[k]), 3) for k in _COMPUTED if value.get(k)}
+            shown[key] = {**value, **short}
+    if shown.get("minimum_g"):
+        shown["minimum_g"] = significant(float(shown["minimum_g"]), 3)
+    return shown
 
 
 def error_table(kind: str, document: Mapping[str, Any]) -> ErrorTable | None:

@@ -11,6 +11,7 @@ from server.lab.refusal import Unacceptable
 from server.lab.sheet_facts import BALANCE, PROBE, THERMOMETER
 from server.metrology.tolerances import PISTON_KINDS
 from server.procedures.calibration_runs import RecordRun
+from server.procedures.instrument_log import MeasureDrop
 from server.records.queries.load_used import USED_FIELDS
 from server.web.forms.typed import Typed
 
@@ -138,6 +139,22 @@ def read_record_run(form: Typed, instrument_id: str, run: dict[str, Any]) -> Rec
         room_id=form.text("room_id"),
         reason=form.text("reason"),
     )
+
+
+def read_drop(form: Typed, instrument_id: str) -> tuple[MeasureDrop, TypedRun]:
+    """Return the weighings of a burette's drops, and where each stands in the form."""
+    typed = _ware(form)
+    kept = ("water", "glass_expansion", "air", "weighings")
+    run = {key: value for key, value in typed.document.items() if key in kept}
+    command = MeasureDrop(
+        instrument_id=instrument_id,
+        drops=form.whole("drops", example="20"),
+        run=run,
+        balance_id=form.text("balance_id"),
+        thermometer_id=form.text("thermometer_id"),
+        room_id=form.text("room_id"),
+    )
+    return command, typed
 
 
 def picked_of(form: Typed) -> dict[str, str]:

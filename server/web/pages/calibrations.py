@@ -10,6 +10,7 @@ from server.intake.calibration_file import Asked, read_calibration_file
 from server.lab.refusal import NotAllowed, Refusal, Unacceptable
 from server.procedures.calibration_files import HandOver, hand_over
 from server.procedures.calibration_runs import record_run, state_class
+from server.procedures.instrument_log import measure_drop
 from server.procedures.instruments import record_calibration
 from server.sheets.import_page import (
     ImportPage,
@@ -19,12 +20,13 @@ from server.sheets.import_page import (
     read_original_of,
 )
 from server.sheets.instruments_page import open_calibration, open_instrument
-from server.sheets.run_form import AskedRun, judge_preview, open_run_form
+from server.sheets.run_form import AskedRun, judge_preview, open_drop_form, open_run_form
 from server.sheets.run_form import read_run as read_for_preview
 from server.web.forms.instruments import read_calibration_form, read_class
 from server.web.forms.posts import Again, Post, Posted
 from server.web.forms.runs import (
     picked_of,
+    read_drop,
     read_record_run,
     read_run,
     refusals_of,
@@ -38,6 +40,7 @@ from server.web.visits import AtDesk
 router = APIRouter()
 _CALIBRATION, _CLASS = "instruments/calibration_new.html", "instruments/class_new.html"
 _RUN, _ONE = "instruments/run_new.html", "instruments/calibration.html"
+_DROP = "instruments/drop_new.html"
 #: What the column of versions holds.
 MOST_VERSION = 2**31 - 1
 _HAND_OVER, _CONFIRM = "instruments/import_new.html", "instruments/import_confirm.html"
@@ -162,6 +165,26 @@ def _rows_of(form: Typed | None) -> Callable[[Any], dict[str, Any]]:
         return {"rows": range(count), "preview": None, "volumes": {}}
 
     return rows
+
+
+@router.get("/instruments/{instrument_id}/drops/new")
+def drop_form(visit: AtDesk, instrument_id: str) -> Response:
+    """Show the form by which a burette's drops are weighed."""
+    return show(visit, _DROP, open_drop_form, instrument_id)
+
+
+@router.post("/instruments/{instrument_id}/drops/new")
+def drop(post: Posted, instrument_id: str) -> Response:
+    """Write the volume of a burette's drop in its log."""
+
+    def work() -> str:
+        post.visit.read(open_drop_form, instrument_id)
+        command, typed = read_drop(post.form, instrument_id)
+        with refusals_of(typed):
+            post.act(measure_drop, command)
+        return f"/instruments/{instrument_id}#drop"
+
+    return post.answer(work, again=Again(_DROP, open_drop_form, (instrument_id,)))
 
 
 @router.get("/instruments/{instrument_id}/imports/new")
