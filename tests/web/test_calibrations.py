@@ -344,6 +344,7 @@ def test_class_identity_limits_check_and_strike_have_forms(web: Any) -> None:
     charts = {one["name"]: one["id"] for one in keeper.get(f"/api/instruments/{balance}").json()[
         "charts"]}  # fmt: skip
     assert set(charts) == {"100 g, W-3", "20 g, W-1"}
+    web.clock.at += timedelta(minutes=5)
     check = {"chart": charts["20 g, W-1"], "reading": "20,0009"}
     assert analyst.form(f"/instruments/{balance}/checks", **check).status_code == 303
     web.clock.at += timedelta(minutes=5)
