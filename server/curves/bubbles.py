@@ -59,6 +59,7 @@ def _about(V: Floats, y: Floats, reach: int) -> float:
     starts = [at for at in range(2 * reach + 1) if at != reach]
     places = [V[at : at + size] for at in starts]
     middle = V[reach : reach + size]
+    # two readings at one volume leave no line between them: such places do not count
     with np.errstate(divide="ignore", invalid="ignore"):
         shares = np.array(
             [
@@ -66,10 +67,10 @@ def _about(V: Floats, y: Floats, reach: int) -> float:
                 for p in places
             ]
         )
-    readings = np.array([y[at : at + size] for at in starts])
-    off = y[reach : reach + size] - (shares * readings).sum(axis=0)
-    spread = np.sqrt(1 + np.square(shares).sum(axis=0))
-    usable = np.isfinite(spread)
+        readings = np.array([y[at : at + size] for at in starts])
+        off = y[reach : reach + size] - (shares * readings).sum(axis=0)
+        spread = np.sqrt(1 + np.square(shares).sum(axis=0))
+    usable = np.isfinite(spread) & np.isfinite(off)
     if not usable.any():
         return 0.0
     return 1.4826 * float(np.median(np.abs(off[usable] / spread[usable])))

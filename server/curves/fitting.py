@@ -82,17 +82,33 @@ def fitted(
         goes = "rises" if pH[-1] > pH[0] else "falls"
         says = f"The curve {goes}; that of {system.says} does not. Is it the right system?"
         raise CannotTell(says)
-    balance = ChargeBalance(system, flask)
+    with np.errstate(all="ignore"):
+        # what overflows in a fit that goes astray shows in its end, which is looked at
+        found = _fitted(curve, clean, known, near_mL=near_mL, balance=ChargeBalance(system, flask))
+    if not np.isfinite(found.uncertainty.u_mL) or found.uncertainty.u_mL <= 0:
+        raise FitProblem("The points do not determine the model's parameters.")
+    return found
+
+
+def _fitted(
+    curve: TitrationCurve,
+    clean: CleanCurve,
+    known: Circumstances,
+    *,
+    near_mL: float,
+    balance: ChargeBalance,
+) -> Fitted:
+    pH = in_pH(curve, known)
     given = _given(curve, clean, known)
     try:
         fit = fit_model(balance, curve.V, pH, start_mL=near_mL, given=given)
+        lag = look_for_lag(
+            fit, curve.V, pH, seconds=curve.seconds, thrown_off=clean.bubbles, given=given
+        )
+        others = (("lag of the probe", lag.part_mL),) if lag.part_mL else ()
+        return Fitted(lag.fit, end_point_uncertainty(lag.fit, others=others), lag)
     except np.linalg.LinAlgError as problem:
         raise FitProblem("The points do not determine the model's parameters.") from problem
-    lag = look_for_lag(
-        fit, curve.V, pH, seconds=curve.seconds, thrown_off=clean.bubbles, given=given
-    )
-    others = (("lag of the probe", lag.part_mL),) if lag.part_mL else ()
-    return Fitted(lag.fit, end_point_uncertainty(lag.fit, others=others), lag)
 
 
 def _needed(known: Circumstances) -> tuple[AcidBaseSystem, Flask]:

@@ -21,6 +21,8 @@ _FEWEST = 4
 _NEAR, _FAR = 0.01, 0.5
 """Fractions of the equivalence volume between which points before it are taken."""
 _NEAR_BEYOND = 0.003
+_SMALLEST = 1e-12
+"""Beyond twelve powers of ten no line can be seen."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -110,7 +112,10 @@ def _named(
     if picked.size < _FEWEST:
         says = f"Only {picked.size} points lie on that side; a line needs at least {_FEWEST}."
         raise CannotTell(says)
-    V, G = clean.V[picked], G[picked] / G[picked].max()
+    V, G = clean.V[picked], G[picked]
+    if not G.max() > 0 or G.min() < _SMALLEST * G.max():
+        raise CannotTell("The readings span more than any pH: Gran's function has no line.")
+    G = G / G.max()
     whole = _weighted_line(V, G)
     nearest = np.argsort(np.abs(V - whole.crossing))[: max(_FEWEST, picked.size // 2)]
     half = _weighted_line(V[nearest], G[nearest])
@@ -134,11 +139,13 @@ def _weighted_line(V: Floats, G: Floats) -> _Line:
         total, sx = weights.sum(), weights @ x
         sxx, sy, sxy = weights @ (x * x), weights @ G, weights @ (x * G)
         determinant = total * sxx - sx * sx
+        if not determinant > 0:
+            raise CannotTell("Gran's function has no line through so few volumes.")
         gradient = (total * sxy - sx * sy) / determinant
         intercept = (sy - gradient * sx) / total
         height = intercept + gradient * x
         weights = 1 / np.square(np.maximum(np.abs(height), 0.003 * np.abs(height).max()))
-    if gradient == 0:
+    if gradient == 0 or not np.isfinite(gradient):
         raise CannotTell("Gran's function does not slope: there is no crossing.")
     chi2 = float(weights @ np.square(G - height)) / (V.size - 2)
     crossing = -intercept / gradient

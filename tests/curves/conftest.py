@@ -4,11 +4,12 @@ It shares nothing with the program: other formulas, other loops, constants at 25
 (pKw 13.995 CRC Handbook after Marshall & Franck 1981; pK as in the tests of equilibria).
 """
 
-from dataclasses import dataclass
+from dataclasses import astuple, dataclass
 
 import numpy as np
 import pytest
 
+_FOUND = {}
 PKW, A = 13.995, 0.5108
 PHTHALIC, CARBONIC, TRIS = (2.950, 5.4074), (6.352, 10.329), (8.072,)
 
@@ -84,8 +85,14 @@ class Titration:
 
     def pH(self, V):
         V = np.asarray(V, float)
+        key = (astuple(self), V.tobytes())
+        if key not in _FOUND:
+            _FOUND[key] = self._pH(V)
+        return _FOUND[key].copy()
+
+    def _pH(self, V):
         ionic = np.full(V.shape, 0.03)
-        for _ in range(8):
+        for _ in range(6):
             low, high = np.full(V.shape, 0.5), np.full(V.shape, 13.5)
             for _ in range(52):
                 middle = (low + high) / 2
@@ -98,7 +105,7 @@ class Titration:
 
 def manual_volumes(end_mL, rng=None, *, last=None):
     """Coarse, then finer, then 0.05 mL steps around the end point: about 60 volumes."""
-    shift = 0.0 if rng is None else float(rng.uniform(0, 0.05))
+    shift = 0.0 if rng is None else 0.0025 * int(rng.integers(20))
     near = np.arange(end_mL - 0.4, end_mL + 0.6, 0.05) + shift
     close = np.arange(end_mL - 1.6, near[0] - 0.05, 0.2)
     early = np.arange(0.0, close[0] - 0.2, 1.0)

@@ -180,3 +180,40 @@ def test_every_method_covers_over_noisy_repeats(name, noise, usual, volumes_by_h
     for one, hits in covered.items():
         assert len(hits) >= 190, one
         assert np.mean(hits) >= 0.9, (one, np.mean(hits))
+
+
+def _anything(rng):
+    """Points of any kind, most of them no titration."""
+    n = int(rng.integers(6, 60))
+    V = np.cumsum(rng.choice([0, 0.01, 0.05, 0.5, 1.0, 3.0], n))
+    y = [
+        rng.normal(7, 3, n),
+        np.linspace(3, 11, n),
+        np.where(np.arange(n) < n // 2, 4.0, 10.0),
+        np.sort(rng.uniform(2, 12, n))[::-1],
+        np.sort(rng.uniform(2, 12, n)),
+        np.where(np.arange(n) == n - 1, 9.0, 4.0),
+        rng.normal(0, 1e6, n),
+        7 + np.arcsinh((V - V.mean()) * rng.uniform(0.1, 50)),
+    ][int(rng.integers(8))]
+    seconds = tuple(np.cumsum(rng.choice([0, 1.0, 5.0], n))) if rng.random() < 0.3 else None
+    kind = "pH" if rng.random() < 0.7 else "mV"
+    return Points(kind, tuple(V), tuple(np.round(y, 2)), seconds)
+
+
+@pytest.mark.parametrize("seed", range(20))
+def test_points_of_any_kind_are_answered_or_refused_in_words(seed):
+    rng = np.random.default_rng(seed)
+    for _ in range(20):
+        given = {
+            "system": str(rng.choice([*SYSTEMS, "none"])),
+            "flask_volume_mL": float(rng.choice([0.5, 50, 500])),
+            "amount_mmol": float(rng.choice([1e-3, 2, 50])),
+            "temperature_C": float(rng.choice([0, 25, 50])),
+        }
+        try:
+            document = equivalence(_anything(rng), **given)
+        except CurveProblem as problem:
+            document = {"refused": problem.says}
+        json.dumps(document, allow_nan=False)
+        assert "methods" in document or document["refused"].endswith(".")

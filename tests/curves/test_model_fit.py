@@ -133,9 +133,9 @@ def noisy_fits(truth, volumes, *, count, noise=0.01, seed=7, given=None):
 
 @pytest.mark.slow
 @pytest.mark.parametrize("name", list(SYSTEMS))
-def test_fit_interval_holds_over_200_noisy_repeats(name, usual, volumes_by_hand):
+def test_fit_interval_holds_over_noisy_repeats(name, usual, volumes_by_hand):
     # the model's part of u is left out: only the scatter of the points differs between repeats
-    off, u = noisy_fits(usual[name], volumes_by_hand, count=200)
+    off, u = noisy_fits(usual[name], volumes_by_hand, count=600)
     covered = np.mean(np.abs(off) <= 2 * u)
     assert 0.93 <= covered <= 0.98
     assert 0.8 <= u.mean() / off.std() <= 1.25

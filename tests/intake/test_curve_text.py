@@ -255,3 +255,20 @@ def test_curve_text_that_is_no_table_or_too_large_is_refused_in_words(text, says
 
 def test_curve_text_header_without_a_volume_says_what_it_has():
     assert "the header has “alpha”, “pH”" in refusal(table(header="alpha;pH"))
+
+
+@pytest.mark.parametrize("seed", range(10))
+def test_curve_text_of_any_kind_is_read_or_refused_in_words(seed):
+    import random
+
+    rng = random.Random(seed)
+    marks = [*'01;, \t\n\n#"−(/é', "2.5", "3,5", "pH", "mL", "=A1", "e9"]
+    for _ in range(200):
+        text = "".join(rng.choice(marks) for _ in range(rng.randrange(120)))
+        try:
+            read = read_curve_text(text)
+        except Unacceptable as problem:
+            said, points = problem.says, 0
+        else:
+            said, points = "", len(read.volume_mL)
+        assert said.endswith(".") or points >= 6

@@ -12,7 +12,6 @@ from dataclasses import dataclass
 import numpy as np
 
 from server.curves.model.charge_balance import ChargeBalance, Chemistry, Volumes
-from server.curves.model.lag import LagModel
 from server.curves.model.scatter import Given, Priors, ScatterEstimate
 from server.curves.points import Floats
 
@@ -21,10 +20,14 @@ PIVOT_pH = 7.0
 _MOST_ROUNDS = 40
 _SETTLED = 0.02
 """A step below this fraction of every parameter's standard error ends the fit."""
+_PATIENT = 6
+"""Rounds after which larger steps end the fit, in proportion to their number."""
 _FIRST_JUDGED = 2
 """The round in which scatter and far-off readings are first judged."""
 _ROUNDS_OF_ACTIVITIES = 4
 """Rounds in which the activity coefficients follow; later ones move them by nothing that shows."""
+_GRID = np.linspace(1.0, 13.2, 62)
+"""The pH at which a first guess of the curve is laid out."""
 _LONGEST_STEP = {"effective_mL": 0.2, "offset": 0.5, "slope": 0.1, "carbonate": 0.05}
 """No round moves a parameter further than this (the volume: as a fraction of itself)."""
 
@@ -91,9 +94,7 @@ class ModelFit:
 class _Rounds:
     """The state that the rounds of a fit carry along."""
 
-    def __init__(
-        self, balance: ChargeBalance, start_mL: float, priors: Priors, lag: LagModel | None
-    ) -> None:
+    def __init__(self, balance: ChargeBalance, start_mL: float, priors: Priors) -> None:
         system = balance.system
         self.balance = balance
         self.names = ["effective_mL", "offset", "slope"]
@@ -106,11 +107,6 @@ class _Rounds:
             self.names += ["carbonate", "flask_carbonate"]
             values += [0.0, priors.flask_carbonate]
             widths += [priors.carbonate, priors.u_flask_carbonate]
-        self.lag = lag
-        if lag is not None:
-            self.names.append("lag")
-            values.append(lag.start)
-            widths.append(np.inf)
         self.carbonate_at = 3 + len(system.fitted_steps)
         self.values = np.array(values)
         self.centre = self.values
@@ -149,12 +145,6 @@ class _Rounds:
         excess = float(np.abs(step / self.limits).max())
         return step if excess <= 1 else np.asarray(step / excess)
 
-    def move(self, step: Floats) -> None:
-        """Take a step."""
-        self.values = self.values + step
-        if self.lag is not None:
-            self.values[-1] = self.lag.bounded(float(self.values[-1]))
-
 
 def fit_model(
     balance: ChargeBalance,
@@ -169,30 +159,43 @@ def fit_model(
     Raises:
         FitProblem: it does not settle, or settles outside what a titration can be.
     """
-    with np.errstate(over="ignore", invalid="ignore", divide="ignore"):
-        return _fit(balance, V, pH, start_mL=start_mL, given=given or Given())
+    asked = given or Given()
+    says = "The points do not determine the model's parameters."
+    with np.errstate(all="ignore"):
+        # a start far from the end point makes a poor first guess of the probe: then without
+        for probe_first in (True, False):
+            try:
+                return _fit(balance, V, pH, start_mL=start_mL, given=asked, probe_first=probe_first)
+            except FitProblem as problem:
+                says = problem.args[0]
+            except (np.linalg.LinAlgError, ZeroDivisionError):
+                pass
+    raise FitProblem(says)
 
 
 def _fit(
-    balance: ChargeBalance, V: Floats, pH: Floats, *, start_mL: float, given: Given
+    balance: ChargeBalance,
+    V: Floats,
+    pH: Floats,
+    *,
+    start_mL: float,
+    given: Given,
+    probe_first: bool,
 ) -> ModelFit:
-    lag = given.lag
-    rounds = _Rounds(balance, start_mL, given.priors, lag)
+    rounds = _Rounds(balance, start_mL, given.priors)
     scatter = ScatterEstimate(given, V.size)
     off_reading = np.zeros_like(V)
     chemistry = rounds.chemistry()
+    if probe_first:
+        _begin_probe(rounds, chemistry, V, pH, scatter.trust)
     ln_gamma = balance.ln_gamma(balance.start_ionic_strength(V, chemistry.c))
     size = len(rounds.names)
     for count in range(1, _MOST_ROUNDS + 1):
         _, offset, slope = rounds.values[:3].tolist()
-        if lag is not None:
-            pH = lag.freed(float(rounds.values[-1]))
         latent = (pH - off_reading) * (1 / slope) + (PIVOT_pH - (PIVOT_pH + offset) / slope)
         found = balance.at(latent, chemistry, ln_gamma=ln_gamma)
         per_reading = found.slope * (1 / slope)
         rows = rounds.rows(chemistry, found, latent, per_reading)
-        if lag is not None:
-            rows[-1] = per_reading * lag.per_share(float(rounds.values[-1]), pH - off_reading)
         gap = V - found.V - per_reading * off_reading
         steep2 = per_reading * per_reading
         variance = scatter.variance(steep2)
@@ -204,7 +207,7 @@ def _fit(
         pull = weighted @ gap - rounds.precision * (rounds.values - rounds.centre)
         step = rounds.bounded(covariance @ pull)
         left = gap - step @ rows
-        rounds.move(step)
+        rounds.values = rounds.values + step
         off_reading = per_reading * left * (scatter.reading_u**2 / -variance)
         chemistry = rounds.chemistry()
         if balance.activities and count <= _ROUNDS_OF_ACTIVITIES:
@@ -214,7 +217,9 @@ def _fit(
         if count < _FIRST_JUDGED:
             continue
         stands = scatter.judge(left, steep2, variance, (weighted * (covariance @ rows)).sum(axis=0))
-        if stands and float((step * step / covariance.diagonal()).max()) <= _SETTLED**2:
+        # where the scatter creeps towards its place the parameters creep along: more is allowed
+        allowed = _SETTLED * max(1.0, count / _PATIENT)
+        if stands and float((step * step / covariance.diagonal()).max()) <= allowed * allowed:
             break
     else:
         raise FitProblem("The fit does not settle: these points are not a curve of this system.")
@@ -242,6 +247,41 @@ def _fit(
         rounds=count,
         chemistry=chemistry,
     )
+
+
+def _begin_probe(
+    rounds: _Rounds, chemistry: Chemistry, V: Floats, pH: Floats, trust: Floats
+) -> None:
+    """Set offset and slope to those of the line of the readings on the pH of a first guess.
+
+    A probe that reads half a pH too high would else begin with readings that no volume can have.
+    """
+    balance = rounds.balance
+    strength = balance.start_ionic_strength(V[-1:] / 2, chemistry.c)
+    ln_gamma = np.repeat(balance.ln_gamma(strength), _GRID.size)
+    found = balance.at(_GRID, chemistry, ln_gamma=ln_gamma)
+    can_be = found.per_denominator * balance.system.sign > 0
+    volume, grid, steep = found.V[can_be], _GRID[can_be], found.slope[can_be]
+    if volume.size < 2:
+        return
+    if volume[0] > volume[-1]:
+        volume, grid, steep = volume[::-1], grid[::-1], steep[::-1]
+    guess = np.interp(V, volume, grid)
+    # where little volume moves the pH much, the guess is worth little
+    weights = trust * np.abs(np.interp(V, volume, steep)).clip(max=0.1 * float(V[-1]))
+    total = float(weights.sum())
+    if not total > 0:
+        return
+    middle = float(weights @ guess) / total
+    away = guess - middle
+    spread = float(weights @ (away * away))
+    slope = float(weights @ (away * pH)) / spread if spread > 0 else 0.0
+    if not 0.6 < slope < 1.4:
+        return
+    begun = rounds.values.copy()
+    begun[1] = float(weights @ pH) / total - PIVOT_pH + slope * (PIVOT_pH - middle)
+    begun[2] = slope
+    rounds.values = begun
 
 
 def _plausible(values: Floats, V: Floats) -> None:

@@ -11,8 +11,6 @@ import numpy as np
 
 from server.curves.points import Floats
 
-_LEAST, _MOST = 0.001, 0.95
-
 
 @dataclass(frozen=True, slots=True, eq=False)
 class LagModel:
@@ -26,11 +24,6 @@ class LagModel:
     readings: Floats
     paces: Floats
     usual_s: float | None
-    start: float = 0.2
-
-    def bounded(self, share: float) -> float:
-        """Return the share still to go, kept between 0.001 and 0.95."""
-        return min(max(share, _LEAST), _MOST)
 
     def shares(self, share: float) -> Floats:
         """Return the share still to go at each reading; 0 at the first."""
@@ -43,14 +36,6 @@ class LagModel:
         to_go = self.shares(share)
         before = np.concatenate(([self.readings[0]], self.readings[:-1]))
         return np.asarray((self.readings - to_go * before) / (1 - to_go))
-
-    def per_share(self, share: float, curve: Floats) -> Floats:
-        """Return d(freed reading)/d(share), from the fitted curve so that noise does not enter."""
-        to_go = self.shares(share)
-        lagged = self.lagged(share, curve)
-        before = np.concatenate(([lagged[0]], lagged[:-1]))
-        per_to_go = (curve - before) / (1 - to_go)
-        return np.asarray(per_to_go * self.paces * np.power(share, self.paces - 1))
 
     def lagged(self, share: float, curve: Floats) -> Floats:
         """Return what a probe with this lag reads of a curve."""

@@ -4,7 +4,6 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from server.curves.model.lag import LagModel
 from server.curves.points import Floats
 
 _ENOUGH, _FAR = 4.0, 10.0
@@ -42,7 +41,6 @@ class Given:
 
     ``reading_u`` (pH) and ``volume_u`` (mL) of one point, None: learnt from the residuals, from
     the guesses on. ``trust`` gives points that are known to stand off a lower weight, 0 to 1.
-    With ``lag`` the probe's lag is fitted too, and the readings are taken from it.
     """
 
     priors: Priors = field(default_factory=Priors)
@@ -51,7 +49,6 @@ class Given:
     reading_guess: float = 0.01
     volume_guess: float = 0.002
     trust: Floats | None = None
-    lag: LagModel | None = None
 
 
 class ScatterEstimate:
@@ -114,14 +111,14 @@ class ScatterEstimate:
             volume = _ratio((b + drawn * _DRAWN_TO**2) * aa - a * ab, aa * (bb + drawn) - ab * ab)
             seen = max(_ratio(b * aa - a * ab, aa * bb - ab * ab), 0.0)
             # twice the squared estimate over its variance: 8 is two standard errors from nothing
-            dof = seen * seen * (bb - ab * ab / aa)
+            dof = seen * seen * (bb - _ratio(ab * ab, aa))
             clear = min(max((dof - _NOT_SEEN) / (_CLEARLY_SEEN - _NOT_SEEN), 0.0), 1.0)
             seen *= 1 + min(1.0, 4 / max(dof, 1e-9))
             self.volume_seen = clear * seen
             volume = min(max(volume, self.volume_u**2 / 100), self.volume_u**2 * 16)
             self.volume_u = max(volume, _LEAST_VOLUME_U**2) ** 0.5
         if self._given.reading_u is None:
-            reading = max((a - ab * self.volume_u**2) / aa, _LEAST_READING_U**2) ** 0.5
+            reading = max(_ratio(a - ab * self.volume_u**2, aa), _LEAST_READING_U**2) ** 0.5
             self.reading_u = min(max(reading, self.reading_u / 4), self.reading_u * 4)
 
 
