@@ -2,11 +2,11 @@
 
 from alembic import context
 
-from server.records.tables import bench, lots, people, stores, trail
+from server.records.tables import bench, lots, people, shelf, stores, trail
 from server.records.tables.base import Table
 
 # each module has put its tables into the one metadata
-TABLES = (bench, lots, people, stores, trail)
+TABLES = (bench, lots, people, shelf, stores, trail)
 
 context.configure(
     connection=context.config.attributes["connection"],

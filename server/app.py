@@ -10,6 +10,7 @@ from pathlib import Path
 import uvicorn
 from fastapi import FastAPI
 
+from server.credentials.signing_keys import KeyProblem, open_signing_keys
 from server.demo.laboratory import DemoSummary, fill_demo
 from server.files import find_folder
 from server.lab.codes import new_code
@@ -51,7 +52,11 @@ def build_app(
     """Return the application on a migrated database.
 
     ``transactions``: those of a database that is open already. ``setup_code``: what the set-up page
-    of an empty database asks for, a new one where none is given.
+    of an empty database asks for, a new one where none is given. The signing keys lie in the data
+    folder; the first one is made where there is none.
+
+    Raises:
+        KeyProblem: others may read the keys, or a file is none.
     """
     static = StaticFiles(find_folder("static"))
     parts = Parts(
@@ -62,6 +67,7 @@ def build_app(
         setup_code=setup_code or new_code(random.SystemRandom()),
         version=release() or "0",
         unknown_codes=UnknownCodes(),
+        keys=open_signing_keys(settings.key_folder, now=clock()),
     )
     return create_app(parts, static)
 
@@ -82,7 +88,11 @@ def serve(settings: Settings, *, demo: bool) -> int:
     if demo:
         _show_demo(transactions, settings.data / _SIGN_INS)
     setup_code = new_code(random.SystemRandom())
-    app = build_app(settings, transactions=transactions, setup_code=setup_code)
+    try:
+        app = build_app(settings, transactions=transactions, setup_code=setup_code)
+    except (KeyProblem, OSError) as problem:
+        says = f"The signing keys in {settings.key_folder} cannot be used: {problem}"
+        raise SettingsProblem(says) from problem
     _say(f"Titrant Ledger: {_address(settings)}")
     if not transactions.read(there_is_a_laboratory):
         _say(f"Nobody is here yet: open {_address(settings)}setup with the code {setup_code}")

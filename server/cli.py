@@ -54,13 +54,24 @@ def _parser() -> argparse.ArgumentParser:
     selfcheck = verbs.add_parser("selfcheck", help="check the calculations on published examples")
     selfcheck.add_argument("--pdf", type=Path, metavar="FILE", help="write the table as a PDF too")
     selfcheck.set_defaults(do=_selfcheck)
+    benching = verbs.add_parser("bench", help="measure speed and error against yardsticks")
+    benching.add_argument("name", nargs="?", metavar="NAME", help="which; without it: their names")
+    benching.set_defaults(do=_bench)
     migrating = verbs.add_parser("migrate", help="bring the database to this release")
     _add_data(migrating)
     migrating.set_defaults(do=_migrate)
     trail = verbs.add_parser("trail", help="the trail of what was done")
     trail_verbs = trail.add_subparsers(required=True, metavar="VERB")
-    checking = trail_verbs.add_parser("check", help="check that its chain holds")
+    checking = trail_verbs.add_parser(
+        "check", help="check that its chain holds, and that the record is what it noted"
+    )
     _add_data(checking)
+    checking.add_argument(
+        "--known",
+        type=Path,
+        metavar="FILE",
+        help="lines “Row N: HASH” as this verb printed them, kept elsewhere",
+    )
     checking.set_defaults(do=_trail_check)
     return parser
 
@@ -223,6 +234,26 @@ def _selfcheck(given: argparse.Namespace, _: Verbs) -> int:
     return NOT_SO if failed or not found else GOOD
 
 
+def _bench(given: argparse.Namespace, _: Verbs) -> int:
+    from server.upkeep.bench.named import BENCHES, bench_named  # noqa: PLC0415 - seldom needed
+
+    names = [f"{one.name:10s} {one.says}" for one in BENCHES]
+    if given.name is None:
+        _say("bench NAME measures one of these:", *names)
+        return GOOD
+    chosen = bench_named(given.name)
+    if chosen is None:
+        for line in (f"There is no measurement {given.name}. There are:", *names):
+            print(line, file=sys.stderr)  # noqa: T201 - the command line speaks by printing
+        return REFUSED
+    missed = 0
+    for measured in chosen.lines():
+        _say(measured.text())
+        missed += len(measured.missed)
+    _say("All figures are reached." if not missed else f"Not reached: {missed} figures.")
+    return NOT_SO if missed else GOOD
+
+
 def _table(found: Sequence[Any]) -> Iterator[str]:
     """Return the lines of the table, the cases of one source under its name."""
     heads = ("source and what", "published", "computed", "agreement", "")
@@ -291,11 +322,17 @@ def _migrate(given: argparse.Namespace, _: Verbs) -> int:
 
 def _trail_check(given: argparse.Namespace, _: Verbs) -> int:
     from server.records.transaction import Transactions  # noqa: PLC0415 - the same
-    from server.upkeep.trail_check import check_trail  # noqa: PLC0415 - the same
+    from server.upkeep.trail_check import check_trail, read_known  # noqa: PLC0415 - the same
 
+    known = {}
+    if given.known is not None:
+        try:
+            known = read_known(given.known.read_text(encoding="utf-8"))
+        except (OSError, ValueError) as problem:
+            raise SettingsProblem(f"--known {given.known} cannot be read: {problem}") from problem
     transactions = Transactions(_open(_settings(given)))
     try:
-        found = check_trail(transactions)
+        found = check_trail(transactions, known=known)
     finally:
         transactions.close()
     _say(found.says, f"Row {found.seq}: {found.hash}")

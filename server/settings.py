@@ -8,6 +8,7 @@ from pathlib import Path
 DATABASE_VARIABLE = "TITRANT_LEDGER_DATABASE_URL"
 DEFAULT_HOST, DEFAULT_PORT = "127.0.0.1", 8017
 DATABASE_FILE = "ledger.sqlite"
+KEY_FOLDER = "keys"
 
 
 class SettingsProblem(Exception):
@@ -31,6 +32,11 @@ class Settings:
     def is_secure(self) -> bool:
         """Whether browsers reach this server by https only."""
         return self.behind_proxy or self.tls_cert is not None
+
+    @property
+    def key_folder(self) -> Path:
+        """Where the laboratory's signing keys lie, readable by the program's owner alone."""
+        return self.data / KEY_FOLDER
 
     @property
     def keeps_file(self) -> bool:

@@ -2,10 +2,12 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from textwrap import wrap
 
 from server.drawing.svg import element, picture, words
 
 _WIDTH, _ROW, _BAR, _LEGEND = 420.0, 42.0, 12.0, 26.0
+_LINE, _MOST_LETTERS = 18.0, 42
 _HATCH = 7.0
 
 
@@ -26,15 +28,22 @@ def budget_bars(bars: Sequence[Bar]) -> str:
     ordered = sorted(bars, key=lambda bar: -bar.share_percent)
     longest = max((bar.share_percent for bar in ordered), default=0.0)
     parts: list[str] = []
-    for place, bar in enumerate(ordered):
-        top = place * _ROW
+    top = 0.0
+    for bar in ordered:
         width = _WIDTH * bar.share_percent / longest if longest > 0 else 0.0
+        # the share stands at the right of the first line; a long label takes further lines
+        lines = wrap(bar.label, _MOST_LETTERS) or [""]
+        below = top + _LINE * (len(lines) - 1)
         parts += [
-            words(bar.label, 0, top + 15, size=14, kind="words"),
+            *(
+                words(line, 0, top + 15 + _LINE * i, size=14, kind="words")
+                for i, line in enumerate(lines)
+            ),
             words(_share(bar), _WIDTH, top + 15, anchor="end", size=14, kind="digits"),
-            _bar(top + 22, max(width, 1.5), shared=bar.shared),
+            _bar(below + 22, max(width, 1.5), shared=bar.shared),
         ]
-    height = max(len(ordered) * _ROW, _ROW)
+        top = below + _ROW
+    height = max(top, _ROW)
     if any(bar.shared for bar in ordered):
         parts.append(words("Striped: the same in every replicate.", 0, height + 16, size=12.5))
         height += _LEGEND

@@ -126,7 +126,13 @@ def _end(x: float, y: float) -> str:
     return f"M{x - 5:.2f} {y:.2f}h10"
 
 
+def _plain(value: float) -> str:
+    """Return what is added, with its sign, never in exponent form."""
+    text = f"{value:+.9f}".rstrip("0").rstrip(".")
+    return "0" if text in {"+0", "-0"} else text
+
+
 def _says(points: Sequence[ErrorPoint], told: CurveWords, limit: float | None) -> str:
-    each = "; ".join(f"{one.reading:g}: {one.added:+.6g} ± {one.U:.2g}" for one in points)
+    each = "; ".join(f"{one.reading:.9g}: {_plain(one.added)} ± {one.U:.2g}" for one in points)
     bound = "" if limit is None else f" Permitted are ± {limit:g} {told.unit}."
     return f"Added to the readings of {told.name}, in {told.unit}: {each}.{bound}"

@@ -6,6 +6,10 @@ from decimal import Decimal
 from itertools import pairwise
 from typing import Any
 
+from server.lab.curve_entry import METHOD_SLOT, CurveEntry, read_curve_entry
+from server.lab.curve_entry import SLOT as CURVE_SLOT
+from server.lab.refusal import Unacceptable
+
 _MASS_SLOTS = {
     "difference": (
         ("container_and_standard", "container with standard"),
@@ -24,7 +28,10 @@ _MICROKELVIN = Decimal("0.000001")
 
 @dataclass(frozen=True, slots=True)
 class EntryValue:
-    """One slot's standing value, as typed. Replicate 0 is the sheet; segments count from 1."""
+    """One slot's standing value, as typed. Replicate 0 is the sheet; segments count from 1.
+
+    The text of a curve's slot is the canonical text that ``server.lab.curve_entry`` reads.
+    """
 
     replicate: int
     slot: str
@@ -44,7 +51,8 @@ class SheetMaterials:
     is the uncertainty statement of a blank that the sheet reads, such as ``{"u": "0.005"}``.
     ``roots`` names the certificate or calibration of ``standard``, ``balance``, ``burette``,
     ``pipette``, ``thermometer``, ``room`` and ``reference``: it becomes the root of every quantity
-    that states an uncertainty and names none itself.
+    that states an uncertainty and names none itself. With ``takes_curve`` each replicate is a
+    curve in place of burette readings, and ``end_point`` says how the record wants it read.
     """
 
     titrant_substance: str
@@ -71,6 +79,8 @@ class SheetMaterials:
     excess: Mapping[str, Any] | None = None
     replicates_wanted: int = 3
     weighing: str = "difference"
+    takes_curve: bool = False
+    end_point: Mapping[str, Any] | None = None
     roots: Mapping[str, str] = field(default_factory=dict)
 
 
@@ -133,7 +143,9 @@ class _Written:
             {
                 number
                 for number, slot, _ in self._texts
-                if number > 0 and slot not in {"remark", "excluded"} and ":" not in slot
+                if number > 0
+                and slot not in {"remark", "excluded", METHOD_SLOT}
+                and ":" not in slot
             }
         )
 
@@ -173,6 +185,7 @@ def _frame(materials: SheetMaterials, written: _Written) -> dict[str, Any]:
         "blank": _blank(materials, written),
         "excess": materials.excess,
         "repeatability": materials.repeatability,
+        "end_point": materials.end_point,
     }
     return {key: value for key, value in frame.items() if value is not None}
 
@@ -262,6 +275,8 @@ def _replicate(materials: SheetMaterials, written: _Written, number: int) -> dic
             found[slot] = written.decimal(number, slot)
         if materials.weighing == "tared":
             found["tare_load"] = written.decimal(number, "tare_load")
+    if materials.takes_curve:
+        found |= _curve(written, number)
     pairs = [
         [written.decimal(number, "burette_start", one), written.decimal(number, "burette_end", one)]
         for one in written.segments(number)
@@ -275,6 +290,27 @@ def _replicate(materials: SheetMaterials, written: _Written, number: int) -> dic
     if found["excluded"] is not None:
         found = _without_half_masses(found)
     return {key: value for key, value in found.items() if value is not None}
+
+
+def _curve(written: _Written, number: int) -> dict[str, Any]:
+    """Return a replicate's curve, and the way in which its end point is to be taken."""
+    entry = curve_entry_of(written.text(number, CURVE_SLOT))
+    if entry is None:
+        return {}
+    curve = entry.to_record()
+    if entry.drop is not None and entry.drop.u_mL is not None:
+        root = entry.drop.instrument or "drops counted"
+        drop = {"value": entry.drop.volume_mL, "unit": "mL", "u": entry.drop.u_mL}
+        curve["drop"] = {**drop, "id": f"{root}: volume of a drop"}
+    return {"curve": curve, "method": written.text(number, METHOD_SLOT)}
+
+
+def curve_entry_of(raw: str | None) -> CurveEntry | None:
+    """Return the curve of an entry, None where there is none or it cannot be read."""
+    try:
+        return None if raw is None else read_curve_entry(raw)
+    except Unacceptable:
+        return None
 
 
 def _without_half_masses(found: dict[str, Any]) -> dict[str, Any]:
@@ -311,7 +347,9 @@ def _missing_of_replicate(
     asked: list[tuple[str, int, str]] = []
     if materials.route == "weighed":
         asked += [(slot, 1, words) for slot, words in _MASS_SLOTS[materials.weighing]]
-    for segment in written.segments(number):
+    if materials.takes_curve:
+        asked.append((CURVE_SLOT, 1, "titration curve"))
+    for segment in () if materials.takes_curve else written.segments(number):
         after = "" if segment == 1 else f" of filling {segment}"
         asked.append(("burette_start", segment, f"burette start{after}"))
         asked.append(("burette_end", segment, f"burette end{after}"))

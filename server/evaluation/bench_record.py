@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
 
+from server.evaluation.curve_fields import AskedEndPoint, read_end_point
 from server.evaluation.record_fields import Fields, RecordProblem, Table, value_of
 from server.evaluation.replicate_reading import Replicate, read_replicates
 from server.metrology.quantity import Quantity
@@ -16,7 +17,7 @@ ROUTES = ("weighed", "aliquot", "against-titrant")
 WATER_RANGE_C = (0.0, 40.0)  # Tanaka's equation holds here
 _KEYS = frozenset(
     "format titrant route ratio standard solution reference unknown_in balance air burette pipette "
-    "temperature liquid_expansion blank excess repeatability replicates".split()
+    "temperature liquid_expansion blank excess repeatability replicates end_point".split()
 )
 
 
@@ -152,6 +153,7 @@ class BenchRecord:
     excess: Quantity | None
     repeatability: Repeatability | None
     replicates: tuple[Replicate, ...]
+    end_point: AskedEndPoint | None = None
 
     @property
     def weighs(self) -> bool:
@@ -196,6 +198,7 @@ def read_record(document: Mapping[str, Any]) -> BenchRecord:
         replicates=read_replicates(
             top, weighed=route == "weighed", table=burette.error_table, capacity=burette.capacity
         ),
+        end_point=read_end_point(top),
     )
     _check_route(top, record)
     _check_liquids(top, record)

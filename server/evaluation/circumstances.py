@@ -21,6 +21,7 @@ LIMIT_BASES: Mapping[str, str] = MappingProxyType(
         "slope_least_percent": "common practice: probe slope 95 to 102 % of the Nernst slope",
         "slope_most_percent": "common practice: probe slope 95 to 102 % of the Nernst slope",
         "offset_most_mV": "common practice: probe offset at most 30 mV",
+        "method_margin_percent": "common practice: a titrant's concentration is wanted to 0.1 %",
     }
 )
 
@@ -44,6 +45,7 @@ class Limits:
     slope_least_percent: float = 95.0
     slope_most_percent: float = 102.0
     offset_most_mV: float = 30.0
+    method_margin_percent: float = 0.1
     bases: Mapping[str, str] = field(default_factory=dict)
 
     def basis(self, name: str) -> str:

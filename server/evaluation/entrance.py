@@ -10,7 +10,10 @@ from server.evaluation.bench_record import BenchRecord, read_record
 from server.evaluation.calculations import CURRENT
 from server.evaluation.circumstances import Circumstances
 from server.evaluation.constants import Constants, resolve_constants
+from server.evaluation.curve_readings import taken_of, with_end_points
+from server.evaluation.curve_rows import method_rows
 from server.evaluation.findings.finding import Finding
+from server.evaluation.findings.of_curves import curve_findings
 from server.evaluation.findings.of_measurement import measurement_findings
 from server.evaluation.findings.of_papers import paper_findings
 from server.evaluation.findings.of_replicates import replicate_findings
@@ -18,6 +21,7 @@ from server.evaluation.findings.of_simulation import simulation_finding
 from server.evaluation.findings.setting import Setting
 from server.evaluation.methods.standardization_v1 import Evaluation
 from server.evaluation.record_fields import RecordProblem
+from server.evaluation.taken_curve import TakenCurve
 from server.lab.canonical import canonical, digest
 from server.metrology.monte_carlo import Simulated, simulate
 
@@ -29,7 +33,11 @@ COVERAGE = 0.95
 
 @dataclass(frozen=True, slots=True)
 class Task:
-    """All that one evaluation uses; a snapshot holds the same, so that it can be repeated."""
+    """All that one evaluation uses; a snapshot holds the same, so that it can be repeated.
+
+    ``curves`` are the end points found on the record's curves: a replay takes those that were
+    signed, whatever a later program would find.
+    """
 
     document: Mapping[str, Any]
     circumstances: Circumstances
@@ -37,6 +45,7 @@ class Task:
     calculation: ModuleType
     trials: int | None
     seed: int
+    curves: tuple[TakenCurve, ...] = ()
 
 
 def evaluate(
@@ -68,14 +77,17 @@ def make_task(
     Raises:
         RecordProblem: the record cannot be read, or a table lacks what it leaves out.
     """
+    record = read_record(document)
     _need_text(document)
+    constants = resolve_constants(record)
     return Task(
         document=document,
         circumstances=circumstances or Circumstances(),
-        constants=resolve_constants(read_record(document)),
+        constants=constants,
         calculation=CURRENT,
         trials=trials,
         seed=seed,
+        curves=taken_of(record, constants),
     )
 
 
@@ -85,7 +97,7 @@ def evaluate_task(task: Task) -> dict[str, Any]:
     Raises:
         RecordProblem: the record cannot be read or evaluated.
     """
-    record = read_record(task.document)
+    record = with_end_points(read_record(task.document), task.curves)
     evaluation = task.calculation.evaluate(record, task.constants, task.circumstances)
     simulated = _simulate(evaluation, task) if task.trials else None
     setting = Setting(
@@ -94,6 +106,7 @@ def evaluate_task(task: Task) -> dict[str, Any]:
         circumstances=task.circumstances,
         components=rows.components_of(evaluation),
         with_all=_with_all(record, task),
+        curves=task.curves,
     )
     found: dict[str, Any] = {
         "format": RESULT_FORMAT,
@@ -109,6 +122,8 @@ def evaluate_task(task: Task) -> dict[str, Any]:
         "calculation": {"name": task.calculation.NAME, "version": task.calculation.VERSION},
         "input_digest": digest(canonical(task.document)),
     }
+    if task.curves:
+        found["methods"] = method_rows(record, evaluation.model, task.curves)
     if setting.with_all is not None:
         found["with_excluded"] = rows.with_excluded_row(setting.with_all, evaluation)
     return found
@@ -137,7 +152,9 @@ def _running_value(document: Mapping[str, Any], replicate: Any, index: int) -> d
     alone = {key: value for key, value in held.items() if key != "excluded"}
     try:
         record = read_record({**document, "replicates": [alone]})
-        value = CURRENT.replicate_values(record, resolve_constants(record))[0].value
+        constants = resolve_constants(record)
+        whole = with_end_points(record, taken_of(record, constants))
+        value = CURRENT.replicate_values(whole, constants)[0].value
     except RecordProblem as problem:
         return {**found, "says": problem.says}
     return {**found, "value": value}
@@ -180,6 +197,7 @@ def _findings(setting: Setting, simulated: Simulated | None) -> list[Finding]:
         *replicate_findings(setting),
         *measurement_findings(setting),
         *paper_findings(setting),
+        *curve_findings(setting),
     ]
     if simulated is not None:
         found.append(simulation_finding(simulated, setting))

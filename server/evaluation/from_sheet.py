@@ -23,6 +23,8 @@ from server.evaluation.entrance import evaluate
 from server.evaluation.snapshot import make_snapshot
 from server.lab.calibration.check_log import CHECK_OF_KIND, charts_of, last_checked
 from server.lab.canonical import canonical, digest
+from server.lab.curve_entry import METHOD_SLOT
+from server.lab.curve_entry import SLOT as CURVE_SLOT
 from server.lab.in_use import InUse, things_in_use
 from server.lab.ink import COUNTS_AGAIN, WrittenEntry, excluded, standing
 from server.lab.recipe import RecipeDocument
@@ -160,6 +162,8 @@ def materials_on(
         excess=recipe.excess,
         replicates_wanted=recipe.replicates,
         weighing=recipe.weighing,
+        takes_curve=recipe.end_point.takes_curve,
+        end_point=_on_curve(recipe),
         entries=(),
         roots=_roots(lot, used),
     )
@@ -209,7 +213,7 @@ def _mode_of_use(valid_for: str) -> str | None:
 def _missing_rows(facts: SheetFacts, already: tuple[Missing, ...]) -> tuple[Missing, ...]:
     """Return required rows of the sheet and of begun replicates that assembling does not ask."""
     written = standing(facts.entries)
-    begun = {place[0] for place in written if place[1] not in {"excluded", "remark"}}
+    begun = {place[0] for place in written if place[1] not in {"excluded", "remark", METHOD_SLOT}}
     left_out = excluded(facts.entries)
     asked = {(one.replicate, one.slot) for one in already}
     rows = all_rows(facts.recipe.document, rig_of(facts.instruments), facts.entries)
@@ -262,8 +266,21 @@ def _without(document: dict[str, Any] | None, key: str) -> dict[str, Any] | None
 
 
 def _text(entry: WrittenEntry) -> str:
-    """Return an entry's text; with the reason where it leaves a replicate out."""
+    """Return an entry's text; a curve's points, the reason where a replicate is left out."""
+    if entry.slot == CURVE_SLOT:
+        return entry.raw or ""
     return f"{entry.text}: {entry.reason}" if entry.slot == "excluded" else entry.text
+
+
+def _on_curve(recipe: RecipeDocument) -> dict[str, Any] | None:
+    """Return how the recipe wants curves read, None where it takes none."""
+    asked = recipe.end_point
+    if not asked.takes_curve:
+        return None
+    found: dict[str, Any] = {"method": asked.method, "system": asked.system}
+    if asked.flask_volume_mL is not None:
+        found["flask_volume"] = {"value": asked.flask_volume_mL, "unit": "mL"}
+    return {key: value for key, value in found.items() if value is not None}
 
 
 def _roots(lot: StandardLotFact | None, used: Sequence[InstrumentFact]) -> dict[str, str]:
@@ -361,7 +378,7 @@ def _analysts(facts: SheetFacts) -> tuple[str, ...]:
     """Return who read the end of each begun replicate's titration, in order."""
     names: dict[int, str] = {}
     for (replicate, slot, _), entry in sorted(standing(facts.entries).items()):
-        if replicate and slot not in {"excluded", "remark"} and ":" not in slot:
-            last = slot == "burette_end" or replicate not in names
+        if replicate and slot not in {"excluded", "remark", METHOD_SLOT} and ":" not in slot:
+            last = slot in {"burette_end", CURVE_SLOT} or replicate not in names
             names[replicate] = entry.printed_name if last else names[replicate]
     return tuple(names[number] for number in sorted(names))

@@ -96,7 +96,8 @@ def _evaluate(
     situation: Situation, *, mass_g: float, volume_mL: float, replicates: int
 ) -> Evaluation:
     entries = _entries(situation.materials, mass_g, volume_mL, replicates=replicates)
-    assembled = assemble(replace(situation.materials, entries=entries))
+    # a plan has no curve yet: its volume stands where the end point will lie
+    assembled = assemble(replace(situation.materials, entries=entries, takes_curve=False))
     if assembled.document is None:
         raise Unacceptable(assembled.missing[0].says, field=assembled.missing[0].slot or None)
     try:

@@ -4,7 +4,11 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
-from server.evaluation.record_fields import Fields, RecordProblem, Table, decimal_at, pair_at
+from server.evaluation.curve_fields import Curve, read_curve
+from server.evaluation.record_fields import Fields, RecordProblem, Table, pair_at
+from server.evaluation.taken_curve import CurveEndPoint
+
+__all__ = ["Curve", "Replicate", "read_replicates"]
 
 _KEYS = frozenset(
     "mass tare_load container_and_standard container_less_standard burette delivered corrected "
@@ -14,19 +18,11 @@ _READ_EXAMPLE = '{"burette": [["0.00", "18.64"]]}'
 
 
 @dataclass(frozen=True, slots=True)
-class Curve:
-    """A titration curve: volumes in mL, readings as pH or mV, seconds where they were kept."""
-
-    kind: str
-    volume_mL: tuple[float, ...]
-    reading: tuple[float, ...]
-    seconds: tuple[float, ...] | None
-    method: str | None
-
-
-@dataclass(frozen=True, slots=True)
 class Replicate:
-    """One replicate as read; ``texts`` keeps the readings as typed, by their path within it."""
+    """One replicate as read; ``texts`` keeps the readings as typed, by their path within it.
+
+    ``end_point`` is there once a curve was read: ``segments`` then hold its volume.
+    """
 
     label: str
     excluded: str | None
@@ -37,6 +33,7 @@ class Replicate:
     delivered: float | None
     curve: Curve | None
     texts: Mapping[str, str]
+    end_point: CurveEndPoint | None = None
 
     @property
     def weighed(self) -> bool:
@@ -94,7 +91,7 @@ def _replicate(row: Any, index: int, table: Table, capacity: float | None) -> Re
         difference=difference,
         segments=_segments(fields, table, capacity),
         delivered=_delivered(fields, table),
-        curve=_curve(fields),
+        curve=read_curve(fields, counts=not fields.has("excluded")),
         texts=_texts(fields),
     )
 
@@ -193,37 +190,6 @@ def _delivered(fields: Fields, table: Table) -> float | None:
         )
         fields.refuse("delivered", says, '"burette": [["0.00", "18.64"]]')
     return value
-
-
-def _curve(fields: Fields) -> Curve | None:
-    method = fields.text("method", '"model fit"', required=False)
-    if not fields.has("curve"):
-        return None
-    keys = ("volume_mL", "pH", "mV", "seconds")
-    curve = Fields(fields.document["curve"], fields.at("curve"), keys)
-    if curve.has("pH") == curve.has("mV"):
-        curve.refuse("pH", "A curve has readings in pH or in mV.", '"pH": ["3.91", "4.02"]')
-    kind = "pH" if curve.has("pH") else "mV"
-    volume, reading = _numbers(curve, "volume_mL"), _numbers(curve, kind)
-    seconds = _numbers(curve, "seconds") if curve.has("seconds") else None
-    for key, values in ((kind, reading), ("seconds", seconds or volume)):
-        if len(values) != len(volume):
-            curve.refuse(key, f"{len(values)} values for {len(volume)} volumes.", None)
-    return Curve(kind=kind, volume_mL=volume, reading=reading, seconds=seconds, method=method)
-
-
-def _numbers(curve: Fields, key: str) -> tuple[float, ...]:
-    rows, example = curve.need(key, '["0.00", "0.50"]'), '["0.00", "0.50"]'
-    if not isinstance(rows, Sequence) or isinstance(rows, str) or not rows:
-        curve.refuse(key, "This must be a list of values.", example)
-    return tuple(_number(one, f"{curve.at(key)}[{i}]") for i, one in enumerate(rows))
-
-
-def _number(value: Any, path: str) -> float:
-    """Return a point's value; a meter's file may hold numbers, a person types text."""
-    if isinstance(value, int | float) and not isinstance(value, bool):
-        return float(value)
-    return decimal_at(value, path, "7.00")
 
 
 def _texts(fields: Fields) -> dict[str, str]:

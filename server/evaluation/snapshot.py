@@ -10,6 +10,7 @@ from server.evaluation.circumstances import Circumstances, read_circumstances
 from server.evaluation.circumstances import to_document as circumstances_document
 from server.evaluation.constants import read_constants
 from server.evaluation.constants import to_document as constants_document
+from server.evaluation.curve_readings import read_taken
 from server.evaluation.entrance import Task, evaluate_task, make_task
 from server.lab.canonical import canonical, digest
 
@@ -49,21 +50,23 @@ def make_snapshot(
 ) -> Snapshot:
     """Return the snapshot of an evaluation: record, circumstances, constants, calculation, result.
 
+    Where there are curves, their end points as found are part of it beside the points.
     ``trials`` and ``seed`` are those that the evaluation was given.
     """
     task = make_task(document, circumstances=circumstances, trials=trials, seed=seed)
-    text = canonical(
-        {
-            "format": FORMAT,
-            "record": task.document,
-            "circumstances": circumstances_document(task.circumstances),
-            "constants": constants_document(task.constants),
-            "calculation": result["calculation"],
-            "trials": trials,
-            "seed": seed,
-            "result": result,
-        }
-    )
+    held: dict[str, Any] = {
+        "format": FORMAT,
+        "record": task.document,
+        "circumstances": circumstances_document(task.circumstances),
+        "constants": constants_document(task.constants),
+        "calculation": result["calculation"],
+        "trials": trials,
+        "seed": seed,
+        "result": result,
+    }
+    if task.curves:
+        held["curves"] = [one.to_document() for one in task.curves]
+    text = canonical(held)
     return Snapshot(text=text, digest=digest(text))
 
 
@@ -86,6 +89,7 @@ def replay(snapshot_text: str, *, expected_digest: str | None = None) -> Replay:
             calculation=calculation(named["name"], named["version"]),
             trials=held["trials"],
             seed=held["seed"],
+            curves=read_taken(held.get("curves", ())),
         )
     )
     was, now = held["result"]["concentration"], result["concentration"]

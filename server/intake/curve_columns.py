@@ -107,6 +107,49 @@ def mapping_from(document: Mapping[str, Any]) -> ColumnMapping:
     return ColumnMapping(columns["volume"], columns["reading"], kind, columns.get("time"), **taken)
 
 
+@dataclass(frozen=True, slots=True)
+class RememberedColumns:
+    """How an instrument's files had their columns last: the mapping and the header it was for."""
+
+    mapping: ColumnMapping
+    header: tuple[str, ...] | None
+    width: int
+
+    def fits(self, header: Sequence[str] | None, width: int) -> bool:
+        """Tell whether a table is of the same make: the same header, or none and as many columns.
+
+        Another header may have the columns in another order; it is read afresh.
+        """
+        if header is None or self.header is None:
+            return header is None and self.header is None and width == self.width
+        return tuple(_folded(header)) == tuple(_folded(self.header))
+
+    def to_document(self) -> dict[str, Any]:
+        """Return it as a JSON-able document."""
+        header = None if self.header is None else list(self.header)
+        return {"mapping": self.mapping.to_document(), "header": header, "width": self.width}
+
+
+def _folded(header: Sequence[str]) -> list[str]:
+    cells = [" ".join(one.lower().split()) for one in header]
+    while cells and not cells[-1]:
+        cells.pop()
+    return cells
+
+
+def remembered_from(document: Mapping[str, Any]) -> RememberedColumns:
+    """Return what was remembered, from its document.
+
+    Raises:
+        Unacceptable: it is no such document.
+    """
+    mapping, header = document.get("mapping"), document.get("header")
+    if not isinstance(mapping, Mapping):
+        raise Unacceptable("mapping must be an object.", field="mapping")
+    names = None if header is None else tuple(str(one) for one in header)
+    return RememberedColumns(mapping_from(mapping), names, int(document.get("width") or 0))
+
+
 def columns_of(
     header: Sequence[str] | None, values: Sequence[Sequence[Decimal | None]]
 ) -> tuple[ColumnMapping, list[str]]:

@@ -1,26 +1,23 @@
 """Rows of a curve's table become points: numbers checked, one bad volume pointed at."""
 
-import re
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 from decimal import Decimal
 from itertools import pairwise
 
 from server.curves.points import FEWEST_POINTS, Points
+from server.intake.curve_cells import MOST_ROWS, Cells, Row, TableShape, split_table
 from server.intake.curve_columns import (
     READING_UNITS,
     TIME_UNITS,
     VOLUME_UNITS,
     ColumnMapping,
+    RememberedColumns,
     columns_of,
 )
 from server.lab.refusal import Unacceptable
 
-MOST_ROWS, MOST_COLUMNS = 200_000, 50
-_NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d{1,2})?")
-_MOST_NUMBER = 40
-
-Row = tuple[int, tuple[str, ...]]
+_SHOWN_ROWS = 6
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,6 +34,22 @@ class SetAside:
 
     row: int
     says: str
+
+
+@dataclass(frozen=True, slots=True)
+class Asked:
+    """How a table is to be read, beyond what it says itself.
+
+    ``mapping`` was set by a person and rules; ``remembered`` counts where the same header comes
+    again. ``leave_out`` are rows of the file, from 1, that hold no numbers and are passed over by
+    a person's word. ``most_points`` bounds what is kept.
+    """
+
+    mapping: ColumnMapping | None = None
+    remembered: RememberedColumns | None = None
+    drop: Drop | None = None
+    leave_out: tuple[int, ...] = ()
+    most_points: int = MOST_ROWS
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,6 +70,7 @@ class CurveTable:
     set_aside: tuple[SetAside, ...]
     says: tuple[str, ...]
     sha256: str
+    shape: TableShape
     relative_u_volume: float | None = None
 
     def points(self) -> Points:
@@ -67,71 +81,89 @@ class CurveTable:
         )
 
 
-@dataclass(frozen=True, slots=True)
-class Cells:
-    """A table before its columns are understood: rows with their numbers, words on its shape.
-
-    ``where`` names a cell by row and column (from 0) as the reader of the file would.
-    """
-
-    rows: Sequence[Row]
-    where: Callable[[int, int], str]
-    says: tuple[str, ...]
-    decimal_comma: bool = False
-
-    def number(self, row: int, column: int, text: str) -> Decimal:
-        """Return a cell's number.
-
-        Raises:
-            Unacceptable: it is none; the sentence names row and column.
-        """
-        plain = text.strip().replace("−", "-")
-        if self.decimal_comma:
-            plain = plain.replace(",", ".")
-        if len(plain) <= _MOST_NUMBER and _NUMBER.fullmatch(plain):
-            return Decimal(plain)
-        place = self.where(row, column)
-        if plain[:1] in {"=", "@"} or re.match(r"[+-][A-Za-z(]", plain):
-            says = f"{place}: “{text.strip()[:40]}” is a formula; only numbers are taken."
-        elif not plain:
-            says = f"{place} is empty; a point needs its volume and its reading."
-        else:
-            says = f"{place}: “{text.strip()[:40]}” is not a number."
-        raise Unacceptable(says, field="file", example="12.35")
-
-    def is_number(self, text: str) -> bool:
-        """Tell whether a cell could be a number."""
-        plain = text.strip().replace("−", "-")
-        if self.decimal_comma:
-            plain = plain.replace(",", ".")
-        return bool(_NUMBER.fullmatch(plain))
-
-
-def curve_of(
-    cells: Cells, *, sha256: str, mapping: ColumnMapping | None = None, drop: Drop | None = None
-) -> CurveTable:
+def curve_of(cells: Cells, *, sha256: str, asked: Asked | None = None) -> CurveTable:
     """Return the curve that a table of cells holds.
-
-    With ``mapping`` (remembered, or given by a person) the header is not asked.
 
     Raises:
         Unacceptable: no table, a cell that is no number, fewer than 6 points, volumes that go back
-            more than once, drops without the volume of a drop.
+            more than once, drops without the volume of a drop. ``shown["table"]`` is what the table
+            looks like, ``shown["row"]`` the row that it is about.
     """
-    header, body, passed = _split(cells)
-    words = list(cells.says)
-    if passed:
-        words.append(f"{passed} line{'s' if passed > 1 else ''} before the table passed over.")
-    if mapping is None:
+    asked = asked or Asked()
+    header, body, passed = split_table(cells)
+    width = max(len(row) for _, row in body)
+    shape = TableShape(header, width, tuple(body[:_SHOWN_ROWS]))
+    try:
+        return _curve(cells, body, shape, sha256=sha256, asked=asked, passed=passed)
+    except Unacceptable as refused:
+        refused.shown.setdefault("table", shape.to_document())
+        raise
+
+
+def _columns(
+    cells: Cells, body: Sequence[Row], shape: TableShape, asked: Asked
+) -> tuple[ColumnMapping, list[str]]:
+    """Return which column holds what, and words on how that was told."""
+    if asked.mapping is not None:
+        mapping, says = asked.mapping, "Columns as you set them."
+    elif asked.remembered is not None and asked.remembered.fits(shape.header, shape.width):
+        mapping, says = asked.remembered.mapping, "Columns as they were set for this instrument."
+    else:
         told = [
             [cells.number(0, 0, one) if cells.is_number(one) else None for one in row]
             for _, row in body[:500]
         ]
-        mapping, more = columns_of(header, told)
-        words += more
-    else:
-        words.append("Columns as they were set for this instrument.")
-    scale = _volume_scale(mapping, drop)
+        return columns_of(shape.header, told)
+    if mapping.last >= shape.width:
+        says = f"Column {mapping.last + 1} is asked for; the table has {shape.width}."
+        raise Unacceptable(says, field="mapping", example="0")
+    return mapping, [says]
+
+
+def _left_out(
+    cells: Cells, mapping: ColumnMapping, body: Sequence[Row], rows: Sequence[int]
+) -> list[SetAside]:
+    """Return the rows that a person passes over; only such as hold no numbers can be."""
+    by_number = dict(body)
+    aside = []
+    for number in sorted(set(rows)):
+        row = by_number.get(number)
+        if row is None:
+            says = f"Row {number} is none of the table's rows; it cannot be left out."
+            raise Unacceptable(says, field="leave_out")
+        try:
+            _point(cells, mapping, number, row)
+        except Unacceptable as unread:
+            aside.append(SetAside(number, f"Left out by hand. {unread.says}"))
+            continue
+        says = f"Row {number} holds numbers; a reading is not left out of a curve by hand."
+        raise Unacceptable(says, field="leave_out")
+    return aside
+
+
+def _curve(
+    cells: Cells,
+    body: Sequence[Row],
+    shape: TableShape,
+    *,
+    sha256: str,
+    asked: Asked,
+    passed: int,
+) -> CurveTable:
+    if len(body) > asked.most_points:
+        says = (
+            f"The table has {len(body)} rows; a curve is kept with at most {asked.most_points} "
+            "points. Export fewer readings, every second one for instance."
+        )
+        raise Unacceptable(says, field="file")
+    words = list(cells.says)
+    if passed:
+        words.append(f"{passed} line{'s' if passed > 1 else ''} before the table passed over.")
+    mapping, more = _columns(cells, body, shape, asked)
+    words += more
+    scale = _volume_scale(mapping, asked.drop)
+    by_hand = _left_out(cells, mapping, body, asked.leave_out)
+    body = [(number, row) for number, row in body if number not in set(asked.leave_out)]
     points = [_point(cells, mapping, number, row) for number, row in body]
     numbers = [number for number, _ in body]
     aside = _set_aside(numbers, [one[0] for one in points], cells, mapping)
@@ -142,7 +174,7 @@ def curve_of(
     times = None if mapping.time is None else [_time(cells, mapping, *body[at]) for at in keep]
     if times is not None:
         _never_back(times, [numbers[at] for at in keep], cells, mapping)
-    relative = None
+    relative, drop = None, asked.drop
     if drop is not None and mapping.volume_unit == "drops" and drop.u_mL is not None:
         relative = float(drop.u_mL / drop.volume_mL)
     return CurveTable(
@@ -152,44 +184,16 @@ def curve_of(
         seconds=None if times is None else tuple(map(_text, times)),
         rows=tuple(numbers[at] for at in keep),
         mapping=mapping,
-        set_aside=tuple(SetAside(numbers[row], says) for row, says in aside),
+        set_aside=(*by_hand, *(SetAside(numbers[row], says) for row, says in aside)),
         says=(*words, *(says for _, says in aside)),
         sha256=sha256,
+        shape=shape,
         relative_u_volume=relative,
     )
 
 
 def _text(value: Decimal) -> str:
     return f"{value:f}"
-
-
-def _split(cells: Cells) -> tuple[tuple[str, ...] | None, list[Row], int]:
-    """Return the header (None: there is none), the rows of numbers, and how many lines came before.
-
-    The table begins at the first row with two numbers; a row of words right before it is its
-    header. Rows that are empty are passed over.
-    """
-    rows = [(number, row) for number, row in cells.rows if any(one.strip() for one in row)]
-    begins = (
-        at
-        for at, (_, row) in enumerate(rows)
-        if sum(cells.is_number(one) for one in row) >= 2 and cells.is_number(row[0])
-    )
-    at = next(begins, None)
-    if at is None:
-        says = "No row with two numbers was found: a curve's table has volumes and readings."
-        raise Unacceptable(says, field="file", example="0.00; 4.01")
-    if len(rows) - at > MOST_ROWS:
-        raise Unacceptable(f"The table has more than {MOST_ROWS} rows.", field="file")
-    widest = max(len(row) for _, row in rows[at:])
-    if widest > MOST_COLUMNS:
-        says = f"The table has {widest} columns; at most {MOST_COLUMNS} are read."
-        raise Unacceptable(says, field="file")
-    before = rows[:at]
-    header = None
-    if before and sum(bool(one.strip()) for one in before[-1][1]) >= 2:
-        header = before.pop()[1]
-    return header, rows[at:], len(before)
 
 
 def _volume_scale(mapping: ColumnMapping, drop: Drop | None) -> Decimal:

@@ -6,8 +6,8 @@ import re
 from collections import Counter
 from collections.abc import Sequence
 
-from server.intake.curve_columns import ColumnMapping
-from server.intake.curve_table import Cells, CurveTable, Drop, Row, curve_of
+from server.intake.curve_cells import Cells, Row
+from server.intake.curve_table import Asked, CurveTable, curve_of
 from server.intake.kept_files import sha256_of
 from server.lab.refusal import Unacceptable
 
@@ -19,9 +19,7 @@ _BEGINS = re.compile(r"\s*(x|[+\-−]?[.,]?\d)")
 _QUOTED = re.compile(r'"[^"]*"')
 
 
-def read_curve_text(
-    data: bytes | str, *, mapping: ColumnMapping | None = None, drop: Drop | None = None
-) -> CurveTable:
+def read_curve_text(data: bytes | str, *, asked: Asked | None = None) -> CurveTable:
     """Return the curve in a text: comma, semicolon, tab or spaces; decimal point or comma.
 
     Two columns, volume and pH or mV, a third of seconds; a header names them otherwise. Lines that
@@ -48,7 +46,7 @@ def read_curve_text(
     comma = _decimal_comma(rows, separator)
     said = f"Separator: {_SEPARATORS[separator]}; decimal {'comma' if comma else 'point'}."
     cells = Cells(rows, _where, (said,), comma)
-    return curve_of(cells, sha256=sha256_of(raw), mapping=mapping, drop=drop)
+    return curve_of(cells, sha256=sha256_of(raw), asked=asked)
 
 
 def _where(row: int, column: int) -> str:

@@ -1,7 +1,7 @@
 """A curve from a sheet of an XLSX workbook."""
 
-from server.intake.curve_columns import ColumnMapping
-from server.intake.curve_table import Cells, CurveTable, Drop, curve_of
+from server.intake.curve_cells import Cells
+from server.intake.curve_table import Asked, CurveTable, curve_of
 from server.intake.curve_text import read_curve_text
 from server.intake.kept_files import sha256_of
 from server.intake.workbook import column_name, is_workbook, read_workbook
@@ -9,11 +9,7 @@ from server.lab.refusal import Unacceptable
 
 
 def read_curve_workbook(
-    data: bytes,
-    *,
-    sheet: str | None = None,
-    mapping: ColumnMapping | None = None,
-    drop: Drop | None = None,
+    data: bytes, *, sheet: str | None = None, asked: Asked | None = None
 ) -> CurveTable:
     """Return the curve in a workbook's sheet; without a name its only sheet that is filled.
 
@@ -21,7 +17,7 @@ def read_curve_workbook(
         Unacceptable: no workbook, too large, a formula, no such sheet, no curve in it; the cell
             named.
     """
-    filled = [one for one in read_workbook(data) if one.rows]
+    filled = [one for one in read_workbook(data, formulas=True) if one.rows]
     named = filled if sheet is None else [one for one in filled if one.name == sheet]
     if len(named) != 1:
         names = ", ".join(f"“{one.name}”" for one in filled) or "none that is filled"
@@ -33,7 +29,7 @@ def read_curve_workbook(
         if any(row) and not next(one for one in row if one).startswith("#")
     ]
     cells = Cells(rows, _where, (f"Sheet “{named[0].name}”.",))
-    return curve_of(cells, sha256=sha256_of(data), mapping=mapping, drop=drop)
+    return curve_of(cells, sha256=sha256_of(data), asked=asked)
 
 
 def _where(row: int, column: int) -> str:
@@ -41,11 +37,7 @@ def _where(row: int, column: int) -> str:
 
 
 def read_curve_file(
-    data: bytes,
-    *,
-    sheet: str | None = None,
-    mapping: ColumnMapping | None = None,
-    drop: Drop | None = None,
+    data: bytes, *, sheet: str | None = None, asked: Asked | None = None
 ) -> CurveTable:
     """Return the curve in an uploaded file, a workbook or a text, told by its bytes.
 
@@ -53,8 +45,8 @@ def read_curve_file(
         Unacceptable: it cannot be read; the sentence names row and column.
     """
     if is_workbook(data):
-        return read_curve_workbook(data, sheet=sheet, mapping=mapping, drop=drop)
+        return read_curve_workbook(data, sheet=sheet, asked=asked)
     if data.startswith(b"\xd0\xcf\x11\xe0"):
         says = "This is a workbook of the old binary kind; save it as XLSX or as CSV."
         raise Unacceptable(says, field="file")
-    return read_curve_text(data, mapping=mapping, drop=drop)
+    return read_curve_text(data, asked=asked)

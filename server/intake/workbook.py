@@ -1,4 +1,4 @@
-"""Tables of an XLSX workbook as text, read within bounds; formulas are refused, not computed."""
+"""Tables of an XLSX workbook as text, read within bounds; formulas are never computed."""
 
 import io
 import re
@@ -8,12 +8,12 @@ from dataclasses import dataclass
 from server.intake.safe_xml import Bounds, Node, read_xml
 from server.lab.refusal import Unacceptable
 
-_MOST_FILE = 3_000_000
-_MOST_UNPACKED = 12_000_000
-_MOST_MEMBERS = 400
-_MOST_RATIO = 200
-_MOST_ROWS, _MOST_COLUMNS = 5_000, 60
-_XML = Bounds(most_bytes=4_000_000, most_elements=100_000, most_depth=20)
+_MOST_FILE = 5_000_000
+_MOST_UNPACKED = 50_000_000
+_MOST_MEMBERS = 200
+_MOST_RATIO = 100
+_MOST_ROWS, _MOST_COLUMNS = 20_000, 60
+_XML = Bounds(most_bytes=12_000_000, most_elements=120_000, most_depth=20)
 _MAIN = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
 _CELL = re.compile(r"([A-Z]{1,3})([1-9][0-9]{0,6})")
 
@@ -44,11 +44,14 @@ def column_name(index: int) -> str:
     return letters
 
 
-def read_workbook(data: bytes) -> tuple[Sheet, ...]:
+def read_workbook(data: bytes, *, formulas: bool = False) -> tuple[Sheet, ...]:
     """Return the sheets of an XLSX workbook (ECMA-376), numbers as their shortest decimal text.
 
+    With ``formulas`` a formula comes as its own text with ``=`` before it, never as the value that
+    was last computed; else it is refused.
+
     Raises:
-        Unacceptable: no workbook, too large packed or unpacked, a formula, an error value.
+        Unacceptable: no workbook, too large packed or unpacked, macros, an error value, a formula.
     """
     if len(data) > _MOST_FILE:
         says = f"The workbook has {len(data) / 1e6:.1f} MB; at most {_MOST_FILE / 1e6:g} are read."
@@ -58,7 +61,7 @@ def read_workbook(data: bytes) -> tuple[Sheet, ...]:
             members = _Members(archive)
             strings = _shared_strings(members)
             return tuple(
-                Sheet(name, _rows(members.xml(path), strings, name))
+                Sheet(name, _Cells(strings, name, formulas=formulas).rows(members.xml(path)))
                 for name, path in _sheet_paths(members)
             )
     except (zipfile.BadZipFile, NotImplementedError, EOFError, OSError, ValueError) as problem:
@@ -80,6 +83,9 @@ class _Members:
             raise Unacceptable(says, field="file")
         self._archive = archive
         self.names = {one.filename for one in listed}
+        if any(name.endswith("vbaProject.bin") for name in self.names):
+            says = "The workbook holds macros; save it as XLSX without them."
+            raise Unacceptable(says, field="file")
         self._left = _MOST_UNPACKED
 
     def xml(self, name: str) -> Node:
@@ -128,20 +134,52 @@ def _runs(node: Node) -> str:
     return "".join(parts)
 
 
-def _rows(root: Node, strings: list[str], sheet: str) -> tuple[tuple[str, ...], ...]:
-    data = root.one("sheetData")
-    cells: dict[tuple[int, int], str] = {}
-    for row in data.all("row") if data else ():
-        for cell in row.all("c"):
-            text = _cell_text(cell, strings, sheet)
-            if text:
-                cells[_place(cell, sheet)] = text
-    if not cells:
-        return ()
-    last_row, last_column = max(r for r, _ in cells), max(c for _, c in cells)
-    return tuple(
-        tuple(cells.get((r, c), "") for c in range(last_column + 1)) for r in range(last_row + 1)
-    )
+class _Cells:
+    """The cells of one sheet as text."""
+
+    def __init__(self, strings: list[str], sheet: str, *, formulas: bool) -> None:
+        self._strings, self._sheet, self._formulas = strings, sheet, formulas
+
+    def rows(self, root: Node) -> tuple[tuple[str, ...], ...]:
+        data = root.one("sheetData")
+        cells: dict[tuple[int, int], str] = {}
+        for row in data.all("row") if data else ():
+            for cell in row.all("c"):
+                text = self._text(cell)
+                if text:
+                    cells[_place(cell, self._sheet)] = text
+        if not cells:
+            return ()
+        last_row, last_column = max(r for r, _ in cells), max(c for _, c in cells)
+        return tuple(
+            tuple(cells.get((r, c), "") for c in range(last_column + 1))
+            for r in range(last_row + 1)
+        )
+
+    def _text(self, cell: Node) -> str:
+        where = f"Sheet “{self._sheet}”, cell {cell.attributes.get('r', '?')[:10]}"
+        formula = cell.one("f")
+        if formula is not None and self._formulas:
+            return f"={formula.text}"
+        if formula is not None:
+            says = f"{where} holds a formula; save the values alone, for nothing is computed here."
+            raise Unacceptable(says, field="file")
+        kind = cell.attributes.get("t", "n")
+        value = cell.one("v")
+        held = value.text if value else ""
+        if kind == "inlineStr":
+            inline = cell.one("is")
+            return _runs(inline).strip() if inline else ""
+        if kind == "s":
+            if not held.isascii() or not held.isdigit() or int(held) >= len(self._strings):
+                raise Unacceptable(f"{where} names a text that is not there.", field="file")
+            return self._strings[int(held)].strip()
+        if kind in {"e", "b"}:
+            what = "an error value" if kind == "e" else "a truth value"
+            raise Unacceptable(f"{where} holds {what} ({held[:20]}), not a number.", field="file")
+        if kind == "n" and held:
+            return _shortest(held, where)
+        return held.strip()
 
 
 def _place(cell: Node, sheet: str) -> tuple[int, int]:
@@ -159,29 +197,6 @@ def _place(cell: Node, sheet: str) -> tuple[int, int]:
         )
         raise Unacceptable(says, field="file")
     return row - 1, column - 1
-
-
-def _cell_text(cell: Node, strings: list[str], sheet: str) -> str:
-    where = f"Sheet “{sheet}”, cell {cell.attributes.get('r', '?')[:10]}"
-    if cell.one("f") is not None:
-        says = f"{where} holds a formula; save the values alone, for nothing is computed here."
-        raise Unacceptable(says, field="file")
-    kind = cell.attributes.get("t", "n")
-    value = cell.one("v")
-    held = value.text if value else ""
-    if kind == "inlineStr":
-        inline = cell.one("is")
-        return _runs(inline).strip() if inline else ""
-    if kind == "s":
-        if not held.isascii() or not held.isdigit() or int(held) >= len(strings):
-            raise Unacceptable(f"{where} names a text that is not there.", field="file")
-        return strings[int(held)].strip()
-    if kind in {"e", "b"}:
-        what = "an error value" if kind == "e" else "a truth value"
-        raise Unacceptable(f"{where} holds {what} ({held[:20]}), not a number.", field="file")
-    if kind == "n" and held:
-        return _shortest(held, where)
-    return held.strip()
 
 
 def _shortest(held: str, where: str) -> str:

@@ -1,5 +1,6 @@
 """Codes of bottles and lots: 8 characters of 31, the last a weighted modulo-31 check."""
 
+import re
 from collections.abc import Iterable
 from random import Random
 
@@ -8,6 +9,7 @@ from server.lab.refusal import NotFound
 #: Digits and letters without I, L, O, U, V.
 ALPHABET = "0123456789ABCDEFGHJKMNPQRSTWXYZ"
 LENGTH = 8
+_ADDRESS = re.compile(r"/[bB]/(?P<code>[0-9A-Za-z]{8})/?(?:[?#].*)?$")
 _WEIGHTS = (8, 7, 6, 5, 4, 3, 2, 1)
 
 
@@ -37,6 +39,13 @@ def read_code(text: str) -> str:
         says = f"“{text[:40]}” is no code of a bottle or lot: look at each character again."
         raise NotFound(says, field="code", example="a code of 8 characters, as on the label")
     return code
+
+
+def code_in(text: str) -> str:
+    """Return the code in a scanned or typed address such as ``…/b/7KQ2M4XA``, else nothing."""
+    found = _ADDRESS.search(text.strip())
+    code = found["code"].upper() if found else ""
+    return code if holds(code) else ""
 
 
 def nearest(code: str, known: Iterable[str], *, most: int = 5) -> list[str]:

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from datetime import datetime
 
 from server.lab.calibration.check_log import last_checked
+from server.lab.curve_entry import SLOT as CURVE
 from server.lab.ink import standing
 from server.lab.sheet_facts import (
     BALANCE,
@@ -28,10 +29,10 @@ MASS_SLOTS = frozenset({"container_and_standard", "container_less_standard", "ma
 _SLOTS = {
     STANDARD_LOT: MASS_SLOTS,
     BALANCE: MASS_SLOTS,
-    BURETTE: frozenset({"burette_start", "burette_end", "blank"}),
+    BURETTE: frozenset({"burette_start", "burette_end", "blank", CURVE}),
     PIPETTE: frozenset(),
     FLASK: frozenset(),
-    PROBE: frozenset({"burette_end", "blank"}),
+    PROBE: frozenset({"burette_end", "blank", CURVE}),
     THERMOMETER: frozenset({"temperature"}),
     ROOM: frozenset({"air_temperature", "air_pressure", "air_humidity"}),
 }

@@ -3,8 +3,10 @@
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from datetime import datetime
+from typing import Any
 
 from server.lab.canonical import canonical, digest
+from server.lab.curve_entry import SLOT as CURVE
 
 #: Reasons that the correction pad offers; a free text is as good.
 CORRECTION_REASONS = (
@@ -30,7 +32,11 @@ Place = tuple[int, str, int]
 
 @dataclass(frozen=True, slots=True)
 class WrittenEntry:
-    """One entry as it stands in the record; an empty ``text`` only strikes another."""
+    """One entry as it stands in the record; an empty ``text`` only strikes another.
+
+    ``raw`` is the line that an instrument sent, or a curve as ``server.lab.curve_entry`` reads it;
+    ``file_id`` the original that the curve came from.
+    """
 
     id: str
     position: int
@@ -52,6 +58,7 @@ class WrittenEntry:
     device_zone: str | None
     received_at: datetime
     late: bool
+    file_id: str | None = None
 
     @property
     def place(self) -> Place:
@@ -97,11 +104,31 @@ def excluded(entries: Iterable[WrittenEntry]) -> dict[int, WrittenEntry]:
     }
 
 
+#: What an entry's digest is made of, in this order. A column that comes later needs a digest of
+#: another name: what the trail noted must stay checkable.
+_DIGESTED = (
+    "id", "sheet_id", "position", "replicate", "slot", "segment", "text", "unit", "raw", "strikes",
+    "reason", "person_id", "posted_by", "device_id", "device_sequence", "device_at", "device_zone",
+    "monotonic_ms", "received_at", "base_revision", "body_digest", "late", "file_id",
+)  # fmt: skip
+
+
+def entry_digest(entry: Any) -> str:
+    """Return the digest of all that is kept of an entry's row, instants in ISO 8601 in UTC."""
+    kept = [getattr(entry, name) for name in _DIGESTED]
+    return digest(
+        canonical([one.isoformat() if isinstance(one, datetime) else one for one in kept])
+    )
+
+
 def ink_digest(entries: Iterable[WrittenEntry]) -> str:
     """Return the digest of all that was written, what is struck through included."""
-    lines = [
-        [e.id, e.position, e.replicate, e.slot, e.segment, e.text, e.unit, e.strikes, e.reason,
-         e.person_id]
-        for e in sorted(entries, key=lambda entry: entry.position)
-    ]  # fmt: skip
-    return digest(canonical(lines))
+    ordered = sorted(entries, key=lambda entry: entry.position)
+    return digest(canonical([_line(entry) for entry in ordered]))
+
+
+def _line(e: WrittenEntry) -> list[object]:
+    line = [e.id, e.position, e.replicate, e.slot, e.segment, e.text, e.unit, e.strikes, e.reason,
+            e.person_id]  # fmt: skip
+    # a curve's words are not the curve: what was measured are its points
+    return [*line, e.raw] if e.slot == CURVE else line

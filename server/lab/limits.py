@@ -28,6 +28,9 @@ LIMITS: Mapping[str, LimitName] = MappingProxyType(
         "burette_least_percent": LimitName("Use of the burette, at least", "%", "30"),
         "burette_most_percent": LimitName("Use of the burette, at most", "%", "90"),
         "resolution_multiple": LimitName("Reading over resolution, at least", "times", "1000"),
+        "method_margin_percent": LimitName(
+            "Difference between end-point methods that does not matter, at most", "%", "0.1"
+        ),
     }
 )
 

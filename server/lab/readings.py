@@ -4,6 +4,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from decimal import Decimal
 
+from server.lab.curve_entry import METHOD_SLOT
 from server.lab.ink import COUNTS_AGAIN, Place
 from server.lab.refusal import Unacceptable
 from server.lab.rig import Rig
@@ -57,6 +58,9 @@ def _check_choice(row: Row, text: str, beside: Beside) -> None:
             else "Give the reason besides the criterion; the replicate stays visible with both."
         )
         raise Unacceptable(says, field="reason", example="drop hung at the tip")
+    if row.slot == METHOD_SLOT and not (beside.reason or "").strip():
+        says = "Give the reason why another method than the recipe's is taken."
+        raise Unacceptable(says, field="reason", example="carbonate bends the fit before the step")
 
 
 def _check_number(row: Row, text: str, beside: Beside) -> None:

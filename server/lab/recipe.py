@@ -7,6 +7,7 @@ from fractions import Fraction
 from typing import Any
 
 from server.lab import reading_documents as reading
+from server.lab.curve_entry import CURVE_METHODS, CURVE_SYSTEMS
 from server.lab.limits import check_limits
 from server.lab.refusal import Unacceptable
 from server.metrology.decimal_text import DecimalProblem, read_wire_decimal
@@ -32,10 +33,23 @@ class RecipeTitrant:
 
 @dataclass(frozen=True, slots=True)
 class EndPoint:
-    """How the end point is told: ``mode`` visual or potentiometric, and the indicator."""
+    """How the end point is told: ``mode`` visual or potentiometric, and the indicator.
+
+    With a ``method`` the recipe takes a curve, and the volume is what this method finds on it;
+    ``system`` is the reaction for the model fit (None: told by titrant and standard), and
+    ``flask_volume_mL`` the volume in the flask before the first drop, as text.
+    """
 
     mode: str
     indicator: str | None
+    method: str | None = None
+    system: str | None = None
+    flask_volume_mL: str | None = None
+
+    @property
+    def takes_curve(self) -> bool:
+        """Whether each replicate is a probe's curve in place of burette readings."""
+        return self.method is not None
 
 
 @dataclass(frozen=True, slots=True)
@@ -130,18 +144,42 @@ def _titrant(doc: Mapping[str, Any]) -> RecipeTitrant:
 
 
 def _end_point(doc: Mapping[str, Any]) -> EndPoint:
-    end_point = reading.known_keys(doc.get("end_point"), "end_point", ("mode", "indicator"))
+    keys = ("mode", "indicator", "method", "system", "flask_volume_mL")
+    end_point = reading.known_keys(doc.get("end_point"), "end_point", keys)
     mode = reading.choice_at(end_point, "mode", "end_point", choices=("visual", "potentiometric"))
     if mode == "potentiometric":
-        return EndPoint(mode=mode, indicator=None)
+        return _on_curve(end_point)
+    for key in ("method", "system", "flask_volume_mL"):
+        if end_point.get(key):
+            says = f"end_point.{key} belongs to a potentiometric end point, not to a visual one."
+            raise Unacceptable(says, field=f"end_point.{key}")
     indicator = reading.text_at(
         end_point, "indicator", "end_point", example="phenolphthalein", most=60
     )
     return EndPoint(mode=mode, indicator=indicator)
 
 
+def _on_curve(end_point: Mapping[str, Any]) -> EndPoint:
+    def one_of(key: str, choices: tuple[str, ...]) -> str | None:
+        if not end_point.get(key):
+            return None
+        return reading.choice_at(end_point, key, "end_point", choices=choices)
+
+    method = one_of("method", CURVE_METHODS)
+    system = one_of("system", CURVE_SYSTEMS)
+    flask = None
+    if end_point.get("flask_volume_mL"):
+        flask = _positive(end_point["flask_volume_mL"], "end_point.flask_volume_mL", example="50")
+    for key, value in (("system", system), ("flask_volume_mL", flask)):
+        if method is None and value is not None:
+            says = f"end_point.{key} is for a curve: name the method that is taken on it."
+            raise Unacceptable(says, field="end_point.method", example=CURVE_METHODS[-1])
+    return EndPoint("potentiometric", None, method, system, flask)
+
+
 def _words(end_point: EndPoint) -> str:
-    return f"{end_point.mode}, {end_point.indicator}" if end_point.indicator else end_point.mode
+    told = end_point.indicator or end_point.method
+    return f"{end_point.mode}, {told}" if told else end_point.mode
 
 
 def _ratio(doc: Mapping[str, Any]) -> str | None:

@@ -25,7 +25,9 @@ class Act(StrEnum):
     HOLD = "hold a lot or bottle"
     RELEASE = "release a hold"
     KEEP = "keep standard lots, instruments and recipes"
+    LABEL = "print labels"
     LOG = "write in the log of a standard lot or instrument"
+    USE = "write down what a bottle was used for"
     OVERRIDE = "let something out of date be used"
     PROPOSE_PULL = "propose a pull"
     CONFIRM_PULL = "confirm a pull"
@@ -42,7 +44,9 @@ _HOLDERS: dict[Act, frozenset[Role]] = {
     Act.HOLD: frozenset({Role.ANALYST, Role.COUNTERSIGNER, Role.KEEPER}),
     Act.RELEASE: frozenset({Role.KEEPER, Role.COUNTERSIGNER}),
     Act.KEEP: frozenset({Role.KEEPER}),
+    Act.LABEL: frozenset({Role.ANALYST, Role.KEEPER}),
     Act.LOG: frozenset({Role.ANALYST, Role.KEEPER}),
+    Act.USE: frozenset({Role.ANALYST, Role.KEEPER}),
     Act.OVERRIDE: frozenset({Role.KEEPER}),
     Act.PROPOSE_PULL: frozenset({Role.KEEPER}),
     Act.CONFIRM_PULL: frozenset({Role.COUNTERSIGNER}),

@@ -1,13 +1,28 @@
 """What a signature is bound to: a digest that belongs to one record and no other."""
 
+from collections.abc import Sequence
+from typing import Protocol
+
 from server.lab.canonical import canonical, digest
-from server.lab.ink import ink_digest
-from server.lab.sheet_facts import SheetFacts, SignatureFact
+from server.lab.ink import WrittenEntry, ink_digest
+from server.lab.sheet_facts import SignatureFact
 
 MEASURED, COUNTERSIGNED = "measured", "countersigned"
 
 
-def digest_to_sign(signature: SignatureFact, facts: SheetFacts, snapshot_digest: str) -> str:
+class Inked(Protocol):
+    """What a signature is set under: a sheet's id and all that was written on it."""
+
+    @property
+    def id(self) -> str:
+        """The sheet's id."""
+
+    @property
+    def entries(self) -> Sequence[WrittenEntry]:
+        """What was written, struck through or not."""
+
+
+def digest_to_sign(signature: SignatureFact, facts: Inked, snapshot_digest: str) -> str:
     """Return the digest of who signs what, when and in which meaning, with all that was written.
 
     Entries received after the signature do not belong to it; the signature's own digest does not
@@ -32,6 +47,6 @@ def digest_to_sign(signature: SignatureFact, facts: SheetFacts, snapshot_digest:
     )
 
 
-def signature_holds(signature: SignatureFact, facts: SheetFacts, snapshot_digest: str) -> bool:
+def signature_holds(signature: SignatureFact, facts: Inked, snapshot_digest: str) -> bool:
     """Say whether a signature still belongs to this sheet, this evaluation and what is written."""
     return signature.signed_digest == digest_to_sign(signature, facts, snapshot_digest)

@@ -4,6 +4,9 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from decimal import Decimal
 
+from server.lab.curve_entry import CURVE_METHODS
+from server.lab.curve_entry import METHOD_SLOT as END_POINT_METHOD
+from server.lab.curve_entry import SLOT as CURVE
 from server.lab.ink import COUNTS_AGAIN, EXCLUSION_CRITERIA, Place, WrittenEntry, excluded, standing
 from server.lab.recipe import RecipeDocument
 from server.lab.refusal import Unacceptable
@@ -11,6 +14,8 @@ from server.lab.rig import Rig, Span
 
 MOST_REPLICATES = 20
 MOST_SEGMENTS = 9
+CURVE_KIND = "curve"
+_CURVE_HINT = "Drop a file or paste two columns: volume, then pH or mV."
 #: Common indicators of the trade, offered besides the recipe's own.
 INDICATORS = (
     "phenolphthalein",
@@ -33,7 +38,7 @@ INDICATORS = (
 class Row:
     """One row of the bench sheet, empty.
 
-    ``kind``: number, step, choice or text. ``low`` and ``high`` are what is possible;
+    ``kind``: number, step, choice, text or curve. ``low`` and ``high`` are what is possible;
     ``usual_low`` and ``usual_high`` what is usual: outside it a reason is asked.
     """
 
@@ -90,10 +95,21 @@ def replicate_rows(
         if step.when == "replicate"
     ]
     rows += _masses(recipe, rig, replicate)
-    for segment in range(1, segments + 1):
-        rows += _burette(rig, replicate, segment)
+    if recipe.end_point.takes_curve:
+        rows.append(Row(replicate, CURVE, 1, "Titration curve", hint=_CURVE_HINT, kind=CURVE_KIND))
+    else:
+        for segment in range(1, segments + 1):
+            rows += _burette(rig, replicate, segment)
     if recipe.temperature == "each":
         rows.append(_temperature(replicate, recipe, rig))
+    if recipe.end_point.takes_curve:
+        rows.append(
+            Row(
+                replicate, END_POINT_METHOD, 1, "End point taken by",
+                hint="Only where another method than the recipe's is to count; give the reason.",
+                kind="choice", required=False, choices=CURVE_METHODS,
+            )
+        )  # fmt: skip
     rows.append(
         Row(
             replicate, "excluded", 1, "Left out of the mean",

@@ -238,6 +238,7 @@ def _note_certificate(
         "lot": facts.lot.name,
         "valid_until": certificate.valid_until.isoformat(),
         "document_digest": certificate.document_digest,
+        "trail_seq": certificate.trail_seq,
     }
     thing = Thing("certificate", certificate.id, certificate.number)
     note_act(session, "issued a certificate", thing, actor=actor, now=now, body=body)

@@ -1,27 +1,36 @@
 """Writing entries: the one door, in ink."""
 
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
 from datetime import UTC, datetime
 from typing import Any
 from uuid import UUID
 
 from sqlalchemy.orm import Session
 
+from server.intake.curve_upload import SentCurve
 from server.lab.actor import Actor
 from server.lab.canonical import canonical, digest
+from server.lab.curve_entry import write_curve_entry
 from server.lab.free_text import check_text
 from server.lab.in_use import kind_of_slot, things_in_use
-from server.lab.ink import WrittenEntry, standing
+from server.lab.ink import WrittenEntry, entry_digest, standing
 from server.lab.readings import Beside, check_reading
 from server.lab.refusal import KeyMissing, NotAllowed, SavedFirst, Unacceptable
 from server.lab.rig import rig_of
 from server.lab.roles import Act
 from server.lab.sheet_facts import SheetFacts
-from server.lab.slots import row_at
+from server.lab.slots import CURVE_KIND, Row, row_at
 from server.lab.states import OPEN, SENT_BACK
 from server.lab.validity import read_zone
 from server.procedures.acts import Thing, note_act
 from server.procedures.bench import lock_sheet
+from server.procedures.curves import (
+    CurvesRead,
+    check_not_twice,
+    keep_curve,
+    read_curve_of,
+)
+from server.records.queries.curve_columns import CurveSource, curve_source
 from server.records.queries.load_entries import entry_of_device
 from server.records.queries.load_sheet import load_sheet_facts
 from server.records.tables.bench import Entry, Sheet
@@ -38,7 +47,8 @@ class NewEntry:
     """One thing to write. ``id`` is a UUID made by the writer: the entry's idempotency key.
 
     ``text`` stays as typed; an empty one only strikes. ``strikes`` is the entry that this one
-    replaces, with ``reason``. Replicate 0 is the sheet.
+    replaces, with ``reason``. Replicate 0 is the sheet. A row of kind *curve* takes its original in
+    ``curve``: its points become ``raw`` here, and its ``text`` the words for them.
     """
 
     id: str
@@ -56,14 +66,33 @@ class NewEntry:
     device_zone: str | None = None
     monotonic_ms: int | None = None
     base_revision: int | None = None
+    curve: SentCurve | None = None
 
 
 @dataclass(frozen=True, slots=True)
 class WriteEntries:
-    """Entries for one sheet, in the order in which they were written; all or none are taken."""
+    """Entries for one sheet, in the order in which they were written; all or none are taken.
+
+    ``curves`` are those of the entries that were read already.
+    """
 
     sheet_id: str
     entries: tuple[NewEntry, ...]
+    curves: CurvesRead | None = None
+
+
+def read_curves(command: WriteEntries, source: CurveSource) -> WriteEntries:
+    """Return the command with its curves read, so that nothing waits for that.
+
+    Raises:
+        Unacceptable: a curve cannot be read; row and column are named.
+    """
+    read = {
+        entry.id: read_curve_of(entry.curve, source)
+        for entry in command.entries
+        if entry.curve is not None
+    }
+    return replace(command, curves=CurvesRead(source, read))
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,7 +126,8 @@ def write_entries(
         return tuple(answer for answer in answers if answer)
     facts = load_sheet_facts(session, sheet.id)
     _need_writable(facts)
-    pen = _Pen(session, sheet, facts, actor=actor, now=now)
+    curves = command.curves or CurvesRead(curve_source(session, sheet))
+    pen = _Pen(session, sheet, facts, curves=curves, actor=actor, now=now)
     written = tuple(
         answer or pen.write(entry) for answer, entry in zip(answers, command.entries, strict=True)
     )
@@ -121,6 +151,7 @@ def _check_key(entry: NewEntry) -> None:
             raise Unacceptable(says, field=field, example="1")
 
 
+_EXAMPLE_CURVE = '{"pasted": "0.00; 4.01"}'
 _EXAMPLE_UUID = "7f0f3b1e-2f57-4c0c-9d62-0c6f8c1c9a11"
 
 
@@ -132,7 +163,11 @@ def _is_uuid(text: str) -> bool:
 
 
 def _body_digest(sheet_id: str, entry: NewEntry) -> str:
-    return digest(canonical({"sheet_id": sheet_id, **asdict(entry)}))
+    body = {"sheet_id": sheet_id, **asdict(entry)}
+    if entry.curve is None:
+        # entries without one keep the digest that they had before there were curves
+        del body["curve"]
+    return digest(canonical(body))
 
 
 def _earlier(session: Session, sheet: Sheet, entry: NewEntry) -> Written | None:
@@ -156,14 +191,31 @@ def _need_writable(facts: SheetFacts) -> None:
         raise NotAllowed("This lot was pulled: it is out of use for good.")
 
 
+@dataclass(frozen=True, slots=True)
+class _CurveKept:
+    """What a curve's entry holds in place of what was typed."""
+
+    text: str
+    raw: str
+    file_id: str
+    sha256: str
+
+
 class _Pen:
     """Writes entries one by one, each checked against what stands by then."""
 
     def __init__(
-        self, session: Session, sheet: Sheet, facts: SheetFacts, *, actor: Actor, now: datetime
+        self,
+        session: Session,
+        sheet: Sheet,
+        facts: SheetFacts,
+        *,
+        curves: CurvesRead,
+        actor: Actor,
+        now: datetime,
     ) -> None:
         self._session, self._sheet, self._facts = session, sheet, facts
-        self._actor, self._now = actor, now
+        self._curves, self._actor, self._now = curves, actor, now
         self._rig = rig_of(facts.instruments)
         self._entries = list(facts.entries)
         self._refused = {one.kind: one for one in things_in_use(facts, at=now) if one.blocks}
@@ -179,11 +231,40 @@ class _Pen:
         self._check_in_date(entry, row.label)
         stands = standing(self._entries)
         self._check_strike(entry, stands.get(row.place), row.label)
+        if row.kind == CURVE_KIND:
+            return self._write_curve(entry, row)
+        if entry.curve is not None:
+            says = f"{row.label} takes no curve."
+            raise Unacceptable(says, field="curve")
         if entry.text.strip() or not entry.strikes:
             values = {place: one.text for place, one in stands.items() if place != row.place}
             beside = Beside(values=values, rig=self._rig, reason=entry.reason)
             check_reading(row, entry.text, entry.unit, beside)
         return self._add(entry, row.unit)
+
+    def _write_curve(self, entry: NewEntry, row: Row) -> Written:
+        """Read a curve, keep its original, and write its points; an empty entry only strikes."""
+        if entry.raw is not None:
+            says = f"{row.label}: send the original in curve; its points are read here."
+            raise Unacceptable(says, field="raw")
+        if entry.curve is None:
+            if entry.strikes and not entry.text.strip():
+                return self._add(entry, row.unit)
+            says = f"{row.label} takes a file or pasted text, in curve; not words alone."
+            raise Unacceptable(says, field="curve", example=_EXAMPLE_CURVE)
+        read = self._curves.by_entry.get(entry.id)
+        if read is None:
+            read = read_curve_of(entry.curve, self._curves.source)
+        check_not_twice(read, self._entries, replicate=entry.replicate, reason=entry.reason)
+        told = _CurveKept(
+            text=read.entry.words,
+            raw=write_curve_entry(read.entry),
+            file_id=keep_curve(
+                self._session, read, self._curves.source, actor=self._actor, now=self._now
+            ),
+            sha256=read.original.sha256,
+        )
+        return self._add(entry, row.unit, told)
 
     def finish(self) -> None:
         """Note what was written, and take up a sheet that was sent back."""
@@ -242,7 +323,7 @@ class _Pen:
         )
         return SavedFirst(says, field=label, shown={"standing": theirs, "yours": yours})
 
-    def _add(self, entry: NewEntry, unit: str | None) -> Written:
+    def _add(self, entry: NewEntry, unit: str | None, curve: "_CurveKept | None" = None) -> Written:
         self._check_device(entry)
         position = len(self._entries) + 1
         row = Entry(
@@ -252,9 +333,9 @@ class _Pen:
             replicate=entry.replicate,
             slot=entry.slot,
             segment=entry.segment,
-            text=entry.text,
+            text=curve.text if curve else entry.text,
             unit=unit,
-            raw=entry.raw,
+            raw=curve.raw if curve else entry.raw,
             strikes=entry.strikes,
             reason=(entry.reason or "").strip() or None,
             person_id=self._actor.person_id,
@@ -267,10 +348,12 @@ class _Pen:
             received_at=self._now,
             base_revision=entry.base_revision,
             body_digest=_body_digest(self._sheet.id, entry),
+            file_id=curve.file_id if curve else None,
         )
         self._session.add(row)
         self._session.flush()
         self._entries.append(self._as_written(row))
+        original = {"original_sha256": curve.sha256} if curve else {}
         self._lines.append(
             {
                 "id": row.id,
@@ -282,6 +365,8 @@ class _Pen:
                 "unit": row.unit,
                 "strikes": row.strikes,
                 "reason": row.reason,
+                "digest": entry_digest(row),
+                **original,
             }
         )
         return Written(row.id, position, repeated=False)
@@ -320,6 +405,7 @@ class _Pen:
             device_zone=row.device_zone,
             received_at=row.received_at,
             late=row.late,
+            file_id=row.file_id,
         )
 
 

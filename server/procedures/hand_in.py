@@ -93,6 +93,8 @@ def hand_in_sheet(
         "reasons": reasons,
         "evaluation": evaluation.id,
         "snapshot_digest": evaluation.snapshot_digest,
+        "calculation": evaluation.calculation,
+        "input_digest": evaluation.input_digest,
         "signature": signature.id,
         "signed_digest": signature.signed_digest,
     }

@@ -11,6 +11,7 @@ from sqlalchemy.orm import Session
 from server.lab.actor import Actor
 from server.lab.free_text import read_text
 from server.lab.limits import check_limits
+from server.lab.own_site import read_base_url, read_country
 from server.lab.people import check_name, initials_of, sign_in_key
 from server.lab.refusal import NotAllowed, SavedFirst, Unacceptable
 from server.lab.roles import Act, Role
@@ -47,7 +48,11 @@ class SetUpLaboratory:
 
 @dataclass(frozen=True, slots=True)
 class ChangeSettings:
-    """The laboratory's settings as they shall be; ``revision`` is the one that was read."""
+    """The laboratory's settings as they shall be; ``revision`` is the one that was read.
+
+    What is None stays as it is. ``country`` is that of ISO 3166-1, ``base_url`` the laboratory's
+    own address; ``label_value`` prints the certified value on labels.
+    """
 
     name: str
     address: str
@@ -57,6 +62,9 @@ class ChangeSettings:
     own_signature: bool = False
     limits: dict[str, str] = field(default_factory=dict)
     idle_minutes: int = 30
+    country: str | None = None
+    base_url: str | None = None
+    label_value: bool | None = None
 
 
 def set_up_laboratory(
@@ -137,6 +145,7 @@ def change_settings(
         "shelf_open": command.shelf_open,
         "limits": dict(command.limits),
         "idle_minutes": command.idle_minutes,
+        **_stated(command),
     }
     row.revision += 1
     session.flush()
@@ -149,6 +158,18 @@ def change_settings(
         body={"before": before, "after": _as_read(row)},
     )
     return row.revision
+
+
+def _stated(command: ChangeSettings) -> dict[str, Any]:
+    """Return the settings that stay as they are unless they are given."""
+    given: dict[str, Any] = {}
+    if command.country is not None:
+        given["country"] = read_country(command.country)
+    if command.base_url is not None:
+        given["base_url"] = read_base_url(command.base_url)
+    if command.label_value is not None:
+        given["label_value"] = command.label_value
+    return given
 
 
 def _as_read(row: Laboratory) -> dict[str, Any]:

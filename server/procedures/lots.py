@@ -13,6 +13,7 @@ from server.chemistry.substances import SUBSTANCES
 from server.lab.actor import Actor
 from server.lab.codes import new_code, read_code
 from server.lab.free_text import read_reason, read_text
+from server.lab.opened import read_opened_days
 from server.lab.people import check_name
 from server.lab.refusal import NotAllowed, NotFound, Unacceptable
 from server.lab.roles import Act
@@ -41,7 +42,8 @@ class MakeUpLot:
     """A solution of one preparation.
 
     ``nominal`` in mol/L as text; ``preparation`` is what was done, one step a line; ``use_by`` a
-    day after which no certificate of this lot is valid. An empty name is made from the rest.
+    day after which no certificate of this lot is valid, ``opened_days`` for how many days a bottle
+    keeps once it is open. An empty name is made from the rest.
     """
 
     titrant: str
@@ -53,6 +55,7 @@ class MakeUpLot:
     preparation: str = ""
     recipe_name: str = ""
     use_by: str = ""
+    opened_days: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -107,6 +110,7 @@ def make_up_lot(
     if use_by is not None and use_by < day:
         raise Unacceptable("The use-by day lies before the preparation.", field="use_by")
     name = _lot_name(session, command, f"{titrant} {nominal} mol/L, {day.isoformat()}")
+    opened_days = read_opened_days(command.opened_days)
     steps = read_text(command.preparation, "preparation", most=_MOST_STEPS)
     stated = {
         "prepared_on": day.isoformat(),
@@ -114,6 +118,7 @@ def make_up_lot(
         "preparation": [line.strip() for line in steps.splitlines() if line.strip()],
         "recipe_name": read_text(command.recipe_name, "recipe_name"),
         "use_by": use_by.isoformat() if use_by else "",
+        "opened_days": str(opened_days) if opened_days else "",
     }
     lot = Lot(
         id=str(uuid4()),

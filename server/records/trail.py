@@ -1,22 +1,27 @@
 """The trail: append-only rows, each chained to the one before by SHA-256."""
 
 import json
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
-from datetime import datetime
+from datetime import UTC, datetime, timedelta
+from json.encoder import encode_basestring as quoted
 from typing import Any
 
-from sqlalchemy import select
+from sqlalchemy import BigInteger, Executable, select, type_coerce
+from sqlalchemy.exc import DBAPIError
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.canonical import canonical, digest
+from server.lab.integrity import ISSUED
 from server.records.tables.bench import Certificate
 from server.records.tables.trail import TrailHead, TrailRow
 
 #: The hash before the first row.
 GENESIS = "0" * 64
 SYSTEM = "Titrant Ledger"
+_EPOCH = datetime(1970, 1, 1, tzinfo=UTC)
+_AT_ONCE = 500
 
 
 @dataclass(frozen=True, slots=True)
@@ -28,6 +33,14 @@ class TrailCheck:
     says: str
     seq: int
     hash: str
+
+
+class DoesNotHold(Exception):
+    """The first thing that does not hold, in a sentence."""
+
+    def __init__(self, says: str) -> None:
+        super().__init__(says)
+        self.says = says
 
 
 def note(  # noqa: PLR0913 - who, what, to what, why, when: a trail row has so many parts
@@ -73,68 +86,160 @@ def head(session: Session) -> tuple[int, str]:
     return last.seq, last.hash
 
 
-def hash_of(row: TrailRow) -> str:
-    """Return the hash that a row must carry: SHA-256 over the previous hash and all it says."""
-    said = {
-        "seq": row.seq,
-        "at": row.at.isoformat(),
-        "zone": row.zone,
-        "person_id": row.person_id,
-        "person_name": row.person_name,
-        "act": row.act,
-        "kind": row.kind,
-        "thing_id": row.thing_id,
-        "thing_name": row.thing_name,
-        "why": row.why,
-        "body": row.body,
-    }
-    return digest(f"{row.previous_hash}\n{canonical(said)}")
+def hash_of(row: Any, *, at: str | None = None) -> str:
+    """Return the hash that a row must carry: SHA-256 over the previous hash and all it says.
+
+    ``at`` is the row's instant in ISO 8601, where the caller has it as text already. What is hashed
+    is the canonical text of the row's columns by name, spelled out here: a check makes it for
+    every row there is, and a general writer of JSON takes most of its time.
+    """
+    person = "null" if row.person_id is None else quoted(row.person_id)
+    why = "null" if row.why is None else quoted(row.why)
+    return digest(
+        f'{row.previous_hash}\n{{"act":{quoted(row.act)},"at":"{at or row.at.isoformat()}",'
+        f'"body":{quoted(row.body)},"kind":{quoted(row.kind)},"person_id":{person},'
+        f'"person_name":{quoted(row.person_name)},"seq":{row.seq},'
+        f'"thing_id":{quoted(row.thing_id)},"thing_name":{quoted(row.thing_name)},'
+        f'"why":{why},"zone":{quoted(row.zone)}}}'
+    )
 
 
-def check(session: Session) -> TrailCheck:
-    """Return whether every row, the head and the certificates' anchors hold; name the first not."""
-    seq, last_hash = 0, GENESIS
+def read_body(row: Any) -> dict[str, Any]:
+    """Return what a row says beyond its columns.
+
+    Raises:
+        DoesNotHold: its body is not the text of an object.
+    """
+    try:
+        body = json.loads(row.body)
+    except ValueError:
+        body = None
+    if not isinstance(body, dict):
+        raise DoesNotHold(f"What row {row.seq} says cannot be read.")
+    return body
+
+
+def check(session: Session, *, newest: int | None = None) -> TrailCheck:
+    """Return whether rows, head, anchors and certificates' texts hold; name the first not.
+
+    ``newest``: look at the last so many rows only, and at the certificates anchored in them.
+    """
+    after = 0 if newest is None else max(0, _head_seq(session) - newest)
+    seq, last_hash = after, GENESIS
     issued: dict[str, str | None] = {}
-    anchors = _anchors(session)
-    rows = session.scalars(select(TrailRow).order_by(TrailRow.seq).execution_options(yield_per=500))
-    for row in rows:
+    try:
+        for row in read_chain(session, after=after):
+            seq, last_hash = row.seq, row.hash
+            if row.act == ISSUED:
+                issued.setdefault(row.thing_id, read_body(row).get("document_digest"))
+        _check_documents(session, issued, after)
+    except DoesNotHold as broken:
+        return TrailCheck(False, seq - after, broken.says, seq, last_hash)
+    rows = seq - after
+    says = f"The chain holds over {rows} rows."
+    if after:
+        says = (
+            f"The chain holds over its newest {rows} rows, from {after + 1} to {seq}; "
+            "“trail check” on the command line reads all of them."
+        )
+    return TrailCheck(True, rows, says, seq, last_hash)
+
+
+def read_chain(
+    session: Session, *, after: int = 0, known: Mapping[int, str] | None = None
+) -> Iterator[Any]:
+    """Yield the rows in order, each once it is found to hold: columns as stored, ``at`` as µs.
+
+    ``known`` maps numbers of rows to the hashes that somebody kept elsewhere.
+
+    Raises:
+        DoesNotHold: a row, the head, a certificate's anchor or a known hash does not hold.
+    """
+    seq = after
+    last_hash = _hash_at(session, after) if after else GENESIS
+    anchors, known = _anchors(session, after), dict(known or {})
+    for row in _rows(session, after):
         problem = _problem_of(row, seq, last_hash)
         if problem is not None:
-            return TrailCheck(False, seq, problem, seq, last_hash)
+            raise DoesNotHold(problem)
         seq, last_hash = row.seq, row.hash
-        if row.kind == "certificate":
-            issued[row.thing_id] = json.loads(row.body).get("document_digest")
-        for certificate in anchors.pop(seq, []):
-            if certificate.trail_hash != last_hash:
-                says = f"Certificate {certificate.number} is anchored to another row {seq}."
-                return TrailCheck(False, seq, says, seq, last_hash)
+        for number, anchor in anchors.pop(seq, ()):
+            if anchor != last_hash:
+                says = f"Certificate {number} is anchored to another row {seq}."
+                raise DoesNotHold(says)
+        if known.pop(seq, last_hash) != last_hash:
+            says = f"Row {seq} is not the one whose hash was kept elsewhere."
+            raise DoesNotHold(says)
+        yield row
     standing = session.get(TrailHead, 1)
     if standing is None or (standing.seq, standing.hash) != (seq, last_hash):
         says = f"The chain ends at row {seq}, but its head says otherwise: rows are missing."
-        return TrailCheck(False, seq, says, seq, last_hash)
+        raise DoesNotHold(says)
     for certificates in anchors.values():
-        says = f"Certificate {certificates[0].number} is anchored to a row that is not there."
-        return TrailCheck(False, seq, says, seq, last_hash)
-    for certificate in session.scalars(select(Certificate).order_by(Certificate.number)):
-        made_anew = digest(certificate.document)
-        if not made_anew == certificate.document_digest == issued.get(certificate.id):
-            says = f"Certificate {certificate.number} is not the text that was issued."
-            return TrailCheck(False, seq, says, seq, last_hash)
-    return TrailCheck(True, seq, f"The chain holds over {seq} rows.", seq, last_hash)
+        says = f"Certificate {certificates[0][0]} is anchored to a row that is not there."
+        raise DoesNotHold(says)
+    for missing in known:
+        says = f"The chain ends at row {seq}; row {missing}, whose hash was kept, is not there."
+        raise DoesNotHold(says)
 
 
-def _anchors(session: Session) -> dict[int, list[Certificate]]:
-    found: dict[int, list[Certificate]] = {}
-    for one in session.scalars(select(Certificate)):
-        found.setdefault(one.trail_seq, []).append(one)
+def _rows(session: Session, after: int) -> Iterator[Any]:
+    columns = [one for one in TrailRow.__table__.columns if one.name != "at"]
+    rows = select(type_coerce(TrailRow.at, BigInteger).label("at"), *columns)
+    ordered = rows.where(TrailRow.seq > after).order_by(TrailRow.seq)
+    yield from fetched(session, ordered, f"A row of the trail after row {after}")
+
+
+def fetched(session: Session, rows: Executable, what: str) -> Iterator[Any]:
+    """Yield rows a batch at a time.
+
+    Raises:
+        DoesNotHold: one of them is no longer text that can be read; ``what`` begins the sentence.
+    """
+    try:
+        yield from session.execute(rows, execution_options={"yield_per": _AT_ONCE})
+    except (DBAPIError, ValueError, OverflowError, TypeError) as problem:
+        says = f"{what} cannot be read: it is damaged."
+        raise DoesNotHold(says) from problem
+
+
+def _anchors(session: Session, after: int) -> dict[int, list[tuple[str, str]]]:
+    """Return numbers and hashes of the certificates anchored in each row."""
+    found: dict[int, list[tuple[str, str]]] = {}
+    columns = select(Certificate.number, Certificate.trail_seq, Certificate.trail_hash)
+    for number, seq, anchor in session.execute(columns.where(Certificate.trail_seq > after)):
+        found.setdefault(seq, []).append((number, anchor))
     return found
 
 
-def _problem_of(row: TrailRow, seq: int, last_hash: str) -> str | None:
+def _check_documents(session: Session, issued: Mapping[str, str | None], after: int) -> None:
+    """Refuse a certificate whose text is not the one that the trail says was issued."""
+    rows = select(
+        Certificate.id, Certificate.number, Certificate.document, Certificate.document_digest
+    )
+    ordered = rows.where(Certificate.trail_seq > after).order_by(Certificate.number)
+    for one in fetched(session, ordered, "The text of a certificate"):
+        if not digest(one.document) == one.document_digest == issued.get(one.id):
+            says = f"Certificate {one.number} is not the text that was issued."
+            raise DoesNotHold(says)
+
+
+def _problem_of(row: Any, seq: int, last_hash: str) -> str | None:
     if row.seq != seq + 1:
         return f"Row {seq + 1} is missing."
     if row.previous_hash != last_hash:
         return f"Row {row.seq} does not follow from row {seq}."
-    if row.hash != hash_of(row):
-        return f"Row {row.seq} was changed after it was written."
-    return None
+    try:
+        at = (_EPOCH + timedelta(microseconds=row.at)).isoformat()
+        held = row.hash == hash_of(row, at=at)
+    except (TypeError, ValueError, OverflowError):
+        held = False
+    return None if held else f"Row {row.seq} was changed after it was written."
+
+
+def _head_seq(session: Session) -> int:
+    return session.scalar(select(TrailHead.seq).where(TrailHead.id == 1)) or 0
+
+
+def _hash_at(session: Session, seq: int) -> str:
+    return session.scalar(select(TrailRow.hash).where(TrailRow.seq == seq)) or GENESIS

@@ -86,4 +86,5 @@ def issued_from(
         snapshot=snapshot,
         previous=previous,
         url=url,
+        state_says=found["state_says"],
     )

@@ -7,7 +7,10 @@ from server.sheets.plan import PlanView
 
 @dataclass(frozen=True, slots=True)
 class EntryView:
-    """One entry as written. ``at`` is ISO 8601 in UTC; ``clock`` the local hh:mm for the row."""
+    """One entry as written. ``at`` is ISO 8601 in UTC; ``clock`` the local hh:mm for the row.
+
+    ``raw`` is the line that an instrument sent; ``file_url`` the original of a curve.
+    """
 
     id: str
     text: str
@@ -19,6 +22,7 @@ class EntryView:
     clock: str
     late: bool
     reason: str | None
+    file_url: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -34,7 +38,7 @@ class StruckEntry:
 
 @dataclass(frozen=True, slots=True)
 class BenchRow:
-    """One row. ``kind``: number, step, choice, text.
+    """One row. ``kind``: number, step, choice, text, curve.
 
     ``low`` and ``high`` are what is possible, ``usual_low`` and ``usual_high`` what is usual.
     """

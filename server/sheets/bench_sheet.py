@@ -85,6 +85,8 @@ def against(facts: SheetFacts) -> str:
     parts += [one.name for one in facts.instruments]
     if recipe.end_point.indicator:
         parts.append(f"indicator {recipe.end_point.indicator}")
+    if recipe.end_point.method:
+        parts.append(f"curve, {recipe.end_point.method}")
     return " · ".join(parts)
 
 

@@ -14,6 +14,7 @@ from server.lab.states import STANDING
 from server.metrology.rounding import rounded_pair
 from server.records.queries.list_certificates import KeptCertificate, certificates_of_lot
 from server.records.queries.list_shelf import BottleOnShelf
+from server.records.queries.list_watches import BOTTLE, standing_watch
 from server.records.queries.load_papers import load_laboratory_fact
 from server.sheets.look_up import at_temperature, read_celsius
 from server.sheets.parts.by_code import find_bottle
@@ -26,10 +27,11 @@ from server.sheets.parts.shelf_state import (
     held_says,
     nominal_words,
     state_of_bottle,
-    why,
+    why_of_bottle,
 )
-from server.sheets.parts.telling import due_words, last_day_words, signed_words
+from server.sheets.parts.telling import due_words, last_day_words, moment_words, signed_words
 from server.sheets.shelf import AtTemperature, BottleCard
+from server.sheets.uses_page import uses_of
 
 _NO_NUMBER = Printed("", "", "", "", "", "", 0, "")
 _AT_FIRST = "20.0"
@@ -55,6 +57,8 @@ def open_bottle_card(
     result = concentration_in_force(lot, state)
     number = printed(result) if result else _NO_NUMBER
     certificate = lot.certificate if result else None
+    good = one.good_until if result else None
+    tends = actor is not None and actor.may(Act.BOTTLE) and bottle.used_up_at is None
     history = _history(session, one, actor=actor, in_force=result is not None)
     return BottleCard(
         code=bottle.code,
@@ -66,7 +70,7 @@ def open_bottle_card(
         place=bottle.place,
         state=state,
         in_force=result is not None,
-        why=why(lot, state, zone, thing="bottle"),
+        why=why_of_bottle(one, state, zone),
         value=number.value,
         uncertainty=number.uncertainty,
         unit=number.unit,
@@ -74,9 +78,9 @@ def open_bottle_card(
         coverage=number.coverage,
         factor=number.factor,
         valid_for=certificate.document["valid_for"] if certificate else "",
-        good_until=last_day_words(certificate.row.valid_until, zone) if certificate else "",
-        good_until_rule=certificate.document["validity"]["rule"] if certificate else "",
-        due_in=due_words(certificate.row.valid_until, now, zone) if certificate else "",
+        good_until=last_day_words(good.at, zone) if good else "",
+        good_until_rule=good.rule if good else "",
+        due_in=due_words(good.at, now, zone) if good else "",
         certificate_number=certificate.row.number if certificate else "",
         certificate_url=f"/certificates/{certificate.row.number}" if certificate else "",
         checked=signed_words(now, zone),
@@ -87,8 +91,16 @@ def open_bottle_card(
         deferral=DEFERRAL,
         may_hold=may_hold(actor, one.hold) and not _gone(one),
         may_release=may_release(actor, one.hold),
-        may_use_up=(actor is not None and actor.may(Act.BOTTLE) and bottle.used_up_at is None),
+        may_use_up=tends,
+        may_open=tends and bottle.opened_at is None,
+        may_move=tends,
         held_says=_held_says(one, zone) if actor is not None else "",
+        opened=_opened(one, zone),
+        watching=(
+            actor is not None
+            and standing_watch(session, actor.person_id, BOTTLE, bottle.id) is not None
+        ),
+        uses=uses_of(session, bottle, reader=actor) if actor is not None else None,
     )
 
 
@@ -117,6 +129,15 @@ def _at(session: Session, one: BottleOnShelf, celsius: Decimal) -> AtTemperature
         warmer=_steps(warmer),
         says=found["says"],
     )
+
+
+def _opened(one: BottleOnShelf, zone: str) -> str:
+    """Return when a bottle was opened, and until when it keeps open where its lot limits that."""
+    if one.bottle.opened_at is None:
+        return ""
+    opened = moment_words(one.bottle.opened_at, zone)
+    until = one.bottle.opened_until
+    return f"{opened}; open it keeps until {last_day_words(until, zone)}" if until else opened
 
 
 def _steps(celsius: Decimal) -> str:

@@ -7,11 +7,21 @@ from server.sheets.countersign import BudgetRow, ReplicateRow
 
 
 @dataclass(frozen=True, slots=True)
+class CertificateFile:
+    """A file of the certificate: its address, its kind, and what it is for."""
+
+    url: str
+    kind: str
+    says: str
+
+
+@dataclass(frozen=True, slots=True)
 class CertificatePage:
     """The issued statement of a lot's concentration."""
 
     number: str
     state: str
+    state_says: str
     replaced_by: str | None
     replaces: str | None
     title: str
@@ -21,6 +31,9 @@ class CertificatePage:
     nominal: str
     lot_code: str
     lot_name: str
+    item: str
+    customer: str
+    end_point: str
     sheet_number: str
     value: str
     uncertainty: str
@@ -50,3 +63,5 @@ class CertificatePage:
     document_holds: bool
     trail_anchor: str
     statements: tuple[str, ...]
+    files: tuple[CertificateFile, ...]
+    no_dcc: str

@@ -17,11 +17,19 @@ from server.records.queries.list_certificates import (
     certificate_by_number,
 )
 from server.records.queries.list_sheets import snapshots_of
+from server.records.queries.list_shelf import last_pull
 from server.records.queries.list_trail import issue_noted
+from server.records.queries.load_papers import load_laboratory_fact
 from server.records.queries.load_sheet import load_sheet_facts
 from server.sheets.bench import SignatureView
-from server.sheets.certificate import CertificatePage
+from server.sheets.certificate import CertificateFile, CertificatePage
 from server.sheets.parts import outcome
+from server.sheets.parts.certificate_words import (
+    CUSTOMER,
+    end_point_words,
+    item_words,
+    statement_lines,
+)
 from server.sheets.parts.doors import need_reader
 from server.sheets.parts.history import state_of_certificate
 from server.sheets.parts.roots import certificate_roots, root_urls
@@ -51,9 +59,11 @@ def open_certificate(
     document = kept.document
     result, lot, zone = document["result"], document["lot"], document["laboratory"]["zone"]
     shown = outcome.printed(result)
+    has_dcc = bool(load_laboratory_fact(session).settings.get("country"))
     return CertificatePage(
         number=kept.row.number,
         state=state_of_certificate(kept),
+        state_says=_state_says(session, kept, zone),
         replaced_by=kept.replaced_by,
         replaces=document["replaces"],
         title=document["title"],
@@ -63,6 +73,9 @@ def open_certificate(
         nominal=nominal_words(lot["nominal"]),
         lot_code=lot["code"],
         lot_name=lot["name"],
+        item=item_words(lot),
+        customer=CUSTOMER,
+        end_point=end_point_words(document["end_point"]),
         sheet_number=document["sheet"]["number"],
         value=shown.value,
         uncertainty=shown.uncertainty,
@@ -91,7 +104,9 @@ def open_certificate(
         document_digest=kept.row.document_digest,
         document_holds=document_holds(session, kept),
         trail_anchor=f"act {kept.row.trail_seq}, {kept.row.trail_hash}",
-        statements=tuple(document["statements"]),
+        statements=tuple(statement_lines(document)),
+        files=tuple(_files(kept.row.number, has_dcc=has_dcc)),
+        no_dcc="" if has_dcc else "No DCC: the laboratory's country is not set.",
     )
 
 
@@ -109,6 +124,7 @@ def open_certificate_document(
     return {
         "document": kept.document,
         "state": state_of_certificate(kept),
+        "state_says": _state_says(session, kept, kept.document["laboratory"]["zone"]),
         "replaced_by": kept.replaced_by,
         "document_digest": kept.row.document_digest,
         "document_holds": document_holds(session, kept),
@@ -134,6 +150,31 @@ def _kept(session: Session, number: str) -> KeptCertificate:
     if kept is None:
         raise NotFound(f"There is no certificate {number[:40]}.", field="number")
     return kept
+
+
+def _state_says(session: Session, kept: KeptCertificate, zone: str) -> str:
+    """Return since when, and where it was pulled why, a certificate stands no more."""
+    if kept.replaced_by is not None:
+        later = certificate_by_number(session, kept.replaced_by)
+        return f"Since {signed_words(later.row.issued_at, zone)}." if later else ""
+    pull = last_pull(session, kept.row.lot_id) if kept.pulled else None
+    if pull is None or pull.confirmed_at is None:
+        return ""
+    return f"Since {signed_words(pull.confirmed_at, zone)}: {pull.reason}"
+
+
+def _files(number: str, *, has_dcc: bool) -> Iterator[CertificateFile]:
+    at = f"/certificates/{number}"
+    yield CertificateFile(f"{at}.pdf", "PDF", "for print and archive, the signed document inside")
+    yield CertificateFile(f"{at}.jws", "JWS", "the document signed by the laboratory (RFC 7515)")
+    yield CertificateFile(f"{at}.json", "JSON", "the document; its SHA-256 is the digest above")
+    if has_dcc:
+        yield CertificateFile(f"{at}.dcc.xml", "DCC", "digital calibration certificate, XML 3.3.0")
+    yield CertificateFile(
+        f"{at}.bench-record.json",
+        "bench record",
+        "what the number is computed from, to do it again",
+    )
 
 
 def _signatures(session: Session, kept: KeptCertificate) -> tuple[SignatureView, ...]:

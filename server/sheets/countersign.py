@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 
 from server.sheets.bench import BenchGroup, FindingView, RestsOn, SignatureView
+from server.sheets.methods import ComparisonView
 
 
 @dataclass(frozen=True, slots=True)
@@ -114,6 +115,7 @@ class CountersignPage:
     formula: str
     calculation: str
     input_digest: str
+    methods: ComparisonView | None
     rests_on: tuple[RestsOn, ...]
     groups: tuple[BenchGroup, ...]
     trail: tuple[TrailLine, ...]

@@ -20,6 +20,7 @@ from server.sheets.bench import FindingView, SignatureView
 from server.sheets.countersign import CountersignPage, Figure
 from server.sheets.parts import outcome
 from server.sheets.parts.acts import trail_lines
+from server.sheets.parts.comparison_view import sheet_comparison
 from server.sheets.parts.doors import need_reader
 from server.sheets.parts.roots import rests_on, root_urls_of_sheet
 from server.sheets.parts.rows import groups_of
@@ -83,6 +84,7 @@ def open_countersign(
         formula=outcome.formula(facts.recipe.document.route),
         calculation=outcome.calculation(result),
         input_digest=evaluation.input_digest,
+        methods=sheet_comparison(facts),
         rests_on=rests_on(facts),
         groups=groups_of(facts),
         trail=trail_lines(trail_of_sheet(session, facts.id), zone),

@@ -11,7 +11,7 @@ from server.lab.actor import Actor
 from server.lab.refusal import Unacceptable
 from server.metrology.decimal_text import DecimalProblem, read_typed_decimal
 from server.metrology.quantity import Quantity, read_quantity
-from server.records.queries.list_shelf import LotOnShelf
+from server.records.queries.list_shelf import BottleOnShelf, LotOnShelf
 from server.records.queries.load_papers import load_laboratory_fact, load_recipe_fact
 from server.sheets.parts.by_code import find_bottle
 from server.sheets.parts.doors import need_shelf
@@ -43,7 +43,7 @@ def look_up(
         "in_force": result is not None,
         "concentration": result["concentration"] if result else None,
         "factor": result["factor"] if result else None,
-        **_certified(one.lot, good=result is not None),
+        **_certified(one, good=result is not None),
         "as_of": now.isoformat(),
     }
     if celsius is not None:
@@ -82,9 +82,10 @@ def at_temperature(session: Session, lot: LotOnShelf, celsius: Decimal) -> dict[
     )
 
 
-def _certified(lot: LotOnShelf, *, good: bool) -> dict[str, Any]:
+def _certified(one: BottleOnShelf, *, good: bool) -> dict[str, Any]:
     """Return what the certificate adds to the number; nothing of it where there is no number."""
-    if lot.certificate is None or not good:
+    until, lot = one.good_until, one.lot
+    if lot.certificate is None or until is None or not good:
         return {"valid_for": None, "valid_until": None, "certificate": None}
     row, document = lot.certificate.row, lot.certificate.document
     return {
@@ -94,6 +95,6 @@ def _certified(lot: LotOnShelf, *, good: bool) -> dict[str, Any]:
             "indicator": document["end_point"]["indicator"],
             "medium": document["lot"]["medium"],
         },
-        "valid_until": row.valid_until.isoformat(),
+        "valid_until": until.at.isoformat(),
         "certificate": {"number": row.number, "url": f"/certificates/{row.number}"},
     }

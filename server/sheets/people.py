@@ -10,6 +10,7 @@ from server.lab.roles import Act, Role
 from server.records.queries.list_people import all_people
 from server.records.queries.list_sheets import count_waiting
 from server.records.queries.loading import laboratory_row, there_is_a_laboratory
+from server.sheets.notices_page import count_unread
 from server.sheets.parts.doors import need_reader
 
 
@@ -42,7 +43,7 @@ class PeoplePage:
 
 @dataclass(frozen=True, slots=True)
 class Chrome:
-    """What every page shows around itself: who is here, where, how many sheets wait.
+    """What every page shows around itself: who is here, where, how many sheets and notices wait.
 
     ``person_id`` keeps one person's unsent entries apart from another's on a shared tablet.
     """
@@ -53,11 +54,11 @@ class Chrome:
     roles: tuple[str, ...]
     waiting: int
     person_id: str | None = None
+    unread: int = 0
 
 
 def open_chrome(session: Session, *, actor: Actor | None, now: datetime) -> Chrome:
     """Return what every page shows around itself; a visitor learns the laboratory's name only."""
-    del now
     name = laboratory_row(session).name if there_is_a_laboratory(session) else ""
     if actor is None:
         return Chrome(name, None, None, (), 0)
@@ -68,6 +69,7 @@ def open_chrome(session: Session, *, actor: Actor | None, now: datetime) -> Chro
         roles=tuple(sorted(actor.roles)),
         waiting=count_waiting(session),
         person_id=actor.person_id,
+        unread=count_unread(session, actor.person_id, now=now),
     )
 
 

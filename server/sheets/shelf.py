@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 
 from server.sheets.bench import CautionView
+from server.sheets.uses import UsesView
 
 
 @dataclass(frozen=True, slots=True)
@@ -24,7 +25,11 @@ class BottleLine:
 
 @dataclass(frozen=True, slots=True)
 class Shelf:
-    """The table of bottles, due soonest first; ``nearest`` are codes close to an unknown one."""
+    """The table of bottles, due soonest first; ``nearest`` are codes close to an unknown one.
+
+    ``states``, ``titrants`` and ``places`` are those to filter by; ``only`` is the code of the one
+    bottle whose code the words are, empty otherwise.
+    """
 
     words: str
     bottles: tuple[BottleLine, ...]
@@ -32,6 +37,11 @@ class Shelf:
     nearest: tuple[str, ...]
     states: tuple[str, ...]
     state: str
+    titrants: tuple[str, ...]
+    titrant: str
+    places: tuple[str, ...]
+    place: str
+    only: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,7 +69,10 @@ class AtTemperature:
 
 @dataclass(frozen=True, slots=True)
 class BottleCard:
-    """One bottle, readable at arm's length. No names of people in what a visitor gets."""
+    """One bottle, readable at arm's length. No names of people in what a visitor gets.
+
+    ``uses`` is None for a visitor; ``opened`` tells when it was opened, empty where it was not.
+    """
 
     code: str
     number: int
@@ -92,4 +105,9 @@ class BottleCard:
     may_hold: bool
     may_release: bool
     may_use_up: bool
+    may_open: bool
+    may_move: bool
     held_says: str
+    opened: str
+    watching: bool
+    uses: UsesView | None

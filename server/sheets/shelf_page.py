@@ -9,6 +9,7 @@ from sqlalchemy.orm import Session
 
 from server.chemistry.substances import name_of
 from server.lab.actor import Actor
+from server.lab.codes import code_in
 from server.lab.states import BOTTLE_STATES, CHECK_DUE, IN_FORCE, may_be_used
 from server.records.queries.list_shelf import BottleOnShelf, bottles_on_shelf
 from server.records.queries.load_papers import load_laboratory_fact
@@ -24,23 +25,37 @@ _NUMBER = re.compile(r"[0-9]{1,12}([.,][0-9]{1,12})?").fullmatch
 
 
 def open_shelf(
-    session: Session, *, words: str, state: str, actor: Actor | None, now: datetime
+    session: Session,
+    *,
+    words: str,
+    state: str,
+    actor: Actor | None,
+    now: datetime,
+    titrant: str = "",
+    place: str = "",
 ) -> Shelf:
-    """Return the bottles that answer to the words and the state; a visitor sees those in force.
+    """Return the bottles that answer to words, state, titrant and place, due soonest first.
+
+    A visitor sees those in force.
 
     Raises:
         NotSignedIn: a visitor where the laboratory has closed its shelf.
     """
     laboratory = load_laboratory_fact(session)
     need_shelf(laboratory.settings, actor)
-    words = words.strip()[:_MOST_WORDS]
+    words = code_in(words) or words.strip()[:_MOST_WORDS]
     everything = bottles_on_shelf(session)
     states = {one.bottle.code: state_of_bottle(one, now) for one in everything}
     open_to = [
         one for one in everything if actor is not None or may_be_used(states[one.bottle.code])
     ]
     answering = [
-        one for one in open_to if _answers(one, words) and state in {"", states[one.bottle.code]}
+        one
+        for one in open_to
+        if _answers(one, words)
+        and state in {"", states[one.bottle.code]}
+        and titrant in {"", one.lot.lot.titrant}
+        and place in {"", one.bottle.place}
     ]
     answering.sort(key=lambda one: _soonest(one, states[one.bottle.code]))
     unknown = not answering and as_code(words) not in states
@@ -51,7 +66,17 @@ def open_shelf(
         nearest=tuple(near_bottles(session, as_code(words))) if unknown else (),
         states=(IN_FORCE, CHECK_DUE) if actor is None else tuple(BOTTLE_STATES),
         state=state if state in BOTTLE_STATES else "",
+        titrants=tuple(sorted({one.lot.lot.titrant for one in open_to} | _asked(titrant))),
+        titrant=titrant,
+        places=tuple(sorted({one.bottle.place for one in open_to} | _asked(place))),
+        place=place,
+        only=as_code(words) if as_code(words) in states else "",
     )
+
+
+def _asked(word: str) -> set[str]:
+    """Return what was asked for as one to choose, also where no bottle has it."""
+    return {word} if word else set()
 
 
 def _answers(one: BottleOnShelf, words: str) -> bool:

@@ -134,10 +134,7 @@ def _fixed(recipe: RecipeDocument) -> Sequence[Fact]:
         Fact("Titrant per standard", recipe.ratio or "from the reaction"),
         Fact("Weighing", "by difference" if recipe.weighing == "difference" else recipe.weighing),
         Fact("Replicates", str(recipe.replicates)),
-        Fact(
-            "End point",
-            ", ".join(filter(None, (recipe.end_point.mode, recipe.end_point.indicator))),
-        ),
+        *_end_point(recipe),
         Fact("Good for", recipe.valid_for),
         Fact("Blank", f"{recipe.blank} blank" if recipe.blank else "none"),
         Fact("Excess at the end point", quantity_words(recipe.excess)),
@@ -149,6 +146,18 @@ def _fixed(recipe: RecipeDocument) -> Sequence[Fact]:
         Fact("Notice before that", count_words(recipe.notice_days, "day")),
     )
     return tuple(fact for fact in facts if fact.value)
+
+
+def _end_point(recipe: RecipeDocument) -> Sequence[Fact]:
+    told = recipe.end_point
+    if told.method is None:
+        return (Fact("End point", ", ".join(filter(None, (told.mode, told.indicator)))),)
+    flask = f"{told.flask_volume_mL} mL" if told.flask_volume_mL else "not stated"
+    return (
+        Fact("End point", f"{told.mode}: a curve for each replicate, taken by {told.method}"),
+        Fact("Reaction on the curve", told.system or "by titrant and standard"),
+        Fact("In the flask before the first drop", flask),
+    )
 
 
 def _temperature(recipe: RecipeDocument) -> str:

@@ -12,6 +12,7 @@ from server.statistics.groups import (
     TestResult,
     brown_forsythe,
     holm_adjusted,
+    mean_of,
     paired_difference,
     paired_spread,
     t_quantile,
@@ -35,11 +36,13 @@ class MethodValues:
     """The values of one method, in the unit of the concentration, replicate by replicate.
 
     ``u_systematic`` is the method's own part that its replicates share and the reference does not.
+    ``flasks`` names the flask of each value, where some methods saw the same ones and others not.
     """
 
     method: str
     values: tuple[float, ...]
     u_systematic: float = 0.0
+    flasks: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,6 +59,7 @@ class Pair:
     """Two methods side by side: difference in percent of their mean, its 95 % interval, verdict.
 
     ``p`` is Holm-adjusted; ``p_equal`` that of the two one-sided tests against the margin.
+    ``paired``: from the same flasks, difference by difference.
     """
 
     first: str
@@ -65,6 +69,7 @@ class Pair:
     p: float
     p_equal: float
     equality: Equality
+    paired: bool
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,7 +86,8 @@ class Comparison:
     """Methods compared: a summary of each, tests, pairs, and three plain sentences.
 
     ``spread`` are the tests of equal scatter, ``means`` the test of equal means of more than two
-    unpaired methods. ``proposed`` is never taken by itself: a person chooses.
+    unpaired methods. ``paired``: all of them are. ``proposed`` is never taken by itself: a person
+    chooses.
     """
 
     methods: tuple[str, ...]
@@ -101,31 +107,25 @@ class Comparison:
 def compare_methods(
     groups: Sequence[MethodValues],
     *,
-    paired: bool,
+    paired: bool = False,
     margin_percent: float = USUAL_MARGIN_PERCENT,
     reference: Reference | None = None,
 ) -> Comparison:
     """Return a comparison of two or more methods.
 
-    ``paired``: the values come from the same curves or flasks, in the same order.
+    ``paired``: all values come from the same curves or flasks, in the same order. Without it two
+    methods are paired on the flasks that both name, where there are at least two of them.
     ``margin_percent`` is the difference that does not matter in this laboratory.
 
     Raises:
         GroupProblem: fewer than two methods, fewer than two values, unequally many where paired,
-            or a margin that is not above zero.
+            not a flask for each value where flasks are named, or a margin that is not above zero.
     """
-    if len(groups) < 2:
-        raise GroupProblem("A comparison needs at least two methods.")
-    if not margin_percent > 0:
-        raise GroupProblem("The margin must be above zero.")
-    for one in groups:
-        if len(one.values) < 2:
-            raise GroupProblem(f"The method “{one.method}” has fewer than two values.")
-    if paired and len({len(one.values) for one in groups}) > 1:
-        raise GroupProblem("Methods from the same curves must have equally many values.")
+    _check(groups, paired=paired, margin_percent=margin_percent)
     summaries = tuple(summarize(one.values) for one in groups)
-    pairs = _pairs(groups, summaries, paired=paired, margin_percent=margin_percent)
-    spread = _spread(groups, paired=paired)
+    meetings = tuple(_meet(a, b, paired=paired) for a, b in combinations(groups, 2))
+    pairs = _pairs(meetings, margin_percent=margin_percent)
+    spread = _spread(groups, meetings)
     true = tuple(
         _trueness(one, summary, reference)
         for one, summary in zip(groups, summaries, strict=True)
@@ -135,10 +135,10 @@ def compare_methods(
     return Comparison(
         methods=tuple(one.method for one in groups),
         summaries=summaries,
-        paired=paired,
+        paired=all(one.paired for one in meetings),
         margin_percent=margin_percent,
         spread=spread,
-        means=_means(groups, paired=paired),
+        means=_means(groups, meetings),
         pairs=pairs,
         trueness=true,
         precision_says=_precision_words(groups, summaries, spread),
@@ -148,32 +148,67 @@ def compare_methods(
     )
 
 
-def _pairs(
-    groups: Sequence[MethodValues],
-    summaries: Sequence[Summary],
-    *,
-    paired: bool,
-    margin_percent: float,
-) -> tuple[Pair, ...]:
-    between = paired_difference if paired else welch_difference
-    indices = list(combinations(range(len(groups)), 2))
-    apart = [between(groups[a].values, groups[b].values) for a, b in indices]
+@dataclass(frozen=True, slots=True)
+class _Meeting:
+    """Two methods and the values of each that are set against each other."""
+
+    first: MethodValues
+    second: MethodValues
+    values: tuple[tuple[float, ...], tuple[float, ...]]
+    paired: bool
+
+
+def _meet(first: MethodValues, second: MethodValues, *, paired: bool) -> _Meeting:
+    if paired:
+        return _Meeting(first, second, (first.values, second.values), paired=True)
+    there = dict(zip(second.flasks, second.values, strict=False))
+    both = [
+        (one, there[flask])
+        for flask, one in zip(first.flasks, first.values, strict=False)
+        if flask in there
+    ]
+    if len(both) < 2:
+        return _Meeting(first, second, (first.values, second.values), paired=False)
+    mine, other = zip(*both, strict=True)
+    return _Meeting(first, second, (mine, other), paired=True)
+
+
+def _check(groups: Sequence[MethodValues], *, paired: bool, margin_percent: float) -> None:
+    if len(groups) < 2:
+        raise GroupProblem("A comparison needs at least two methods.")
+    if not margin_percent > 0:
+        raise GroupProblem("The margin must be above zero.")
+    for one in groups:
+        if len(one.values) < 2:
+            raise GroupProblem(f"The method “{one.method}” has fewer than two values.")
+    if paired and len({len(one.values) for one in groups}) > 1:
+        raise GroupProblem("Methods from the same curves must have equally many values.")
+    for one in groups:
+        if one.flasks and len(set(one.flasks)) != len(one.values):
+            raise GroupProblem(f"The method “{one.method}” needs one flask for each value.")
+
+
+def _pairs(meetings: Sequence[_Meeting], *, margin_percent: float) -> tuple[Pair, ...]:
+    apart = [
+        (paired_difference if one.paired else welch_difference)(*one.values) for one in meetings
+    ]
     adjusted = holm_adjusted([t_test(one).p for one in apart])
     made = []
-    for (a, b), difference, p in zip(indices, apart, adjusted, strict=True):
-        per = 100 / abs((summaries[a].mean + summaries[b].mean) / 2)
+    for one, difference, p in zip(meetings, apart, adjusted, strict=True):
+        per = 100 / abs((mean_of(one.first.values) + mean_of(one.second.values)) / 2)
         margin = margin_percent / per
         half = t_quantile(0.975, difference.dof) * difference.u if difference.u else 0.0
         p_equal = two_one_sided(difference, margin).p
         made.append(
             Pair(
-                groups[a].method,
-                groups[b].method,
+                one.first.method,
+                one.second.method,
                 per * difference.value,
                 (per * (difference.value - half), per * (difference.value + half)),
                 p,
                 p_equal,
                 _equality(difference, margin, p, p_equal),
+                one.paired,
             )
         )
     return tuple(made)
@@ -187,12 +222,13 @@ def _equality(difference: Difference, margin: float, p: float, p_equal: float) -
     return "not decided"
 
 
-def _spread(groups: Sequence[MethodValues], *, paired: bool) -> tuple[TestResult, ...]:
+def _spread(groups: Sequence[MethodValues], meetings: Sequence[_Meeting]) -> tuple[TestResult, ...]:
+    """Return one test of all where no two share flasks, else a test of every two."""
     values = [one.values for one in groups]
-    tests = []
+    tests: list[TestResult] = []
     try:
-        if paired:
-            tests = [paired_spread(a, b) for a, b in combinations(values, 2)]
+        if any(one.paired for one in meetings):
+            tests = [_spread_of_two(one) for one in meetings]
         else:
             tests.append(brown_forsythe(values))
             if len(values) == 2:
@@ -202,8 +238,12 @@ def _spread(groups: Sequence[MethodValues], *, paired: bool) -> tuple[TestResult
     return tuple(tests)
 
 
-def _means(groups: Sequence[MethodValues], *, paired: bool) -> TestResult | None:
-    if paired or len(groups) == 2:
+def _spread_of_two(one: _Meeting) -> TestResult:
+    return paired_spread(*one.values) if one.paired else brown_forsythe(one.values)
+
+
+def _means(groups: Sequence[MethodValues], meetings: Sequence[_Meeting]) -> TestResult | None:
+    if len(groups) == 2 or any(one.paired for one in meetings):
         return None
     try:
         return welch_anova([one.values for one in groups])
@@ -241,9 +281,10 @@ def _precision_words(
     said = f"“{best}” scatters least ({least:.3f} %), “{worst}” most ({most:.3f} %)"
     if not spread:
         return f"{said}; too few values to test whether that is chance."
-    # Brown-Forsythe stands first; of many pairs the smallest p counts, times their number
-    pairs = [one.p for one in spread if one.name == "Pitman-Morgan"]
-    p = min(1.0, min(pairs) * len(pairs)) if pairs else spread[0].p
+    # one Brown-Forsythe stands for all; of tests on every two the smallest p counts, times their
+    # number (Bonferroni)
+    by_twos = any(one.name == "Pitman-Morgan" for one in spread)
+    p = min(1.0, min(one.p for one in spread) * len(spread)) if by_twos else spread[0].p
     if p < _LEVEL:
         return f"{said}; that is more than chance (p {p:.3f}).{weak}"
     return f"{said}; chance alone may make that difference (p {p:.2f}).{weak}"

@@ -26,7 +26,8 @@ from server.lab.refusal import (
     TooOften,
     Unacceptable,
 )
-from server.web.refusals import NotFromHere, TooLarge, Unreadable, WrongKind
+from server.web.bearer import carries_token
+from server.web.refusals import NotFromHere, TokenRefused, TooLarge, Unreadable, WrongKind
 from server.web.showing import show_problem, show_sign_in
 
 _LOG = logging.getLogger(__name__)
@@ -71,6 +72,8 @@ def headers_of(refusal: Refusal) -> dict[str, str]:
     """Return the headers that a refusal's status asks for."""
     if isinstance(refusal, TooOften):
         return {"Retry-After": str(max(1, round(refusal.shown.get("retry_after_s", 1))))}
+    if isinstance(refusal, TokenRefused):
+        return {"WWW-Authenticate": 'Bearer realm="Titrant Ledger", error="invalid_token"'}
     if isinstance(refusal, NotSignedIn):
         return {"WWW-Authenticate": 'Cookie realm="Titrant Ledger"'}
     return {}
@@ -98,7 +101,7 @@ def problem_json(
 def is_for_scripts(request: Request) -> bool:
     """Say whether a request is answered with JSON."""
     path = request.url.path
-    return path == "/api" or path.startswith("/api/") or path == "/health"
+    return carries_token(request) or path == "/api" or path.startswith("/api/") or path == "/health"
 
 
 def refuse(request: Request, refusal: Refusal) -> Response:

@@ -1,5 +1,6 @@
 """What stands before every route: size, origin, and what nobody foresaw."""
 
+import re
 from urllib.parse import urlsplit
 
 from fastapi import Request, Response
@@ -11,6 +12,9 @@ from server.web.errors import answer_incident, refuse
 from server.web.refusals import NotFromHere, TooLarge, Unreadable
 
 MOST_BODY = 2 * 1024 * 1024
+#: What a curve's original of 5 MB takes as base64 text, with the entry around it.
+MOST_CURVE_BODY = 7 * 1024 * 1024
+_CURVES = re.compile(r"/api/sheets/[^/]{1,80}/(entries|curves/preview)")
 _SAFE = frozenset({"GET", "HEAD", "OPTIONS"})
 _OWN_SITES = frozenset({"same-origin", "none"})
 
@@ -83,7 +87,7 @@ class Guards:
         if scope["method"] == "HEAD":
             # answered as a GET; the server below sends no body for it
             scope = {**scope, "method": "GET"}
-        await self._app(scope, _counted(receive), send)
+        await self._app(scope, _counted(receive, _most_body(scope["path"])), send)
 
 
 def _refusal(request: Request) -> Refusal | None:
@@ -91,8 +95,9 @@ def _refusal(request: Request) -> Refusal | None:
     if "\0" in path or b"%00" in query:
         return Unreadable("The address holds a character that no text has.")
     length = request.headers.get("content-length", "0")
-    if not length.isdigit() or int(length) > MOST_BODY:
-        return _too_large()
+    most = _most_body(path)
+    if not length.isdigit() or int(length) > most:
+        return _too_large(most)
     if request.method in _SAFE or _is_from_here(request):
         return None
     return NotFromHere("This was sent from another site; nothing was done.")
@@ -119,11 +124,16 @@ def _host(netloc: str) -> str:
     return netloc.lower().removesuffix(":443").removesuffix(":80")
 
 
-def _too_large() -> TooLarge:
-    return TooLarge(f"This is more than {MOST_BODY // 1024} kB; send it in parts.")
+def _most_body(path: str) -> int:
+    """Return how many bytes a request may bring: more where curves come with their originals."""
+    return MOST_CURVE_BODY if _CURVES.fullmatch(path) else MOST_BODY
 
 
-def _counted(receive: Receive) -> Receive:
+def _too_large(most: int) -> TooLarge:
+    return TooLarge(f"This is more than {most // 1024} kB; send it in parts.")
+
+
+def _counted(receive: Receive, most: int) -> Receive:
     """Return a receiver that refuses a body without a stated length once it grows too large."""
     seen = 0
 
@@ -132,8 +142,8 @@ def _counted(receive: Receive) -> Receive:
         message = await receive()
         if message["type"] == "http.request":
             seen += len(message.get("body", b""))
-            if seen > MOST_BODY:
-                raise _too_large()
+            if seen > most:
+                raise _too_large(most)
         return message
 
     return counted

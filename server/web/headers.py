@@ -1,5 +1,7 @@
 """The headers that every answer carries."""
 
+from collections.abc import Iterable
+
 from starlette.datastructures import MutableHeaders
 from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
@@ -8,6 +10,14 @@ POLICY = (
     "default-src 'none'; script-src 'self'; style-src 'self'; img-src 'self'; connect-src 'self'; "
     "form-action 'self'; base-uri 'none'; object-src 'none'; frame-ancestors 'none'"
 )
+
+
+def policy_with_styles(hashes: Iterable[str]) -> str:
+    """Return the policy of a page on which a script writes style sheets of these SHA-256."""
+    allowed = " ".join(["style-src 'self'", *hashes])
+    return POLICY.replace("style-src 'self'", allowed)
+
+
 _ALWAYS = {
     "Content-Security-Policy": POLICY,
     "X-Content-Type-Options": "nosniff",

@@ -6,7 +6,9 @@ from datetime import datetime
 
 from starlette.requests import HTTPConnection
 
+from server.credentials.signing_keys import SigningKeys
 from server.records.transaction import Transactions
+from server.web.chart_bundle import ChartBundle
 from server.web.templating import Templating
 from server.web.unknown_codes import UnknownCodes
 
@@ -16,7 +18,8 @@ class Parts:
     """The parts that every route may use.
 
     ``secure``: whether all traffic comes by https, also where a proxy speaks it. ``setup_code``
-    opens the set-up page of an empty database.
+    opens the set-up page of an empty database; ``keys`` sign what leaves the laboratory.
+    ``sends_mail``: whether a server for e-mail is set.
     """
 
     transactions: Transactions
@@ -26,6 +29,9 @@ class Parts:
     setup_code: str = field(repr=False)
     version: str
     unknown_codes: UnknownCodes
+    keys: SigningKeys = field(repr=False)
+    sends_mail: bool = False
+    chart_bundle: ChartBundle = field(default_factory=ChartBundle)
 
 
 def parts_of(connection: HTTPConnection) -> Parts:

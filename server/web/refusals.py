@@ -1,10 +1,14 @@
 """Refusals that only HTTP knows."""
 
-from server.lab.refusal import NotAllowed, Refusal
+from server.lab.refusal import NotAllowed, NotSignedIn, Refusal
 
 
 class NotFromHere(NotAllowed):
     """A write that does not carry this session's token, or that another site has sent."""
+
+
+class TokenRefused(NotSignedIn):
+    """A token for scripts that does not hold."""
 
 
 class Unreadable(Refusal):

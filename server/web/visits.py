@@ -11,7 +11,9 @@ from fastapi import Depends, Request, Response
 from server.credentials.tokens import new_token, same_token, token_digest
 from server.lab.actor import Actor
 from server.lab.refusal import CannotWrite, NotSignedIn
+from server.procedures.access_tokens import TokenView, record_token_seen
 from server.procedures.sign_in import find_actor, record_seen
+from server.web.bearer import carries_token, find_bearer
 from server.web.parts import Parts, parts_of
 
 T = TypeVar("T")
@@ -25,7 +27,8 @@ class Visit:
     """One request: who it is, from where, when.
 
     ``form_token`` is what this visit's forms carry. ``visitor_token`` is the secret behind it where
-    nobody is signed in; ``is_new`` says that the browser does not have it yet.
+    nobody is signed in; ``is_new`` says that the browser does not have it yet. ``bearer`` is the
+    token by which a script comes: it has no session, and no form is its.
     """
 
     parts: Parts
@@ -38,6 +41,7 @@ class Visit:
     form_token: str = field(repr=False)
     visitor_token: str | None = field(repr=False, default=None)
     is_new: bool = False
+    bearer: TokenView | None = None
 
     @property
     def person(self) -> Actor:
@@ -105,10 +109,13 @@ def source_of(request: Request) -> str:
 
 
 def visit_in(session: Any, request: Request, *, now: datetime) -> tuple[Visit, bool]:
-    """Return the visit behind a request, and whether its session should be noted as seen."""
+    """Return the visit behind a request, and whether its session should be noted as seen.
+
+    Raises:
+        TokenRefused: it carries a token for scripts that does not hold.
+        NotAllowed: its token does not open this.
+    """
     secure = is_secure(request)
-    token = request.cookies.get(cookie_name(secure=secure), "")[:_MOST_TOKEN]
-    view = find_actor(session, token, now=now) if token else None
     common: dict[str, Any] = {
         "parts": parts_of(request),
         "path": request.url.path,
@@ -116,6 +123,12 @@ def visit_in(session: Any, request: Request, *, now: datetime) -> tuple[Visit, b
         "secure": secure,
         "now": now,
     }
+    if carries_token(request):
+        bearer = find_bearer(session, request, now=now)
+        script = Visit(**common, token=None, actor=bearer.actor, form_token="", bearer=bearer)
+        return script, bearer.to_touch
+    token = request.cookies.get(cookie_name(secure=secure), "")[:_MOST_TOKEN]
+    view = find_actor(session, token, now=now) if token else None
     if view is not None:
         known = Visit(**common, token=token, actor=view.actor, form_token=view.form_token)
         return known, view.to_touch
@@ -144,10 +157,17 @@ def open_visit(request: Request) -> Visit:
 
 
 def touch(visit: Visit) -> None:
-    """Note that a session is in use; a database that cannot be written does not stop reading."""
-    token = visit.token or ""
+    """Note that a session or token is in use; a database that is full does not stop reading."""
+    token, bearer, now = visit.token or "", visit.bearer, visit.now
+
+    def work(session: Any) -> None:
+        if bearer is not None:
+            record_token_seen(session, bearer.token_id, now=now)
+        else:
+            record_seen(session, token, now=now)
+
     try:
-        visit.parts.transactions.write(lambda session: record_seen(session, token, now=visit.now))
+        visit.parts.transactions.write(work)
     except CannotWrite:
         _LOG.warning("A session in use could not be noted as seen.")
 

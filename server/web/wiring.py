@@ -9,9 +9,12 @@ from starlette.middleware import Middleware
 from server.web.api import bottles as api_bottles
 from server.web.api import certificates as api_certificates
 from server.web.api import countersigning as api_countersigning
+from server.web.api import curves as api_curves
 from server.web.api import files as api_files
-from server.web.api import health
+from server.web.api import health, keys
 from server.web.api import instruments as api_instruments
+from server.web.api import labels as api_labels
+from server.web.api import laboratory as api_laboratory
 from server.web.api import lots as api_lots
 from server.web.api import people as api_people
 from server.web.api import planner as api_planner
@@ -21,6 +24,7 @@ from server.web.api import standard_lots as api_standard_lots
 from server.web.api import stores as api_stores
 from server.web.api import trail as api_trail
 from server.web.api.desk import PROBLEMS
+from server.web.chart_bundle import chart_router
 from server.web.errors import add_error_handlers
 from server.web.guards import Guards, Heads, Incidents
 from server.web.headers import SecurityHeaders
@@ -30,9 +34,12 @@ from server.web.pages import (
     calibrations,
     certificates,
     countersign,
+    curves,
     files,
     holds,
     instruments,
+    labels,
+    laboratory,
     lists,
     lots,
     people,
@@ -48,12 +55,13 @@ from server.web.static_files import StaticFiles, static_router
 
 _PAGES = (
     # lists first: an address such as /lots/list.csv is not that of a lot
-    lists, shelf, session, bench, planner, countersign, certificates, stores, standard_lots,
-    files, instruments, calibrations, lots, holds, trail, people, about,
+    lists, shelf, session, bench, curves, planner, countersign, certificates, stores, standard_lots,
+    files, instruments, calibrations, lots, labels, holds, trail, people, laboratory, about,
 )  # fmt: skip
 _API = (
-    api_session, api_bottles, api_sheets, api_countersigning, api_certificates, api_lots,
-    api_stores, api_standard_lots, api_planner, api_files, api_instruments, api_trail, api_people,
+    api_session, api_bottles, api_sheets, api_curves, api_countersigning, api_certificates,
+    api_lots, api_stores, api_standard_lots, api_planner, api_files, api_instruments, api_labels,
+    api_trail, api_people, api_laboratory,
 )  # fmt: skip
 API_PREFIX = "/api"
 #: Every router with the beginning of its addresses; tests go through all of their routes.
@@ -61,6 +69,7 @@ ROUTERS: tuple[tuple[str, APIRouter], ...] = (
     *(("", page.router) for page in _PAGES),
     *((API_PREFIX, api.router) for api in _API),
     ("", health.router),
+    ("", keys.router),
 )
 
 
@@ -97,4 +106,5 @@ def create_app(parts: Parts, static: StaticFiles) -> FastAPI:
             responses=PROBLEMS if described else None,
         )
     app.include_router(static_router(static))
+    app.include_router(chart_router(parts.chart_bundle))
     return app

@@ -176,6 +176,7 @@ def test_migrate_brings_an_empty_folder_up_and_finds_nothing_to_do_then(tmp_path
         ["serve", "--host", "0.0.0.0"],  # noqa: S104 - it must be refused
         ["serve", "--tls-cert", "gone.pem"],
         ["trail", "check", "--data", "gone"],
+        ["trail", "check", "--known", "gone.txt"],
         ["backup", "here"],
         ["no-such-verb"],
         [],
@@ -277,7 +278,15 @@ def test_serve_demo_fills_answers_and_ends_cleanly(demo_server: Server, tmp_path
     demo_server.stop()
 
     data = tmp_path / "data"
-    assert run("trail", "check", "--data", data).returncode == 0
+    checked = run("trail", "check", "--data", data)
+    assert checked.returncode == 0, checked.stdout
+    kept = tmp_path / "kept elsewhere.txt"
+    kept.write_text(checked.stdout)
+    assert run("trail", "check", "--data", data, "--known", kept).returncode == 0
+    kept.write_text(f"Row 3: {'0' * 64}\n")
+    unlike = run("trail", "check", "--data", data, "--known", kept)
+    assert unlike.returncode == 1
+    assert "Row 3 is not the one" in unlike.stdout
     assert (data / "demo-sign-ins.txt").stat().st_mode & 0o077 == 0
     again = Server(data, "--demo")
     again.wait()

@@ -62,3 +62,15 @@ def test_bars_nothing_to_show_is_still_a_picture(bars) -> None:
 
 def test_bars_markup_in_a_label_is_text() -> None:
     assert "<i>x</i>" in [t.text for t in drawn([Bar("<i>x</i>", 1, True)]).iter(f"{SVG}text")]
+
+
+def test_bars_long_label_takes_two_lines_and_never_meets_its_share() -> None:
+    long = "indicator blank (one blank, two readings of the burette)"
+    read = drawn([Bar(long, 74.0, True), Bar("volume", 18.0, True)])
+    texts = [t for t in read.iter(f"{SVG}text") if "chart-words" in t.get("class")]
+    first, second, volume = texts
+    assert f"{first.text} {second.text}" == long
+    # at 14 px a letter is 8 px wide at most: 42 of them leave room for the share
+    assert len(first.text) <= 42
+    rows = [float(r.get("y")) for r in read.iter(f"{SVG}rect")]
+    assert float(second.get("y")) < rows[0] < float(volume.get("y")) < rows[1]

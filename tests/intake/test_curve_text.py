@@ -4,8 +4,13 @@ from decimal import Decimal
 
 import pytest
 
-from server.intake.curve_columns import ColumnMapping, mapping_from
-from server.intake.curve_table import Drop
+from server.intake.curve_columns import (
+    ColumnMapping,
+    RememberedColumns,
+    mapping_from,
+    remembered_from,
+)
+from server.intake.curve_table import Asked, Drop
 from server.intake.curve_text import MOST_BYTES, read_curve_text
 from server.intake.kept_files import sha256_of
 from server.lab.refusal import Unacceptable
@@ -133,12 +138,73 @@ def test_curve_text_keeps_the_hash_of_the_bytes_that_came():
     assert read.reading == READINGS
 
 
-def test_curve_text_remembered_mapping_is_used_instead_of_the_header():
+def test_curve_text_mapping_that_a_person_set_is_used_instead_of_the_header():
     rows = [("9", y, v) for v, y in zip(VOLUMES, READINGS, strict=True)]
     mapping = mapping_from(ColumnMapping(2, 1, "pH").to_document())
-    read = read_curve_text(table(header="a;b;c", rows=rows), mapping=mapping)
+    read = read_curve_text(table(header="a;b;c", rows=rows), asked=Asked(mapping=mapping))
     assert (read.volume_mL, read.reading) == (VOLUMES, READINGS)
-    assert "Columns as they were set for this instrument." in read.says
+    assert "Columns as you set them." in read.says
+
+
+@pytest.mark.parametrize(
+    ("header", "taken"), [("A ; pH2;level;", True), ("level;pH2;A", False), (None, False)]
+)
+def test_curve_text_remembered_columns_count_only_where_the_same_header_comes(header, taken):
+    rows = [("9", y, v) for v, y in zip(VOLUMES, READINGS, strict=True)]
+    kept = RememberedColumns(ColumnMapping(2, 1, "pH"), ("a", "pH2", "level"), 3)
+    asked = Asked(remembered=remembered_from(kept.to_document()))
+    if taken:
+        read = read_curve_text(table(header=header, rows=rows), asked=asked)
+        assert (read.volume_mL, read.mapping) == (VOLUMES, kept.mapping)
+        assert "Columns as they were set for this instrument." in read.says
+        return
+    rows = list(zip(VOLUMES, READINGS, map(str, range(8)), strict=True))
+    if header is not None:  # nothing in it names a volume
+        assert "No column is named as the volume" in refusal(table(header=header), asked=asked)
+    else:
+        assert read_curve_text(table(rows=rows), asked=asked).mapping.volume == 0
+
+
+def test_curve_text_mapping_beyond_the_table_is_refused():
+    asked = Asked(mapping=ColumnMapping(0, 7, "pH"))
+    assert refusal(table(), asked=asked) == "Column 8 is asked for; the table has 2."
+
+
+def test_curve_text_bad_row_is_pointed_at_and_can_be_left_out_by_hand():
+    text = table().replace("20.50;8.40", "20.50;err")
+    with pytest.raises(Unacceptable) as caught:
+        read_curve_text(text)
+    assert (caught.value.shown["row"], caught.value.shown["column"]) == (6, 2)
+    assert caught.value.shown["table"]["rows"][0] == {"row": 1, "cells": ["0.00", "4.01"]}
+    read = read_curve_text(text, asked=Asked(leave_out=(6,)))
+    assert len(read.volume_mL) == len(VOLUMES) - 1
+    assert (read.set_aside[0].row, "“err”" in read.set_aside[0].says) == (6, True)
+
+
+@pytest.mark.parametrize(("row", "says"), [(3, "holds numbers"), (99, "none of the table's rows")])
+def test_curve_text_reading_is_not_left_out_by_hand(row, says):
+    assert says in refusal(table(), asked=Asked(leave_out=(row,)))
+
+
+def test_curve_text_with_more_points_than_are_kept_is_refused():
+    says = refusal(table(), asked=Asked(most_points=7))
+    assert "8 rows" in says
+    assert "at most 7 points" in says
+
+
+@pytest.mark.parametrize(
+    ("rows", "says"),
+    [
+        ([("1", "2", *("3",) * 49)] * 8, "51 columns; at most 50"),
+        ([("1", "x" * 10_001)] * 8, "Row 1 has 10003 characters; at most 10000"),
+    ],
+)
+def test_curve_text_too_wide_is_refused(rows, says):
+    assert says in refusal(table(rows=rows))
+
+
+def test_curve_text_with_too_many_rows_is_refused():
+    assert "more than 200000 rows" in refusal("1;2\n" * 200_001)
 
 
 @pytest.mark.parametrize(
@@ -160,7 +226,7 @@ def test_column_mapping_that_cannot_be_is_refused_by_its_field(document, field):
 def test_curve_text_drops_become_volumes_with_one_shared_uncertainty():
     rows = [(str(at), y) for at, y in enumerate(READINGS)]
     drop = Drop(Decimal("0.0487"), Decimal("0.0002"))
-    read = read_curve_text(table(header="drops;pH", rows=rows), drop=drop)
+    read = read_curve_text(table(header="drops;pH", rows=rows), asked=Asked(drop=drop))
     assert read.volume_mL[:3] == ("0.0000", "0.0487", "0.0974")
     assert read.relative_u_volume == pytest.approx(0.0002 / 0.0487)
 

@@ -70,8 +70,34 @@ def test_curve_workbook_is_read_like_a_text():
 def test_curve_workbook_formula_is_refused_by_its_cell():
     rows = [*ROWS[:3], [10.0, "=B3+0.5"], *ROWS[4:]]
     said = refusal(workbook(rows))
-    assert "cell B4" in said
-    assert "formula" in said
+    assert "Cell B4: “=B3+0.5” is a formula" in said
+
+
+def test_curve_workbook_formula_beside_the_curve_is_passed_over():
+    rows = [[*ROWS[0], "mV"], *([*row, f"=B{at}*59"] for at, row in enumerate(ROWS[1:], start=2))]
+    assert read_curve_file(workbook(rows)).points() == read_curve_file(workbook()).points()
+
+
+def test_curve_workbook_of_formulas_alone_is_refused_by_its_cell():
+    rows = [ROWS[0], *([row[0], f"=C{at}"] for at, row in enumerate(ROWS[1:], start=2))]
+    assert "Cell B2: “=C2” is a formula" in refusal(workbook(rows))
+
+
+@pytest.mark.parametrize(
+    ("parts", "says"),
+    [
+        ({"xl/vbaProject.bin": "x"}, "macros"),
+        ({f"xl/media/{at}.xml": "x" for at in range(200)}, "unpack to more than is read"),
+        ({"xl/media/a.xml": " " * 51_000_000}, "unpack to more than is read"),
+        ({"xl/media/a.xml": " " * 2_000_000}, "far more than it holds"),
+    ],
+)
+def test_curve_workbook_beyond_the_bounds_is_refused_by_its_directory(parts, says):
+    assert says in refusal(workbook(parts=parts))
+
+
+def test_curve_workbook_larger_than_five_megabytes_is_refused():
+    assert "at most 5 are read" in refusal(workbook() + bytes(5_000_000))
 
 
 def test_curve_workbook_word_among_the_numbers_is_refused_by_its_cell():

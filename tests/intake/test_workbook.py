@@ -158,7 +158,7 @@ def hostile():
         "lying": lying_bomb(),
         "large": workbook(
             sheets={"S": sheet(TABLE)},
-            parts={"xl/media/x.bin": "ab" * 1_600_000},
+            parts={"xl/media/x.bin": "ab" * 2_600_000},
             compression=zipfile.ZIP_STORED,
         ),
         "many cells": workbook(sheets={"S": sheet([[1.5] * 26] * 5000)}),

@@ -13,6 +13,8 @@ TABLE = {
     Act.RELEASE: {"keeper", "countersigner"},
     Act.KEEP: {"keeper"},
     Act.LOG: {"analyst", "keeper"},
+    Act.USE: {"analyst", "keeper"},
+    Act.LABEL: {"analyst", "keeper"},
     Act.OVERRIDE: {"keeper"},
     Act.PROPOSE_PULL: {"keeper"},
     Act.CONFIRM_PULL: {"countersigner"},

@@ -45,6 +45,13 @@ from server.procedures.instruments import (
     record_calibration,
     register_instrument,
 )
+from server.procedures.label_hazards import (
+    ConfirmHazards,
+    WithdrawHazards,
+    confirm_hazards,
+    withdraw_hazards,
+)
+from server.procedures.labels import PrintLabels, prepare_labels, print_labels
 from server.procedures.laboratory import ChangeSettings, change_settings
 from server.procedures.lots import (
     ConfirmPull,
@@ -128,6 +135,10 @@ TABLE = {
     let_be_used: ({"keeper"}, LetBeUsed(NOBODY, "burette", "checked")),
     propose_pull: ({"keeper"}, ProposePull("x", "wrong salt")),
     confirm_pull: ({"countersigner"}, ConfirmPull("x")),
+    prepare_labels: ({"analyst", "keeper"}, PrintLabels((), "62x40")),
+    print_labels: ({"analyst", "keeper"}, PrintLabels((), "62x40")),
+    confirm_hazards: ({"steward"}, ConfirmHazards("NaOH", "0.1", "", "", 99)),
+    withdraw_hazards: ({"steward"}, WithdrawHazards("NaOH", "0.1", "", 99)),
     add_person: ({"steward"}, AddPerson("", "", (), "")),
     change_roles: ({"steward"}, ChangeRoles(NOBODY, ("reader",), 1)),
     close_account: ({"steward"}, CloseAccount(NOBODY)),

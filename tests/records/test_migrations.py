@@ -6,10 +6,10 @@ from sqlalchemy.exc import DBAPIError
 
 from server.records.columns import Instant, JsonText
 from server.records.migrating import current, migrate, newest
-from server.records.tables import bench, lots, people, stores, trail
+from server.records.tables import bench, lots, people, shelf, stores, trail
 from server.records.tables.base import Table
 
-TABLES = (bench, lots, people, stores, trail)
+TABLES = (bench, lots, people, shelf, stores, trail)
 INK = (
     "entry",
     "evaluation",
@@ -20,6 +20,7 @@ INK = (
     "calibration",
     "file",
     "log",
+    "bottle_use",
 )
 
 

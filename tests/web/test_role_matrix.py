@@ -64,6 +64,16 @@ PERSON = {
     "password": "words that stand far apart",
 }
 SETTINGS = {"name": "x", "address": "", "zone": "Europe/Zurich", "revision": 999}
+LABELS_FORM = {"stock": "62x40", "first_place": "1", "dots_per_inch": "300"}
+HAZARDS = {
+    "titrant": "NaOH",
+    "nominal": "0.1",
+    "confirmed_by": "Maren Lind",
+    "confirmed_on": "2026-05-01",
+    "signal_word": "Warning",
+    "revision": 999,
+}
+WITHDRAW = {"titrant": "NaOH", "nominal": "0.1", "reason": "x", "revision": 999}
 HOLD = {"kind": "lot", "thing": "NOCODE00", "reason": "cloudy"}
 
 # names.md, "People": act by act. An allowed one gets past the role: 404 for a thing that is not
@@ -102,6 +112,11 @@ PAGES: dict[str, Case] = {
         COUNTERSIGNER, 404, f"/countersign/{NOBODY}/send-back", {"revision": "1", "remark": "x"}
     ),
     "GET /certificates/{number}": Case(SIGNED_IN, 200),
+    "GET /certificates/{number}.pdf": Case(SIGNED_IN, 200),
+    "GET /certificates/{number}.json": Case(SIGNED_IN, 200),
+    "GET /certificates/{number}.jws": Case(SIGNED_IN, 200),
+    "GET /certificates/{number}.dcc.xml": Case(SIGNED_IN, 200),
+    "GET /certificates/{number}.bench-record.json": Case(SIGNED_IN, 200),
     "GET /stores": Case(SIGNED_IN, 200),
     "GET /stores/standard-lots/new": Case(KEEPER, 200),
     "POST /stores/standard-lots/new": Case(KEEPER, 422),
@@ -158,6 +173,13 @@ PAGES: dict[str, Case] = {
     "GET /lots/new": Case(ANALYST, 200),
     "POST /lots/new": Case(ANALYST, 422),
     "GET /lots/{code}": Case(SIGNED_IN, 200, "/lots/{lot}"),
+    "GET /lots/{code}/methods": Case(SIGNED_IN, 200, "/lots/{lot}/methods"),
+    "GET /lots/{code}/export.zip": Case(SIGNED_IN, 200, "/lots/{lot}/export.zip"),
+    "GET /labels": Case(SIGNED_IN, 200, "/labels?thing={lot}"),
+    "POST /labels": Case(LOGGERS, 422, None, LABELS_FORM),
+    "GET /labels/prints/{number}": Case(SIGNED_IN, 200, "/labels/prints/{print}"),
+    "GET /labels/prints/{number}.pdf": Case(SIGNED_IN, 200, "/labels/prints/{print}.pdf"),
+    "GET /labels/prints/{number}.png": Case(SIGNED_IN, 200, "/labels/prints/{print}.png"),
     "POST /lots/{code}/bottles": Case(ANALYST, 404, f"/lots/{NO_CODE}/bottles", {"count": "1"}),
     "POST /lots/{code}/propose-pull": Case(KEEPER, 404, f"/lots/{NO_CODE}/propose-pull", PULL),
     "POST /lots/{code}/confirm-pull": Case(COUNTERSIGNER, 404, f"/lots/{NO_CODE}/confirm-pull"),
@@ -171,6 +193,9 @@ PAGES: dict[str, Case] = {
         STEWARD, 404, f"/people/{NOBODY}/roles", {"revision": "1", "roles": ["reader"]}
     ),
     "POST /people/{person_id}/close": Case(STEWARD, 404, f"/people/{NOBODY}/close"),
+    "GET /laboratory": Case(STEWARD, 200),
+    "POST /laboratory/hazards": Case(STEWARD, 409, None, {**HAZARDS, "revision": "999"}),
+    "POST /laboratory/hazards/withdraw": Case(STEWARD, 409, None, {**WITHDRAW, "revision": "999"}),
     "POST /laboratory": Case(STEWARD, 409, None, {**SETTINGS, "revision": "999"}),
     "GET /about": Case(EVERYBODY, 200),
 }
@@ -213,8 +238,21 @@ API: dict[str, Case] = {
         COUNTERSIGNER, 404, f"/api/sheets/{NOBODY}/send-back", {"revision": 1, "remark": "x"}
     ),
     "GET /api/certificates/{number}": Case(SIGNED_IN, 200),
+    "GET /api/certificates/{number}.pdf": Case(SIGNED_IN, 200),
+    "GET /api/certificates/{number}.json": Case(SIGNED_IN, 200),
+    "GET /api/certificates/{number}.jws": Case(SIGNED_IN, 200),
+    "GET /api/certificates/{number}.dcc.xml": Case(SIGNED_IN, 200),
+    "GET /api/certificates/{number}.bench-record.json": Case(SIGNED_IN, 200),
+    "GET /.well-known/jwks.json": Case(EVERYBODY, 200),
     "POST /api/lots": Case(ANALYST, 422, None, {"titrant": "NaOH", "nominal": "-1"}),
     "GET /api/lots/{code}": Case(SIGNED_IN, 200, "/api/lots/{lot}"),
+    "GET /api/lots/{code}/methods": Case(SIGNED_IN, 200, "/api/lots/{lot}/methods"),
+    "GET /api/lots/{code}/export.zip": Case(SIGNED_IN, 200, "/api/lots/{lot}/export.zip"),
+    "GET /api/labels": Case(SIGNED_IN, 200),
+    "POST /api/labels": Case(LOGGERS, 422, None, {"bottles": [], "stock": "62x40"}),
+    "GET /api/labels/{number}": Case(SIGNED_IN, 200, "/api/labels/{print}"),
+    "GET /api/labels/{number}.pdf": Case(SIGNED_IN, 200, "/api/labels/{print}.pdf"),
+    "GET /api/labels/{number}.png": Case(SIGNED_IN, 200, "/api/labels/{print}.png"),
     "POST /api/lots/{code}/bottles": Case(
         ANALYST, 404, f"/api/lots/{NO_CODE}/bottles", {"place": "x", "volume_mL": "1000"}
     ),
@@ -327,6 +365,9 @@ API: dict[str, Case] = {
         STEWARD, 404, f"/api/people/{NOBODY}/roles", {"revision": 1, "roles": ["reader"]}
     ),
     "POST /api/people/{person_id}/close": Case(STEWARD, 404, f"/api/people/{NOBODY}/close", {}),
+    "GET /api/laboratory": Case(STEWARD, 200),
+    "POST /api/laboratory/hazards": Case(STEWARD, 409, None, HAZARDS),
+    "POST /api/laboratory/hazards/withdraw": Case(STEWARD, 409, None, WITHDRAW),
     "POST /api/laboratory": Case(STEWARD, 409, None, SETTINGS),
     "GET /health": Case(EVERYBODY, 200),
 }
@@ -366,11 +407,15 @@ def things(shared_web: Any) -> dict[str, str]:
     standard_lot = stores["standard_lots"][0]["id"]
     kept = reader.get(f"/api/standard-lots/{standard_lot}").json()["file"]
     instruments = reader.get("/api/instruments").json()["instruments"]
+    printed = shared_web.client("jonas").post(
+        "/api/labels", {"bottles": [bottle], "stock": "62x40"}
+    )
     lots = [one["id"] for one in shared_web.client("imke").get("/api/sheets").json()["lots"]]
     return {
         "code": bottle,
         "lot": lots[0],
         "number": card["certificate"]["number"],
+        "print": str(printed.json()["number"]),
         "sheet_id": shared_web.demo.waiting_sheet_id,
         "open_sheet_id": shared_web.demo.sent_back_sheet_id,
         "standard_lot_id": standard_lot,

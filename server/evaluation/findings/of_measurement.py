@@ -2,7 +2,7 @@
 
 from collections.abc import Iterator
 
-from server.evaluation.findings.finding import Finding, Verdict, joined
+from server.evaluation.findings.finding import Finding, Verdict, joined, replicates_named
 from server.evaluation.findings.setting import Setting
 from server.metrology.decimal_text import decimals_of
 
@@ -243,6 +243,9 @@ def _blank(setting: Setting) -> Iterator[Finding]:
     elif kind == "indicator" and record.excess is not None:
         verdict = "fails"
         says = "An indicator blank already holds the visual overshoot: it is counted twice."
+    elif kind == "reagent" and any(one.holds_blank for one in setting.counting_curves):
+        verdict = "look"
+        says = _held_by_fit(setting)
     elif stated:
         verdict, says = "holds", f"You took off the {stated}."
         if record.blank is not None:
@@ -270,6 +273,17 @@ def _blank(setting: Setting) -> Iterator[Finding]:
         unit="mL",
         figure_text="none" if volume is None else f"{volume:g} mL",
     )
+
+
+def _held_by_fit(setting: Setting) -> str:
+    """Return in words of which replicates the reagent blank was not taken off, and why."""
+    held = [one.label for one in setting.counting_curves if one.holds_blank]
+    rest = len(setting.counting) - len(held)
+    says = (
+        f"The reagent blank is not taken off {replicates_named(held)}: the model fit counts the "
+        "carbonate of the flask's water itself, and it would be counted twice."
+    )
+    return says + (f" It is taken off the other {rest}." if rest else "")
 
 
 def _blank_needed(setting: Setting) -> str | None:

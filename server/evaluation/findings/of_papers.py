@@ -12,10 +12,11 @@ def paper_findings(setting: Setting) -> Iterator[Finding]:
     """Yield the findings about dates, drying, probe, checks, end point, last certificate."""
     yield from _in_date(setting)
     yield from _drying(setting)
-    yield from _probe(setting)
+    if not setting.counting_curves:
+        yield from probe_finding(setting)
     yield from _interim(setting)
-    if setting.circumstances.end_point is not None:
-        yield _end_point(setting.circumstances.end_point)
+    if setting.circumstances.end_point is not None and not setting.counting_curves:
+        yield end_point_finding(setting.circumstances.end_point)
     if setting.circumstances.last_certificate is not None:
         yield _last_certificate(setting, setting.circumstances.last_certificate)
 
@@ -73,7 +74,8 @@ def _drying(setting: Setting) -> Iterator[Finding]:
     yield Finding("drying", "fails" if dried else "look", says, basis, figure_text="none")
 
 
-def _probe(setting: Setting) -> Iterator[Finding]:
+def probe_finding(setting: Setting) -> Iterator[Finding]:
+    """Yield what the last buffer calibration says of the probe, where there was one."""
     probe, limits = setting.circumstances.probe, setting.limits
     if probe is None:
         return
@@ -120,7 +122,7 @@ def _interim(setting: Setting) -> Iterator[Finding]:
         )
 
 
-def _end_point(seen: EndPoint) -> Finding:
+def end_point_finding(seen: EndPoint) -> Finding:
     """Compare the end point as seen with the recipe's, and with the titrant's use (EDQM)."""
     verdict: Verdict = "holds"
     used = seen.indicator_used or seen.indicator_expected

@@ -6,6 +6,7 @@ from server.evaluation.bench_record import BenchRecord
 from server.evaluation.circumstances import Circumstances, Limits
 from server.evaluation.methods.standardization_v1 import Evaluation, ReplicateValue
 from server.evaluation.replicate_reading import Replicate
+from server.evaluation.taken_curve import TakenCurve
 
 
 @dataclass(frozen=True, slots=True)
@@ -17,6 +18,7 @@ class Setting:
     circumstances: Circumstances
     components: dict[str, float]
     with_all: Evaluation | None
+    curves: tuple[TakenCurve, ...] = ()
 
     @property
     def limits(self) -> Limits:
@@ -28,6 +30,12 @@ class Setting:
         """The replicates that count, as read and as evaluated."""
         pairs = zip(self.record.replicates, self.evaluation.replicates, strict=True)
         return [(read, value) for read, value in pairs if read.excluded is None]
+
+    @property
+    def counting_curves(self) -> list[TakenCurve]:
+        """The curves of the replicates that count."""
+        listed = self.record.replicates
+        return [one for one in self.curves if listed[one.index].excluded is None]
 
     @property
     def values(self) -> list[float]:

@@ -20,22 +20,34 @@ Number = Any
 
 @dataclass(frozen=True, slots=True)
 class Portion:
-    """One replicate in figures: g of standard, mL read, fillings, °C of the titrant."""
+    """One replicate in figures: g of standard, mL read, fillings, °C of the titrant.
+
+    ``from_curve``: the volume is an end point found on a curve; ``holds_blank``: the way in which
+    it was found counts the carbonate of the flask's water, so that no blank of it is taken off;
+    ``by_drops``: drops were counted, no burette was read.
+    """
 
     mass_g: float | None
     read_mL: float | None
     segments: int
     temperature_C: float
+    from_curve: bool = False
+    holds_blank: bool = False
+    by_drops: bool = False
 
 
 def portion_of(record: BenchRecord, one: Replicate) -> Portion:
     """Return a replicate's readings, corrected by the error tables of balance and burette."""
     temperature = one.temperature if one.temperature is not None else liquid_temperature(record)
+    drops = one.curve is not None and one.curve.drop is not None
     return Portion(
         mass_g=_mass(record, one),
         read_mL=_read_volume(record, one),
-        segments=max(1, len(one.segments)),
+        segments=0 if drops else max(1, len(one.segments)),
         temperature_C=temperature,
+        from_curve=one.end_point is not None,
+        holds_blank=one.end_point is not None and one.end_point.holds_blank,
+        by_drops=drops,
     )
 
 
@@ -119,6 +131,23 @@ class Model:
             return float(self.ratio * self._reference(x) * volume)
         return self.concentration(portion) * volume
 
+    def portion(self, one: Replicate) -> Portion:
+        """Return a replicate's readings in figures."""
+        return portion_of(self.record, one)
+
+    def standard_mmol(self, portion: Portion) -> float | None:
+        """Return the amount of standard in the flask in mmol, None where it is the unknown."""
+        record = self.record
+        if record.route == "against-titrant" and record.unknown_in == "flask":
+            return None
+        x = self.values
+        if record.route != "weighed":
+            return float(self._delivered(x))
+        if portion.mass_g is None:
+            return None
+        mass = portion.mass_g + x["linearity"] + x["balance_errors"]
+        return float(1000.0 * mass * self._delivered(x))
+
     def _concentration(
         self, portion: Portion, x: Mapping[str, Number], delivered: Number
     ) -> Number:
@@ -176,6 +205,12 @@ class Model:
         temperature = self._own_temperature(portion.temperature_C, x)
         factor = self._factor(temperature, self.record.burette.glass_expansion, x)
         read = portion.read_mL + portion.segments * x["delivery"]
+        if portion.by_drops:
+            read = read * x["drop"]
+        if portion.from_curve:
+            read = read + x["end_point"] + x["end_point_own"]
+        if portion.holds_blank:
+            return read * factor - x["excess"]
         return read * factor - x["blank"] - x["excess"]
 
     def _own_temperature(self, own: float | None, x: Mapping[str, Number]) -> Number:

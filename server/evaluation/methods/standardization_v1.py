@@ -12,6 +12,7 @@ from server.evaluation.methods.model_v1 import Model, Portion, portion_of
 from server.evaluation.methods.terms_v1 import (
     Term,
     between_days_term,
+    end_point_terms,
     repeatability_term,
     terms_of,
 )
@@ -108,6 +109,8 @@ def evaluate(record: BenchRecord, constants: Constants, circumstances: Circumsta
     values = [one.value for one in replicates if one.excluded is None and one.value is not None]
     spread = summarize(values)
     repeatability = _repeatability(record, circumstances, spread)
+    # the run's own spread already holds what each curve's own fit scatters by
+    terms += end_point_terms(record, own=not repeatability.own)
     terms += _spread_terms(repeatability, circumstances)
     uncertain = [term.input for term in terms if term.input.u > 0]
     propagated = propagate(lambda inputs: model.mean(portions, inputs), uncertain)
@@ -134,8 +137,13 @@ def replicate_values(record: BenchRecord, constants: Constants) -> tuple[Replica
     Raises:
         RecordProblem: no volume is left after blank and excess.
     """
-    model = Model(record, constants, _estimates(terms_of(record, constants)))
+    model = model_of(record, constants)
     return tuple(_replicate(record, model, i) for i in range(len(record.replicates)))
+
+
+def model_of(record: BenchRecord, constants: Constants) -> Model:
+    """Return the model of a record at its inputs' estimates, without a budget."""
+    return Model(record, constants, _estimates(terms_of(record, constants)))
 
 
 def with_all(record: BenchRecord) -> BenchRecord | None:
@@ -143,7 +151,8 @@ def with_all(record: BenchRecord) -> BenchRecord | None:
 
     def finished(i: int) -> bool:
         one = record.replicates[i]
-        return one.measured and (record.route != "weighed" or one.weighed)
+        read = bool(one.segments) or one.delivered is not None
+        return read and (record.route != "weighed" or one.weighed)
 
     kept = [i for i in range(len(record.replicates)) if finished(i)]
     if not any(record.replicates[i].excluded is not None for i in kept):
@@ -155,17 +164,26 @@ def with_all(record: BenchRecord) -> BenchRecord | None:
 def _estimates(terms: Sequence[Term]) -> dict[str, float]:
     """Return every input's estimate; what the record leaves out is 0, a factor 1, water 20 °C."""
     absent: dict[str, Any] = dict.fromkeys(
-        ("linearity", "balance_errors", "delivery", "blank", "excess"), 0.0
+        (
+            "linearity",
+            "balance_errors",
+            "delivery",
+            "blank",
+            "excess",
+            "end_point",
+            "end_point_own",
+        ),
+        0.0,
     )
-    absent |= {"repeatability": 1.0, "between_days": 1.0, "temperature": 20.0}
+    absent |= {"drop": 1.0, "repeatability": 1.0, "between_days": 1.0, "temperature": 20.0}
     absent["liquid_expansion"] = None  # water by its density
     return absent | {term.input.name: term.input.value for term in terms}
 
 
 def _replicate(record: BenchRecord, model: Model, index: int) -> ReplicateValue:
     one = record.replicates[index]
-    if one.curve is not None and one.excluded is None:
-        says = "This calculation takes no volume from a curve: state the volume at its end point."
+    if one.curve is not None and one.end_point is None and one.excluded is None:
+        says = "No end point was found on this curve: read it before the record is evaluated."
         raise RecordProblem(f"replicates[{index}].curve", says, '"delivered": "18.64"')
     portion = portion_of(record, one)
     unweighed = record.route == "weighed" and portion.mass_g is None
@@ -174,7 +192,8 @@ def _replicate(record: BenchRecord, model: Model, index: int) -> ReplicateValue:
     volume = model.volume(portion)
     if volume <= 0:
         says = f"After blank and excess {volume:.3g} mL are left: the volume must be above zero."
-        raise RecordProblem(f"replicates[{index}].burette", says, '[["0.00", "18.64"]]')
+        key = "burette" if one.curve is None else "curve"
+        raise RecordProblem(f"replicates[{index}].{key}", says, '[["0.00", "18.64"]]')
     return ReplicateValue(
         label=one.label,
         value=model.concentration(portion),

@@ -42,6 +42,54 @@ def repeatability_term(relative_u: float, dof: float | None, source: str) -> Ter
     return Term(source, Input(name="repeatability", value=1.0, u=relative_u, dof=dof, shared=False))
 
 
+def end_point_terms(record: BenchRecord, *, own: bool) -> tuple[Term, ...]:
+    """Return the error of end points found on curves, in mL: the shared part, and each one's own.
+
+    The shared part is one error of all curves that count, with the mean of their u; ``own`` adds
+    what each scatters by for itself, over the square root of their number.
+    """
+    read = [one.end_point for one in record.replicates if one.excluded is None and one.end_point]
+    if not read:
+        return ()
+    n = len(read)
+    methods = sorted({one.method for one in read})
+    systems = sorted({one.system for one in read if one.method == "model fit"})
+    root = f"end point: {', '.join([*methods, *systems])}"
+    shared = sum(one.u_shared_mL for one in read) / n
+    found = [
+        *_drop_terms(record),
+        Term("end point", Input("end_point", 0.0, shared, id=root, unit="mL")),
+    ]
+    alone = math.sqrt(sum(one.u_own_mL**2 for one in read)) / n
+    if own and alone > 0:
+        words = "end point, scatter of each curve's own points"
+        found.append(Term(words, Input("end_point_own", 0.0, alone, unit="mL", shared=False)))
+    return tuple(found)
+
+
+def _drop_terms(record: BenchRecord) -> Iterator[Term]:
+    """Yield the factor 1 that stands for the volume of a drop, the same in all that is counted."""
+    drops = [
+        one.curve.drop
+        for one in record.replicates
+        if one.excluded is None and one.end_point and one.curve and one.curve.drop
+    ]
+    if drops:
+        widest = max(drops, key=lambda one: one.u / value_of(one))
+        ids = {one.id for one in drops}
+        stated = widest.statement
+        yield Term(
+            "volume of a drop",
+            Input(
+                name="drop",
+                value=1.0,
+                u=widest.u / value_of(widest),
+                dof=stated.dof if stated else None,
+                id=widest.id if len(ids) == 1 else None,
+            ),
+        )
+
+
 def between_days_term(history: BetweenDays) -> Term:
     """Return the factor 1 that stands for the day-to-day spread, over the days of this mean."""
     u = history.relative_s / math.sqrt(history.days)

@@ -41,7 +41,7 @@ def _error(found: WeighingCalibration, limit: float | None, rule: str) -> Check:
     worst = max(found.errors, key=lambda one: abs(one.error_g))
     U = 2.0 * worst.u_g
     says = (
-        f"The largest error of indication is {worst.error_g:+.6f} g at {worst.indication_g:.6g} g, "
+        f"The largest error of indication is {worst.error_g:+.6f} g at {worst.indication_g:.9g} g, "
         f"with U = {significant(U)} g (k = 2)"
     )
     shown = f"{worst.error_g:+.6f} g"

@@ -126,9 +126,13 @@ def _run_facts(found: Run) -> list[tuple[str, str]]:
 def _curve_facts(curve: CurveOfErrors) -> list[tuple[str, str]]:
     s = significant(curve.pooled_s_mL) if curve.pooled_s_mL else "0"
     return [
-        ("Repeatability, s", f"{s} mL, {curve.pooled_dof:g} degrees of freedom"),
+        ("Repeatability, s", f"{s} mL, {_freedom(curve.pooled_dof)}"),
         ("u of one delivery", f"{significant(curve.delivery_u_mL)} mL"),
     ]
+
+
+def _freedom(dof: float) -> str:
+    return f"{dof:g} degree{'' if dof == 1 else 's'} of freedom"
 
 
 def _water_heads(run: WaterRun) -> tuple[str, ...]:
@@ -208,9 +212,9 @@ def _balance_facts(
     repeated = ", ".join(str(one) for one in document["repeatability"]["readings"])
     yield "Step of the scale", f"{document['step']} g"
     s = significant(found.s_g) if found.s_g else "0"
-    yield "Repeatability", f"s = {s} g, {found.s_dof} degrees of freedom"
+    yield "Repeatability", f"s = {s} g, {_freedom(found.s_dof)}"
     yield "Readings of one load", f"{repeated} g"
-    yield "Smallest mass for 0.10 %", f"{outcome.minimum_g} g (USP <41>)"
+    yield "Smallest mass for 0.10 %", f"{significant(float(outcome.minimum_g), 3)} g (USP <41>)"
     yield "Linearity of one reading", f"± {significant(found.linearity_g)} g"
     if outcome.eccentricity is not None:
         off = ", ".join(outcome.eccentricity.positions)

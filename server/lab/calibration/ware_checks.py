@@ -1,6 +1,7 @@
 """Checks of how a gravimetric run was done: number of weighings, water, what the budget holds."""
 
 from collections import Counter
+from collections.abc import Sequence
 
 from server.lab.calibration.check import Check
 from server.lab.calibration.water_run import WaterRun
@@ -53,8 +54,7 @@ def water_checks(run: WaterRun) -> tuple[Check, ...]:
         Check(
             name="water temperature",
             verdict="holds" if steady else "look",
-            says=f"The water was {min(temperatures, default=0):.1f} to "
-            f"{max(temperatures, default=0):.1f} °C.",
+            says=f"The water was {_span(temperatures)} °C.",
             basis=basis,
             figure=span,
             limit=most,
@@ -88,6 +88,11 @@ def budget_check(run: WaterRun) -> Check:
         says=f"No uncertainty is stated for: {names}. U is too small by what they add.",
         basis="JCGM 100: every input that counts is evaluated",
     )
+
+
+def _span(values: Sequence[float]) -> str:
+    low, high = (f"{one:.1f}" for one in (min(values, default=0.0), max(values, default=0.0)))
+    return low if low == high else f"{low} to {high}"
 
 
 def _times(count: int) -> str:

@@ -189,12 +189,14 @@ def _random_check(s: float, dof: float, limit: Tolerance, *, rule: str, cv: str)
     permitted = limit.random_mL or "0"
     # u(s) ≈ s/√(2ν) (JCGM 100, E.4.3), twice that as U
     U = 2.0 * s / math.sqrt(2.0 * dof)
+    degrees = f"{dof:g} degree{'' if dof == 1 else 's'} of freedom"
     says = (
-        f"The random error, the standard deviation of one delivery ({dof:g} degrees of freedom), "
-        f"is {significant(s)} mL{cv}; permitted are {permitted} mL."
+        f"The random error, the standard deviation of one delivery ({degrees}), is "
+        f"{significant(s)} mL{cv}; permitted are {permitted} mL."
     )
     return conformity_check(
-        "random error", judge(s, float(permitted), rule=rule, U=U), basis=_basis(limit),
+        "random error", judge(s, float(permitted), rule=rule, U=U),
+        basis=f"{limit.row}: s of {permitted} mL ({limit.provenance})",
         unit="mL", says=says, shown=(f"{significant(s)} mL", f"{permitted} mL"),
     )  # fmt: skip
 

@@ -10,6 +10,9 @@ from sqlalchemy import func, or_, select
 from sqlalchemy.orm import InstrumentedAttribute, Session, aliased
 
 from server.lab.canonical import digest
+from server.lab.opened import bottle_until
+from server.lab.states import bottle_state, lot_state
+from server.lab.validity import ValidUntil
 from server.records.queries.list_holds import StandingHold, standing_holds
 from server.records.tables.bench import Certificate
 from server.records.tables.lots import Bottle, Lot, Pull
@@ -40,6 +43,34 @@ class LotOnShelf:
     hold: StandingHold | None
     pulled: bool
 
+    @property
+    def is_altered(self) -> bool:
+        """Whether its standing certificate is not the text that was issued."""
+        return self.certificate is not None and not self.certificate.holds
+
+    @property
+    def good_until(self) -> ValidUntil | None:
+        """Until when its standing certificate is good, and which rule says so."""
+        if self.certificate is None:
+            return None
+        rule = self.certificate.document["validity"]["rule"]
+        return ValidUntil(self.certificate.row.valid_until, rule)
+
+    def state(self, now: datetime) -> str:
+        """Return the lot's state at an instant."""
+        return self.state_until(self.good_until, now)
+
+    def state_until(self, until: ValidUntil | None, now: datetime) -> str:
+        """Return the lot's state at an instant, were it good until another one."""
+        certificate = self.certificate
+        return lot_state(
+            valid_until=until.at if until else None,
+            notice_days=certificate.document["validity"]["notice_days"] if certificate else 0,
+            held=self.hold is not None or self.is_altered,
+            pulled=self.pulled,
+            now=now,
+        )
+
 
 @dataclass(frozen=True, slots=True)
 class BottleOnShelf:
@@ -48,6 +79,18 @@ class BottleOnShelf:
     bottle: Bottle
     lot: LotOnShelf
     hold: StandingHold | None
+
+    @property
+    def good_until(self) -> ValidUntil | None:
+        """The earlier of the certificate's end and that of the opened bottle, with its rule."""
+        certified = self.lot.good_until
+        return bottle_until(certified, self.bottle.opened_until) if certified else None
+
+    def state(self, now: datetime) -> str:
+        """Return the graver of the bottle's own state and its lot's at an instant."""
+        used_up = self.bottle.used_up_at is not None
+        lot = self.lot.state_until(self.good_until, now)
+        return bottle_state(lot, held=self.hold is not None, used_up=used_up)
 
 
 def bottles_on_shelf(session: Session) -> list[BottleOnShelf]:

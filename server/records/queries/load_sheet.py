@@ -223,7 +223,7 @@ def _entry(row: Entry, people: Mapping[str, PersonFact]) -> WrittenEntry:
     kept = (
         "id", "position", "replicate", "slot", "segment", "text", "unit", "raw", "strikes",
         "reason", "person_id", "posted_by", "device_id", "device_sequence", "device_at",
-        "device_zone", "received_at", "late",
+        "device_zone", "received_at", "late", "file_id",
     )  # fmt: skip
     return WrittenEntry(
         **{name: getattr(row, name) for name in kept},

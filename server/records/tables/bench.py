@@ -29,7 +29,10 @@ class Sheet(Table):
 
 
 class Entry(Table):
-    """One thing written on a bench sheet, in ink: never changed, only struck through."""
+    """One thing written on a bench sheet, in ink: never changed, only struck through.
+
+    ``file_id`` is the original that a curve's points came from.
+    """
 
     __tablename__ = "entry"
     __table_args__ = (
@@ -65,6 +68,7 @@ class Entry(Table):
     base_revision: Mapped[int | None]
     body_digest: Mapped[str] = mapped_column(Text)
     late: Mapped[bool] = mapped_column(default=False)
+    file_id: Mapped[Uuid | None] = mapped_column(ForeignKey("file.id"))
 
 
 class Evaluation(Table):

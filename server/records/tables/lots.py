@@ -22,7 +22,7 @@ class Lot(Table):
 
 
 class Bottle(Table):
-    """One container of a lot."""
+    """One container of a lot. ``opened_until`` is when it is no longer good for being open."""
 
     __tablename__ = "bottle"
     __table_args__ = (UniqueConstraint("lot_id", "number"),)
@@ -36,6 +36,9 @@ class Bottle(Table):
     filled_at: Mapped[When]
     used_up_at: Mapped[When | None]
     used_up_by: Mapped[Uuid | None] = mapped_column(ForeignKey("person.id"))
+    opened_at: Mapped[When | None]
+    opened_until: Mapped[When | None]
+    opened_by: Mapped[Uuid | None] = mapped_column(ForeignKey("person.id"))
 
 
 class Pull(Table):

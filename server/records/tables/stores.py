@@ -77,6 +77,16 @@ class Calibration(Table):
     made_at: Mapped[When]
 
 
+class CurveColumns(Table):
+    """Which column of a curve's table holds what, as an instrument's files had it last."""
+
+    __tablename__ = "curve_columns"
+    instrument_id: Mapped[Uuid] = mapped_column(ForeignKey("instrument.id"), primary_key=True)
+    document: Mapped[Document]
+    person_id: Mapped[Uuid] = mapped_column(ForeignKey("person.id"))
+    at: Mapped[When]
+
+
 class Log(Table):
     """One line in the log of a standard lot or instrument: drying, use, opened, check weighing.
 

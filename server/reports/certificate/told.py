@@ -12,7 +12,12 @@ from server.reports.certificate.notes import Notes
 from server.reports.certificate.pictures import bars_told, dots_told
 from server.reports.issued import Issued
 from server.sheets.parts import outcome
-from server.sheets.parts.shelf_state import nominal_words
+from server.sheets.parts.certificate_words import (
+    CUSTOMER,
+    end_point_words,
+    item_words,
+    statement_lines,
+)
 from server.sheets.parts.telling import (
     listed,
     moment_words,
@@ -36,7 +41,7 @@ def certificate_told(issued: Issued) -> dict[str, Any]:
         "band": _band(issued, zone),
         "value": _value(document, shown),
         "facts": _facts(issued, zone),
-        "statements": list(_statements(document)),
+        "statements": list(statement_lines(document)),
         "signatures": list(_signatures(issued, notes)),
         "reviewed": document["independently_reviewed"],
         "changes": changes_told(issued),
@@ -116,22 +121,17 @@ def _band(issued: Issued, zone: str) -> dict[str, str] | None:
 
 def _facts(issued: Issued, zone: str) -> list[list[str]]:
     document = issued.document
-    lot, laboratory, recipe = document["lot"], document["laboratory"], document["recipe"]
-    end_point, measured = document["end_point"], document["measured"]
+    laboratory, recipe = document["laboratory"], document["recipe"]
+    measured = document["measured"]
     facts = [
         (
             "Laboratory",
             ", ".join(one for one in (laboratory["name"], laboratory["address"]) if one),
         ),
-        ("Prepared for", "the laboratory itself, and performed at its own address"),
-        (
-            "Item",
-            f"{name_of(lot['titrant'])}, {nominal_words(lot['nominal'])}, in {lot['medium']}; lot "
-            f"{lot['name']}, code {lot['code']}; made by {lot['made_by']}"
-            + (f", {typed_day_words(lot['prepared_on'])}" if lot["prepared_on"] else ""),
-        ),
+        ("Prepared for", CUSTOMER),
+        ("Item", item_words(document["lot"])),
         ("Method", f"{recipe['title']} (recipe {recipe['name']}, version {recipe['version']})"),
-        ("End point", _end_point(end_point)),
+        ("End point", end_point_words(document["end_point"])),
         (
             "Measured",
             _span(measured, zone) + (f", by {listed(measured['by'])}" if measured["by"] else ""),
@@ -152,25 +152,6 @@ def _span(measured: Mapping[str, Any], zone: str) -> str:
     if last.startswith(f"{day}, ") and last.endswith(offset):
         return f"{start} to {last.removeprefix(f'{day}, ')}"
     return f"{first} to {last}"
-
-
-def _end_point(end_point: Mapping[str, Any]) -> str:
-    indicator = end_point["indicator"]
-    return f"{end_point['mode']}, {indicator}" if indicator else str(end_point["mode"])
-
-
-def _statements(document: Mapping[str, Any]) -> Iterator[str]:
-    yield from document["statements"]
-    yield (
-        "Traceability: the value rests on the standard and the calibrations under “What the number "
-        "rests on”, each with its certificate and issuer, and is as traceable as those are."
-    )
-    yield "No result from outside the laboratory enters but what those papers state."
-    yield (
-        "Decision rule of the findings: the figure is compared with its limit as it stands, "
-        "without a guard band, unless the basis says otherwise."
-    )
-    yield "Handling and hazards: the supplier's safety data sheet and the laboratory's own rules."
 
 
 def _signatures(issued: Issued, notes: Notes) -> Iterator[dict[str, Any]]:

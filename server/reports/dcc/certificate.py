@@ -150,6 +150,10 @@ def _statements(issued: Issued) -> Iterator[tuple[str, str, str | None]]:
     yield from (("statement", says, None) for says in document["statements"])
     yield "valid until", document["validity"]["rule"], document["validity"]["last_day"]
     yield "valid for", document["valid_for"], None
+    if not issued.stands:
+        by = f" by {issued.replaced_by}" if issued.replaced_by else ""
+        says = f"{issued.state}{by}. {issued.state_says} Do not use this result.".replace("  ", " ")
+        yield "state", says, _day(issued.as_of.isoformat(), document["laboratory"]["zone"])
     anchor = f"anchored to act {issued.anchor.seq}, {issued.anchor.hash}"
     yield "trail", f"{anchor}; SHA-256 of the document {issued.document_digest}", None
 

@@ -1,28 +1,16 @@
 """What stands on a bottle's label."""
 
-from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import date, datetime
 from typing import Any
 from urllib.parse import urlsplit
 
 from server.lab.codes import holds
+from server.lab.label_hazards import PICTOGRAMS, check_hazards
+from server.lab.own_site import read_base_url
 from server.lab.refusal import Unacceptable
 from server.lab.validity import local_day
 from server.sheets.parts.telling import day_words
-
-PICTOGRAMS: Mapping[str, str] = {
-    "GHS01": "exploding bomb",
-    "GHS02": "flame",
-    "GHS03": "flame over circle",
-    "GHS04": "gas cylinder",
-    "GHS05": "corrosion",
-    "GHS06": "skull and crossbones",
-    "GHS07": "exclamation mark",
-    "GHS08": "health hazard",
-    "GHS09": "environment",
-}
-SIGNAL_WORDS = ("", "Danger", "Warning")
 
 
 @dataclass(frozen=True, slots=True)
@@ -82,10 +70,11 @@ def bottle_url(base_url: str, code: str) -> str:
     """
     if not holds(code):
         raise Unacceptable(f"“{code[:40]}” is no code of a bottle.", field="code")
-    parts = urlsplit(base_url)
-    if parts.scheme not in {"http", "https"} or not parts.netloc or parts.query or parts.fragment:
+    base = read_base_url(base_url)
+    if not base:
         says = "The laboratory's own address must be an http address without question marks."
         raise Unacceptable(says, field="base_url", example="https://ledger.example")
+    parts = urlsplit(base)
     host = f"{parts.scheme}://{parts.netloc}".upper()
     return f"{host}{parts.path.rstrip('/')}/B/{code}"
 
@@ -128,13 +117,7 @@ def _hazards(hazards: ConfirmedHazards | None) -> dict[str, Any] | None:
     if not hazards.confirmed_by.strip():
         says = "Hazards are printed only where the laboratory's responsible person confirmed them."
         raise Unacceptable(says, field="hazards.confirmed_by", example="a name")
-    for one in hazards.pictograms:
-        if one not in PICTOGRAMS:
-            says = f"“{one[:40]}” is no pictogram; it is one of {', '.join(PICTOGRAMS)}."
-            raise Unacceptable(says, field="hazards.pictograms", example="GHS05")
-    if hazards.signal_word not in SIGNAL_WORDS:
-        says = f"“{hazards.signal_word[:40]}” is no signal word."
-        raise Unacceptable(says, field="hazards.signal_word", example="Danger")
+    check_hazards(hazards.pictograms, hazards.signal_word, field="hazards.")
     return {
         "pictograms": [
             {"key": one, "name": PICTOGRAMS[one]} for one in dict.fromkeys(hazards.pictograms)

@@ -115,6 +115,7 @@ def _certificate_line(issued: Issued) -> dict[str, Any]:
     return {
         "number": issued.number,
         "state": issued.state,
+        "state_says": issued.state_says,
         "replaced_by": issued.replaced_by,
         "reported": issued.document["result"]["concentration"]["reported"],
         "valid_until": issued.document["validity"]["until"],

@@ -34,7 +34,8 @@ class LotBundle:
     """A lot with its certificates (the newest first), sheets, trail (oldest first) and files.
 
     ``trail`` rows hold all that their hashes are made of. ``paper_hashes`` maps calibrations and
-    standard lots, by id, to the SHA-256 of their files.
+    standard lots, by id, to the SHA-256 of their files. ``country`` is the laboratory's; where it
+    is empty no DCC is made.
     """
 
     code: str
@@ -48,3 +49,4 @@ class LotBundle:
     trail: Sequence[Mapping[str, Any]] = field(repr=False)
     files: Sequence[OriginalFile] = ()
     paper_hashes: Mapping[str, str] = field(default_factory=dict)
+    country: str = ""

@@ -1,40 +1,33 @@
 """Gathering all of a lot from the record."""
 
 from collections.abc import Iterable, Iterator, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from datetime import datetime
 from typing import Any
 
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
-from server.lab.canonical import digest
 from server.lab.codes import read_code
 from server.lab.refusal import NotFound
 from server.records.queries.list_certificates import certificates_of_lot
-from server.records.queries.list_sheets import sheets_of_lot, snapshots_of
+from server.records.queries.list_sheets import sheets_of_lot
 from server.records.queries.list_shelf import bottles_of_lot, lot_on_shelf
 from server.records.queries.list_trail import TrailFilter, trail_of_sheet, trail_rows
 from server.records.queries.load_lots import lot_of_code
 from server.records.queries.load_papers import load_laboratory_fact
 from server.records.queries.load_sheet import load_sheet_facts
 from server.records.tables.lots import Bottle
-from server.records.tables.stores import Calibration, File, StandardLot
 from server.records.tables.trail import TrailRow
-from server.reports.issued import Issued, issued_from
+from server.reports.certificate.gathering import Paper, gather_issued, papers_of
 from server.reports.lot.bundle import LotBundle, OriginalFile, WrittenSheet
-from server.sheets.certificate_page import open_certificate, open_certificate_document
 from server.sheets.parts.doors import need_reader
 
 _PAGE = 500
 
 
-def gather_lot(
-    session: Session, code: str, *, actor: Actor | None, now: datetime, base_url: str | None = None
-) -> LotBundle:
+def gather_lot(session: Session, code: str, *, actor: Actor | None, now: datetime) -> LotBundle:
     """Return all of a lot, by its own code or one of its bottles'.
-
-    ``base_url`` is the laboratory's own address, for the certificates' QR codes.
 
     Raises:
         NotFound: there is no such lot.
@@ -45,20 +38,22 @@ def gather_lot(
     if lot is None:
         raise NotFound(f"There is no lot or bottle {code[:40]}.", field="code")
     kept = certificates_of_lot(session, lot.id)
-    certificates = [_issued(session, one.row.number, reader, now, base_url) for one in kept]
+    certificates = [gather_issued(session, one.row.number, actor=reader, now=now) for one in kept]
     by_number = {one.number: one.document for one in certificates}
     certificates = [
         replace(one, previous=by_number.get(one.document["replaces"] or "")) for one in certificates
     ]
     sheets = [load_sheet_facts(session, one.sheet.id) for one in sheets_of_lot(session, lot.id)]
     bottles = bottles_of_lot(session, lot_on_shelf(session, lot.id))
-    papers = list(_papers(session, certificates))
+    laboratory = load_laboratory_fact(session)
+    papers = list(papers_of(session, certificates))
     things = [lot.id, *(one.bottle.id for one in bottles)]
     return LotBundle(
         code=lot.code,
         name=lot.name,
         titrant=lot.titrant,
-        laboratory=load_laboratory_fact(session).name,
+        laboratory=laboratory.name,
+        country=str(laboratory.settings.get("country") or ""),
         as_of=now,
         certificates=certificates,
         sheets=[WrittenSheet(one.number, one.state, tuple(one.entries)) for one in sheets],
@@ -69,51 +64,7 @@ def gather_lot(
     )
 
 
-def _issued(
-    session: Session, number: str, reader: Actor, now: datetime, base_url: str | None
-) -> Issued:
-    page = open_certificate(session, number, actor=reader, now=now)
-    found = open_certificate_document(session, number, actor=reader, now=now)
-    kept = snapshots_of(session, found["document"]["sheet"]["id"])
-    wanted = found["document"]["snapshot_digest"]
-    return issued_from(
-        found,
-        signatures_hold=tuple(one.holds for one in page.signatures),
-        snapshot=next((text for text in kept.values() if digest(text) == wanted), None),
-        url=f"{base_url.rstrip('/')}/certificates/{number}" if base_url else None,
-    )
-
-
-@dataclass(frozen=True, slots=True)
-class _Paper:
-    """A calibration or standard lot that has a file."""
-
-    thing_id: str
-    name: str
-    file: File
-
-
-def _papers(session: Session, certificates: Iterable[Issued]) -> Iterator[_Paper]:
-    """Yield the papers with files of all roots of the certificates, each once."""
-    seen: set[str] = set()
-    for certificate in certificates:
-        for root in certificate.document["traceability"]:
-            thing_id = root["calibration_id"] or root["id"]
-            if thing_id in seen:
-                continue
-            seen.add(thing_id)
-            row: Calibration | StandardLot | None = (
-                session.get(Calibration, thing_id)
-                if root["calibration_id"]
-                else session.get(StandardLot, thing_id)
-            )
-            file = session.get(File, row.file_id) if row is not None and row.file_id else None
-            if file is not None:
-                name = f"{root['name']}, {root['certificate_number']}"
-                yield _Paper(thing_id, name, file)
-
-
-def _files(papers: Sequence[_Paper]) -> list[OriginalFile]:
+def _files(papers: Sequence[Paper]) -> list[OriginalFile]:
     """Return each file once, with all papers that it belongs to."""
     files = {paper.file.id: paper.file for paper in papers}
     return [

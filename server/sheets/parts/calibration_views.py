@@ -9,7 +9,7 @@ from server.lab.calibration.check import Check
 from server.lab.calibration.told import Told, read_told
 from server.lab.sheet_facts import BALANCE, BURETTE, FLASK, PIPETTE, THERMOMETER
 from server.lab.states import REPLACED, due_state
-from server.metrology.rounding import significant
+from server.metrology.rounding import rounded, rounding_exponent, significant
 from server.records.queries.list_stores import KeptCalibration
 from server.sheets.instruments import CalibrationView, CheckView, ErrorTable, RunView, UsedView
 from server.sheets.parts.kept_files import file_view
@@ -155,12 +155,15 @@ def stated_facts(kind: str, document: Mapping[str, Any]) -> list[Fact]:
 
 
 def _shortened(document: Mapping[str, Any]) -> dict[str, Any]:
-    """Return what a run states with its computed uncertainties to three digits, to be read."""
+    """Return what a run states, to be read: computed uncertainties to three digits."""
     shown: dict[str, Any] = {}
     for key, value in document.items():
         shown[key] = value
         if isinstance(value, Mapping):
             short = {k: significant(float(value[k]), 3) for k in _COMPUTED if value.get(k)}
+            if value.get("u") and value.get("value"):
+                last = rounding_exponent(float(value["u"]), digits=3)
+                short["value"] = rounded(float(value["value"]), last)
             shown[key] = {**value, **short}
     if shown.get("minimum_g"):
         shown["minimum_g"] = significant(float(shown["minimum_g"]), 3)

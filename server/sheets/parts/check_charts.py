@@ -1,6 +1,6 @@
 """The checks of an instrument between two calibrations, as they are read."""
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
 from server.drawing.control_chart import CheckPoint, Limits, control_chart
 from server.lab.actor import Actor
@@ -17,7 +17,7 @@ from server.lab.calibration.check_log import (
 from server.lab.roles import Act
 from server.lab.sheet_facts import LogFact
 from server.lab.validity import local_day
-from server.metrology.rounding import rounded, rounding_exponent
+from server.metrology.rounding import rounded, rounded_pair, rounding_exponent
 from server.sheets.instruments import ChartView
 from server.sheets.parts.telling import (
     count_words,
@@ -95,14 +95,16 @@ def _line(line: LogFact, checked: Checked | None, reader: Actor) -> LineView:
     )
 
 
+def _drop(volume: Mapping[str, str]) -> str:
+    value, u = rounded_pair(float(volume["value"]), float(volume["u"]))
+    return quantity_words({**volume, "value": value, "u": u})
+
+
 def _words(line: LogFact, checked: Checked | None) -> str:
     document = line.document
     if line.what == DROP_VOLUME:
         weighings = count_words(int(document["weighings"]), "weighing")
-        return (
-            f"one drop {quantity_words(document['volume'])}, {weighings} of "
-            f"{document['drops']} drops"
-        )
+        return f"one drop {_drop(document['volume'])}, {weighings} of {document['drops']} drops"
     if line.what in CHARTS:
         name = document.get("name") or f"{document.get('buffer')}, {document.get('set')}"
         return f"limits set for {name}"

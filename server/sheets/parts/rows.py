@@ -3,6 +3,7 @@
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import asdict, replace
 
+from server.lab.curve_entry import SLOT as CURVE
 from server.lab.ink import Place, WrittenEntry, excluded, standing, strikes
 from server.lab.log_lines import standing_lines
 from server.lab.lot_log import DRYING, drying_of, is_drying_step, logged_words
@@ -82,13 +83,14 @@ class _Written:
             id=entry.id,
             text=entry.text,
             unit=entry.unit,
-            raw=entry.raw,
+            raw=None if entry.slot == CURVE else entry.raw,
             initials=entry.initials,
             person=entry.printed_name,
             at=entry.received_at.isoformat(),
             clock=clock_words(entry.received_at, self._zone),
             late=entry.late,
             reason=entry.reason,
+            file_url=f"/files/{entry.file_id}" if entry.file_id else None,
         )
 
 

@@ -12,8 +12,6 @@ from server.lab.states import (
     PULLED,
     UNPROVEN,
     USED_UP,
-    bottle_state,
-    lot_state,
     may_be_used,
 )
 from server.records.queries.list_holds import StandingHold
@@ -24,25 +22,17 @@ from server.sheets.shelf import BottleLine
 
 def state_of_lot(lot: LotOnShelf, now: datetime) -> str:
     """Return a lot's state at an instant."""
-    certificate = lot.certificate
-    return lot_state(
-        valid_until=certificate.row.valid_until if certificate else None,
-        notice_days=certificate.document["validity"]["notice_days"] if certificate else 0,
-        held=lot.hold is not None or is_altered(lot),
-        pulled=lot.pulled,
-        now=now,
-    )
+    return lot.state(now)
 
 
 def is_altered(lot: LotOnShelf) -> bool:
     """Say whether a lot's standing certificate is not the text that was issued."""
-    return lot.certificate is not None and not lot.certificate.holds
+    return lot.is_altered
 
 
 def state_of_bottle(one: BottleOnShelf, now: datetime) -> str:
     """Return the graver of a bottle's own state and its lot's."""
-    used_up = one.bottle.used_up_at is not None
-    return bottle_state(state_of_lot(one.lot, now), held=one.hold is not None, used_up=used_up)
+    return one.state(now)
 
 
 def concentration_in_force(lot: LotOnShelf, state: str) -> Mapping[str, Any] | None:
@@ -57,8 +47,8 @@ def bottle_line(one: BottleOnShelf, now: datetime, zone: str) -> BottleLine:
     """Return a bottle for a table; a number only where the bottle is in force."""
     state, lot = state_of_bottle(one, now), one.lot
     result = concentration_in_force(lot, state)
-    dated = lot.certificate is not None and state in {IN_FORCE, CHECK_DUE, LAPSED}
-    until = lot.certificate.row.valid_until if lot.certificate and dated else None
+    good = one.good_until if state in {IN_FORCE, CHECK_DUE, LAPSED} else None
+    until = good.at if good else None
     return BottleLine(
         code=one.bottle.code,
         url=f"/b/{one.bottle.code}",
@@ -77,6 +67,17 @@ def bottle_line(one: BottleOnShelf, now: datetime, zone: str) -> BottleLine:
 def nominal_words(nominal: str) -> str:
     """Return a nominal concentration with its unit."""
     return f"{nominal} mol/L"
+
+
+def why_of_bottle(one: BottleOnShelf, state: str, zone: str) -> str:
+    """Return in a sentence what the state means for a bottle; no names."""
+    until = one.good_until
+    if until is not None and until != one.lot.good_until and state in {LAPSED, CHECK_DUE}:
+        day = last_day_words(until.at, zone)
+        if state == LAPSED:
+            return f"It was opened, and open it was good until {day}. Take another bottle."
+        return f"Still in force, but it is open, and open it is good until {day} only."
+    return why(one.lot, state, zone, thing="bottle")
 
 
 def why(lot: LotOnShelf, state: str, zone: str, *, thing: str) -> str:

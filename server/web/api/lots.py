@@ -17,8 +17,11 @@ from server.procedures.lots import (
 )
 from server.sheets.lot_page import open_lot
 from server.sheets.lots_page import open_lots
+from server.sheets.methods_page import open_methods
 from server.web.api.desk import AtApi, answer, made
 from server.web.bodies import Given, body_of
+from server.web.handing_out import hand_out_lot
+from server.web.pages.lots import ToCompare
 from server.web.visits import AtDesk
 
 router = APIRouter(tags=["lots"])
@@ -44,6 +47,22 @@ def lots(visit: AtDesk, state: str = "") -> Response:
 def lot(visit: AtDesk, code: str) -> Response:
     """Tell one lot: preparation, bottles, sheets, certificates."""
     return answer(visit.read(open_lot, code))
+
+
+@router.get("/lots/{code}/methods")
+def methods(visit: AtDesk, code: str, asked: ToCompare) -> Response:
+    """Tell the end-point methods of a lot side by side, over its evaluated sheets.
+
+    Asked by ``sheet`` (a number; several are allowed, none means all), ``reference`` (mol/L) and
+    ``reference_U`` (k = 2).
+    """
+    return answer(visit.read(open_methods, code, asked))
+
+
+@router.get("/lots/{code}/export.zip", response_class=Response)
+def export(visit: AtDesk, code: str) -> Response:
+    """Hand out all of a lot in one archive: certificates, record, trail, files, manifest."""
+    return hand_out_lot(visit, code)
 
 
 @router.post("/lots/{code}/bottles", openapi_extra=_FILL.openapi, status_code=201)

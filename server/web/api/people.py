@@ -1,11 +1,10 @@
-"""People and settings over the API, for a steward."""
+"""People over the API, for a steward."""
 
 from typing import Annotated
 
 from fastapi import APIRouter, Depends, Response
 
 from server.lab.roles import Act
-from server.procedures.laboratory import ChangeSettings, change_settings
 from server.procedures.people import (
     AddPerson,
     ChangeRoles,
@@ -22,12 +21,12 @@ from server.web.visits import AtDesk
 
 router = APIRouter(tags=["people"])
 _ADD, _ROLES = body_of(AddPerson), body_of(ChangeRoles, "person_id")
-_CLOSE, _SETTINGS = body_of(CloseAccount, "person_id"), body_of(ChangeSettings)
+_CLOSE = body_of(CloseAccount, "person_id")
 
 
 @router.get("/people")
 def people(visit: AtDesk) -> Response:
-    """List people and settings."""
+    """List people."""
     return answer(visit.read(open_people))
 
 
@@ -53,9 +52,3 @@ def close(desk: AtApi, person_id: str, given: Annotated[Given, Depends(_CLOSE)])
     """Close an account for good."""
     desk.act(close_account, CloseAccount(person_id=person_id, **given))
     return answer({"id": person_id, "active": False})
-
-
-@router.post("/laboratory", openapi_extra=_SETTINGS.openapi)
-def settings(desk: AtApi, given: Annotated[Given, Depends(_SETTINGS)]) -> Response:
-    """Change the laboratory's settings; all of them are sent."""
-    return answer({"revision": desk.act(change_settings, ChangeSettings(**given))})

@@ -6,7 +6,9 @@ from urllib.parse import unquote
 
 from fastapi import APIRouter, Depends, Request, Response
 
+from server.intake.curve_upload import SentCurve
 from server.lab.refusal import NotSignedIn
+from server.lab.roles import Act
 from server.procedures.bench import (
     AbandonSheet,
     BeginSheet,
@@ -15,10 +17,12 @@ from server.procedures.bench import (
     begin_sheet,
     let_be_used,
 )
-from server.procedures.entries import NewEntry, WriteEntries, write_entries
+from server.procedures.curves import find_curve_source
+from server.procedures.entries import NewEntry, WriteEntries, read_curves, write_entries
 from server.procedures.hand_in import HandIn
 from server.sheets.bench_home import open_bench_home
 from server.sheets.bench_sheet import open_bench_sheet
+from server.sheets.curve_preview import curve_preview, read_for_preview
 from server.sheets.hand_in import evaluate_hand_in, read_hand_in
 from server.web.acting import act
 from server.web.api.desk import TOKEN_HEADER, AtApi, answer, made
@@ -46,6 +50,7 @@ _BEGIN = body_of(BeginSheet)
 _ABANDON = body_of(AbandonSheet, "sheet_id")
 _LET = body_of(LetBeUsed, "sheet_id")
 _HAND_IN = body_of(HandIn, "sheet_id", password=str)
+_PREVIEW = body_of(SentCurve, replicate=int)
 _DOOR = JsonBody(model_of(_Entries))
 
 
@@ -101,13 +106,28 @@ def write(
 ) -> Response:
     """Write entries: each with its own UUID, all or none; a repeated one gets its first answer."""
     entries = tuple(NewEntry(**dict(entry)) for entry in given["entries"])
-    written = act(visit, write_entries, WriteEntries(sheet_id, entries), key=None)
+    command = WriteEntries(sheet_id, entries)
+    if any(entry.curve is not None for entry in entries):
+        visit.person.need(Act.WRITE)
+        command = read_curves(command, visit.read(find_curve_source, sheet_id))
+    written = act(visit, write_entries, command, key=None)
     return answer(
         {
             "written": [asdict(one) for one in written],
             "sheet": asdict(visit.read(open_bench_sheet, sheet_id)),
         }
     )
+
+
+@router.post("/sheets/{sheet_id}/curves/preview", openapi_extra=_PREVIEW.openapi)
+def preview(
+    visit: Annotated[Visit, Depends(_at_door)],
+    sheet_id: str,
+    given: Annotated[Given, Depends(_PREVIEW)],
+) -> Response:
+    """Tell how a curve would be read and which volumes it has; nothing is stored."""
+    read = visit.read(read_for_preview, sheet_id, given.pop("replicate"))
+    return answer(curve_preview(read, SentCurve(**given), now=visit.now))
 
 
 @router.get("/sheets/{sheet_id}/hand-in")

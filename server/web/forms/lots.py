@@ -16,6 +16,7 @@ def read_make_up(form: Typed) -> MakeUpLot:
         preparation=form.text("preparation"),
         recipe_name=form.text("recipe_name"),
         use_by=form.text("use_by"),
+        opened_days=form.text("opened_days"),
     )
 
 

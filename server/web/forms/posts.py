@@ -1,7 +1,7 @@
 """A form that was sent: its token checked, its act done once, or shown again as it was typed."""
 
-from collections.abc import Callable
-from dataclasses import dataclass
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
 from typing import Annotated, Any
 
 from fastapi import Depends, Response
@@ -22,7 +22,7 @@ class Again:
     """The page that a refused form is shown on: its template, its opener, what that is given.
 
     ``keeps_typed`` False: the page has several forms, and this one held nothing that was typed;
-    ``finish`` makes the page of what was opened.
+    ``finish`` makes the page of what was opened; ``more`` is what the page is told besides.
     """
 
     template: str
@@ -30,6 +30,7 @@ class Again:
     given: tuple[Any, ...] = ()
     keeps_typed: bool = True
     finish: Callable[[Any], Any] | None = None
+    more: Mapping[str, Any] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,6 +94,7 @@ class Post:
                 headers=headers_of(refusal),
                 problem=problem_of(refusal, form_field(refusal.field)),
                 typed=typed,
+                **again.more,
             )
         except Refusal:
             raise refusal from None

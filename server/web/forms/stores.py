@@ -102,6 +102,9 @@ def fill_recipe_form(recipe: RecipeFact) -> dict[str, str]:
         "replicates": str(document.replicates),
         "end_point_mode": document.end_point.mode,
         "end_point_indicator": document.end_point.indicator or "",
+        "end_point_method": document.end_point.method or "",
+        "end_point_system": document.end_point.system or "",
+        "end_point_flask_volume_mL": document.end_point.flask_volume_mL or "",
         "valid_for": document.valid_for,
         "interval_days": str(document.interval_days),
         "notice_days": str(document.notice_days),
@@ -121,6 +124,10 @@ def _end_point(form: Typed) -> dict[str, str]:
     read = {"mode": form.text("end_point_mode", "visual")}
     if read["mode"] == "visual" and form.text("end_point_indicator").strip():
         read["indicator"] = form.text("end_point_indicator").strip()
+    for name in ("method", "system", "flask_volume_mL"):
+        value = form.decimal(f"end_point_{name}")
+        if value:
+            read[name] = value
     return read
 
 

@@ -18,7 +18,7 @@ _KIND = "application/x-www-form-urlencoded"
 _WITH_FILES = "multipart/form-data"
 _MOST_FIELDS = 500
 _MOST_FILES = 3
-_MANY = frozenset({"roles", "accepted"})
+_MANY = frozenset({"roles", "accepted", "bottles", "pictograms", "scopes"})
 _UNSEEN = frozenset({"form_token", "key", "revision", "next", "version"})
 _SECRET = frozenset({"password", "old", "new", "setup_code"})
 

@@ -1,7 +1,10 @@
-"""Titrant lots: made up, filled into bottles, pulled."""
+"""Titrant lots: made up, filled into bottles, pulled; their end-point methods compared."""
 
-from fastapi import APIRouter, Response
+from typing import Annotated, Any
 
+from fastapi import APIRouter, Depends, Request, Response
+
+from server.lab.refusal import Unacceptable
 from server.procedures.lots import (
     ConfirmPull,
     ProposePull,
@@ -12,12 +15,16 @@ from server.procedures.lots import (
 )
 from server.sheets.lot_page import open_lot, open_make_up
 from server.sheets.lots_page import open_lots
+from server.sheets.methods_page import MethodsAsked, open_methods
 from server.web.forms.lots import read_fill, read_make_up
 from server.web.forms.posts import Again, Posted
-from server.web.showing import show
+from server.web.handing_out import hand_out_lot
+from server.web.showing import problem_of, show
 from server.web.visits import AtDesk
 
 router = APIRouter()
+_METHODS = "lots/methods.html"
+_LONGEST, _MOST_SHEETS = 60, 200
 
 
 @router.get("/lots")
@@ -50,6 +57,37 @@ def make_up(post: Posted) -> Response:
 def lot(visit: AtDesk, code: str) -> Response:
     """Show one lot: preparation, bottles, sheets, certificates."""
     return show(visit, "lots/lot.html", open_lot, code)
+
+
+def methods_asked(request: Request) -> MethodsAsked:
+    """Return which sheets of a lot to compare, and the value to be true to, from the address."""
+    query = request.query_params
+    return MethodsAsked(
+        sheets=tuple(one[:_LONGEST] for one in query.getlist("sheet")[:_MOST_SHEETS] if one),
+        reference=query.get("reference", "")[:_LONGEST],
+        reference_U=query.get("reference_U", "")[:_LONGEST],
+    )
+
+
+ToCompare = Annotated[MethodsAsked, Depends(methods_asked)]
+
+
+@router.get("/lots/{code}/methods")
+def methods(visit: AtDesk, code: str, asked: ToCompare) -> Response:
+    """Show the end-point methods of a lot side by side."""
+    try:
+        return show(visit, _METHODS, open_methods, code, asked)
+    except Unacceptable as refusal:
+        plain = MethodsAsked(sheets=asked.sheets)
+        typed = {"reference": asked.reference, "reference_U": asked.reference_U}
+        shown: dict[str, Any] = {"status": 422, "problem": problem_of(refusal), "typed": typed}
+        return show(visit, _METHODS, open_methods, code, plain, **shown)
+
+
+@router.get("/lots/{code}/export.zip")
+def export(visit: AtDesk, code: str) -> Response:
+    """Hand out all of a lot in one archive."""
+    return hand_out_lot(visit, code)
 
 
 @router.post("/lots/{code}/bottles")

@@ -1,11 +1,8 @@
-"""People and the laboratory's settings, kept by a steward."""
-
-from typing import Any
+"""People, kept by a steward."""
 
 from fastapi import APIRouter, Response
 
 from server.lab.roles import Act
-from server.procedures.laboratory import ChangeSettings, change_settings
 from server.procedures.people import (
     AddPerson,
     ChangeRoles,
@@ -15,11 +12,10 @@ from server.procedures.people import (
     close_account,
     hash_new_password,
 )
-from server.records.queries.loading import laboratory_row
 from server.sheets.people import open_people
-from server.web.forms.posts import Again, Post, Posted
+from server.web.forms.posts import Again, Posted
 from server.web.showing import show
-from server.web.visits import AtDesk, Visit
+from server.web.visits import AtDesk
 
 router = APIRouter()
 _AGAIN = Again("people/home.html", open_people)
@@ -28,7 +24,7 @@ _TICKED = Again("people/home.html", open_people, keeps_typed=False)
 
 @router.get("/people")
 def home(visit: AtDesk) -> Response:
-    """Show people and settings."""
+    """Show people."""
     return show(visit, "people/home.html", open_people)
 
 
@@ -75,34 +71,3 @@ def close(post: Posted, person_id: str) -> Response:
         return "/people"
 
     return post.answer(work, again=_TICKED)
-
-
-@router.post("/laboratory")
-def settings(post: Posted) -> Response:
-    """Change the laboratory's settings."""
-
-    def work() -> str:
-        post.visit.person.need(Act.ADMINISTER)
-        post.act(change_settings, _settings(post))
-        return "/people"
-
-    return post.answer(work, again=_AGAIN)
-
-
-def _settings(post: Post) -> ChangeSettings:
-    form, kept = post.form, kept_settings(post.visit)
-    return ChangeSettings(
-        name=form.text("name"),
-        address=form.text("address"),
-        zone=form.text("zone").strip(),
-        revision=form.whole("revision", example="1"),
-        shelf_open=bool(form.text("shelf_open")),
-        own_signature=bool(form.text("own_signature")),
-        limits=kept.get("limits", {}),
-        idle_minutes=kept.get("idle_minutes", 30),
-    )
-
-
-def kept_settings(visit: Visit) -> dict[str, Any]:
-    """Return the settings that the form does not show, so that saving it keeps them."""
-    return visit.parts.transactions.read(lambda session: dict(laboratory_row(session).settings))

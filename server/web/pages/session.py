@@ -10,6 +10,7 @@ from server.procedures.laboratory import SetUpLaboratory, set_up_laboratory
 from server.procedures.people import hash_new_password
 from server.procedures.sign_in import sign_out
 from server.records.queries.loading import there_is_a_laboratory
+from server.sheets.own_page import open_own_page
 from server.web.errors import answer_of, headers_of
 from server.web.forms.posts import Again, Posted, see_other
 from server.web.proving import sign_in
@@ -139,7 +140,7 @@ def _need_code(visit: Visit, code: str) -> None:
 def me(visit: AtDesk) -> Response:
     """Show one's own page."""
     visit.person  # noqa: B018 - refuses who is not signed in
-    return show(visit, "session/me.html", page_opener())
+    return show(visit, "session/me.html", open_own_page)
 
 
 @router.post("/me")
@@ -155,7 +156,7 @@ def change_own_password(post: Posted) -> Response:
         )
         return "/me"
 
-    response = post.answer(work, again=Again("session/me.html", page_opener()))
+    response = post.answer(work, again=Again("session/me.html", open_own_page))
     for token in tokens:
         set_cookie(response, post.visit, token)
     return response

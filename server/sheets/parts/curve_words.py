@@ -1,0 +1,81 @@
+"""A curve in words: what it shows, which method to believe, and who chose."""
+
+from server.curves.analysis import Analysis
+from server.curves.outcome import EndPoint, NoEndPoint
+from server.metrology.rounding import rounded_pair, significant
+from server.sheets.parts.curve_drawn import Steps
+
+
+def volume_words(found: EndPoint) -> tuple[str, str]:
+    """Return an end point's volume and its standard uncertainty, both in mL."""
+    return rounded_pair(found.volume_mL, found.u_mL)
+
+
+def picture_says(analysis: Analysis, taken: str, steps: Steps) -> str:
+    """Return the curve for those who cannot see it: points, ends, end point, greatest slope."""
+    curve = analysis.curve
+    steepest = max(steps, key=lambda one: one[2])
+    says = (
+        f"Titration curve of {curve.size} points, from {curve.kind} {curve.y[0]:.4g} at "
+        f"{curve.V[0]:.4g} mL to {curve.kind} {curve.y[-1]:.4g} at {curve.V[-1]:.4g} mL."
+    )
+    found = next((one for one in analysis.outcomes if one.method == taken), None)
+    if isinstance(found, EndPoint):
+        volume, u = volume_words(found)
+        says += f" End point by {the(taken)}: {volume} mL, standard uncertainty {u} mL."
+    says += (
+        f" Greatest slope {steepest[2]:.3g} {curve.kind} per mL, between {steepest[0]:.4g} and "
+        f"{steepest[1]:.4g} mL."
+    )
+    others = [
+        f"{one.method} {volume_words(one)[0]}"
+        for one in analysis.outcomes
+        if isinstance(one, EndPoint) and one.method != taken
+    ]
+    return says + (f" Other methods, in mL: {', '.join(others)}." if others else "")
+
+
+def believe(analysis: Analysis) -> str:
+    """Return in one sentence which method to believe, and why."""
+    method = analysis.proposed
+    found = analysis.outcome(method)
+    volume = f"{volume_words(found)[0]} mL" if isinstance(found, EndPoint) else "no volume"
+    because = _because_fit(analysis) if method == "model fit" else _because_other(analysis)
+    return f"Believe {the(method)}, {volume}: {because}."
+
+
+def the(method: str) -> str:
+    """Return a method's name as it stands in a sentence."""
+    named = {"gran acid side": "Gran's line of the acid side",
+             "gran alkaline side": "Gran's line of the alkaline side"}  # fmt: skip
+    return named.get(method, f"the {method}")
+
+
+def _because_fit(analysis: Analysis) -> str:
+    fit = analysis.outcome("model fit")
+    used = len(fit.used) if isinstance(fit, EndPoint) else 0
+    parts = [f"it rests on {'all ' if used == analysis.curve.size else ''}{used} points"]
+    looks = [one.name for one in analysis.findings if one.verdict == "look"]
+    verdicts = {one.name: one.verdict for one in analysis.findings}
+    if verdicts.get("residuals") == "holds":
+        parts.append("its residuals look like scatter")
+    derivative = analysis.outcome("first derivative")
+    if isinstance(fit, EndPoint) and isinstance(derivative, EndPoint):
+        apart = abs(fit.volume_mL - derivative.volume_mL)
+        holds = verdicts.get("methods agree") == "holds"
+        parts.append(
+            f"the first derivative {'agrees' if holds else 'lies off'} "
+            f"{'to' if holds else 'by'} {significant(apart)} mL"
+        )
+    says = ", ".join(parts[:-1]) + f" and {parts[-1]}" if len(parts) > 1 else parts[0]
+    shown = [name for name in looks if name not in {"methods agree", "spacing"}]
+    return says + (f"; look at {' and '.join(shown)} first" if shown else "")
+
+
+def _because_other(analysis: Analysis) -> str:
+    fit = analysis.outcome("model fit")
+    if isinstance(fit, NoEndPoint):
+        why = fit.why.rstrip(".")
+        return f"the model fit has no answer ({why[0].lower()}{why[1:]})"
+    failing = [one.name for one in analysis.findings if one.verdict == "fails"]
+    return f"the model fit has a volume, but does not hold in {' and '.join(failing)}"

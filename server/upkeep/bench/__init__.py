@@ -1,0 +1,1 @@
+"""Measurements of speed and error against yardsticks that run in the same minute."""
