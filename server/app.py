@@ -19,6 +19,7 @@ from server.records.migrating import migrate
 from server.records.queries.loading import there_is_a_laboratory
 from server.records.transaction import Transactions
 from server.settings import DATABASE_VARIABLE, Settings, SettingsProblem
+from server.upkeep.post_office import PostOffice
 from server.web.parts import Parts
 from server.web.static_files import StaticFiles
 from server.web.templating import Templating
@@ -59,8 +60,10 @@ def build_app(
         KeyProblem: others may read the keys, or a file is none.
     """
     static = StaticFiles(find_folder("static"))
+    opened = transactions or Transactions(open_database(settings.database_url))
+    office = PostOffice(opened, settings.mail, clock=clock) if settings.mail else None
     parts = Parts(
-        transactions=transactions or Transactions(open_database(settings.database_url)),
+        transactions=opened,
         clock=clock,
         templating=Templating(find_folder("templates"), static),
         secure=settings.is_secure,
@@ -68,7 +71,11 @@ def build_app(
         version=release() or "0",
         unknown_codes=UnknownCodes(),
         keys=open_signing_keys(settings.key_folder, now=clock()),
+        sends_mail=office is not None,
+        at_end=(office.close,) if office else (),
     )
+    if office is not None:
+        office.start()
     return create_app(parts, static)
 
 

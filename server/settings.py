@@ -5,7 +5,10 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
+from server.upkeep.mail_server import MailProblem, MailServer, read_mail_server
+
 DATABASE_VARIABLE = "TITRANT_LEDGER_DATABASE_URL"
+MAIL_VARIABLE = "TITRANT_LEDGER_SMTP_URL"
 DEFAULT_HOST, DEFAULT_PORT = "127.0.0.1", 8017
 DATABASE_FILE = "ledger.sqlite"
 KEY_FOLDER = "keys"
@@ -27,6 +30,7 @@ class Settings:
     tls_key: Path | None = None
     behind_proxy: bool = False
     plain_http: bool = False
+    mail: MailServer | None = None
 
     @property
     def is_secure(self) -> bool:
@@ -45,10 +49,22 @@ class Settings:
 
 
 def read_settings(environment: Mapping[str, str], *, data: Path, **given: object) -> Settings:
-    """Return the settings for a data folder; the environment may name another database."""
+    """Return the settings for a data folder; the environment may name another database.
+
+    It may name a server for e-mail as well.
+
+    Raises:
+        SettingsProblem: the server for e-mail is none.
+    """
     url = environment.get(DATABASE_VARIABLE, "").strip()
     chosen = url or f"sqlite:///{(data / DATABASE_FILE).resolve()}"
-    return Settings(data=data, database_url=chosen, **given)  # type: ignore[arg-type]
+    mail: MailServer | None = None
+    if environment.get(MAIL_VARIABLE, "").strip():
+        try:
+            mail = read_mail_server(environment[MAIL_VARIABLE])
+        except MailProblem as problem:
+            raise SettingsProblem(f"{MAIL_VARIABLE}: {problem}") from problem
+    return Settings(data=data, database_url=chosen, mail=mail, **given)  # type: ignore[arg-type]
 
 
 def check_door(settings: Settings) -> None:

@@ -183,6 +183,8 @@ def first_derivative(clean: CleanCurve, jump: int) -> EndPoint:
     window = _steep_part(clean, jump)
     v, r = V[window], y[window]
     centre, scale = float((y[jump] + y[jump + 1]) / 2), float(np.ptp(r)) / 2
+    if scale <= 0:
+        raise CannotTell("The readings do not change where the curve should jump.")
     x = (r - centre) / scale
     inverse = 1 / np.maximum(np.gradient(y, V)[window], 1e-9)
     step = float(V[jump + 1] - V[jump])

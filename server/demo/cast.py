@@ -7,6 +7,7 @@ from typing import Any
 
 NAME = "Tarnbeck Waterworks, Laboratory"
 ADDRESS = "4 Filter Lane, Tarnbeck"
+COUNTRY = "CH"
 
 
 @dataclass(frozen=True, slots=True)
@@ -228,6 +229,37 @@ HCL_RECIPE: Mapping[str, Any] = MappingProxyType(
         "steps": [{"key": "mixed", "label": "Lot mixed thoroughly", "when": "before"}],
     }
 )
+PROBE_RECIPE: Mapping[str, Any] = MappingProxyType(
+    {
+        "title": "Sodium hydroxide 0.1 mol/L against potassium hydrogen phthalate, by probe",
+        "titrant": {"substance": "NaOH", "nominal": "0.1", "medium": "water"},
+        "route": "weighed",
+        "standard": "KHP",
+        "weighing": "difference",
+        "replicates": 4,
+        "end_point": {
+            "mode": "potentiometric",
+            "method": "model fit",
+            "system": "khp-naoh",
+            "flask_volume_mL": "50",
+        },
+        "valid_for": "potentiometric, model fit",
+        "blank": "none",
+        "buoyancy": True,
+        "temperature": "once",
+        "interval_days": 14,
+        "notice_days": 3,
+        "steps": [
+            {"key": "mixed", "label": "Lot mixed thoroughly", "when": "before"},
+            {
+                "key": "dried",
+                "label": "KHP dried 2 h at 120 °C, cooled in the desiccator",
+                "when": "before",
+            },
+        ],
+    }
+)
+PROBE_RECIPE_NAME = "NaOH 0.1 against KHP, by probe"
 RECIPES: Mapping[str, Mapping[str, Any]] = MappingProxyType(
     {"NaOH 0.1 against KHP": NAOH_RECIPE, "HCl 0.1 against TRIS": HCL_RECIPE}
 )

@@ -1,7 +1,9 @@
 """Hands that do the demo laboratory's work through the procedures, one act a transaction."""
 
-from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass, field
+from base64 import b64encode
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from contextlib import contextmanager
+from dataclasses import dataclass, field, replace
 from datetime import datetime, timedelta
 from random import Random
 from typing import Any, TypeVar
@@ -11,7 +13,9 @@ from sqlalchemy.orm import Session
 
 from server.demo.cast import Member
 from server.demo.simulated import Line
+from server.intake.curve_upload import SentCurve
 from server.lab.actor import Actor, Proof
+from server.lab.curve_entry import SLOT as CURVE
 from server.lab.ink import standing
 from server.lab.people import initials_of
 from server.procedures.bench import BeginSheet, begin_sheet
@@ -28,6 +32,8 @@ from server.records.queries.load_sheet import load_sheet_facts
 from server.records.transaction import Transactions
 
 T = TypeVar("T")
+#: Replicate, name of the file, and what stands in it.
+CurveLine = tuple[int, str, str]
 
 
 @dataclass(slots=True)
@@ -38,6 +44,15 @@ class Hands:
     zone: str
     random: Random
     ids: dict[str, str] = field(default_factory=dict)
+
+    @contextmanager
+    def chance_of(self, seed: int) -> Iterator[None]:
+        """Let a part of the story have chances of its own, so that the others keep theirs."""
+        usual, self.random = self.random, Random(seed)  # noqa: S311 - scatter, nothing secret
+        try:
+            yield
+        finally:
+            self.random = usual
 
     def actor(self, member: Member) -> Actor:
         """Return a member as the one who acts."""
@@ -73,6 +88,20 @@ class Hands:
         facts = self.transactions.read(lambda session: load_sheet_facts(session, sheet_id))
         stands = standing(facts.entries)[(line[0], line[1], 1)]
         entry = self._entry(line, strikes=stands.id, reason=reason)
+        self.do(write_entries, WriteEntries(sheet_id, (entry,)), member, at)
+
+    def write_curve(
+        self, sheet_id: str, curve: CurveLine, member: Member, at: datetime, *, again: str = ""
+    ) -> None:
+        """Write a curve with its file; ``again`` says why the one that stands is struck."""
+        replicate, name, text = curve
+        strikes = None
+        if again:
+            facts = self.transactions.read(lambda session: load_sheet_facts(session, sheet_id))
+            strikes = standing(facts.entries)[(replicate, CURVE, 1)].id
+        blank = self._entry((replicate, CURVE, ""), strikes=strikes, reason=again or None)
+        content = b64encode(text.encode()).decode("ascii")
+        entry = replace(blank, curve=SentCurve(file_name=name, content_base64=content))
         self.do(write_entries, WriteEntries(sheet_id, (entry,)), member, at)
 
     def leave_out(

@@ -7,9 +7,10 @@ from datetime import datetime, timedelta
 from functools import partial
 from random import Random
 
-from server.demo import cast, stores
+from server.demo import cast, runs, stores
 from server.demo.cast import BASHIR, IMKE, JONAS, OTTILIE, STEWARD, Member
 from server.demo.hands import Hands, minutes
+from server.demo.probe_bench import ProbeBench
 from server.demo.simulated import Line, Truth, replicate_lines, sheet_lines
 from server.demo.workshop import Workshop
 from server.lab.validity import local_day
@@ -58,6 +59,8 @@ class DemoSummary:
     open_sheet_id: str
     waiting_sheet_id: str
     sent_back_sheet_id: str
+    curve_sheet_id: str
+    open_curve_sheet_id: str
 
 
 def fill_demo(
@@ -80,6 +83,8 @@ def fill_demo(
         open_sheet_id=story.sheets["open"],
         waiting_sheet_id=story.sheets["waiting"],
         sent_back_sheet_id=story.sheets["sent back"],
+        curve_sheet_id=story.sheets["by probe"],
+        open_curve_sheet_id=story.sheets["open, by probe"],
     )
 
 
@@ -110,6 +115,7 @@ class _Story:
                     sign_in_name=member.sign_in_name,
                     printed_name=member.printed_name,
                     password=password,
+                    country=cast.COUNTRY,
                 )
                 person_id = self._hands.transactions.write(
                     partial(set_up_laboratory, command=first, password_hash=hashed, now=at)
@@ -143,6 +149,9 @@ class _Story:
             self._recipes[document["titrant"]["substance"]] = self._hands.do(
                 write_recipe, written, JONAS, at
             )
+        with self._hands.chance_of(_SEED + 3):
+            written = WriteRecipe(cast.PROBE_RECIPE_NAME, dict(cast.PROBE_RECIPE))
+            self._recipes[cast.PROBE_RECIPE_NAME] = self._hands.do(write_recipe, written, JONAS, at)
 
     def parts(self) -> list[tuple[str, Callable[[], None]]]:
         """Return the parts of the story with what to say before each."""
@@ -158,9 +167,12 @@ class _Story:
             ("A lye in force …", self._lye_in_force),
             ("A sheet sent back …", self._sent_back),
             ("A probe in its buffers …", shop.calibrate_probe),
+            ("A new lye …", self._new_lye),
+            ("A lye by its curves …", self._by_probe),
             ("A lye that waits for a second person …", self._waiting),
+            ("Curves that are not all there yet …", self._open_by_probe),
             ("A sheet open half-way …", self._open),
-            ("The probe once more …", shop.check_probe),
+            ("The probe once more …", partial(shop.check_probe, 0.02, pH="6.87", celsius="24.4")),
         ]
 
     def _acid(self) -> None:
@@ -215,9 +227,11 @@ class _Story:
         self._send_back(sheet, "Replicate 3: was the burette read at rest? Titrate one more.", 1.7)
         self.sheets["sent back"] = sheet
 
-    def _waiting(self) -> None:
+    def _new_lye(self) -> None:
         self._make_up("new lye", "NaOH", IMKE, 1.5, made_from="50 % caustic, clear supernatant")
         self._fill("new lye", IMKE, 1.5, place="Shelf 1", count=1)
+
+    def _waiting(self) -> None:
         self._dry(BASHIR, 0.5)
         sheet = self._begin("new lye", "KHP", BASHIR, 0.5)
         truth = Truth("KHP", 0.10118, 21.4)
@@ -240,6 +254,35 @@ class _Story:
         self._hands.write(sheet, lines[2][:2], BASHIR, at + minutes(38))
         self.sheets["open"] = sheet
 
+    def _by_probe(self) -> None:
+        """Let a lye be made up, titrated by probe and countersigned; one curve is taken again."""
+        with self._hands.chance_of(_SEED + 1):
+            self._make_up("probe lye", "NaOH", IMKE, 1.4, made_from="50 % caustic, boiled water")
+            self._workshop.check_probe(1.23, pH="6.86", celsius="24.6")
+            self._dry(IMKE, 1.2)
+            sheet = self._begin("probe lye", "KHP", IMKE, 1.2, by_probe=True)
+            bench = ProbeBench(self._hands, sheet, Truth("KHP", 0.10087, 20.8), IMKE)
+            at = self._before(1.2)
+            bench.open(at + minutes(5))
+            for replicate in (1, 2, 3, 4):
+                bench.titrate(replicate, at + minutes(14 * replicate), again=replicate == 2)
+            self._certify(sheet, IMKE, 1.2)
+        self.sheets["by probe"] = sheet
+
+    def _open_by_probe(self) -> None:
+        """Leave a sheet open in which the fourth replicate is weighed and waits for its curve."""
+        with self._hands.chance_of(_SEED + 2):
+            self._workshop.check_probe(0.33, pH="6.85", celsius="24.8")
+            self._dry(IMKE, 0.3)
+            sheet = self._begin("probe lye", "KHP", IMKE, 0.3, by_probe=True)
+            bench = ProbeBench(self._hands, sheet, Truth("KHP", 0.10091, 20.9), IMKE)
+            at = self._before(0.3)
+            bench.open(at + minutes(5))
+            for replicate in (1, 2, 3):
+                bench.titrate(replicate, at + minutes(14 * replicate))
+            bench.weigh(4, at + minutes(58))
+        self.sheets["open, by probe"] = sheet
+
     def _make_up(
         self, key: str, titrant: str, member: Member, days: float, *, made_from: str
     ) -> None:
@@ -258,15 +301,19 @@ class _Story:
         self.bottles += codes
         return codes
 
-    def _begin(self, key: str, standard: str, member: Member, days: float) -> str:
+    def _begin(
+        self, key: str, standard: str, member: Member, days: float, *, by_probe: bool = False
+    ) -> str:
+        visual = "NaOH" if standard == "KHP" else "HCl"
         command = BeginSheet(
             lot_code=self._lots[key],
-            recipe_id=self._recipes["NaOH" if standard == "KHP" else "HCl"],
+            recipe_id=self._recipes[cast.PROBE_RECIPE_NAME if by_probe else visual],
             standard_lot_id=self._standards[standard],
             balance_id=self._workshop.ids[cast.BALANCE.name],
             burette_id=self._workshop.ids[cast.BURETTE.name],
             thermometer_id=self._workshop.ids[cast.THERMOMETER.name],
             room_id=self._workshop.ids[cast.ROOM.name],
+            probe_id=self._workshop.ids[runs.PROBE.name] if by_probe else None,
         )
         self._workshop.check_balance([days])
         return self._hands.begin(command, member, self._before(days))

@@ -40,15 +40,26 @@ def sheet_lines(truth: Truth, *, each_temperature: bool, drying: str | None) -> 
     ]
 
 
+def amount_of(truth: Truth, masses: list[Line]) -> float:
+    """Return the amount in mmol that two weighings, container with and without, have taken."""
+    before, after = (float(text) for _, _, text in masses)
+    return _amount(truth, before - after)
+
+
+def _amount(truth: Truth, mass_g: float) -> float:
+    molar_mass, density = _STANDARDS[truth.standard]
+    buoyancy = (1 - 1.19e-3 / 8.0) / (1 - 1.19e-3 / density)
+    return 1000 * mass_g * truth.mass_fraction * buoyancy / molar_mass
+
+
 def replicate_lines(
     truth: Truth, replicate: int, random: Random, *, tared: bool, off_percent: float = 0.0
 ) -> list[Line]:
     """Return the entries of one replicate; ``off_percent`` makes its volume wrong by as much."""
-    molar_mass, density = _STANDARDS[truth.standard]
+    molar_mass, _ = _STANDARDS[truth.standard]
     target = truth.mol_per_L * random.uniform(0.0185, 0.0212) * molar_mass
     mass = round(target, 4)
-    buoyancy = (1 - 1.19e-3 / 8.0) / (1 - 1.19e-3 / density)
-    amount_mmol = 1000 * mass * truth.mass_fraction * buoyancy / molar_mass
+    amount_mmol = _amount(truth, mass)
     volume = amount_mmol / truth.mol_per_L * random.gauss(1.0, _RELATIVE_SCATTER)
     volume = volume * (1 + off_percent / 100) + _BLANK_ML
     start = random.choice((0.00, 0.02, 0.05, 0.10))

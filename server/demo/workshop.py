@@ -77,10 +77,10 @@ class Workshop:
         limits = {"set": "JIS Z 8802:2011", "buffer": "phosphate"}
         self._hands.do(set_limits, SetLimits(self.ids[runs.PROBE.name], limits), JONAS, at)
 
-    def check_probe(self) -> None:
-        """Write today's buffer check."""
-        check = WriteCheck(self.ids[runs.PROBE.name], pH="6.87", temperature="24.4")
-        self._hands.do(write_check, check, BASHIR, self._before(0.02))
+    def check_probe(self, days: float, *, pH: str, celsius: str) -> None:
+        """Write a buffer check of the probe."""
+        check = WriteCheck(self.ids[runs.PROBE.name], pH=pH, temperature=celsius)
+        self._hands.do(write_check, check, BASHIR, self._before(days))
 
     def _register(self, tool: Tool, at: datetime) -> None:
         command = RegisterInstrument(kind=tool.kind, name=tool.name, **tool.identity)

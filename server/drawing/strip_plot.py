@@ -7,7 +7,7 @@ from server.drawing.scale import Scale, round_values
 from server.drawing.svg import element, picture, words
 
 _WIDTH, _LEFT, _RIGHT = 420.0, 14.0, 406.0
-_TOP, _ROW, _POINTS, _BAR, _FOOT = 46.0, 66.0, 22.0, 41.0, 58.0
+_TOP, _ROW, _POINTS, _BAR, _FOOT = 46.0, 74.0, 30.0, 54.0, 50.0
 _LANES, _APART = (0.0, -9.0, 9.0), 11.0
 _REACH = 4.5
 #: A method farther away than so many margins is told by an arrow at the edge: the others would
@@ -69,6 +69,7 @@ def strip_plot(strips: Sequence[Strip], middle: Middle, *, decimals: int, unit: 
     bottom = _TOP + _ROW * len(strips)
     parts = [*_margin(scale, middle, bottom), *_axis(scale, bottom, unit)]
     for place, strip in enumerate(strips):
+        parts += _rules(scale, middle, _TOP + _ROW * place)
         parts += _strip(strip, place, scale, _TOP + _ROW * place)
     says = _says(strips, middle, decimals=decimals, unit=unit)
     return picture(_WIDTH, bottom + _FOOT, says=says, parts=parts, kind="strips")
@@ -92,35 +93,28 @@ def _margin(scale: Scale, middle: Middle, bottom: float) -> list[str]:
     low, high = (scale.at(middle.value + way * middle.margin) for way in (-1, 1))
     band = {"x": low, "y": _TOP - 8, "width": high - low, "height": bottom - _TOP + 8}
     x = scale.at(middle.value)
-    line = {"x1": x, "x2": x, "y1": _TOP - 8, "y2": bottom, "stroke-width": 1.6}
-    ends = [
-        element(
-            "line",
-            {
-                "x1": at,
-                "x2": at,
-                "y1": _TOP - 8,
-                "y2": bottom,
-                "stroke": "#b0125f",
-                "stroke-dasharray": "2 4",
-                "class": "chart-point-line",
-            },
-        )
-        for at in (low, high)
-    ]
     return [
         element("rect", {**band, "fill": "#fbe3ee", "class": "chart-band"}),
-        *ends,
-        element("line", {**line, "stroke": "#b0125f", "class": "chart-point-line"}),
         words(middle.name, x, 14, anchor="middle", size=12.5),
         words(f"± {middle.margin_percent:g} %", x, 31, anchor="middle", size=12.5),
     ]
 
 
+def _rules(scale: Scale, middle: Middle, top: float) -> list[str]:
+    """The middle and the ends of the margin beside one strip's points, not across its words."""
+    found = []
+    for way, dashes in ((-1, "2 4"), (0, ""), (1, "2 4")):
+        x = scale.at(middle.value + way * middle.margin)
+        line = {"x1": x, "x2": x, "y1": top + 15, "y2": top + _ROW - 8, "stroke": "#b0125f"}
+        line |= {"stroke-dasharray": dashes} if dashes else {"stroke-width": 1.4}
+        found.append(element("line", {**line, "class": "chart-point-line"}))
+    return found
+
+
 def _axis(scale: Scale, bottom: float, unit: str) -> list[str]:
     line = {"x1": _LEFT, "x2": _RIGHT, "y1": bottom, "y2": bottom, "stroke": "currentColor"}
     parts = [element("line", {**line, "class": "chart-tick"})]
-    values = round_values(scale.low, scale.high, about=4)
+    values = round_values(scale.low, scale.high, about=5)
     step = values[1] - values[0] if len(values) > 1 else scale.high - scale.low
     decimals = next((n for n in range(9) if round(step, n) >= step * (1 - 1e-6)), 9)
     # neighbouring words must not touch: with many digits every second tick goes without them
@@ -160,10 +154,10 @@ def _strip(strip: Strip, place: int, scale: Scale, top: float) -> list[str]:
     if not scale.low <= strip.mean <= scale.high:
         return [*parts, *_beyond(strip, scale, top)]
     parts += [
-        draw(x, top + _POINTS + 6 + lane, look)
+        draw(x, top + _POINTS + lane, look)
         for x, lane in _lanes([scale.at(value) for value in strip.values])
     ]
-    return [*parts, *_interval(strip, scale, top + _BAR + 7, look)]
+    return [*parts, *_interval(strip, scale, top + _BAR, look)]
 
 
 def _lanes(places: list[float]) -> list[tuple[float, float]]:
@@ -199,7 +193,7 @@ def _interval(strip: Strip, scale: Scale, y: float, look: "_Look") -> list[str]:
 def _beyond(strip: Strip, scale: Scale, top: float) -> list[str]:
     """A method that lies far beyond the others: an arrow at the edge, and how far."""
     way = 1 if strip.mean > scale.high else -1
-    edge, y = (_RIGHT if way > 0 else _LEFT), top + _POINTS + 10
+    edge, y = (_RIGHT if way > 0 else _LEFT), top + _POINTS + 8
     stroke = {"stroke": "currentColor", "stroke-width": 2, "class": "chart-out", "fill": "none"}
     middle = (scale.low + scale.high) / 2
     off = 100 * (strip.mean / middle - 1)

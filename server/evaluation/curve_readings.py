@@ -3,24 +3,27 @@
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from functools import lru_cache
+from math import hypot
 from typing import Any
 
-from server.chemistry.equilibria import HIGHEST_C, LOWEST_C
 from server.curves.analysis import Analysis
-from server.curves.circumstances import Circumstances, system_named
+from server.curves.circumstances import Circumstances
 from server.curves.entrance import analysed
-from server.curves.outcome import METHODS, EndPoint, Method
+from server.curves.outcome import EndPoint, Method
 from server.curves.points import CurveProblem, Points
 from server.evaluation.bench_record import BenchRecord
 from server.evaluation.constants import Constants
-from server.evaluation.methods.standardization_v1 import model_of
+from server.evaluation.curve_known import (
+    USUAL_FLASK_ML,
+    asked_method,
+    flask_assumed,
+    known_of,
+    system_of,
+)
 from server.evaluation.record_fields import RecordProblem
-from server.evaluation.replicate_reading import Curve, Replicate
+from server.evaluation.replicate_reading import Curve
 from server.evaluation.taken_curve import TakenCurve
 
-_STRONG_ACIDS = frozenset({"HCl", "HBr", "HNO3", "HClO4"})
-"""Acids of one proton that water takes whole: what the model of an acid in the burette means."""
-_STRONG_BASES = frozenset({"NaOH", "KOH"})
 _KEPT = 128
 """So many analyses stay in memory: those of a bench sheet on which somebody is working."""
 
@@ -32,6 +35,7 @@ class CurveReading:
     ``index`` counts the record's replicates from 0; ``stated`` tells whether somebody named the
     method, else it was proposed by the program. ``u_shared_mL`` is what all replicates have in
     common of the end point's standard uncertainty, ``u_own_mL`` what each has for itself.
+    ``flask_assumed``: nobody stated the volume in the flask, the fit took a usual one.
     """
 
     index: int
@@ -43,6 +47,7 @@ class CurveReading:
     u_shared_mL: float
     u_own_mL: float
     system: str
+    flask_assumed: bool
     analysis: Analysis
 
     def as_taken(self) -> TakenCurve:
@@ -57,6 +62,7 @@ class CurveReading:
             u_shared_mL=self.u_shared_mL,
             u_own_mL=self.u_own_mL,
             system=self.system,
+            flask_assumed=self.flask_assumed,
             found=self.analysis.to_document(),
         )
 
@@ -96,88 +102,31 @@ def points_of(curve: Curve) -> Points:
     return Points(curve.kind, curve.volume_mL, curve.reading, curve.seconds)
 
 
-def known_of(record: BenchRecord, constants: Constants, one: Replicate) -> Circumstances:
-    """Return what is known of a replicate's titration beside its points.
-
-    Raises:
-        CurveProblem: a temperature at which the system's constants do not hold.
-    """
-    model = model_of(record, constants)
-    portion = model.portion(one)
-    return circumstances_known(
-        system_of(record),
-        flask_volume_mL=record.end_point.flask_volume_mL if record.end_point else None,
-        amount_mmol=model.standard_mmol(portion),
-        temperature_C=portion.temperature_C,
-    )
-
-
-def circumstances_known(
-    system: str,
-    *,
-    flask_volume_mL: float | None,
-    amount_mmol: float | None,
-    temperature_C: float,
-) -> Circumstances:
-    """Return circumstances of a curve from figures: volumes mL, amounts mmol, temperature °C.
-
-    Without a system the temperature only scales mV, so that it may lie where no constants hold.
-
-    Raises:
-        CurveProblem: a system that is not known, or a temperature at which it does not hold.
-    """
-    named = system_named(system)
-    if named is None:
-        temperature_C = min(max(temperature_C, LOWEST_C), HIGHEST_C)
-    return Circumstances(
-        system=named,
-        flask_volume_mL=flask_volume_mL,
-        amount_mmol=amount_mmol,
-        temperature_C=temperature_C,
-    )
-
-
-def system_of(record: BenchRecord) -> str:
-    """Return the acid-base system of a record: the stated one, else by titrant and standard."""
-    stated = record.end_point.system if record.end_point else None
-    if stated is not None:
-        return stated
-    standard = record.standard.substance if record.standard else None
-    return system_between(record.titrant.substance, standard, medium=record.titrant.medium)
-
-
-def system_between(titrant: str, standard: str | None, *, medium: str) -> str:
-    """Return the system of a titrant with a standard in water, ``none`` where none is known."""
-    if medium != "water":
-        return "none"
-    if standard == "KHP" and titrant in _STRONG_BASES:
-        return "khp-naoh"
-    if standard == "TRIS" and titrant in _STRONG_ACIDS:
-        return "tris-hcl"
-    if standard == "Na2CO3" and titrant in _STRONG_ACIDS:
-        return "carbonate-hcl"
-    return "none"
-
-
 def _reading(record: BenchRecord, constants: Constants, index: int) -> CurveReading:
     one = record.replicates[index]
     path = f"replicates[{index}]"
     if one.curve is None:
         raise RecordProblem(f"{path}.curve", "This replicate has no curve.")
+    points = points_of(one.curve)
     try:
-        analysis = analysed_curve(points_of(one.curve), known_of(record, constants, one))
+        known = known_of(record, constants, one)
+        analysis = analysed_curve(points, known)
     except CurveProblem as problem:
-        at = "" if problem.index is None else f".volume_mL[{problem.index}]"
-        raise RecordProblem(f"{path}.curve{at}", f"{problem.says}") from problem
-    asked, asked_at = _asked(record, one, path)
+        raise RecordProblem(f"{path}.curve", problem.says) from problem
+    asked = asked_method(record, one)
     taken = asked or analysis.proposed
     found = analysis.outcome(taken)
     if not isinstance(found, EndPoint):
         says = f"Replicate {one.label}: the {taken} has no answer for this curve. {found.why}"
         able = able_methods(analysis)
         says += f" What has one: {', '.join(able)}." if able else ""
-        raise RecordProblem(asked_at, says, f'"{analysis.proposed}"')
+        of_replicate = asked is None or one.curve.method is not None
+        at = f"{path}.method" if of_replicate else "end_point.method"
+        raise RecordProblem(at, says, f'"{analysis.proposed}"')
     shared, own = _shares(analysis, found)
+    assumed = flask_assumed(record, one)
+    if assumed:
+        shared = hypot(shared, _flask_part(points, known, found))
     return CurveReading(
         index=index,
         label=one.label,
@@ -188,6 +137,7 @@ def _reading(record: BenchRecord, constants: Constants, index: int) -> CurveRead
         u_shared_mL=shared,
         u_own_mL=own,
         system=system_of(record),
+        flask_assumed=assumed,
         analysis=analysis,
     )
 
@@ -195,19 +145,6 @@ def _reading(record: BenchRecord, constants: Constants, index: int) -> CurveRead
 def able_methods(analysis: Analysis) -> tuple[Method, ...]:
     """Return the methods that have an answer for a curve."""
     return tuple(one.method for one in analysis.outcomes if isinstance(one, EndPoint))
-
-
-def _asked(record: BenchRecord, one: Replicate, path: str) -> tuple[Method | None, str]:
-    """Return the method that was asked for, the replicate's before the record's, and where."""
-    if one.curve is not None and one.curve.method is not None:
-        return _named(one.curve.method), f"{path}.method"
-    if record.end_point is not None and record.end_point.method is not None:
-        return _named(record.end_point.method), "end_point.method"
-    return None, f"{path}.method"
-
-
-def _named(method: str) -> Method | None:
-    return next((one for one in METHODS if one == method), None)
 
 
 def _shares(analysis: Analysis, found: EndPoint) -> tuple[float, float]:
@@ -222,48 +159,15 @@ def _shares(analysis: Analysis, found: EndPoint) -> tuple[float, float]:
     return found.u_mL, 0.0
 
 
-def with_end_points(record: BenchRecord, curves: Sequence[TakenCurve]) -> BenchRecord:
-    """Return the record whose curves have a volume: one delivery from 0 to the end point.
-
-    Raises:
-        RecordProblem: an end point outside the burette or its error table.
-    """
-    if not curves:
-        return record
-    replicates = list(record.replicates)
-    for curve in curves:
-        one = replicates[curve.index]
-        problem = outside_burette(record, one, curve.volume_mL)
-        if problem is None:
-            replicates[curve.index] = at_volume(one, curve)
-        elif one.excluded is None:
-            says = f"Replicate {curve.label}, {curve.taken}: {problem}"
-            raise RecordProblem(f"replicates[{curve.index}].curve", says)
-    return replace(record, replicates=tuple(replicates))
-
-
-def at_volume(one: Replicate, curve: TakenCurve) -> Replicate:
-    """Return a replicate with its end point: the burette's way from 0 to it, or drops counted."""
-    if one.curve is not None and one.curve.drop is not None:
-        return replace(one, delivered=curve.volume_mL, end_point=curve.end_point())
-    return replace(one, segments=((0.0, curve.volume_mL),), end_point=curve.end_point())
-
-
-def outside_burette(record: BenchRecord, one: Replicate, volume_mL: float) -> str | None:
-    """Return in words why a volume cannot have come from the burette, None where it can."""
-    table, capacity = record.burette.error_table, record.burette.capacity
-    if volume_mL <= 0:
-        return f"the end point at {volume_mL:.4g} mL is not above zero."
-    if one.curve is not None and one.curve.drop is not None:
-        return None
-    if table and not (table[0][0] <= 0 and volume_mL <= table[-1][0]):
-        return (
-            f"the volume from 0 to {volume_mL:.4g} mL lies outside the burette's error table, "
-            f"which goes from {table[0][0]:g} to {table[-1][0]:g} mL."
-        )
-    if capacity is not None and volume_mL > capacity:
-        return f"the end point at {volume_mL:.4g} mL is more than the burette holds, {capacity:g}."
-    return None
+def _flask_part(points: Points, known: Circumstances, found: EndPoint) -> float:
+    """Return the u that a flask's volume brings in mL where it may be half to twice as much."""
+    moved = []
+    for times in (0.5, 2.0):
+        other = replace(known, flask_volume_mL=times * (known.flask_volume_mL or USUAL_FLASK_ML))
+        there = analysed_curve(points, other).outcome(found.method)
+        if isinstance(there, EndPoint):
+            moved.append(abs(there.volume_mL - found.volume_mL))
+    return max(moved, default=found.u_mL) / 3**0.5
 
 
 def taken_of(record: BenchRecord, constants: Constants) -> tuple[TakenCurve, ...]:

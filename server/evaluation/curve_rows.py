@@ -6,7 +6,7 @@ from math import isfinite
 from typing import Any
 
 from server.evaluation.bench_record import BenchRecord
-from server.evaluation.curve_readings import at_volume, outside_burette
+from server.evaluation.curve_volumes import at_volume, outside_burette
 from server.evaluation.methods.model_v1 import Model
 from server.evaluation.taken_curve import TakenCurve
 
@@ -28,6 +28,7 @@ def _row(record: BenchRecord, model: Model, curve: TakenCurve) -> dict[str, Any]
         "proposed": curve.proposed,
         "stated": curve.stated,
         "system": curve.system,
+        "flask_assumed": curve.flask_assumed,
         "volume_mL": curve.volume_mL,
         "u_shared_mL": curve.u_shared_mL,
         "u_own_mL": curve.u_own_mL,

@@ -10,8 +10,9 @@ from server.evaluation.bench_record import BenchRecord, read_record
 from server.evaluation.calculations import CURRENT
 from server.evaluation.circumstances import Circumstances
 from server.evaluation.constants import Constants, resolve_constants
-from server.evaluation.curve_readings import taken_of, with_end_points
+from server.evaluation.curve_readings import taken_of
 from server.evaluation.curve_rows import method_rows
+from server.evaluation.curve_volumes import with_end_points
 from server.evaluation.findings.finding import Finding
 from server.evaluation.findings.of_curves import curve_findings
 from server.evaluation.findings.of_measurement import measurement_findings

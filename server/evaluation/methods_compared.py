@@ -3,7 +3,7 @@
 import json
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
-from math import sqrt
+from math import hypot, sqrt
 from statistics import fmean
 from typing import Any
 
@@ -206,23 +206,23 @@ def _reason(method: str, sheets: Sequence[SheetOutcome]) -> str:
 def _u_systematic(
     method: str, sheets: Sequence[SheetOutcome], reference: StatedValue | None
 ) -> float:
-    """Return u of a method's mean less the reference, but for the replicates' own scatter.
+    """Return u of a method's mean (mol/L) but for the replicates' own scatter.
 
-    What a sheet and the reference both rest on cancels by root (JCGM 100, 5.2). Of several sheets
-    the mean is taken: what they share does not get smaller by their number.
+    Without a reference that is the method's own part; with one u of the difference, where what a
+    sheet and the reference both rest on cancels by root (JCGM 100, 5.2). Of several sheets the mean
+    is taken: what they share does not get smaller by their number.
     """
-    if reference is None:
-        return 0.0
     parts = [
         part for sheet in sheets if (part := _u_of_sheet(method, sheet, reference)) is not None
     ]
     return fmean(parts) if parts else 0.0
 
 
-def _u_of_sheet(method: str, sheet: SheetOutcome, reference: StatedValue) -> float | None:
+def _u_of_sheet(method: str, sheet: SheetOutcome, reference: StatedValue | None) -> float | None:
+    """Return that of one sheet; None where the sheet has no value of the method."""
     end_point = _u_end_point(method, sheet)
-    if end_point is None:
-        return None
+    if end_point is None or reference is None:
+        return end_point
     result = sheet.result
     value = result["concentration"]["value"]
     ends = {row["id"] for row in result["budget"] if row["source"] == _END_POINT}
@@ -238,7 +238,8 @@ def _u_of_sheet(method: str, sheet: SheetOutcome, reference: StatedValue) -> flo
     ]
     squares = [(value * one) ** 2 for one in components.values()]
     squares += [one**2 for one in rootless]
-    squares.append((value * end_point) ** 2)
+    if method in METHODS:  # that of burette readings stands in the budget already
+        squares.append(end_point**2)
     return unshared_u(
         (value, sqrt(sum(squares)), components),
         (reference.value, reference.u, dict(reference.components)),
@@ -246,15 +247,26 @@ def _u_of_sheet(method: str, sheet: SheetOutcome, reference: StatedValue) -> flo
 
 
 def _u_end_point(method: str, sheet: SheetOutcome) -> float | None:
-    """Return the relative u that a method's end points share; None where the sheet has none."""
+    """Return what a method's end points share of u, in mol/L; None where the sheet has none."""
     if method not in METHODS:
-        with_curve = {one["label"] for one in _curves(sheet)}
-        own = any(one["label"] not in with_curve for one in _counting(sheet))
-        return 0.0 if own and sheet.read_as == method else None
+        return _u_by_eye(method, sheet)
     found = []
     for curve in _curves(sheet):
         for one in curve["methods"]:
             if one["method"] == method and "unable" not in one:
                 u = curve["fit"]["u_model_mL"] if method == _FIT else one["u_mL"]
                 found.append(u / one["volume_mL"])
-    return fmean(found) if found else None
+    return fmean(found) * sheet.result["concentration"]["value"] if found else None
+
+
+def _u_by_eye(method: str, sheet: SheetOutcome) -> float | None:
+    """Return what blank and excess add to u, in mol/L: all that is known of a colour's change."""
+    with_curve = {one["label"] for one in _curves(sheet)}
+    if method != sheet.read_as or all(one["label"] in with_curve for one in _counting(sheet)):
+        return None
+    parts = [row["contribution"] for row in sheet.result["budget"] if _is_by_eye(row["source"])]
+    return hypot(*parts)
+
+
+def _is_by_eye(source: str) -> bool:
+    return source.endswith(" blank") or source.startswith("excess")

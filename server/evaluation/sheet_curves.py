@@ -12,14 +12,8 @@ from server.evaluation.assembly import assemble, curve_entry_of
 from server.evaluation.bench_record import RecordProblem, read_record
 from server.evaluation.constants import resolve_constants
 from server.evaluation.curve_fields import read_curve
-from server.evaluation.curve_readings import (
-    able_methods,
-    analysed_curve,
-    circumstances_known,
-    known_of,
-    points_of,
-    system_between,
-)
+from server.evaluation.curve_known import circumstances_known, known_of, system_between
+from server.evaluation.curve_readings import able_methods, analysed_curve, points_of
 from server.evaluation.from_sheet import materials_of
 from server.evaluation.record_fields import Fields
 from server.lab.curve_entry import METHOD_SLOT, SLOT, CurveEntry

@@ -27,6 +27,7 @@ class TakenCurve:
     """A curve as an evaluation took it; a snapshot holds the same, so that it can be repeated.
 
     ``index`` counts the record's replicates from 0, ``found`` is the ``equivalence/1`` document.
+    ``flask_assumed``: nobody stated the volume in the flask, the fit took a usual one.
     """
 
     index: int
@@ -38,6 +39,7 @@ class TakenCurve:
     u_shared_mL: float
     u_own_mL: float
     system: str
+    flask_assumed: bool
     found: Mapping[str, Any]
 
     @property

@@ -12,14 +12,7 @@ def canonical(value: Any) -> str:
     UTF-8 JSON with sorted keys and no spaces; decimals as strings, floats by ``repr`` (the shortest
     digits that read back to the same double). NaN and infinities are refused, for JSON has none.
     """
-    return json.dumps(
-        value,
-        sort_keys=True,
-        ensure_ascii=False,
-        separators=(",", ":"),
-        allow_nan=False,
-        default=_decimal_as_text,
-    )
+    return _ENCODER.encode(value)
 
 
 def digest(text: str) -> str:
@@ -32,3 +25,13 @@ def _decimal_as_text(value: Any) -> str:
         return str(value)
     says = f"{type(value).__name__} has no canonical text"
     raise TypeError(says)
+
+
+# made once: json.dumps would make one for every value
+_ENCODER = json.JSONEncoder(
+    sort_keys=True,
+    ensure_ascii=False,
+    separators=(",", ":"),
+    allow_nan=False,
+    default=_decimal_as_text,
+)

@@ -3,6 +3,7 @@
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from datetime import datetime
+from operator import attrgetter
 from typing import Any
 
 from server.lab.canonical import canonical, digest
@@ -106,19 +107,17 @@ def excluded(entries: Iterable[WrittenEntry]) -> dict[int, WrittenEntry]:
 
 #: What an entry's digest is made of, in this order. A column that comes later needs a digest of
 #: another name: what the trail noted must stay checkable.
-_DIGESTED = (
+_DIGESTED = attrgetter(
     "id", "sheet_id", "position", "replicate", "slot", "segment", "text", "unit", "raw", "strikes",
-    "reason", "person_id", "posted_by", "device_id", "device_sequence", "device_at", "device_zone",
-    "monotonic_ms", "received_at", "base_revision", "body_digest", "late", "file_id",
+    "reason", "person_id", "posted_by", "device_id", "device_sequence", "device_zone",
+    "monotonic_ms", "base_revision", "body_digest", "late", "file_id",
 )  # fmt: skip
 
 
 def entry_digest(entry: Any) -> str:
     """Return the digest of all that is kept of an entry's row, instants in ISO 8601 in UTC."""
-    kept = [getattr(entry, name) for name in _DIGESTED]
-    return digest(
-        canonical([one.isoformat() if isinstance(one, datetime) else one for one in kept])
-    )
+    device_at = entry.device_at and entry.device_at.isoformat()
+    return digest(canonical([*_DIGESTED(entry), device_at, entry.received_at.isoformat()]))
 
 
 def ink_digest(entries: Iterable[WrittenEntry]) -> str:
@@ -127,8 +126,13 @@ def ink_digest(entries: Iterable[WrittenEntry]) -> str:
     return digest(canonical([_line(entry) for entry in ordered]))
 
 
+_LINE = attrgetter(
+    "id", "position", "replicate", "slot", "segment", "text", "unit", "strikes", "reason",
+    "person_id",
+)  # fmt: skip
+
+
 def _line(e: WrittenEntry) -> list[object]:
-    line = [e.id, e.position, e.replicate, e.slot, e.segment, e.text, e.unit, e.strikes, e.reason,
-            e.person_id]  # fmt: skip
+    line = _LINE(e)
     # a curve's words are not the curve: what was measured are its points
-    return [*line, e.raw] if e.slot == CURVE else line
+    return [*line, e.raw] if e.slot == CURVE else [*line]

@@ -129,23 +129,28 @@ def _entries(kept: KeptSheet) -> Iterator[str]:
     for entry in kept.entries:
         act, line = noted.pop(entry.id, (None, {}))
         where = f"Entry {entry.position} of {kept.name}"
-        told_by = (entry.person_id, entry.posted_by, entry.received_at)
         if act is None:
             yield f"{where} was never noted in the trail."
-            continue
-        for column, word in _NOTED_OF_ENTRY.items():
-            was, stands = line.get(column), getattr(entry, column)
-            if was != stands:
-                told = f"row {act.seq} noted the {word} {_shown(was)}"
-                yield f"{where}: {told}; {_shown(stands)} stands there."
-                break
-        else:
-            if "digest" in line and line["digest"] != entry_digest(entry):
-                yield f"{where}: what came with its text was changed after row {act.seq} noted it."
-            elif "digest" not in line and told_by != (act.person_id, act.person_id, act.at):
-                yield f"{where}: who wrote it, or when, is not what row {act.seq} noted."
+        elif "digest" not in line or line["digest"] != entry_digest(entry):
+            yield from _unlike(entry, line, act, where)
     for act, line in noted.values():
         yield f"Entry {line.get('position')} of {kept.name}, noted in row {act.seq}, is not there."
+
+
+def _unlike(entry: Any, line: Mapping[str, Any], act: NotedAct, where: str) -> Iterator[str]:
+    """Say in what an entry is not as noted; one that was noted briefly may be."""
+    for column, word in _NOTED_OF_ENTRY.items():
+        was, stands = line.get(column), getattr(entry, column)
+        if was != stands:
+            told = f"row {act.seq} noted the {word} {_shown(was)}"
+            yield f"{where}: {told}; {_shown(stands)} stands there."
+            return
+    if "digest" in line:
+        yield f"{where}: what came with its text was changed after row {act.seq} noted it."
+    elif (entry.person_id, entry.posted_by, entry.received_at) != (
+        act.person_id, act.person_id, act.at,
+    ):  # fmt: skip
+        yield f"{where}: who wrote it, or when, is not what row {act.seq} noted."
 
 
 def _shown(value: object) -> str:

@@ -31,6 +31,8 @@ _SETTINGS: Mapping[str, Any] = {
     "limits": {},
     "idle_minutes": 30,
     "absolute_hours": 12,
+    "base_url": "",
+    "label_value": False,
 }
 
 
@@ -44,6 +46,7 @@ class SetUpLaboratory:
     sign_in_name: str
     printed_name: str
     password: str = field(repr=False)
+    country: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,7 +86,7 @@ def set_up_laboratory(
         name=check_name(command.name, "name", example="Waterworks laboratory"),
         address=read_text(command.address, "address"),
         zone=command.zone,
-        settings=dict(_SETTINGS),
+        settings={**_SETTINGS, "country": read_country(command.country)},
     )
     steward = Person(
         id=str(uuid4()),

@@ -27,6 +27,8 @@ from server.records.queries.loading import newest_recipe_version, standard_lot_b
 from server.records.tables.stores import Recipe, StandardLot
 
 _BASES = ("as is", "dried")
+#: What states the uncertainty of a quantity, one of them.
+_UNCERTAINTIES = frozenset({"u", "U", "half_width"})
 #: An assay may come out a little above one.
 _MOST_FRACTION = 1.05
 
@@ -199,6 +201,9 @@ def _statements(command: ReceiveStandardLot) -> dict[str, Any]:
     if float(read["mass_fraction"]["value"]) > _MOST_FRACTION:
         says = "mass_fraction is a part of one, not of a hundred."
         raise Unacceptable(says, field="mass_fraction", example="0.9998")
+    if not _UNCERTAINTIES & read["mass_fraction"].keys():
+        says = "mass_fraction states no uncertainty: give u, U with k, or a bound with its shape."
+        raise Unacceptable(says, field="mass_fraction.U", example="0.0004")
     if command.basis not in _BASES:
         says = f"basis is one of {', '.join(_BASES)}."
         raise Unacceptable(says, field="basis", example="as is")

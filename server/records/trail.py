@@ -1,7 +1,8 @@
 """The trail: append-only rows, each chained to the one before by SHA-256."""
 
 import json
-from collections.abc import Iterator, Mapping
+from collections.abc import Generator, Mapping
+from contextlib import closing
 from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
 from json.encoder import encode_basestring as quoted
@@ -21,7 +22,7 @@ from server.records.tables.trail import TrailHead, TrailRow
 GENESIS = "0" * 64
 SYSTEM = "Titrant Ledger"
 _EPOCH = datetime(1970, 1, 1, tzinfo=UTC)
-_AT_ONCE = 500
+_STREAMED = {"yield_per": 500}
 
 
 @dataclass(frozen=True, slots=True)
@@ -128,10 +129,11 @@ def check(session: Session, *, newest: int | None = None) -> TrailCheck:
     seq, last_hash = after, GENESIS
     issued: dict[str, str | None] = {}
     try:
-        for row in read_chain(session, after=after):
-            seq, last_hash = row.seq, row.hash
-            if row.act == ISSUED:
-                issued.setdefault(row.thing_id, read_body(row).get("document_digest"))
+        with closing(read_chain(session, after=after)) as chain:
+            for row in chain:
+                seq, last_hash = row.seq, row.hash
+                if row.act == ISSUED:
+                    issued.setdefault(row.thing_id, read_body(row).get("document_digest"))
         _check_documents(session, issued, after)
     except DoesNotHold as broken:
         return TrailCheck(False, seq - after, broken.says, seq, last_hash)
@@ -147,7 +149,7 @@ def check(session: Session, *, newest: int | None = None) -> TrailCheck:
 
 def read_chain(
     session: Session, *, after: int = 0, known: Mapping[int, str] | None = None
-) -> Iterator[Any]:
+) -> Generator[Any, None, None]:
     """Yield the rows in order, each once it is found to hold: columns as stored, ``at`` as µs.
 
     ``known`` maps numbers of rows to the hashes that somebody kept elsewhere.
@@ -158,19 +160,20 @@ def read_chain(
     seq = after
     last_hash = _hash_at(session, after) if after else GENESIS
     anchors, known = _anchors(session, after), dict(known or {})
-    for row in _rows(session, after):
-        problem = _problem_of(row, seq, last_hash)
-        if problem is not None:
-            raise DoesNotHold(problem)
-        seq, last_hash = row.seq, row.hash
-        for number, anchor in anchors.pop(seq, ()):
-            if anchor != last_hash:
-                says = f"Certificate {number} is anchored to another row {seq}."
+    with closing(_rows(session, after)) as rows:
+        for row in rows:
+            problem = _problem_of(row, seq, last_hash)
+            if problem is not None:
+                raise DoesNotHold(problem)
+            seq, last_hash = row.seq, row.hash
+            for number, anchor in anchors.pop(seq, ()):
+                if anchor != last_hash:
+                    says = f"Certificate {number} is anchored to another row {seq}."
+                    raise DoesNotHold(says)
+            if known.pop(seq, last_hash) != last_hash:
+                says = f"Row {seq} is not the one whose hash was kept elsewhere."
                 raise DoesNotHold(says)
-        if known.pop(seq, last_hash) != last_hash:
-            says = f"Row {seq} is not the one whose hash was kept elsewhere."
-            raise DoesNotHold(says)
-        yield row
+            yield row
     standing = session.get(TrailHead, 1)
     if standing is None or (standing.seq, standing.hash) != (seq, last_hash):
         says = f"The chain ends at row {seq}, but its head says otherwise: rows are missing."
@@ -183,21 +186,22 @@ def read_chain(
         raise DoesNotHold(says)
 
 
-def _rows(session: Session, after: int) -> Iterator[Any]:
+def _rows(session: Session, after: int) -> Generator[Any, None, None]:
     columns = [one for one in TrailRow.__table__.columns if one.name != "at"]
     rows = select(type_coerce(TrailRow.at, BigInteger).label("at"), *columns)
     ordered = rows.where(TrailRow.seq > after).order_by(TrailRow.seq)
     yield from fetched(session, ordered, f"A row of the trail after row {after}")
 
 
-def fetched(session: Session, rows: Executable, what: str) -> Iterator[Any]:
+def fetched(session: Session, rows: Executable, what: str) -> Generator[Any, None, None]:
     """Yield rows a batch at a time.
 
     Raises:
         DoesNotHold: one of them is no longer text that can be read; ``what`` begins the sentence.
     """
     try:
-        yield from session.execute(rows, execution_options={"yield_per": _AT_ONCE})
+        with session.connection().execute(rows, execution_options=_STREAMED) as result:
+            yield from result
     except (DBAPIError, ValueError, OverflowError, TypeError) as problem:
         says = f"{what} cannot be read: it is damaged."
         raise DoesNotHold(says) from problem
@@ -218,10 +222,11 @@ def _check_documents(session: Session, issued: Mapping[str, str | None], after: 
         Certificate.id, Certificate.number, Certificate.document, Certificate.document_digest
     )
     ordered = rows.where(Certificate.trail_seq > after).order_by(Certificate.number)
-    for one in fetched(session, ordered, "The text of a certificate"):
-        if not digest(one.document) == one.document_digest == issued.get(one.id):
-            says = f"Certificate {one.number} is not the text that was issued."
-            raise DoesNotHold(says)
+    with closing(fetched(session, ordered, "The text of a certificate")) as certificates:
+        for one in certificates:
+            if not digest(one.document) == one.document_digest == issued.get(one.id):
+                says = f"Certificate {one.number} is not the text that was issued."
+                raise DoesNotHold(says)
 
 
 def _problem_of(row: Any, seq: int, last_hash: str) -> str | None:

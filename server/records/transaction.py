@@ -32,6 +32,11 @@ class Transactions:
     def __init__(self, database: Database) -> None:
         self.database = database
         self._writer = _SqliteWriter(database) if database.is_sqlite else None
+        self._told: list[Callable[[], object]] = []
+
+    def after_commit(self, tell: Callable[[], object]) -> None:
+        """Call ``tell`` after every commit from now on; it must be quick and never raise."""
+        self._told.append(tell)
 
     def write(self, work: Callable[[Session], T]) -> T:
         """Run a closure in one transaction and return what it returns, after the commit.
@@ -44,11 +49,15 @@ class Transactions:
         """
         try:
             if self._writer is not None:
-                return self._writer.run(work)
-            return _write_on_postgresql(self.database, work)
+                answer = self._writer.run(work)
+            else:
+                answer = _write_on_postgresql(self.database, work)
         except OperationalError as problem:
             says = "The database did not take this: nothing of it was saved. Tell the steward."
             raise CannotWrite(says) from problem
+        for tell in self._told:
+            tell()
+        return answer
 
     def read(self, work: Callable[[Session], T]) -> T:
         """Run a closure that only reads, on one state of the database; it is always rolled back."""

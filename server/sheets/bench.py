@@ -2,6 +2,7 @@
 
 from dataclasses import dataclass
 
+from server.sheets.curves import CurveView
 from server.sheets.plan import PlanView
 
 
@@ -186,7 +187,10 @@ class BenchSheet:
 
 @dataclass(frozen=True, slots=True)
 class HandInPage:
-    """Everything on one page before the signature *measured*; ``problem`` says why it cannot be."""
+    """Everything on one page before the signature *measured*; ``problem`` says why it cannot be.
+
+    ``curves`` are the probe's curves with their pictures, where the recipe takes them.
+    """
 
     sheet: BenchSheet
     reported: str | None
@@ -195,6 +199,7 @@ class HandInPage:
     dots: str
     problem: str | None
     signer: str
+    curves: tuple[CurveView, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,6 +3,7 @@
 from dataclasses import dataclass
 
 from server.sheets.bench import BenchGroup, FindingView, RestsOn, SignatureView
+from server.sheets.curves import CurveView
 from server.sheets.methods import ComparisonView
 
 
@@ -116,6 +117,7 @@ class CountersignPage:
     calculation: str
     input_digest: str
     methods: ComparisonView | None
+    curves: tuple[CurveView, ...]
     rests_on: tuple[RestsOn, ...]
     groups: tuple[BenchGroup, ...]
     trail: tuple[TrailLine, ...]

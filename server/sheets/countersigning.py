@@ -21,6 +21,7 @@ from server.sheets.countersign import CountersignPage, Figure
 from server.sheets.parts import outcome
 from server.sheets.parts.acts import trail_lines
 from server.sheets.parts.comparison_view import sheet_comparison
+from server.sheets.parts.curve_views import curve_views
 from server.sheets.parts.doors import need_reader
 from server.sheets.parts.roots import rests_on, root_urls_of_sheet
 from server.sheets.parts.rows import groups_of
@@ -85,6 +86,7 @@ def open_countersign(
         calculation=outcome.calculation(result),
         input_digest=evaluation.input_digest,
         methods=sheet_comparison(facts),
+        curves=curve_views(facts),
         rests_on=rests_on(facts),
         groups=groups_of(facts),
         trail=trail_lines(trail_of_sheet(session, facts.id), zone),

@@ -16,11 +16,10 @@ from server.records.queries.load_sheet import load_sheet_facts
 from server.sheets.curves import CurvePage, CurveView
 from server.sheets.parts.curve_drawn import drawn_of, gran_of, residuals_of, steps_of
 from server.sheets.parts.curve_points import points_part
-from server.sheets.parts.curve_view import curve_url, curve_view
+from server.sheets.parts.curve_view import curve_url
+from server.sheets.parts.curve_views import view_of
 from server.sheets.parts.doors import need_reader
 from server.sheets.parts.sheet_lines import sheet_title
-
-_PROBE = "probe"
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,7 +68,7 @@ def curve_page(read: ReadCurve) -> CurvePage:
         title=sheet_title(facts.lot.titrant, facts.lot.nominal),
         lot_code=facts.lot.code,
         lot_name=facts.lot.name,
-        curve=_view(facts, told),
+        curve=view_of(facts, told),
         table=points_part(told.curve, told.analysis, first=read.first, url=url),
         others=tuple(
             (one.label, curve_url(facts.id, one.replicate))
@@ -85,12 +84,7 @@ def curve_part(read: ReadCurve) -> CurveView:
     Raises:
         NotFound: this replicate has no curve.
     """
-    return _view(read.facts, _of(curves_of_sheet(read.facts), read.replicate))
-
-
-def curve_views(facts: SheetFacts) -> tuple[CurveView, ...]:
-    """Return all curves that stand on a sheet, in order of replicates."""
-    return tuple(_view(facts, told) for told in curves_of_sheet(facts))
+    return view_of(read.facts, _of(curves_of_sheet(read.facts), read.replicate))
 
 
 def curve_document(read: ReadCurve) -> Mapping[str, Any]:
@@ -142,9 +136,3 @@ def _of(curves: tuple[SheetCurve, ...], replicate: int) -> SheetCurve:
         if one.replicate == replicate:
             return one
     raise NotFound(f"Replicate {replicate} of this sheet has no curve.")
-
-
-def _view(facts: SheetFacts, told: SheetCurve) -> CurveView:
-    return curve_view(
-        told, sheet_id=facts.id, zone=facts.laboratory.zone, probe=facts.instrument(_PROBE)
-    )

@@ -17,6 +17,7 @@ from server.records.queries.list_sheets import snapshots_of
 from server.records.queries.load_sheet import load_sheet_facts
 from server.sheets.bench import BenchSheet, HandInPage
 from server.sheets.bench_sheet import bench_sheet
+from server.sheets.parts.curve_views import curve_views
 from server.sheets.parts.doors import need_reader
 from server.sheets.parts.outcome import dots, finding_views, printed
 
@@ -25,6 +26,7 @@ from server.sheets.parts.outcome import dots, finding_views, printed
 class ReadHandIn:
     """A sheet read for its hand-in page, not evaluated yet."""
 
+    facts: SheetFacts
     sheet: BenchSheet
     prepared: PreparedSheet
     given: Mapping[str, str]
@@ -48,7 +50,8 @@ def read_hand_in(
     facts = load_sheet_facts(session, sheet_id)
     prepared = prepare_sheet(facts)
     sheet = bench_sheet(facts, prepared, snapshots_of(session, facts.id), reader)
-    return ReadHandIn(sheet, prepared, _given(facts), _problem(facts, sheet), reader.printed_name)
+    problem = _problem(facts, sheet)
+    return ReadHandIn(facts, sheet, prepared, _given(facts), problem, reader.printed_name)
 
 
 def evaluate_hand_in(read: ReadHandIn) -> HandInPage:
@@ -65,6 +68,7 @@ def evaluate_hand_in(read: ReadHandIn) -> HandInPage:
         dots=dots(result) if result else "",
         problem=read.problem or problem,
         signer=read.signer,
+        curves=curve_views(read.facts),
     )
 
 

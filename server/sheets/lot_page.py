@@ -1,7 +1,7 @@
 """One titrant lot: preparation, bottles, sheets, certificates; and the form for a new one."""
 
 from collections.abc import Mapping, Sequence
-from datetime import datetime
+from datetime import date, datetime
 
 from sqlalchemy.orm import Session
 
@@ -12,7 +12,7 @@ from server.lab.actor import Actor
 from server.lab.roles import Act
 from server.lab.segregation import pull_refusal
 from server.lab.states import PULLED
-from server.lab.validity import local_day
+from server.lab.validity import local_day, read_day
 from server.records.queries.list_certificates import KeptCertificate, certificates_of_lot
 from server.records.queries.list_sheets import sheets_of_lot
 from server.records.queries.list_shelf import (
@@ -22,6 +22,7 @@ from server.records.queries.list_shelf import (
     lot_on_shelf,
 )
 from server.records.queries.list_stores import newest_recipes
+from server.records.queries.list_watches import LOT, standing_watch
 from server.records.queries.load_papers import load_people
 from server.records.tables.lots import Lot, Pull
 from server.sheets.lots import LotPage, MakeUpPage
@@ -37,16 +38,28 @@ from server.sheets.parts.shelf_state import (
     state_of_lot,
     why,
 )
-from server.sheets.parts.telling import moment_words, typed_day_words
+from server.sheets.parts.telling import count_words, moment_words, typed_day_words
 from server.sheets.stores import Fact
+from server.sheets.uses_page import lot_uses
 
 _LETTERS = "ABCDEFGHIJKLMNOPQRSTUVWXYZ"
 
 
-def open_lot(session: Session, code: str, *, actor: Actor | None, now: datetime) -> LotPage:
+def open_lot(
+    session: Session,
+    code: str,
+    *,
+    actor: Actor | None,
+    now: datetime,
+    since: str | None = None,
+) -> LotPage:
     """Return a lot by its own code or that of one of its bottles.
 
+    ``since``: the day from which its uses are listed, empty for all. Where it is not given and the
+    lot is pulled, or to be pulled, they begin with the certificate that stood last.
+
     Raises:
+        Unacceptable: ``since`` is no day.
         NotFound: no lot has this code; ``shown["nearest"]`` holds codes close to it.
         NotSignedIn: a visitor.
     """
@@ -61,6 +74,7 @@ def open_lot(session: Session, code: str, *, actor: Actor | None, now: datetime)
     names = {key: one.printed_name for key, one in people.items()}
     open_pull = pull if pull is not None and pull.confirmed_at is None else None
     usable = state != PULLED
+    day = _since(since, certificates if pull is not None else (), zone)
     held = held_says(on_shelf.hold, "lot", zone)
     return LotPage(
         id=lot.id,
@@ -88,6 +102,9 @@ def open_lot(session: Session, code: str, *, actor: Actor | None, now: datetime)
             and pull_refusal(open_pull.proposed_by, reader.person_id) is None
         ),
         pull_says=_pull_says(pull, names, zone),
+        watching=standing_watch(session, reader.person_id, LOT, lot.id) is not None,
+        uses=lot_uses(session, lot.id, since=day, reader=reader),
+        use_days=_use_days(certificates, pull, zone),
     )
 
 
@@ -147,9 +164,33 @@ def _facts(lot: Lot, names: Mapping[str, str], zone: str) -> tuple[Fact, ...]:
         Fact("Preparation", "; ".join(held.get("preparation") or ())),
         Fact("By recipe", str(held.get("recipe_name") or "")),
         Fact("Use by", typed_day_words(held.get("use_by"))),
+        Fact("Once open", _once_open(held.get("opened_days"))),
         Fact("Written", f"{moment_words(lot.made_at, zone)} by {names[lot.made_by]}"),
     )
     return tuple(fact for fact in facts if fact.value)
+
+
+def _once_open(days: str | None) -> str:
+    return f"a bottle keeps {count_words(int(days), 'day')}" if days else ""
+
+
+def _since(asked: str | None, certificates: Sequence[KeptCertificate], zone: str) -> date | None:
+    if asked is not None:
+        return read_day(asked, "since") if asked.strip() else None
+    return local_day(certificates[0].row.issued_at, zone) if certificates else None
+
+
+def _use_days(
+    certificates: Sequence[KeptCertificate], pull: Pull | None, zone: str
+) -> tuple[tuple[str, str], ...]:
+    """Return the days from which one may want to know who used the lot, newest first."""
+    days = [
+        (local_day(one.row.issued_at, zone).isoformat(), f"since {one.row.number}")
+        for one in certificates
+    ]
+    if pull is not None and pull.confirmed_at is not None:
+        days.insert(0, (local_day(pull.confirmed_at, zone).isoformat(), "since it was pulled"))
+    return tuple(days)
 
 
 def _pull_says(pull: Pull | None, names: Mapping[str, str], zone: str) -> str:

@@ -5,11 +5,15 @@ from dataclasses import dataclass
 from server.sheets.bench import CautionView, SheetLine
 from server.sheets.shelf import BottleLine, HistoryLine
 from server.sheets.stores import Fact
+from server.sheets.uses import UsesView
 
 
 @dataclass(frozen=True, slots=True)
 class LotPage:
-    """One lot: preparation, bottles, sheets, certificates."""
+    """One lot: preparation, bottles, sheets, certificates, and who used it.
+
+    ``use_days`` are days from which to list the uses: each with the words that say why.
+    """
 
     id: str
     code: str
@@ -29,6 +33,9 @@ class LotPage:
     may_propose_pull: bool
     may_confirm_pull: bool
     pull_says: str
+    watching: bool
+    uses: UsesView
+    use_days: tuple[tuple[str, str], ...]
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,7 +6,7 @@ from datetime import datetime
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
-from server.lab.states import LOT_STATES
+from server.lab.states import LOT_STATES, may_be_used
 from server.records.queries.list_shelf import LotOnShelf, all_lots, bottles_by_lot
 from server.records.queries.load_papers import load_people
 from server.sheets.parts.doors import need_reader
@@ -37,23 +37,27 @@ class LotLine:
 
 @dataclass(frozen=True, slots=True)
 class Lots:
-    """The lots, made up last first; ``state`` is the filter, ``states`` those to filter by."""
+    """The lots, due soonest first; ``states`` and ``titrants`` are those to filter by."""
 
     lots: tuple[LotLine, ...]
     says: str
     states: tuple[str, ...]
     state: str
+    titrants: tuple[str, ...]
+    titrant: str
     may_make_up: bool
 
 
-def open_lots(session: Session, *, state: str, actor: Actor | None, now: datetime) -> Lots:
-    """Return all lots, or those in a state.
+def open_lots(
+    session: Session, *, state: str, actor: Actor | None, now: datetime, titrant: str = ""
+) -> Lots:
+    """Return all lots, or those in a state or of a titrant: due soonest first, then the unproven.
 
     Raises:
         NotSignedIn: a visitor.
     """
     reader = need_reader(actor)
-    every = all_lots(session)
+    every = sorted(all_lots(session), key=lambda one: _soonest(one, now))
     people = load_people(session, {one.lot.made_by for one in every})
     bottles = bottles_by_lot(session)
     lines = [
@@ -64,14 +68,27 @@ def open_lots(session: Session, *, state: str, actor: Actor | None, now: datetim
         )
         for one in every
     ]  # fmt: skip
-    shown = tuple(one for one in lines if state in {"", one.state})
+    shown = tuple(one for one in lines if state in {"", one.state} and titrant in {"", one.titrant})
     return Lots(
         lots=shown,
-        says=f"{count_words(len(shown), 'lot')}, made up last first.",
+        says=f"{count_words(len(shown), 'lot')}, due soonest first.",
         states=LOT_STATES,
         state=state if state in LOT_STATES else "",
+        titrants=tuple(sorted({one.titrant for one in lines})),
+        titrant=titrant,
         may_make_up="analyst" in reader.roles,
     )
+
+
+def _soonest(one: LotOnShelf, now: datetime) -> tuple[int, float]:
+    """Sort lots in force by their end, then those without a number as they were made, last first.
+
+    ``all_lots`` gives them made up last first, and the sort keeps that order.
+    """
+    state = one.state(now)
+    if may_be_used(state) and one.certificate is not None:
+        return 0, one.certificate.row.valid_until.timestamp()
+    return LOT_STATES.index(state), 0.0
 
 
 def _line(one: LotOnShelf, now: datetime, zone: str, *, made_by: str, bottles: int) -> LotLine:

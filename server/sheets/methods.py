@@ -5,7 +5,11 @@ from dataclasses import dataclass
 
 @dataclass(frozen=True, slots=True)
 class MethodRow:
-    """One method in figures; ``mark`` is its shape in the picture, ``trueness`` may be empty."""
+    """One method in figures; ``mark`` is its shape in the picture, ``trueness`` may be empty.
+
+    ``own_u`` is what its replicates share of u: the method's own part, and with a reference all
+    that the reference does not share.
+    """
 
     method: str
     mark: str
@@ -17,6 +21,7 @@ class MethodRow:
     relative_s: str
     low: str
     high: str
+    own_u: str
     trueness: str
     En: str
 
@@ -33,6 +38,7 @@ class PairRow:
     high: str
     p: str
     p_equal: str
+    p_spread: str
     verdict: str
     says: str
 

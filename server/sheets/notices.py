@@ -30,7 +30,10 @@ class WatchLine:
 
 @dataclass(frozen=True, slots=True)
 class NoticesPage:
-    """The notices, newest first; ``read_until`` is the instant of the newest."""
+    """The notices, newest first; ``read_until`` is the instant of the newest.
+
+    ``mail_problem`` says why the last letter that waits could not be sent.
+    """
 
     notices: tuple[Notice, ...]
     unread: int
@@ -38,6 +41,7 @@ class NoticesPage:
     watches: tuple[WatchLine, ...]
     address: str
     sends_mail: bool
+    mail_problem: str
 
 
 @dataclass(frozen=True, slots=True)

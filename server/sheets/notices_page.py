@@ -7,6 +7,7 @@ from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.watching import Change, changes, status_at
+from server.records.queries.list_letters import unsent_problem
 from server.records.queries.list_watches import Watched, mailbox_of, watched, watches_of
 from server.sheets.notices import Notice, NoticesPage, WatchLine
 from server.sheets.parts.changes import change_words
@@ -41,6 +42,7 @@ def open_notices(
         watches=tuple(_watch_line(one, reader.zone, now) for one in standing),
         address=box.address if box else "",
         sends_mail=sends_mail,
+        mail_problem=unsent_problem(session, reader.person_id) if sends_mail else "",
     )
 
 

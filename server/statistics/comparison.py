@@ -3,7 +3,7 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import combinations
-from math import sqrt
+from math import hypot, sqrt
 from typing import Literal
 
 from server.statistics.groups import (
@@ -35,7 +35,8 @@ Equality = Literal["equal within the margin", "different", "not decided"]
 class MethodValues:
     """The values of one method, in the unit of the concentration, replicate by replicate.
 
-    ``u_systematic`` is the method's own part that its replicates share and the reference does not.
+    ``u_systematic`` is what its replicates share of u and the reference does not; without a
+    reference the method's own part. 0: not known.
     ``flasks`` names the flask of each value, where some methods saw the same ones and others not.
     """
 
@@ -59,7 +60,8 @@ class Pair:
     """Two methods side by side: difference in percent of their mean, its 95 % interval, verdict.
 
     ``p`` is Holm-adjusted; ``p_equal`` that of the two one-sided tests against the margin.
-    ``paired``: from the same flasks, difference by difference.
+    ``paired``: from the same flasks, difference by difference. ``p_spread`` is that of equal
+    scatter (Pitman-Morgan where paired, else Brown-Forsythe); None with too few values.
     """
 
     first: str
@@ -70,6 +72,7 @@ class Pair:
     p_equal: float
     equality: Equality
     paired: bool
+    p_spread: float | None
 
 
 @dataclass(frozen=True, slots=True)
@@ -131,7 +134,6 @@ def compare_methods(
         for one, summary in zip(groups, summaries, strict=True)
         if reference is not None
     )
-    precise = _most_precise(groups, summaries)
     return Comparison(
         methods=tuple(one.method for one in groups),
         summaries=summaries,
@@ -144,7 +146,7 @@ def compare_methods(
         precision_says=_precision_words(groups, summaries, spread),
         trueness_says=_trueness_words(true, reference),
         matters_says=_matters_words(pairs, margin_percent),
-        proposed=_proposed(precise, true, summaries, groups),
+        proposed=_proposed(groups, summaries, true),
     )
 
 
@@ -209,6 +211,7 @@ def _pairs(meetings: Sequence[_Meeting], *, margin_percent: float) -> tuple[Pair
                 p_equal,
                 _equality(difference, margin, p, p_equal),
                 one.paired,
+                _p_spread(one),
             )
         )
     return tuple(made)
@@ -238,6 +241,13 @@ def _spread(groups: Sequence[MethodValues], meetings: Sequence[_Meeting]) -> tup
     return tuple(tests)
 
 
+def _p_spread(one: _Meeting) -> float | None:
+    try:
+        return _spread_of_two(one).p
+    except GroupProblem:
+        return None
+
+
 def _spread_of_two(one: _Meeting) -> TestResult:
     return paired_spread(*one.values) if one.paired else brown_forsythe(one.values)
 
@@ -254,16 +264,10 @@ def _means(groups: Sequence[MethodValues], meetings: Sequence[_Meeting]) -> Test
 def _trueness(one: MethodValues, summary: Summary, reference: Reference | None) -> Trueness:
     if reference is None:
         raise GroupProblem("There is no reference to be true to.")
-    scatter = (summary.s or 0.0) / sqrt(summary.n)
-    u = sqrt(scatter**2 + one.u_systematic**2 + reference.u_unshared**2)
+    u = hypot(_u_of_mean(one, summary), reference.u_unshared)
     apart = summary.mean - reference.value
     En = abs(apart) / (2 * u) if u else float("inf") if apart else 0.0
     return Trueness(one.method, 100 * apart / abs(reference.value), En)
-
-
-def _most_precise(groups: Sequence[MethodValues], summaries: Sequence[Summary]) -> str:
-    order = zip(groups, summaries, strict=True)
-    return min(order, key=lambda pair: pair[1].s or 0.0)[0].method
 
 
 def _precision_words(
@@ -326,14 +330,19 @@ def _matters_words(pairs: Sequence[Pair], margin_percent: float) -> str:
 
 
 def _proposed(
-    precise: str,
-    true: Sequence[Trueness],
-    summaries: Sequence[Summary],
-    groups: Sequence[MethodValues],
+    groups: Sequence[MethodValues], summaries: Sequence[Summary], true: Sequence[Trueness]
 ) -> str:
-    """Return the most precise of the methods that are true to the reference, if one was given."""
+    """Return the method whose mean has the smallest u, of those that are true if a value is stated.
+
+    Both count: how a method scatters, and what it is uncertain by itself. A method of which the
+    latter is not known is proposed only where it is known of none.
+    """
     holding = {one.method for one in true if one.En <= 1}
-    if not holding or precise in holding:
-        return precise
-    ordered = sorted(zip(groups, summaries, strict=True), key=lambda pair: pair[1].s or 0.0)
-    return next(one.method for one, _ in ordered if one.method in holding)
+    both = list(zip(groups, summaries, strict=True))
+    both = [one for one in both if one[0].method in holding] or both
+    both = [one for one in both if one[0].u_systematic > 0] or both
+    return min(both, key=lambda one: _u_of_mean(*one))[0].method
+
+
+def _u_of_mean(one: MethodValues, summary: Summary) -> float:
+    return hypot((summary.s or 0.0) / sqrt(summary.n), one.u_systematic)

@@ -4,6 +4,7 @@ import re
 from array import array
 from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
+from contextlib import closing
 from datetime import UTC, datetime, timedelta
 from typing import Any
 
@@ -76,9 +77,10 @@ class _Checking:
     def check(self, known: Mapping[int, str]) -> TrailCheck:
         holds, says = True, ""
         try:
-            for row in read_chain(self._session, known=known):
-                self._seq, self._hash = row.seq, row.hash
-                self._take(row)
+            with closing(read_chain(self._session, known=known)) as chain:
+                for row in chain:
+                    self._seq, self._hash = row.seq, row.hash
+                    self._take(row)
             self._check_sheets()
             self._check_states()
             says = self._told()
@@ -115,7 +117,7 @@ class _Checking:
                 self._counted["briefly"] += noted_briefly(sheet)
 
     def _check_states(self) -> None:
-        for done in states_as_they_stand(self._session):
+        for done in list(states_as_they_stand(self._session)):
             noted = self._noted.get(done)
             if not noted:
                 says = f"That somebody {done.act} at {done.at.isoformat()} was never noted so."

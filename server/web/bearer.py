@@ -1,5 +1,6 @@
 """Tokens of scripts at the door: each opens what its scopes name, and nothing else."""
 
+import re
 from collections.abc import Mapping
 from datetime import datetime
 from types import MappingProxyType
@@ -51,7 +52,7 @@ def find_bearer(session: Any, request: Request, *, now: datetime) -> TokenView:
     if view is None:
         says = "This token does not hold: it is unknown, revoked, or past its last day."
         raise TokenRefused(says, field="Authorization", example="Authorization: Bearer tl_...")
-    scope = ROUTES.get(f"{request.method} {_route_of(request)}")
+    scope = _scope_of(request)
     if scope is None:
         says = "No token opens this; sign in. A token reads bottles and lists, and records uses."
         raise NotAllowed(says)
@@ -61,7 +62,17 @@ def find_bearer(session: Any, request: Request, *, now: datetime) -> TokenView:
     return view
 
 
-def _route_of(request: Request) -> str:
-    """Return the pattern of the address that was asked for, as the router matched it."""
-    route = request.scope.get("route")
-    return str(getattr(route, "path", ""))
+def _scope_of(request: Request) -> Scope | None:
+    """Return the scope that opens what was asked for, as the router matched it; None for none."""
+    asked = f"{request.method} {request.scope['path']}"
+    matched = str(getattr(request.scope.get("route"), "path", "?"))
+    for pattern, scope in ROUTES.items():
+        # the router tells the route's own pattern, without the beginning of its addresses
+        if pattern.endswith(matched) and _PATTERNS[pattern].fullmatch(asked):
+            return scope
+    return None
+
+
+_PATTERNS: Mapping[str, re.Pattern[str]] = MappingProxyType(
+    {pattern: re.compile(re.sub(r"\{\w+\}", "[^/]+", pattern)) for pattern in ROUTES}
+)

@@ -113,7 +113,8 @@ def refuse(request: Request, refusal: Refusal) -> Response:
     if isinstance(refusal, NotSignedIn):
         return show_sign_in(request, refusal, status=answer.status, headers=headers)
     says = f"{refusal.says} For example: {refusal.example}." if refusal.example else refusal.says
-    return show_problem(request, says, status=answer.status, headers=headers)
+    nearest = refusal.shown.get("nearest", ())
+    return show_problem(request, says, status=answer.status, headers=headers, nearest=nearest)
 
 
 def answer_incident(request: Request, problem: BaseException) -> Response:

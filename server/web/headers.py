@@ -18,10 +18,13 @@ def policy_with_styles(hashes: Iterable[str]) -> str:
     return POLICY.replace("style-src 'self'", allowed)
 
 
+_PERMISSIONS = "camera=(), geolocation=(), microphone=(), payment=(), usb=()"
+#: What a page may ask for on which a code can be scanned.
+CAMERA_HERE = _PERMISSIONS.replace("camera=()", "camera=(self)")
 _ALWAYS = {
     "Content-Security-Policy": POLICY,
     "X-Content-Type-Options": "nosniff",
-    "Permissions-Policy": "camera=(), geolocation=(), microphone=(), payment=(), usb=()",
+    "Permissions-Policy": _PERMISSIONS,
     "Cross-Origin-Opener-Policy": "same-origin",
     "Cross-Origin-Resource-Policy": "same-origin",
     "X-Robots-Tag": "noindex",

@@ -19,7 +19,8 @@ class Parts:
 
     ``secure``: whether all traffic comes by https, also where a proxy speaks it. ``setup_code``
     opens the set-up page of an empty database; ``keys`` sign what leaves the laboratory.
-    ``sends_mail``: whether a server for e-mail is set.
+    ``sends_mail``: whether a server for e-mail is set. ``at_end`` is called when the application
+    ends, before the database is closed.
     """
 
     transactions: Transactions
@@ -31,6 +32,7 @@ class Parts:
     unknown_codes: UnknownCodes
     keys: SigningKeys = field(repr=False)
     sends_mail: bool = False
+    at_end: tuple[Callable[[], None], ...] = ()
     chart_bundle: ChartBundle = field(default_factory=ChartBundle)
 
 

@@ -1,6 +1,6 @@
 """Showing pages: the read model, what stands around it, and what a form held when refused."""
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -28,12 +28,16 @@ class FormProblem:
 
 @dataclass(frozen=True, slots=True)
 class ProblemPage:
-    """What the problem page says; ``typed`` is what the refused form held."""
+    """What the problem page says; ``typed`` is what the refused form held.
+
+    ``nearest`` are codes close to one that nothing has, each with its address.
+    """
 
     status: int
     says: str
     incident: str | None
     typed: tuple[tuple[str, str], ...]
+    nearest: tuple[tuple[str, str], ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -152,9 +156,12 @@ def show_problem(
     status: int,
     headers: Mapping[str, str] | None = None,
     incident: str | None = None,
+    nearest: Sequence[str] = (),
 ) -> Response:
     """Answer with the problem page; it is drawn without the database where that is the trouble."""
-    page = ProblemPage(status, says, incident, typed_lines(request))
+    place = "/lots/" if request.url.path.startswith("/lots") else "/b/"
+    close = tuple((code, place + code) for code in nearest)
+    page = ProblemPage(status, says, incident, typed_lines(request), close)
     visit: Visit | None = getattr(request.state, "visit", None)
     context: dict[str, Any] = {"status": status, "headers": headers}
     if incident is None:

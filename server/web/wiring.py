@@ -16,13 +16,16 @@ from server.web.api import instruments as api_instruments
 from server.web.api import labels as api_labels
 from server.web.api import laboratory as api_laboratory
 from server.web.api import lots as api_lots
+from server.web.api import notices as api_notices
 from server.web.api import people as api_people
 from server.web.api import planner as api_planner
 from server.web.api import session as api_session
 from server.web.api import sheets as api_sheets
 from server.web.api import standard_lots as api_standard_lots
 from server.web.api import stores as api_stores
+from server.web.api import tokens as api_tokens
 from server.web.api import trail as api_trail
+from server.web.api import uses as api_uses
 from server.web.api.desk import PROBLEMS
 from server.web.chart_bundle import chart_router
 from server.web.errors import add_error_handlers
@@ -31,6 +34,7 @@ from server.web.headers import SecurityHeaders
 from server.web.pages import (
     about,
     bench,
+    bottles,
     calibrations,
     certificates,
     countersign,
@@ -42,12 +46,14 @@ from server.web.pages import (
     laboratory,
     lists,
     lots,
+    notices,
     people,
     planner,
     session,
     shelf,
     standard_lots,
     stores,
+    tokens,
     trail,
 )
 from server.web.parts import Parts
@@ -55,13 +61,14 @@ from server.web.static_files import StaticFiles, static_router
 
 _PAGES = (
     # lists first: an address such as /lots/list.csv is not that of a lot
-    lists, shelf, session, bench, curves, planner, countersign, certificates, stores, standard_lots,
-    files, instruments, calibrations, lots, labels, holds, trail, people, laboratory, about,
+    lists, shelf, bottles, session, tokens, notices, bench, curves, planner, countersign,
+    certificates, stores, standard_lots, files, instruments, calibrations, lots, labels, holds,
+    trail, people, laboratory, about,
 )  # fmt: skip
 _API = (
-    api_session, api_bottles, api_sheets, api_curves, api_countersigning, api_certificates,
-    api_lots, api_stores, api_standard_lots, api_planner, api_files, api_instruments, api_labels,
-    api_trail, api_people, api_laboratory,
+    api_session, api_tokens, api_bottles, api_uses, api_notices, api_sheets, api_curves,
+    api_countersigning, api_certificates, api_lots, api_stores, api_standard_lots, api_planner,
+    api_files, api_instruments, api_labels, api_trail, api_people, api_laboratory,
 )  # fmt: skip
 API_PREFIX = "/api"
 #: Every router with the beginning of its addresses; tests go through all of their routes.
@@ -79,6 +86,8 @@ def create_app(parts: Parts, static: StaticFiles) -> FastAPI:
     @asynccontextmanager
     async def life(_: FastAPI) -> AsyncIterator[None]:
         yield
+        for end in parts.at_end:
+            end()
         parts.transactions.close()
 
     app = FastAPI(

@@ -91,6 +91,21 @@ def calibrate(page, burette):
     page.locator("#outcome .verdict").first.wait_for()
 
 
+def test_run_with_rows_that_were_added_outlives_a_reload(desks, laboratory):
+    page = desks("nils", width=820, height=1180).page
+    instruments = page.request.get("/api/instruments").json()["instruments"]
+    burette = next(one["id"] for one in instruments if one["kind"] == "burette")
+    page.goto(f"/instruments/{burette}/runs/new")
+    page.get_by_role("button", name="Room for five more").click()
+    page.get_by_role("button", name="Air at each weighing").click()
+    page.locator("#w12_before").fill("30.1234")
+    page.locator("#w12_air_pressure").fill("1001.7")
+    page.goto(f"/instruments/{burette}/runs/new")
+    page.locator("#w12_air_pressure").wait_for()
+    assert page.locator("#w12_before").input_value() == "30.1234"
+    assert page.locator("#w12_air_pressure").input_value() == "1001.7"
+
+
 def test_burette_run_changes_the_next_volume_by_its_table_and_no_older_certificate(
     desks, laboratory
 ):

@@ -10,6 +10,7 @@ from server.credentials.passwords import verify_password
 from server.demo import cast, runs
 from server.demo.laboratory import fill_demo
 from server.lab.actor import Actor
+from server.lab.ink import standing, strikes
 from server.lab.refusal import NotAllowed
 from server.lab.signing import signature_holds
 from server.lab.states import may_be_used
@@ -96,6 +97,22 @@ def test_demo_has_a_sheet_open_one_waiting_and_one_sent_back(demo):
     assert states == ["open", "handed in", "sent back"]
 
 
+def test_demo_has_curves_countersigned_and_a_sheet_that_waits_for_one(demo):
+    done, begun = (
+        facts(demo, demo.summary.curve_sheet_id),
+        facts(demo, demo.summary.open_curve_sheet_id),
+    )
+    assert (done.state, begun.state) == ("countersigned", "open")
+    found = done.evaluation.result["findings"]
+    assert {one["verdict"] for one in found} == {"holds"}, found
+    assert abs(done.evaluation.result["concentration"]["value"] / 0.10087 - 1) < 0.002
+    assert [one["taken"] for one in done.evaluation.result["methods"]] == ["model fit"] * 4
+    (struck,) = strikes(done.entries)
+    assert struck.by.reason == "exported with every second reading only"
+    kept = [place for place in standing(begun.entries) if place[1] == "curve"]
+    assert kept == [(1, "curve", 1), (2, "curve", 1), (3, "curve", 1)]
+
+
 def test_demo_trail_holds_and_tells_every_kind_of_act(demo):
     check = demo.transactions.read(trail.check)
     assert check.holds, check.says
@@ -120,7 +137,7 @@ def test_demo_acts_lie_in_the_past_and_in_order(demo):
 
 def test_demo_signatures_hold_and_nobody_signed_the_own_work(demo):
     certified = [one for one in rows(demo, Sheet) if one.countersigned_at]
-    assert len(certified) == len(rows(demo, Certificate)) == 5
+    assert len(certified) == len(rows(demo, Certificate)) == 6
     for sheet in certified:
         found = facts(demo, sheet.id)
         snapshot = found.evaluation.snapshot_digest

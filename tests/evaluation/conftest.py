@@ -7,6 +7,8 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from tests.lab.conftest import entry, facts, recipe  # noqa: F401 - fixtures of sheets
+
 CURVES = json.loads(
     (Path(__file__).parents[1] / "reference" / "curves" / "simulated.json").read_text("utf-8")
 )["curves"]

@@ -254,17 +254,48 @@ def test_replicates_method_goes_before_the_records_and_is_told(curve_records):
 
 def test_method_without_an_answer_is_refused_with_what_can(curve_records):
     record = curve_records.record(KHP, method="model fit")
-    del record["end_point"]["flask_volume"]
+    record["end_point"]["system"] = "tris-hcl"
     with pytest.raises(RecordProblem) as caught:
         evaluate(record)
     assert caught.value.path == "end_point.method"
     assert "Replicate 1: the model fit has no answer" in caught.value.says
-    assert "needs the volume in the flask" in caught.value.says
+    assert "The curve rises; that of TRIS" in caught.value.says
     assert "first derivative" in caught.value.says
     record["replicates"][0]["method"] = "model fit"
     with pytest.raises(RecordProblem) as caught:
         evaluate(record)
     assert caught.value.path == "replicates[0].method"
+
+
+def test_fit_without_the_flasks_volume_says_so_and_widens_u(curve_records):
+    curve = curve_records.curves[KHP]
+    record = curve_records.record(KHP, end_point={"method": "model fit"})
+    stated = evaluate(curve_records.record(KHP, method="model fit"))
+    found = evaluate(record)
+    assert [one["flask_assumed"] for one in found["methods"]] == [True] * 3
+    assert found["concentration"]["value"] == pytest.approx(
+        curve["n_acid_mmol"] / curve["equivalence_mL"], rel=3e-4
+    )
+    assert found["methods"][0]["u_shared_mL"] > 1.2 * stated["methods"][0]["u_shared_mL"]
+    told = finding(found, "end point")
+    assert told["verdict"] == "look"
+    assert "volume in the flask is not stated" in told["says"]
+
+
+def test_nobody_asks_for_the_fit_and_the_flask_is_not_stated_then_a_derivative(curve_records):
+    found = evaluate(curve_records.record(KHP, end_point=None))
+    assert {one["taken"] for one in found["methods"]} == {"first derivative"}
+    answers = {one["method"]: one.get("unable") for one in found["methods"][0]["methods"]}
+    assert "volume in the flask" in answers["model fit"]
+
+
+@pytest.mark.parametrize("name", ["tris-hcl", "carbonate-hcl-two-steps", "khp-drop-counter"])
+def test_fit_with_an_assumed_flask_stays_within_its_u(curve_records, name):
+    curve = curve_records.curves[name]
+    found = evaluate(curve_records.record(name, end_point={"method": "model fit"}))
+    for one in found["methods"]:
+        u = math.hypot(one["u_shared_mL"], one["u_own_mL"])
+        assert abs(one["volume_mL"] - curve["equivalence_mL"]) < 2.5 * u
 
 
 def test_stated_system_goes_before_titrant_and_standard(curve_records):
@@ -415,3 +446,32 @@ def test_curve_record_is_confirmed_by_monte_carlo(curve_records):
     assert found["monte_carlo"]["value"] == pytest.approx(
         found["concentration"]["value"], abs=0.05 * found["concentration"]["u"]
     )
+
+
+def test_indicator_blank_on_a_curve_fails_and_is_taken_off_as_the_record_says(curve_records):
+    blank = {"value": "0.030", "unit": "mL", "kind": "indicator"}
+    with_it = evaluate(curve_records.record(KHP, method="model fit", blank=blank))
+    without = evaluate(curve_records.record(KHP, method="model fit"))
+    off = without["replicates"][0]["volume_mL"] - with_it["replicates"][0]["volume_mL"]
+    assert off == pytest.approx(0.030)
+    assert finding(with_it, "blank")["verdict"] == "fails"
+
+
+def test_mV_curve_of_a_known_system_is_fitted_and_its_slope_set_beside_the_buffers(curve_records):
+    from server.evaluation.circumstances import Circumstances, Probe
+
+    # Nernst slope at 25 Cel, 59.16 mV per pH (textbook value), here 97 % of it and 6 mV off
+    record = curve_records.record(KHP, method="model fit")
+    for one in record["replicates"]:
+        read = [float(pH) for pH in one["curve"].pop("pH")]
+        one["curve"]["mV"] = [f"{6 - 0.97 * 59.16 * (pH - 7):.1f}" for pH in read]
+    curve = curve_records.curves[KHP]
+    around = Circumstances(probe=Probe(slope_percent=99.5, offset_mV=6.0))
+    found = evaluate(record, circumstances=around)
+    expected = curve["n_acid_mmol"] / curve["equivalence_mL"]
+    assert found["concentration"]["value"] == pytest.approx(expected, rel=3e-4)
+    told = finding(found, "probe")
+    assert told["verdict"] == "look"
+    assert "% of the ideal one" in told["says"]
+    assert "from what the buffers gave" in told["says"]
+    assert 100 * found["methods"][0]["fit"]["probe_slope"] == pytest.approx(97.0, abs=0.6)

@@ -34,3 +34,10 @@ test("the door gets what it takes and nothing that only the tablet knows", () =>
 test("the clock has two digits each", () => {
   assert.equal(clockOf(new Date(2026, 4, 4, 9, 5)), "09:05");
 });
+
+test("a curve goes along with its entry, and only there", () => {
+  const curve = { pasted: "0.00;4.01", mapping: { volume: 0, reading: 1, kind: "pH" } };
+  const entry = newEntry(rowOf("burette_end"), { text: "61 points, pH", curve }, { initials: "IT", stamp });
+  assert.deepEqual(forTheDoor(entry).curve, curve);
+  assert.equal("curve" in forTheDoor({ ...entry, curve: null }), false);
+});

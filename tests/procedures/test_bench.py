@@ -138,7 +138,13 @@ def test_sheet_with_an_older_version_of_a_recipe_is_refused(sqlite_lab):
 
 def test_sheet_with_another_standard_than_the_recipes_is_refused(sqlite_lab):
     command = ReceiveStandardLot(
-        "Tris lot", "TRIS", "RM-8", "house", "2028-01-31", "expiry", {"value": "0.9998"}
+        "Tris lot",
+        "TRIS",
+        "RM-8",
+        "house",
+        "2028-01-31",
+        "expiry",
+        {"value": "0.9998", "u": "0.0002"},
     )
     other = sqlite_lab.act(receive_standard_lot, command, "keeper")
     assert refusal(sqlite_lab, standard_lot_id=other).field == "standard_lot_id"
@@ -169,7 +175,8 @@ def test_sheet_that_could_not_be_evaluated_for_want_of_a_density_is_refused(sqli
     recipe = sqlite_lab.act(write_recipe, WriteRecipe("Odd", document), "keeper")
     plain = {
         "substance": "NH4HSO4", "certificate_number": "RM-9", "issuer": "house",
-        "due_on": "2028-01-31", "due_basis": "expiry", "mass_fraction": {"value": "0.999"},
+        "due_on": "2028-01-31", "due_basis": "expiry",
+        "mass_fraction": {"value": "0.999", "u": "0.0005"},
     }  # fmt: skip
     without = ReceiveStandardLot("Odd 1", **plain)
     lot = sqlite_lab.act(receive_standard_lot, without, "keeper")

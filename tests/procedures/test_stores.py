@@ -69,6 +69,7 @@ def test_standard_lot_keeps_the_digits_of_its_certificate(lab):
         ({"mass_fraction": None}, "mass_fraction"),
         ({"mass_fraction": {"value": "99.99"}}, "mass_fraction"),
         ({"mass_fraction": {"value": "0"}}, "mass_fraction.value"),
+        ({"mass_fraction": {"value": "0.9999"}}, "mass_fraction.U"),
         ({"mass_fraction": {"value": "0.9999", "unit": "%"}}, "mass_fraction.unit"),
         ({"mass_fraction": {"value": "0.9999", "u": "0.1", "U": "0.2"}}, "mass_fraction.U"),
         ({"mass_fraction": {"value": "0.9999", "error": "0.1"}}, "mass_fraction.error"),

@@ -16,11 +16,15 @@ def lot_code(demo, titrant: str) -> str:
 
 def test_home_parts_own_sheets_from_those_of_others(demo) -> None:
     home = demo.read(open_bench_home, who="bashir")
-    assert [(line.number, line.state) for line in home.mine] == [("S-2026-0008", "open")]
-    assert [(line.number, line.state) for line in home.others] == [("S-2026-0006", "sent back")]
-    assert "Titrate one more" in home.others[0].says
+    assert [(line.number, line.state) for line in home.mine] == [("S-2026-0010", "open")]
+    others = {line.number: line for line in home.others}
+    assert {number: line.state for number, line in others.items()} == {
+        "S-2026-0006": "sent back",
+        "S-2026-0009": "open",
+    }
+    assert "Titrate one more" in others["S-2026-0006"].says
     assert home.may_begin
-    assert len(home.lots) == 4
+    assert len(home.lots) == 5
 
 
 def test_home_of_a_countersigner_begins_nothing(demo) -> None:

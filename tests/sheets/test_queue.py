@@ -57,7 +57,7 @@ def test_queue_longest_waiting_stands_first(own_demo) -> None:
 
 def test_queue_done_names_who_countersigned_and_accepted(demo) -> None:
     done = demo.read(open_queue, who="ottilie").done
-    assert [line.number for line in done] == [f"S-2026-000{n}" for n in (5, 4, 3, 2, 1)]
+    assert [line.number for line in done] == [f"S-2026-000{n}" for n in (7, 5, 4, 3, 2, 1)]
     assert done[0].waiting.endswith("by Ottilie Renn")
     failed = [one for line in done for one in line.stands_out if one.verdict == "fails"]
     assert failed

@@ -41,7 +41,7 @@ def test_stores_list_lots_with_what_their_certificates_state(demo) -> None:
         ("TRIS, lot TM-0870", "in date"),
     ]
     assert page.standard_lots[0].says == "mass fraction 0.99986, U = 0.00034 (k = 2)"
-    assert [line.against for line in page.recipes] == ["TRIS", "KHP"]
+    assert [line.against for line in page.recipes] == ["TRIS", "KHP", "KHP"]
     assert page.may_keep
 
 
@@ -64,7 +64,7 @@ def test_standard_lot_tells_where_it_was_used_and_who_holds_it(own_demo) -> None
     command = HoldThing("standard lot", khp(own_demo), "lid was off")
     own_demo.write(lambda s: hold_thing(s, command, actor=actor, now=own_demo.now))
     page = own_demo.read(open_standard_lot, khp(own_demo), who="jonas")
-    assert len(page.sheets) == 5
+    assert len(page.sheets) == 7
     assert (page.state, page.may_hold, page.may_release) == ("held", False, True)
     assert page.held_says.endswith("lid was off.")
     asked = "2 h at 120 °C, then in a desiccator (110 to 125 °C, 2 h, cooled in a desiccator)"

@@ -49,6 +49,46 @@ def test_comparison_pairing_sees_what_independent_groups_hide():
     assert apart.pairs[0].equality == "not decided"
 
 
+def test_comparison_pairs_on_the_flasks_that_both_name():
+    flasks = ("1", "2", "3", "4", "5", "6")
+    fit = MethodValues("model fit", FIT.values, flasks=flasks)
+    first = MethodValues("first derivative", FIRST.values[1:], flasks=flasks[1:])
+    colour = MethodValues("indicator", STEEPEST.values, flasks=tuple("abcdef"))
+    found = compare_methods([fit, first, colour])
+    assert [one.paired for one in found.pairs] == [True, False, False]
+    rest = [MethodValues(one.method, one.values[1:]) for one in (FIT, FIRST)]
+    alone = compare_methods(rest, paired=True)
+    assert found.pairs[0].difference_percent == pytest.approx(
+        alone.pairs[0].difference_percent, rel=1e-3
+    )
+    assert [one.name for one in found.spread] == [
+        "Pitman-Morgan",
+        "Brown-Forsythe",
+        "Brown-Forsythe",
+    ]
+    assert found.means is None
+    assert not found.paired
+
+
+def test_comparison_one_common_flask_pairs_nothing():
+    first = MethodValues("a", FIT.values, flasks=tuple("123456"))
+    second = MethodValues("b", FIRST.values, flasks=tuple("6789xy"))
+    assert not compare_methods([first, second]).pairs[0].paired
+
+
+def test_comparison_more_than_two_unpaired_methods_have_a_test_of_equal_means():
+    found = compare_methods([FIT, FIRST, STEEPEST])
+    assert found.means.name == "Welch's analysis of variance"
+    assert [one.name for one in found.spread] == ["Brown-Forsythe"]
+
+
+def test_comparison_proposes_the_smallest_u_and_not_the_smallest_scatter_alone():
+    sure = MethodValues("first derivative", FIRST.values, 0.00001)
+    precise = MethodValues("gran alkaline side", FIT.values, 0.0002)
+    unknown = MethodValues("indicator", FIT.values)
+    assert compare_methods([precise, sure, unknown]).proposed == "first derivative"
+
+
 def test_comparison_trueness_is_told_against_a_reference():
     found = compare_methods(
         [FIT, STEEPEST], paired=True, reference=Reference(0.10210, 0.00003, "the certificate")
@@ -82,6 +122,7 @@ def test_comparison_E_n_uses_unshared_parts_only():
         ([FIT, MethodValues("x", (1.0,))], False, 0.1, "“x” has fewer"),
         ([FIT, MethodValues("x", (1.0, 2.0))], True, 0.1, "equally many"),
         ([FIT, FIRST], True, 0.0, "margin"),
+        ([FIT, MethodValues("x", (1.0, 2.0), flasks=("1",))], False, 0.1, "one flask for each"),
     ],
 )
 def test_comparison_that_cannot_be_made_is_refused(groups, paired, margin, says):

@@ -103,6 +103,12 @@ PAGES: dict[str, Case] = {
     "POST /bench/{sheet_id}/let-be-used": Case(
         KEEPER, 404, f"/bench/{NOBODY}/let-be-used", {"what": "balance", **REASON}
     ),
+    "GET /sheets/{sheet_id}/curves/{replicate}": Case(
+        SIGNED_IN, 200, "/sheets/{curve_sheet}/curves/1"
+    ),
+    "GET /sheets/{sheet_id}/curves/{replicate}/part": Case(
+        SIGNED_IN, 200, "/sheets/{curve_sheet}/curves/1/part"
+    ),
     "GET /countersign": Case(SIGNED_IN, 200),
     "GET /countersign/{sheet_id}": Case(SIGNED_IN, 200),
     "POST /countersign/{sheet_id}": Case(
@@ -215,6 +221,12 @@ API: dict[str, Case] = {
         404,
         f"/api/sheets/{NOBODY}/entries",
         {"entries": [{"id": NOBODY, "replicate": 0, "slot": "temperature", "text": "21.0"}]},
+    ),
+    "GET /api/sheets/{sheet_id}/curves/{replicate}": Case(
+        SIGNED_IN, 200, "/api/sheets/{curve_sheet}/curves/1"
+    ),
+    "GET /api/sheets/{sheet_id}/curves/{replicate}/chart": Case(
+        SIGNED_IN, 200, "/api/sheets/{curve_sheet}/curves/1/chart"
     ),
     "GET /api/sheets/{sheet_id}/hand-in": Case(ANALYST, 200),
     "POST /api/sheets/{sheet_id}/hand-in": Case(
@@ -418,6 +430,7 @@ def things(shared_web: Any) -> dict[str, str]:
         "print": str(printed.json()["number"]),
         "sheet_id": shared_web.demo.waiting_sheet_id,
         "open_sheet_id": shared_web.demo.sent_back_sheet_id,
+        "curve_sheet": shared_web.demo.curve_sheet_id,
         "standard_lot_id": standard_lot,
         "file_id": kept["url"].removeprefix("/files/"),
         "recipe_id": stores["recipes"][0]["id"],

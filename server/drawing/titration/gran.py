@@ -44,10 +44,10 @@ def gran_picture(drawn: Drawn, lines: Sequence[GranDrawn]) -> str:
               along_name="titrant, mL", about=3),
         taken_line(frame, drawn.taken.volume if drawn.taken else None),
     ]  # fmt: skip
+    taken = drawn.taken.method if drawn.taken else ""
     for one in lines:
-        parts += _one(
-            frame, one, taken=drawn.taken is not None and drawn.taken.method == one.method
-        )
+        parts += _one(frame, one, taken=one.method == taken)
+    parts += _names(frame, lines, taken)
     says = "Gran's lines: " + (
         "; ".join(
             f"{one.method}, {len(one.V)} points from {min(one.V):.2f} to {max(one.V):.2f} mL, "
@@ -69,16 +69,23 @@ def _one(frame: Frame, one: GranDrawn, *, taken: bool) -> list[str]:
         shape(one.method, *frame.at(V, G), size=3.2)
         for V, G in list(zip(one.V, one.G, strict=True))[::every]
     ]
-    x, y = ends[1]
-    before = far < one.volume
-    text = f"{one.method} {volume_words(one.volume)}"
-    # above the foot of the line, on its empty side
-    at = x - 14 if before else min(x + 14, RIGHT - 150)
-    up = y - 14 if before else y - 14
-    kind = "taken-words" if taken else "soft"
+    return [*points, element("path", straight), shape(one.method, *ends[1], size=5, taken=taken)]
+
+
+def _names(frame: Frame, lines: Sequence[GranDrawn], taken: str) -> list[str]:
+    """Return the names in the mouth of the V, on its wider side."""
+    if not lines:
+        return []
+    x = frame.along.at(sum(one.volume for one in lines) / len(lines))
+    left = x > (LEFT + RIGHT) / 2
+    at, anchor = (x - 10, "end") if left else (x + 10, "start")
     return [
-        *points,
-        element("path", straight),
-        shape(one.method, x, y, size=5, taken=taken),
-        halo(text, at, up, anchor="end" if before else "start", kind=kind),
+        halo(
+            f"{one.method} {volume_words(one.volume)}",
+            at,
+            frame.top + 12 + 19 * place,
+            anchor=anchor,
+            kind="taken-words" if one.method == taken else "soft",
+        )
+        for place, one in enumerate(lines)
     ]

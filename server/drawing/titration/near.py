@@ -18,7 +18,7 @@ from server.drawing.titration.frame import (
     taken_line,
     volumes_along,
 )
-from server.drawing.titration.told import Drawn, Marked, shape, volume_words
+from server.drawing.titration.told import Drawn, Marked, shape, slope_words, volume_words
 
 _TOP, _BOTTOM, _LANE, _ROOM = 30.0, 196.0, 25.0, 44.0
 _SLOPES_BOTTOM, _SLOPES_HEIGHT = 160.0, 198.0
@@ -127,10 +127,12 @@ def slopes_near(drawn: Drawn, slopes: Sequence[tuple[float, float, float]]) -> s
     says = "No step lies here."
     if steepest:
         says = (
-            f"Steepness of each step around the end point: greatest {steepest[2]:.4g} "
+            f"Steepness of each step around the end point: greatest {slope_words(steepest[2])} "
             f"{drawn.kind} per mL between {steepest[0]:.3f} and {steepest[1]:.3f} mL."
         )
-        parts.append(words(f"greatest {steepest[2]:.3g}", RIGHT, _TOP - 10, anchor="end", size=11))
+        parts.append(
+            words(f"greatest {slope_words(steepest[2])}", RIGHT, _TOP - 10, anchor="end", size=11)
+        )
     return picture(WIDTH, _SLOPES_HEIGHT, says=says, parts=parts, kind="slopes")
 
 

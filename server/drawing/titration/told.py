@@ -81,3 +81,8 @@ def method_mark(method: str, *, taken: bool = False) -> str:
 def volume_words(volume: float) -> str:
     """Return a volume in mL to the last digit that a picture can be asked for."""
     return f"{volume:.3f}"
+
+
+def slope_words(slope: float) -> str:
+    """Return a slope with three digits, or all before the point where it is steep."""
+    return f"{slope:.0f}" if abs(slope) >= 100 else f"{slope:.3g}"

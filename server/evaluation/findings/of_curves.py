@@ -4,6 +4,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import replace
 from typing import Any
 
+from server.evaluation.curve_known import USUAL_FLASK_ML
 from server.evaluation.findings.finding import Finding, Verdict, joined, replicates_named
 from server.evaluation.findings.of_papers import end_point_finding, probe_finding
 from server.evaluation.findings.setting import Setting
@@ -156,6 +157,12 @@ def _end_point(setting: Setting, curves: Sequence[TakenCurve]) -> Finding:
         better = joined(list(dict.fromkeys(one.proposed for one in other)))
         labels = replicates_named([one.label for one in other])
         words.append(f"The program would propose {better} for {labels}.")
+    if any(one.flask_assumed for one in curves):
+        verdict = "look"
+        words.append(
+            f"The volume in the flask is not stated: the fit took {USUAL_FLASK_ML:g} mL, and half "
+            "to twice of it counts in the uncertainty."
+        )
     whole = len(setting.counting)
     if len(curves) < whole:
         verdict = "look"

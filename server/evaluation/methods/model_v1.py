@@ -46,9 +46,15 @@ def portion_of(record: BenchRecord, one: Replicate) -> Portion:
         segments=0 if drops else max(1, len(one.segments)),
         temperature_C=temperature,
         from_curve=one.end_point is not None,
-        holds_blank=one.end_point is not None and one.end_point.holds_blank,
+        holds_blank=_holds_blank(record, one),
         by_drops=drops,
     )
+
+
+def _holds_blank(record: BenchRecord, one: Replicate) -> bool:
+    """Return whether the end point is free of what a reagent blank would take off."""
+    kind = record.blank.kind if record.blank else None
+    return kind == "reagent" and one.end_point is not None and one.end_point.holds_blank
 
 
 def liquid_temperature(record: BenchRecord) -> float:

@@ -214,13 +214,13 @@ class _Frame:
         return corrected(table, after, f"{path}.after") - corrected(table, before, f"{path}.before")
 
     def _air(self, doc: Mapping[str, Any], path: str) -> Air:
-        own = doc.get("air") not in (None, "")
-        where = f"{path}.air" if own else "air"
-        stated = reading.known_keys(doc["air"] if own else self.air or {}, where, tuple(_AIR))
-        values = {
-            key: float(number_at(stated, key, where, example=example, low=low, high=high))
-            for key, (example, low, high) in _AIR.items()
-        }
+        """Return the air at a weighing; what it does not state itself is that of the run."""
+        of_run = reading.known_keys(self.air or {}, "air", tuple(_AIR))
+        own = reading.known_keys(doc.get("air") or {}, f"{path}.air", tuple(_AIR))
+        values = {}
+        for key, (example, low, high) in _AIR.items():
+            stated, where = (own, f"{path}.air") if own.get(key) else (of_run, "air")
+            values[key] = float(number_at(stated, key, where, example=example, low=low, high=high))
         return Air(**values)
 
     def _point(self, doc: Mapping[str, Any], path: str) -> Decimal | None:

@@ -13,6 +13,7 @@ from server.records.tables.trail import TrailRow
 
 LABEL_PRINTED = "printed a label"
 _SOME = 500
+_LAST = 2**63 - 1
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,7 +31,7 @@ class PrintedLabel:
 
 def labels_of_print(session: Session, first_seq: int) -> list[PrintedLabel]:
     """Return the labels of one print in their order; none where no print has this number."""
-    first = session.get(TrailRow, first_seq)
+    first = session.get(TrailRow, first_seq) if 0 < first_seq <= _LAST else None
     if first is None or first.act != LABEL_PRINTED:
         return []
     body = json.loads(first.body)

@@ -73,7 +73,7 @@ def load_kept_sheets(
     certificates = _certificates(session, wanted)
     of_certificate = {one.id: key for key, found in certificates.items() for one in found}
     noted: dict[str, list[NotedAct]] = {}
-    for act in _acts(session, acts):
+    for act in list(_acts(session, acts)):
         sheet_id = act.thing_id if act.kind == "sheet" else of_certificate.get(act.thing_id)
         if sheet_id is not None:
             noted.setdefault(sheet_id, []).append(act)

@@ -79,8 +79,10 @@ def bottle_url(base_url: str, code: str) -> str:
     return f"{host}{parts.path.rstrip('/')}/B/{code}"
 
 
-def label_told(label: BottleLabel) -> dict[str, Any]:
+def label_told(label: BottleLabel, *, brief: bool = False) -> dict[str, Any]:
     """Return what a label shows, as texts.
+
+    ``brief``: for a small label, the laboratory's name without its address, no day of making.
 
     Raises:
         Unacceptable: hazards without who confirmed them, a pictogram that is none, a reprint or a
@@ -91,20 +93,24 @@ def label_told(label: BottleLabel) -> dict[str, Any]:
         "titrant": label.titrant,
         "nominal": f"nominal {label.nominal}",
         "lot": f"Lot {label.lot}, bottle {label.bottle}",
-        "made": f"Made {label.made_on}" if label.made_on else "",
-        "laboratory": ", ".join(one for one in (label.laboratory, label.address) if one),
-        "value": _value(label.value),
+        "made": f"Made {label.made_on}" if label.made_on and not brief else "",
+        "laboratory": ", ".join(
+            one for one in (label.laboratory, "" if brief else label.address) if one
+        ),
+        "value": _value(label.value, brief=brief),
         "hazards": _hazards(label.hazards),
         "reprint": _reprint(label),
     }
 
 
-def _value(value: PrintedValue | None) -> list[str]:
+def _value(value: PrintedValue | None, *, brief: bool) -> list[str]:
     if value is None:
-        return ["Value and state: scan, or look up the code."]
+        return ["Value: scan." if brief else "Value and state: scan, or look up the code."]
     if not (value.reported.strip() and value.certificate.strip() and value.valid_until.strip()):
         says = "A value is printed only with its certificate and the day until which it is valid."
         raise Unacceptable(says, field="value")
+    if brief:
+        return [value.reported, f"{value.certificate}, until {value.valid_until}"]
     return [
         value.reported,
         f"Certificate {value.certificate}, valid until {value.valid_until}. Scan for today's.",

@@ -66,19 +66,20 @@ def labels_pictures(labels: Sequence[BottleLabel], printing: Printing) -> list[b
 def _first_that_fits(
     make: Callable[[dict[str, Any]], _Made], labels: Sequence[BottleLabel], printing: Printing
 ) -> _Made:
-    """Make the labels with as large a QR code as leaves room for the words."""
+    """Make the labels with as large a QR code as leaves room for the words, else in brief words."""
     problem: Exception | None = None
-    for share in _QR_SHARES:
-        try:
-            return make(_told(labels, printing, share))
-        except TypesettingProblem as found:
-            if _TOO_SMALL not in str(found):
-                raise
-            problem = found
-        except _CodeTooSmall:
-            if problem is None:
-                raise
-            break
+    for brief in (False, True):
+        for share in _QR_SHARES:
+            try:
+                return make(_told(labels, printing, share, brief=brief))
+            except TypesettingProblem as found:
+                if _TOO_SMALL not in str(found):
+                    raise
+                problem = found
+            except _CodeTooSmall:
+                if problem is None:
+                    raise
+                break
     size = f"{printing.stock.width:g} × {printing.stock.height:g} mm"
     says = f"What a label must say does not fit on {size} in letters that can be read (7 pt)."
     raise Unacceptable(says, field="stock", example="a larger label") from problem
@@ -108,7 +109,9 @@ def module_size(modules: int, room: float, dots_per_inch: int) -> float:
     return module
 
 
-def _told(labels: Sequence[BottleLabel], printing: Printing, share: float) -> dict[str, Any]:
+def _told(
+    labels: Sequence[BottleLabel], printing: Printing, share: float, *, brief: bool
+) -> dict[str, Any]:
     if not 1 <= len(labels) <= _MOST_LABELS:
         raise Unacceptable(f"Choose from 1 to {_MOST_LABELS} labels.", field="labels")
     stock = printing.stock
@@ -123,13 +126,15 @@ def _told(labels: Sequence[BottleLabel], printing: Printing, share: float) -> di
         "width": stock.width,
         "height": stock.height,
         "labels": [
-            _label(label, printing, place, share)
+            _label(label, printing, place, share=share, brief=brief)
             for place, label in enumerate(labels, start=printing.first_place - 1)
         ],
     }
 
 
-def _label(label: BottleLabel, printing: Printing, place: int, share: float) -> dict[str, Any]:
+def _label(
+    label: BottleLabel, printing: Printing, place: int, *, share: float, brief: bool
+) -> dict[str, Any]:
     stock = printing.stock
     page, on_page = divmod(place, stock.places)
     x, y = stock.corner(on_page)
@@ -139,7 +144,7 @@ def _label(label: BottleLabel, printing: Printing, place: int, share: float) -> 
     room = min(stock.height, share * stock.width)
     module = module_size(across, room, printing.dots_per_inch)
     return {
-        **label_told(label),
+        **label_told(label, brief=brief),
         "page": page,
         "x": x,
         "y": y,

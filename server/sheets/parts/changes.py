@@ -30,7 +30,7 @@ def change_words(change: Change, zone: str) -> str:
     said = [] if before.state == after.state else [_STATES[after.state]]
     if change.why:
         end = "" if change.why.endswith((".", "!", "?")) else "."
-        said.append(f"{change.why}{end}")
+        said.append(f"Why: {change.why}{end}")
     if before.certificate != after.certificate:
         said.append(_new_number(before, after))
     if after.good_until and before.good_until != after.good_until:

@@ -1,6 +1,7 @@
 """Methods compared as people read them: three sentences, a picture, and the figures behind them."""
 
 from collections.abc import Iterator, Mapping, Sequence
+from math import log10
 
 from server.drawing.strip_plot import Middle, Strip, shape, shape_name, strip_plot
 from server.evaluation.methods_compared import (
@@ -10,7 +11,7 @@ from server.evaluation.methods_compared import (
     outcome_of,
 )
 from server.lab.sheet_facts import SheetFacts
-from server.metrology.rounding import rounded, rounding_exponent
+from server.metrology.rounding import rounded
 from server.sheets.methods import ComparisonView, MethodRow, PairRow, TestRow
 from server.sheets.parts.telling import figure_words, listed
 from server.statistics.comparison import Comparison, MethodValues, Pair
@@ -20,13 +21,12 @@ from server.statistics.spread import Summary, summarize
 UNIT = "mol/L"
 #: The limit of a laboratory or recipe that says which difference does not matter.
 MARGIN = "method_margin_percent"
-_FEWEST_DECIMALS, _MOST_DECIMALS = 4, 8
+_MOST_DECIMALS = 9
 _LEAST_P = 0.001
 _VERDICTS = {"equal within the margin": "holds", "different": "fails", "not decided": "look"}
 _ASKS = {
     "Brown-Forsythe": "do all scatter alike",
     "F test": "do the two scatter alike",
-    "Pitman-Morgan": "do the two scatter alike, from the same curves",
     "Welch's analysis of variance": "have all the same mean",
 }
 _FEW = 3
@@ -84,12 +84,9 @@ def _problem(found: ComparedMethods) -> str:
 
 
 def _decimals(groups: Sequence[MethodValues]) -> int:
-    """Return decimals that show a tenth of the smallest scatter."""
-    scatters = [s for one in groups if (s := summarize(one.values).s)]
-    if not scatters:
-        return _FEWEST_DECIMALS + 1
-    exponent = rounding_exponent(min(scatters), digits=2)
-    return min(max(-exponent, _FEWEST_DECIMALS), _MOST_DECIMALS)
+    """Return decimals that show about a hundred-thousandth of the values."""
+    largest = max((abs(value) for one in groups for value in one.values), default=0.0)
+    return min(max(5 - round(log10(largest)), 0), _MOST_DECIMALS) if largest else _MOST_DECIMALS
 
 
 def _reference(found: ComparedMethods, decimals: int) -> str:
@@ -117,9 +114,16 @@ def _rows(found: ComparedMethods, decimals: int) -> Iterator[MethodRow]:
             relative_s="" if summary.rsd_percent is None else f"{summary.rsd_percent:.3f} %",
             low="" if low is None else rounded(low, -decimals),
             high="" if high is None else rounded(high, -decimals),
+            own_u=_own_u(group, summary),
             trueness="" if against is None else f"{against.difference_percent:+.3f} %",
             En="" if against is None else f"{against.En:.2f}",
         )
+
+
+def _own_u(group: MethodValues, summary: Summary) -> str:
+    if not group.u_systematic or not summary.mean:
+        return ""
+    return f"{100 * group.u_systematic / abs(summary.mean):.3f} %"
 
 
 def _pair(one: Pair) -> PairRow:
@@ -133,20 +137,17 @@ def _pair(one: Pair) -> PairRow:
         high=f"{high:+.3f} %",
         p=_p(one.p),
         p_equal=_p(one.p_equal),
+        p_spread="" if one.p_spread is None else _p(one.p_spread),
         verdict=_VERDICTS[one.equality],
         says=one.equality,
     )
 
 
 def _tests(made: Comparison) -> Iterator[TestRow]:
-    by_twos = list(made.pairs) if len(made.spread) == len(made.pairs) else []
-    for place, one in enumerate(made.spread):
-        asks = _ASKS[one.name]
-        if by_twos and one.name != "F test":
-            asks = f"{by_twos[place].first}, {by_twos[place].second}: {_ASKS['F test']}"
-        yield _test(one, asks)
-    if made.means is not None:
-        yield _test(made.means, _ASKS[made.means.name])
+    """Yield the tests over all methods; those of two stand with the pairs."""
+    of_all = made.spread if not any(one.paired for one in made.pairs) else ()
+    for one in (*of_all, *((made.means,) if made.means else ())):
+        yield _test(one, _ASKS[one.name])
 
 
 def _test(one: TestResult, asks: str) -> TestRow:
@@ -177,11 +178,11 @@ def _against(made: Comparison, taken: Sequence[str]) -> Iterator[str]:
 
 
 def _proposal(made: Comparison, taken: Sequence[str]) -> str:
-    why = "it scatters least"
-    if made.trueness:
-        why += " of those that agree with the reference"
-        if all(one.En > 1 for one in made.trueness):
-            why = "it scatters least, though none agrees with the reference"
+    why = "the mean has the smallest uncertainty, its scatter and the method's own part together"
+    if made.trueness and any(one.En <= 1 for one in made.trueness):
+        why += ", of those that agree with the reference"
+    elif made.trueness:
+        why += ", though no method agrees with the reference"
     says = f"Proposed for this recipe: “{made.proposed}”, because {why}."
     if list(taken) == [made.proposed]:
         return f"{says} It is the one that was taken."
@@ -246,6 +247,7 @@ def _notes(found: ComparedMethods) -> Iterator[str]:
             "sheets a difference may be of the day and not of the method."
         )
     yield (
-        "p of a difference is adjusted for the number of pairs (Holm); equal within the margin "
-        "means that both one-sided tests against it hold at 5 %."
+        "p of a difference is adjusted for the number of pairs (Holm). Equal within the margin "
+        "means that both one-sided tests against it hold at 5 %. The spread of two methods is "
+        "compared by Pitman and Morgan where they read the same curves, else by Brown and Forsythe."
     )

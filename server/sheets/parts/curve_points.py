@@ -4,6 +4,7 @@ from collections.abc import Iterator
 
 from server.curves.analysis import Analysis
 from server.curves.outcome import EndPoint
+from server.drawing.titration.told import slope_words
 from server.lab.curve_entry import CurveEntry
 from server.sheets.curves import CurvePoint, PointsPart
 
@@ -69,7 +70,7 @@ def _slope(analysis: Analysis | None, at: int) -> str:
         return ""
     V, y = analysis.curve.V, analysis.curve.y
     step = V[at] - V[at - 1]
-    return f"{(y[at] - y[at - 1]) / step:.3g}" if step > 0 else ""
+    return slope_words((y[at] - y[at - 1]) / step) if step > 0 else ""
 
 
 def _used(analysis: Analysis) -> dict[int, list[str]]:

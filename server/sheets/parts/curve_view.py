@@ -17,6 +17,7 @@ _LEANS = (
     " It leans on the reaction that was named: residuals and pK tell whether that is what was in "
     "the flask."
 )
+_SAME_ML = 1e-6
 _GRAVITY = {"fails": 0, "look": 1, "holds": 2}
 
 
@@ -26,12 +27,22 @@ def curve_url(sheet_id: str, replicate: int) -> str:
 
 
 def curve_view(
-    told: SheetCurve, *, sheet_id: str, zone: str, probe: InstrumentFact | None
+    told: SheetCurve,
+    *,
+    sheet_id: str,
+    zone: str,
+    probe: InstrumentFact | None,
+    signed_mL: float | None = None,
 ) -> CurveView:
-    """Return a curve with every method, its findings and its pictures."""
+    """Return a curve with every method, its findings and its pictures.
+
+    ``signed_mL`` is the volume that an evaluation keeps; where the program finds another today, the
+    view says so.
+    """
     entry, analysis = told.entry, told.analysis
     taken = told.taken or (analysis.proposed if analysis else None)
-    found = analysis and next((one for one in analysis.outcomes if one.method == taken), None)
+    outcomes = analysis.outcomes if analysis else ()
+    found = next((one for one in outcomes if one.method == taken), None)
     volume, u = volume_words(found) if isinstance(found, EndPoint) else ("", "")
     says = picture_says(analysis, taken or "", steps_of(analysis)) if analysis else ""
     return CurveView(
@@ -45,7 +56,7 @@ def curve_view(
         written=f"{moment_words(entry.received_at, zone)} by {entry.printed_name}",
         file_url=f"/files/{entry.file_id}" if entry.file_id else None,
         set_aside=tuple(f"row {one.row}: {one.says}" for one in told.curve.set_aside),
-        problem=told.problem,
+        problem=told.problem or _not_as_signed(found, signed_mL),
         taken=taken,
         volume=volume,
         u=u,
@@ -61,6 +72,17 @@ def curve_view(
             if analysis
             else NOTHING_DRAWN
         ),
+    )
+
+
+def _not_as_signed(found: Outcome | None, signed_mL: float | None) -> str | None:
+    if signed_mL is None or not isinstance(found, EndPoint):
+        return None
+    if abs(found.volume_mL - signed_mL) <= _SAME_ML:
+        return None
+    return (
+        f"The sheet was signed with {signed_mL:.6g} mL; this release of the program finds "
+        f"{found.volume_mL:.6g} mL. What was signed stays as it was."
     )
 
 

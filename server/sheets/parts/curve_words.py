@@ -2,6 +2,8 @@
 
 from server.curves.analysis import Analysis
 from server.curves.outcome import EndPoint, NoEndPoint
+from server.curves.points import TitrationCurve
+from server.drawing.titration.told import slope_words
 from server.metrology.rounding import rounded_pair, significant
 from server.sheets.parts.curve_drawn import Steps
 
@@ -16,23 +18,25 @@ def picture_says(analysis: Analysis, taken: str, steps: Steps) -> str:
     curve = analysis.curve
     steepest = max(steps, key=lambda one: one[2])
     says = (
-        f"Titration curve of {curve.size} points, from {curve.kind} {curve.y[0]:.4g} at "
-        f"{curve.V[0]:.4g} mL to {curve.kind} {curve.y[-1]:.4g} at {curve.V[-1]:.4g} mL."
+        f"Titration curve of {curve.size} points, from {_reading(curve, 0)} at "
+        f"{curve.V[0]:.4g} mL to {_reading(curve, -1)} at {curve.V[-1]:.4g} mL."
     )
     found = next((one for one in analysis.outcomes if one.method == taken), None)
     if isinstance(found, EndPoint):
         volume, u = volume_words(found)
         says += f" End point by {the(taken)}: {volume} mL, standard uncertainty {u} mL."
-    says += (
-        f" Greatest slope {steepest[2]:.3g} {curve.kind} per mL, between {steepest[0]:.4g} and "
-        f"{steepest[1]:.4g} mL."
-    )
+    greatest = f"{slope_words(steepest[2])} {curve.kind} per mL"
+    says += f" Greatest slope {greatest}, between {steepest[0]:.4g} and {steepest[1]:.4g} mL."
     others = [
         f"{one.method} {volume_words(one)[0]}"
         for one in analysis.outcomes
         if isinstance(one, EndPoint) and one.method != taken
     ]
     return says + (f" Other methods, in mL: {', '.join(others)}." if others else "")
+
+
+def _reading(curve: TitrationCurve, at: int) -> str:
+    return f"pH {curve.y[at]:.4g}" if curve.kind == "pH" else f"{curve.y[at]:.4g} mV"
 
 
 def believe(analysis: Analysis) -> str:
@@ -76,6 +80,13 @@ def _because_other(analysis: Analysis) -> str:
     fit = analysis.outcome("model fit")
     if isinstance(fit, NoEndPoint):
         why = fit.why.rstrip(".")
-        return f"the model fit has no answer ({why[0].lower()}{why[1:]})"
+        says = f"the model fit has no answer ({why[0].lower()}{why[1:]})"
+        return f"its u is the smallest here and {says}" if _surest(analysis) else says
     failing = [one.name for one in analysis.findings if one.verdict == "fails"]
     return f"the model fit has a volume, but does not hold in {' and '.join(failing)}"
+
+
+def _surest(analysis: Analysis) -> bool:
+    """Tell whether the proposed method states the smallest u of all that have a volume."""
+    found = [one for one in analysis.outcomes if isinstance(one, EndPoint)]
+    return min(found, key=lambda one: one.u_mL).method == analysis.proposed

@@ -6,7 +6,9 @@ hydroxide at 25 °C: pKw 13.995, pK of phthalic acid 2.950 and 5.408, of carboni
 10.329 (the usual tables), activity coefficients by Davies' equation.
 """
 
+from collections.abc import Callable
 from dataclasses import dataclass
+from math import pow as power
 from typing import Any
 
 import numpy as np
@@ -99,19 +101,18 @@ def volumes_by_drops(points: int, shift: float) -> Floats:
 def fit_by_roots(V: Floats, y: Floats, *, start_mL: float, activities: bool, lmfit: Any) -> float:
     """Fit concentration, pK, offset, slope and carbonate with lmfit; return the effective volume.
 
-    The pH at each volume is found by ``brentq`` of the same charge balance in plain numbers, the
-    ionic strength taken from the ions that do not react: the usual way, and a fast one of it.
+    The pH at each volume is found by ``brentq`` of the charge balance in plain numbers, the ionic
+    strength taken from the ions that do not react: the usual way, and a fast one of it.
     """
     from scipy.optimize import brentq  # noqa: PLC0415 - scipy waits until it is needed
 
     def residuals(values: Any) -> Floats:
         c, pK, offset, slope, f = (values[k].value for k in ("c", "pK", "offset", "slope", "f"))
         curve = KnownCurve(carbonate=f, activities=activities, mol_per_L=c, pK2=pK)
-        read = []
-        for v in V.tolist():
-            gamma = curve.gamma((AMOUNT_MMOL + c * v) / (FLASK_ML + v))
-            pH = brentq(lambda x: curve.charges(x, v, gamma)[0], 1.0, _HIGH_pH, xtol=1e-9)  # noqa: B023 - used in the same turn
-            read.append(7 + offset + slope * (pH - 7))
+        read = [
+            7 + offset + slope * (brentq(one, 1.0, _HIGH_pH, xtol=1e-9) - 7)
+            for one in (_excess_at(v, curve) for v in V.tolist())
+        ]
         return np.array(read) - y
 
     values = lmfit.Parameters()
@@ -120,3 +121,32 @@ def fit_by_roots(V: Floats, y: Floats, *, start_mL: float, activities: bool, lmf
         values.add(name, start)
     found = lmfit.minimize(residuals, values).params
     return float(AMOUNT_MMOL / (found["c"].value * (1 - found["f"].value)))
+
+
+def _excess_at(v: float, curve: KnownCurve) -> Callable[[float], float]:
+    """Return the charge that is too much at a volume, as a function of the pH alone.
+
+    All that does not change with the pH is reckoned before: the root finder asks ten times.
+    """
+    strong = AMOUNT_MMOL + curve.mol_per_L * v
+    total = FLASK_ML + v
+    gamma = float(curve.gamma(strong / total))
+    k1, k2 = power(10.0, -_PHTHALIC[0]) / gamma, power(10.0, -curve.pK2) / gamma**3
+    c1, c2 = power(10.0, -_CARBONIC[0]) / gamma, power(10.0, -_CARBONIC[1]) / gamma**3
+    water, kw = total / gamma, power(10.0, -_PKW)
+    carbonate = curve.mol_per_L * curve.carbonate * v
+
+    def excess(pH: float) -> float:
+        a = power(10.0, -pH)
+        p1 = k1 / a
+        p2 = p1 * k2 / a
+        q1 = c1 / a
+        q2 = q1 * c2 / a
+        return (
+            strong
+            + water * (a - kw / a)
+            - AMOUNT_MMOL * (p1 + 2 * p2) / (1 + p1 + p2)
+            - carbonate * (q1 + 2 * q2) / (1 + q1 + q2)
+        )
+
+    return excess

@@ -43,15 +43,12 @@ async def bottle(request: Request, code: str, at: str | None = None) -> Response
 
 
 @router.get("/shelf")
-def shelf(visit: AtDesk, words: str = "", state: str = "") -> Response:
+def shelf(
+    visit: AtDesk, words: str = "", state: str = "", titrant: str = "", place: str = ""
+) -> Response:
     """List the bottles, due soonest first."""
-    return answer(
-        visit.parts.transactions.read(
-            lambda session: open_shelf(
-                session, words=words, state=state, actor=visit.actor, now=visit.now
-            )
-        )
-    )
+    asked = {"words": words, "state": state, "titrant": titrant, "place": place}
+    return answer(visit.read(open_shelf, **asked))
 
 
 @router.post("/bottles/{code}/used-up")

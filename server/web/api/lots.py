@@ -38,9 +38,9 @@ def make_up(desk: AtApi, given: Annotated[Given, Depends(_MAKE_UP)]) -> Response
 
 
 @router.get("/lots")
-def lots(visit: AtDesk, state: str = "") -> Response:
-    """List the lots, made up last first; ``state`` keeps those in one state."""
-    return answer(visit.read(open_lots, state=state))
+def lots(visit: AtDesk, state: str = "", titrant: str = "") -> Response:
+    """List the lots, due soonest first; ``state`` and ``titrant`` keep those that have them."""
+    return answer(visit.read(open_lots, state=state, titrant=titrant))
 
 
 @router.get("/lots/{code}")

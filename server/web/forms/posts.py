@@ -11,6 +11,7 @@ from server.lab.refusal import KeyMissing, Refusal
 from server.web.acting import act
 from server.web.errors import answer_of, headers_of
 from server.web.forms.fields import form_field
+from server.web.forms.labels import in_words
 from server.web.forms.typed import Typed, TypedForm
 from server.web.refusals import NotFromHere
 from server.web.showing import problem_of, show
@@ -92,7 +93,7 @@ class Post:
                 finish=again.finish,
                 status=answer_of(refusal).status,
                 headers=headers_of(refusal),
-                problem=problem_of(refusal, form_field(refusal.field)),
+                problem=problem_of(in_words(refusal), form_field(refusal.field)),
                 typed=typed,
                 **again.more,
             )

@@ -17,13 +17,15 @@ from server.web.forms.typed import Typed
 
 #: Rows that a form holds at first and at most; over the API a run may have more.
 FIRST_ROWS: Mapping[str, int] = MappingProxyType({BALANCE: 6, PROBE: 3, THERMOMETER: 5})
-FIRST_WEIGHINGS, MORE_ROWS, MOST_ROWS = 10, 5, 60
+FIRST_WEIGHINGS, MORE_ROWS, MOST_ROWS = 10, 5, 50
 _READINGS, _OFF_CENTRE = 10, 4
 
+#: What a weighing may state itself; the air and the minutes of the run hold where it does not.
+_OF_ITS_OWN = ("air_temperature", "air_pressure", "air_humidity", "minutes")
 #: What stands in one row, by the letter of its fields: (list of the document, names of its keys).
 _ROWS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
     {
-        "w": ("weighings", ("point", "before", "after", "water", "left_out")),
+        "w": ("weighings", ("point", "before", "after", "water", *_OF_ITS_OWN, "left_out")),
         "m": ("weights", ("name", "nominal", "conventional", "U", "k", "up", "down")),
         "b": ("buffers", ("buffer", "temperature", "mV", "pH", "certified_pH", "u_pH")),
         "t": ("points", ("reading", "reference")),
@@ -39,7 +41,7 @@ _LETTERS = {
     "repeatability.readings": "r", "eccentricity.positions": "e",
 }  # fmt: skip
 _LISTED = "weighings|weights|buffers|points|repeatability.readings|eccentricity.positions"
-_PLACE = re.compile(rf"({_LISTED})\[(\d+)\](?:\.(\w+))?")
+_PLACE = re.compile(rf"({_LISTED})\[(\d+)\](?:\.(\w+(?:\.\w+)*))?")
 #: Where a key of a document is called otherwise in the form.
 _NAMES = {
     "class": "grade", "kind": "ware", "eccentricity.centre": "centre", "step": "step",
@@ -50,7 +52,7 @@ _NAMES = {
 }  # fmt: skip
 _BOUNDS = {
     "weighing": "g", "water_temperature": "Cel", "air_temperature": "Cel", "air_pressure": "hPa",
-    "air_humidity": "%",
+    "air_humidity": "%", "evaporation": "g/min",
 }  # fmt: skip
 
 
@@ -67,12 +69,15 @@ class TypedRun:
             return None
         found = _PLACE.match(path)
         if found is None:
+            head, _, tail = path.partition(".")
+            if head == "uncertainty" and tail:
+                return f"u_{tail.partition('.')[0]}"
             return _NAMES.get(path, path.replace(".", "_"))
         row = self._row(found[1], int(found[2]))
         letter = _LETTERS[found[1]]
         if letter in "re":
             return f"{letter}{row}"
-        key = found[3] or _FIRST_KEYS[letter]
+        key = (found[3] or _FIRST_KEYS[letter]).replace(".", "_")
         key = "U" if letter == "m" and key == "u" else key
         return f"{letter}{row}_{key}"
 
@@ -81,7 +86,7 @@ class TypedRun:
 
         def placed(found: re.Match[str]) -> str:
             row = self._row(found[1], int(found[2])) + 1
-            key = f", {found[3].replace('_', ' ')}" if found[3] else ""
+            key = f", {re.sub('[._]', ' ', found[3])}" if found[3] else ""
             return f"{_WORDS[found[1]]} {row}{key}"
 
         return _PLACE.sub(placed, says)
@@ -178,7 +183,15 @@ def _ware(form: Typed) -> TypedRun:
             "rule": form.text("rule"),
         }
     )
-    return TypedRun({**document, "weighings": rows}, {"weighings": places})
+    weighings = [_with_air(one) for one in rows]
+    return TypedRun({**document, "weighings": weighings}, {"weighings": places})
+
+
+def _with_air(row: Mapping[str, str]) -> dict[str, Any]:
+    """Return a weighing with the air that was read at it, where it was."""
+    air = {key.removeprefix("air_"): row[key] for key in row if key.startswith("air_")}
+    rest = {key: value for key, value in row.items() if not key.startswith("air_")}
+    return {**rest, "air": air} if air else rest
 
 
 def _balance(form: Typed) -> TypedRun:

@@ -23,6 +23,7 @@ from server.sheets.instruments_page import open_calibration, open_instrument
 from server.sheets.run_form import AskedRun, judge_preview, open_drop_form, open_run_form
 from server.sheets.run_form import read_run as read_for_preview
 from server.web.forms.instruments import read_calibration_form, read_class
+from server.web.forms.labels import in_words
 from server.web.forms.posts import Again, Post, Posted
 from server.web.forms.runs import (
     picked_of,
@@ -133,13 +134,13 @@ def _worked_out(post: Post, instrument_id: str, refusal: Refusal | None = None) 
     post.need_token()
     kind = visit.read(open_run_form, instrument_id).kind
     typed = read_run(form, kind)
-    preview, problem = None, None if refusal is None else problem_of(refusal)
+    preview, problem = None, None if refusal is None else problem_of(in_words(refusal))
     try:
         with refusals_of(typed):
             asked = AskedRun(instrument_id, typed.document, picked_of(form))
             preview = judge_preview(visit.read(read_for_preview, asked))
     except Unacceptable as unready:
-        problem = problem or problem_of(unready)
+        problem = problem or problem_of(in_words(unready))
     volumes = {} if preview is None else preview.volumes
     return show(
         visit,

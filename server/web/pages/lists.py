@@ -22,9 +22,11 @@ _CSV = "text/csv; charset=utf-8"
 
 
 @router.get("/shelf/list.csv")
-def shelf(visit: AtDesk, words: str = "", state: str = "") -> Response:
+def shelf(
+    visit: AtDesk, words: str = "", state: str = "", titrant: str = "", place: str = ""
+) -> Response:
     """Hand out the bottles on the shelf; a visitor gets those in force."""
-    found = visit.read(open_shelf, words=words, state=state)
+    found = visit.read(open_shelf, words=words, state=state, titrant=titrant, place=place)
     return _answer(visit, shelf_csv(found), "shelf")
 
 
@@ -41,9 +43,10 @@ def instruments(visit: AtDesk) -> Response:
 
 
 @router.get("/lots/list.csv")
-def lots(visit: AtDesk, state: str = "") -> Response:
+def lots(visit: AtDesk, state: str = "", titrant: str = "") -> Response:
     """Hand out the titrant lots."""
-    return _answer(visit, lots_csv(visit.read(open_lots, state=state)), "lots")
+    found = visit.read(open_lots, state=state, titrant=titrant)
+    return _answer(visit, lots_csv(found), "lots")
 
 
 @router.get("/trail/list.csv")

@@ -28,12 +28,12 @@ _LONGEST, _MOST_SHEETS = 60, 200
 
 
 @router.get("/lots")
-def home(visit: AtDesk, state: str = "") -> Response:
-    """Show all lots, made up last first."""
+def home(visit: AtDesk, state: str = "", titrant: str = "") -> Response:
+    """Show all lots, due soonest first."""
     return show(
         visit,
         "lots/home.html",
-        lambda session, **who: open_lots(session, state=state, **who),
+        lambda session, **who: open_lots(session, state=state, titrant=titrant, **who),
     )
 
 
@@ -54,9 +54,13 @@ def make_up(post: Posted) -> Response:
 
 
 @router.get("/lots/{code}")
-def lot(visit: AtDesk, code: str) -> Response:
-    """Show one lot: preparation, bottles, sheets, certificates."""
-    return show(visit, "lots/lot.html", open_lot, code)
+def lot(visit: AtDesk, code: str, since: str | None = None) -> Response:
+    """Show one lot: preparation, bottles, sheets, certificates, and who used it since a day."""
+    return show(
+        visit,
+        "lots/lot.html",
+        lambda session, **who: open_lot(session, code, since=since, **who),
+    )
 
 
 def methods_asked(request: Request) -> MethodsAsked:

@@ -11,24 +11,37 @@ from server.sheets.bottle_card import open_bottle_card
 from server.sheets.people import open_chrome
 from server.sheets.shelf_page import open_shelf
 from server.web.forms.posts import Posted, see_other
+from server.web.headers import CAMERA_HERE
 from server.web.pages.session import is_set_up
 from server.web.parts import parts_of
-from server.web.showing import draw, show
+from server.web.showing import draw
 from server.web.visits import AtDesk, source_of, touch, visit_in
 
 router = APIRouter()
+#: Only where a code may be scanned may this site's own page ask for the camera.
+_CAMERA = {"Permissions-Policy": CAMERA_HERE}
 
 
 @router.get("/")
-def shelf(visit: AtDesk, words: str = "", state: str = "") -> Response:
-    """Show the shelf; before the first day, the page that sets the laboratory up."""
+def shelf(
+    visit: AtDesk, words: str = "", state: str = "", titrant: str = "", place: str = ""
+) -> Response:
+    """Show the shelf; the code of a bottle leads to its card.
+
+    Before the first day, the page that sets the laboratory up.
+    """
     if visit.actor is None and not is_set_up(visit):
         return see_other("/setup")
-    return show(
-        visit,
-        "shelf/home.html",
-        lambda session, **who: open_shelf(session, words=words, state=state, **who),
+    asked = {"words": words, "state": state, "titrant": titrant, "place": place}
+    page, chrome = visit.parts.transactions.read(
+        lambda session: (
+            open_shelf(session, actor=visit.actor, now=visit.now, **asked),
+            open_chrome(session, actor=visit.actor, now=visit.now),
+        )
     )
+    if page.only:
+        return see_other(f"/b/{page.only}")
+    return draw(visit, "shelf/home.html", page, chrome, headers=_CAMERA)
 
 
 @router.get("/b/{code}")
@@ -44,7 +57,8 @@ async def bottle(request: Request, code: str, at: str | None = None) -> Response
         request.state.to_touch = to_touch
         who: dict[str, Any] = {"actor": visit.actor, "now": now}
         page = open_bottle_card(session, code, at=at or None, **who)
-        return draw(visit, "shelf/bottle.html", page, open_chrome(session, **who))
+        chrome = open_chrome(session, **who)
+        return draw(visit, "shelf/bottle.html", page, chrome, headers=_CAMERA)
 
     try:
         response = parts.transactions.read(work)

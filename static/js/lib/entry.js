@@ -9,16 +9,17 @@ const SENT = [
 /** A new entry for a row; `stamp` holds uuid, device, sequence and clocks. */
 export function newEntry(row, reading, { strikes = null, reason = null, initials, stamp }) {
   const { replicate, slot, segment } = row;
-  const { text, unit = null, raw = null } = reading;
+  const { text, unit = null, raw = null, curve = null } = reading;
   return {
-    replicate, slot, segment, text, unit, raw, strikes, reason, initials, state: "waiting", problem: null,
+    replicate, slot, segment, text, unit, raw, curve, strikes, reason, initials, state: "waiting", problem: null,
     ...stamp,
   };
 }
 
 /** The entry as the door takes it. */
 export function forTheDoor(entry) {
-  return Object.fromEntries(SENT.map((name) => [name, entry[name] ?? null]));
+  const sent = Object.fromEntries(SENT.map((name) => [name, entry[name] ?? null]));
+  return entry.curve ? { ...sent, curve: entry.curve } : sent;
 }
 
 /** The hour and minute of an instant on this tablet's clock. */

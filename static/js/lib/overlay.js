@@ -80,7 +80,7 @@ function layEntry(groups, entry) {
   const row = group.rows.find((other) => keyOf(other) === keyOf(entry));
   if (!row) return;
   if (entry.state === "refused") {
-    row.refused = { id: entry.id, text: entry.raw ?? entry.text, problem: entry.problem };
+    row.refused = { id: entry.id, text: entry.raw ?? entry.text, problem: entry.problem, ...(entry.curve ? { curve: entry.curve } : {}) };
     return;
   }
   if (row.value && entry.strikes === row.value.id) row.struck = [...row.struck, struckBy(row.value, entry)];

@@ -1,5 +1,6 @@
 // The bench page: one sheet, drawn from its JSON, written row by row.
 
+import { sentOf } from "../lib/curve.js";
 import { clockOf, newEntry } from "../lib/entry.js";
 import { COUNTS_AGAIN, keyOf, layOver, nextOf, rowsOf } from "../lib/overlay.js";
 import { press } from "../lib/pad.js";
@@ -8,6 +9,7 @@ import { readReason, readTyped, readWords, unitOf } from "../lib/reading.js";
 import { entries, networkSays } from "../lib/strip.js";
 import { Sender } from "../outbox/sender.js";
 import { Store } from "../outbox/store.js";
+import { CurveDesk } from "../outbox/curve_desk.js";
 import { el } from "../widgets/dom.js";
 import { echoOf } from "../widgets/lit.js";
 import { padOf } from "../widgets/pad.js";
@@ -33,6 +35,17 @@ const sender = new Sender({
 
 /** What only this page knows: which row a person chose, what is asked, why a value is struck. */
 const here = { chosen: null, note: null, reason: "", excluding: null, stripOpen: false, confirmed: null };
+const desk = new CurveDesk({
+  store,
+  address: `/api/sheets/${sheetId}/curves/preview`,
+  person,
+  fetcher: (...given) => fetch(...given),
+  onChange: (words) => {
+    draw();
+    showLit();
+    if (words) say(words);
+  },
+});
 
 function keeper() {
   try {
@@ -61,7 +74,9 @@ function viewNow() {
   const lit = mayWrite ? (chosen ?? nextOf(groups, sheet, waiting)) : null;
   return {
     groups, rows, lit, mayWrite, waiting,
-    typed: lit ? typedIn(lit) : "",
+    typed: lit && lit.kind !== "curve" ? typedIn(lit) : "",
+    curve: lit?.kind === "curve" ? desk.of(lit) : null,
+    curveUrl: (row) => `/sheets/${sheetId}/curves/${row.replicate}`,
     note: here.note ?? (lit?.refused ? { says: wordsOf(lit.refused.problem) } : null),
     reasons: sheet.correction_reasons,
     reason: here.reason,
@@ -104,7 +119,7 @@ function drawAside() {
     lineOf(sheet.margin, network, { open: here.stripOpen, onToggle }),
   );
   const numbers = view.lit?.kind === "number";
-  const words = view.lit && view.lit.kind === "text";
+  const words = view.lit && (view.lit.kind === "text" || (view.lit.kind === "curve" && view.curve.state === "shown"));
   const pad = numbers
     ? padOf({ signed: view.lit.signed, label: writeLabel(), onKey: padKey })
     : words
@@ -142,7 +157,7 @@ function say(words) {
 
 /** A value as it is said aloud; words are too long for that. */
 function spoken(row, text) {
-  return row.kind === "text" ? "" : `${text} ${unitOf(row)}`.trim();
+  return row.kind === "text" || row.kind === "curve" ? "" : `${text} ${unitOf(row)}`.trim();
 }
 
 /** The lit row whole between the top and the pad; a row taller than that shows its beginning. */
@@ -188,6 +203,7 @@ const acts = {
   },
   leave() {
     if (view.lit?.refused) store.drop(view.lit.refused.id);
+    desk.forget(view.lit);
     store.draft(here.chosen, "");
     Object.assign(here, { chosen: null, note: null, reason: "" });
     draw({ focus: true });
@@ -212,6 +228,7 @@ const acts = {
   },
   write() {
     const { lit, typed, rows } = view;
+    if (lit.kind === "curve") return writeCurve();
     if (lit.kind === "text") {
       const words = readWords(typed, lit);
       return words.says ? ask(words) : put(lit, words, null);
@@ -238,7 +255,8 @@ const acts = {
     say(`${row.label}: ${row.value.text} stands.`);
   },
   insist(row) {
-    store.draft(keyOf(row), row.refused.text);
+    if (row.refused.curve) desk.take(row, row.refused.curve);
+    else store.draft(keyOf(row), row.refused.text);
     store.drop(row.refused.id);
     acts.light(row);
   },
@@ -248,7 +266,30 @@ const acts = {
     (spot("criterion-0") ?? spot("why"))?.focus();
   },
   excludeForm,
+  curve: {
+    file: (file) => desk.file(view.lit, file),
+    text: (text) => desk.typing(view.lit, text),
+    pasted: () => setTimeout(() => desk.text(view.lit, spot("reading")?.value ?? "")),
+    lookAtText: () => desk.text(view.lit, spot("reading")?.value ?? ""),
+    look: () => desk.look(view.lit),
+    change: (more) => desk.change(view.lit, more),
+    unfinished: (roles, says) => say(says),
+    forget: () => {
+      desk.forget(view.lit);
+      draw({ focus: true });
+      showLit();
+    },
+  },
 };
+
+/** The curve that was shown goes to its row, to be read again in just the same way. */
+function writeCurve() {
+  const { lit, curve } = view;
+  if (curve.state !== "shown") return ask({ says: "Choose the curve first: drop its file or paste two columns." });
+  const sent = sentOf({ ...curve.chosen, mapping: curve.preview.mapping });
+  const twice = curve.preview.same_as === null ? null : "the same file as another replicate, confirmed";
+  return put(lit, { text: curve.preview.text, curve: sent }, twice);
+}
 
 function ask(note) {
   here.note = note;
@@ -275,6 +316,7 @@ function put(row, reading, confirmed) {
   if (strikes && struckFor.says) return ask(struckFor);
   if (row.refused) store.drop(row.refused.id);
   keepAndSend(row, reading, { strikes, reason: strikes ? struckFor.text : confirmed });
+  if (row.kind === "curve") desk.forget(row);
   store.draft(keyOf(row), "");
   Object.assign(here, { chosen: null, note: null, reason: "", confirmed: null });
   draw({ focus: true });
@@ -380,7 +422,17 @@ document.addEventListener("keydown", looseKey);
 document.addEventListener("keydown", (event) => {
   if (event.key === "Escape" && (here.chosen || here.note)) acts.leave();
 });
-window.addEventListener("online", () => sender.flush());
+window.addEventListener("online", () => {
+  sender.flush();
+  if (view.lit?.kind === "curve" && view.curve.state === "offline") desk.look(view.lit);
+});
+for (const event of ["dragover", "drop"]) {
+  document.addEventListener(event, (moved) => {
+    if (view.lit?.kind !== "curve" || !moved.dataTransfer?.types?.includes("Files")) return;
+    moved.preventDefault();
+    if (event === "drop" && moved.dataTransfer.files[0]) desk.file(view.lit, moved.dataTransfer.files[0]);
+  });
+}
 document.addEventListener("visibilitychange", () => document.hidden || sender.flush());
 window.addEventListener("storage", () => draw());
 setInterval(() => store.waiting().length > 0 && sender.flush(), LOOK_AGAIN_MS);

@@ -7,7 +7,11 @@ if (form) watch(form);
 function watch(form) {
   const place = `run ${form.dataset.run}`;
   // a form that the server answered with holds what was typed already
-  if (!("typed" in form.dataset) && restore(form, place)) tell(form, place);
+  if (!("typed" in form.dataset)) {
+    const { changed, homeless } = restore(form, place);
+    if (makeRoom(form, homeless)) return;
+    if (changed) tell(form, place);
+  }
   let timer = 0;
   form.addEventListener("input", () => keep(form, place));
   form.addEventListener("change", () => {
@@ -17,6 +21,28 @@ function watch(form) {
   form.addEventListener("submit", (event) => {
     if (event.submitter?.value === "record") forget(place);
   });
+}
+
+// Rows that were added, and air read at each weighing, have no fields on a fresh page: the server
+// shows the form again with room for them, and with all that was typed.
+function makeRoom(form, homeless) {
+  const rows = Object.keys(homeless).map((name) => Number(/^[a-z](\d+)_/.exec(name)?.[1] ?? -1));
+  const most = Math.max(-1, ...rows);
+  if (most < 0) return false;
+  for (const [name, value] of Object.entries(homeless)) add(form, name, value);
+  const count = form.elements.namedItem("rows");
+  count.value = String(Math.max(Number(count.value), most + 1));
+  add(form, "do", "show");
+  form.submit();
+  return true;
+}
+
+function add(form, name, value) {
+  const field = document.createElement("input");
+  field.type = "hidden";
+  field.name = name;
+  field.value = value;
+  form.append(field);
 }
 
 function tell(form, place) {

@@ -23,3 +23,10 @@ export function markOf(name) {
   const template = document.getElementById(`mark-${name}`);
   return template ? template.content.cloneNode(true) : "";
 }
+
+/** A picture drawn by the server, as an element; empty where it is none. */
+export function svgOf(text) {
+  const read = new DOMParser().parseFromString(text, "image/svg+xml");
+  const drawn = read.documentElement;
+  return drawn && drawn.localName === "svg" ? document.importNode(drawn, true) : "";
+}

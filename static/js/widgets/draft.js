@@ -14,22 +14,27 @@ export function keep(form, place) {
   }
 }
 
-// Returns whether anything that was typed stands in the form again.
+// Returns whether anything that was typed stands in the form again, and what has no field there.
 export function restore(form, place) {
   let typed = null;
   try {
     typed = JSON.parse(localStorage.getItem(place) ?? "null");
   } catch {
-    return false;
+    typed = null;
   }
   let changed = false;
+  const homeless = {};
   for (const [name, value] of Object.entries(typed ?? {})) {
+    if (typeof value !== "string") continue;
     const field = form.elements.namedItem(name);
-    if (!field || !("value" in field) || typeof value !== "string" || field.value === value) continue;
-    field.value = value;
-    changed = true;
+    if (!field || !("value" in field) || field.type === "submit") {
+      if (value) homeless[name] = value;
+    } else if (field.value !== value) {
+      field.value = value;
+      changed = true;
+    }
   }
-  return changed;
+  return { changed, homeless };
 }
 
 export function forget(place) {

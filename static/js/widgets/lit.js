@@ -2,6 +2,7 @@
 
 import { echo, readTyped, unitOf } from "../lib/reading.js";
 import { keyOf } from "../lib/overlay.js";
+import { curveField } from "./curve_row.js";
 import { el, unseen } from "./dom.js";
 
 /** The lit row as a form of its own; the pad's Write key belongs to it. */
@@ -10,7 +11,7 @@ export function litRow(row, view, acts) {
   const key = keyOf(row);
   const form = el(
     "form",
-    { class: "lit", id: "lit", novalidate: true, on: { submit: (event) => (event.preventDefault(), acts.write()) } },
+    { class: row.kind === "curve" ? "lit is-curve" : "lit", id: "lit", novalidate: true, on: { submit: (event) => (event.preventDefault(), acts.write()) } },
     el(
       "div",
       { class: "label" },
@@ -42,6 +43,7 @@ export function echoOf(row, typed) {
 }
 
 function fieldOf(row, view, acts) {
+  if (row.kind === "curve") return curveField(row, view.curve, acts.curve);
   if (row.kind === "step") return stepButton(row, acts);
   if (row.kind === "choice") return choices(row, acts);
   const described = { "aria-describedby": "hint echo note", "aria-invalid": view.note ? "true" : false };

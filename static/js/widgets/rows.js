@@ -36,7 +36,7 @@ function rowOf(row, view, acts) {
 }
 
 function wordy(row) {
-  if (row.kind === "text") return " is-words is-text";
+  if (row.kind === "text" || row.kind === "curve") return " is-words is-text";
   return row.kind === "choice" ? " is-words" : "";
 }
 
@@ -65,6 +65,18 @@ function writtenRow(row, view, acts) {
     whereOf(row),
     row.struck.map(reasonOf),
     row.refused ? bothOf(row, view, acts) : null,
+    row.kind === "curve" ? curveLinks(row, view) : null,
+  );
+}
+
+/** Where a curve that is on the server can be looked at alone, and its original fetched. */
+function curveLinks(row, view) {
+  if (row.where !== SERVER) return null;
+  return el(
+    "p",
+    { class: "row-note curve-links" },
+    el("a", { href: view.curveUrl(row) }, "The curve"),
+    row.value.file_url ? el("a", { href: row.value.file_url, download: true }, "Its original file") : null,
   );
 }
 

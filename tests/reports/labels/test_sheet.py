@@ -66,7 +66,7 @@ def decoded(picture):
 
 
 @pytest.mark.parametrize("dots", [203, 300, 600])
-@pytest.mark.parametrize("stock", ["100x50", "62x40", "a4-21", "a4-8"])
+@pytest.mark.parametrize("stock", ["100x50", "62x40", "62x29", "50x30", "a4-21", "a4-8"])
 def test_label_picture_is_read_as_the_bottles_address(stock, dots) -> None:
     if stock.startswith("a4") and dots > 300:
         dots = 300
