@@ -54,6 +54,7 @@ def _parser() -> argparse.ArgumentParser:
     selfcheck = verbs.add_parser("selfcheck", help="check the calculations on published examples")
     selfcheck.add_argument("--pdf", type=Path, metavar="FILE", help="write the table as a PDF too")
     selfcheck.set_defaults(do=_selfcheck)
+    _add_keys(verbs)
     benching = verbs.add_parser("bench", help="measure speed and error against yardsticks")
     benching.add_argument("name", nargs="?", metavar="NAME", help="which; without it: their names")
     benching.set_defaults(do=_bench)
@@ -117,6 +118,17 @@ def _add_equivalence(verbs: Any) -> None:
     curve.add_argument("--amount-mmol", type=float, dest="amount", metavar="N")
     curve.add_argument("--temperature-C", type=float, default=25.0, dest="celsius", metavar="T")
     curve.set_defaults(do=_equivalence)
+
+
+def _add_keys(verbs: Any) -> None:
+    keys = verbs.add_parser("keys", help="the keys that certificates are signed with")
+    _add_data(keys)
+    keys.add_argument(
+        "--retire",
+        action="store_true",
+        help="make a new key; the old one signs no more and goes on verifying",
+    )
+    keys.set_defaults(do=_keys)
 
 
 def _say(*lines: object) -> None:
@@ -232,6 +244,30 @@ def _selfcheck(given: argparse.Namespace, _: Verbs) -> int:
         given.pdf.write_bytes(pdf)
         _say(f"Written to {given.pdf}.")
     return NOT_SO if failed or not found else GOOD
+
+
+def _keys(given: argparse.Namespace, _: Verbs) -> int:
+    from server.credentials.signing_keys import (  # noqa: PLC0415 - seldom needed
+        KeyProblem,
+        open_signing_keys,
+        retire_signing_key,
+    )
+
+    folder, now = read_settings(os.environ, data=given.data).key_folder, datetime.now(UTC)
+    if not given.data.is_dir():
+        raise SettingsProblem(f"There is no data folder {given.data}.")
+    try:
+        opened = (retire_signing_key if given.retire else open_signing_keys)(folder, now=now)
+    except (KeyProblem, OSError) as problem:
+        raise SettingsProblem(
+            f"The signing keys in {folder} cannot be used: {problem}"
+        ) from problem
+    for key in opened.keys:
+        end = f"retired {key.retired_at:%Y-%m-%d}" if key.retired_at else "signs"
+        _say(f"{key.number:4d}  {key.kid}  made {key.made_at:%Y-%m-%d}  {end}")
+    if given.retire:
+        _say("Start the server anew: until then it signs with the key that is retired now.")
+    return GOOD
 
 
 def _bench(given: argparse.Namespace, _: Verbs) -> int:

@@ -1,19 +1,22 @@
 """A calibration from outside, whatever its format: its values for a person to confirm."""
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass, field
+from dataclasses import asdict, dataclass, field
 from typing import Any
 
 from server.intake.calibration_table import read_calibration_table
 from server.intake.dcc import CalibrationCertificate, Shown, Table, read_dcc
-from server.intake.dcc_balance import balance_proposal, balance_tables
+from server.intake.dcc_errors import MASS, TEMPERATURE, Scale, error_proposal, error_tables
+from server.intake.dcc_volumes import burette_proposal, volume_proposal, volume_tables
 from server.intake.table_columns import BASE_UNITS
 from server.intake.workbook import is_workbook
 from server.lab.refusal import Unacceptable
-from server.lab.sheet_facts import BALANCE
+from server.lab.sheet_facts import BALANCE, BURETTE, FLASK, PIPETTE, THERMOMETER
 
 #: How a person may say what a column of a table means where the header does not tell.
 MEANS = ("", "correction", "error")
+_SCALES: Mapping[str, Scale] = {BALANCE: MASS, THERMOMETER: TEMPERATURE}
+_VOLUMES = {PIPETTE: "delivery", FLASK: "volume"}
 
 
 @dataclass(frozen=True, slots=True)
@@ -100,7 +103,7 @@ def _of_table(data: bytes, kind: str, asked: Asked) -> ReadCalibration:
 
 
 def _of_certificate(found: CalibrationCertificate, kind: str, asked: Asked) -> ReadCalibration:
-    usable = balance_tables(found.tables) if kind == BALANCE else ()
+    usable = _usable(found.tables, kind)
     lists = tuple(_list(one, i, usable=i in usable) for i, one in enumerate(found.tables))
     common: dict[str, Any] = {
         "source": f"Digital Calibration Certificate {found.schema_version}",
@@ -118,16 +121,42 @@ def _of_certificate(found: CalibrationCertificate, kind: str, asked: Asked) -> R
             "type what it states."
         )
         return ReadCalibration(**common, says=(says,))
-    proposal = balance_proposal(found.tables[chosen])
-    return ReadCalibration(
-        **common,
-        chosen=chosen,
-        heads=("indication, g", "error, g", "added, g", "u, g"),
-        rows=tuple((*row[:3], row[3] or "") for row in proposal.rows),
-        sign="error of indication, taken away from a reading",
-        says=proposal.says,
-        fragment=proposal.fragment,
-    )
+    return ReadCalibration(**common, chosen=chosen, **_proposed(found.tables[chosen], kind))
+
+
+def _usable(tables: tuple[Table, ...], kind: str) -> tuple[int, ...]:
+    """Return which lists are read by themselves for a kind of instrument, by their place."""
+    if kind in _SCALES:
+        return error_tables(tables, _SCALES[kind])
+    if kind == BURETTE or kind in _VOLUMES:
+        return volume_tables(tables, several=kind == BURETTE)
+    return ()
+
+
+def _proposed(table: Table, kind: str) -> dict[str, Any]:
+    """Return what a list becomes for a kind of instrument.
+
+    Raises:
+        Unacceptable: it makes no such calibration; the sentence says why.
+    """
+    if kind in _SCALES:
+        scale = _SCALES[kind]
+        found = error_proposal(table, scale)
+        return {
+            "heads": tuple(
+                f"{head}, {scale.shown}" for head in ("indication", "error", "added", "u")
+            ),
+            "rows": tuple((*row[:3], row[3] or "") for row in found.rows),
+            "sign": "error of indication, taken away from a reading",
+            "says": found.says,
+            "fragment": found.fragment,
+        }
+    if kind == BURETTE:
+        return asdict(burette_proposal(table))
+    if kind in _VOLUMES:
+        return asdict(volume_proposal(table, _VOLUMES[kind]))
+    says = f"No list of a certificate is read for a {kind}: type what it states."
+    raise Unacceptable(says, field="table")
 
 
 def _chosen(text: str, count: int, usable: tuple[int, ...]) -> int | None:

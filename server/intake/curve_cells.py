@@ -12,6 +12,7 @@ MOST_ROWS, MOST_COLUMNS = 200_000, 50
 _SHOWN_CELL = 40
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d{1,2})?")
 _MOST_NUMBER = 40
+_FINEST, _COARSEST = -16, 8
 
 Row = tuple[int, tuple[str, ...]]
 
@@ -55,9 +56,13 @@ class Cells:
         plain = text.strip().replace("−", "-")
         if self.decimal_comma:
             plain = plain.replace(",", ".")
-        if len(plain) <= _MOST_NUMBER and _NUMBER.fullmatch(plain):
-            return Decimal(plain)
         place = self.where(row, column)
+        if len(plain) <= _MOST_NUMBER and _NUMBER.fullmatch(plain):
+            number = Decimal(plain)
+            if _FINEST <= int(number.as_tuple().exponent) <= _COARSEST:
+                return number
+            says = f"{place}: “{text.strip()[:40]}” is too large or too small to be a reading."
+            raise Unacceptable(says, field="file", shown={"row": row, "column": column + 1})
         if plain[:1] in {"=", "@"} or re.match(r"[+-][A-Za-z(]", plain):
             says = f"{place}: “{text.strip()[:40]}” is a formula; only numbers are taken."
         elif not plain:

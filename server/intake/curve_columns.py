@@ -97,7 +97,8 @@ def mapping_from(document: Mapping[str, Any]) -> ColumnMapping:
     )
     taken: dict[str, str] = {}
     for key, known_units, usual in units:
-        taken[key] = document.get(key, usual)
+        unit = document.get(key, usual)
+        taken[key] = unit if isinstance(unit, str) else ""
         if taken[key] not in known_units:
             says = f"mapping.{key} must be one of {', '.join(known_units)}."
             raise Unacceptable(says, field=f"mapping.{key}", example=usual)
@@ -220,14 +221,24 @@ def _mapped(
         reading_unit="pH" if kind == "pH" else _known(reading_unit, ("mV", "V"), "mV"),
         time_unit=_known(time_unit, TIME_UNITS, "s"),
     )
-    names = [
-        f"volume in {mapping.volume_unit} from “{header[volume_at].strip()}”",
-        f"{kind} from “{header[reading_at].strip()}”",
-    ]
-    if time_at is not None:
-        names.append(f"time in {mapping.time_unit} from “{header[time_at].strip()}”")
-    words.insert(0, f"Taken: {', '.join(names)}.")
+    words.insert(0, taken_words(mapping, header))
     return mapping
+
+
+def taken_words(mapping: ColumnMapping, header: Sequence[str] | None) -> str:
+    """Return in a sentence which column is taken as what."""
+
+    def named(at: int) -> str:
+        name = header[at].strip() if header is not None and at < len(header) else ""
+        return f"“{name[:40]}”" if name else f"column {at + 1}"
+
+    names = [
+        f"volume in {mapping.volume_unit} from {named(mapping.volume)}",
+        f"{mapping.reading_unit} from {named(mapping.reading)}",
+    ]
+    if mapping.time is not None:
+        names.append(f"time in {mapping.time_unit} from {named(mapping.time)}")
+    return f"Taken: {', '.join(names)}."
 
 
 def _known(unit: str | None, units: Collection[str], usual: str) -> str:

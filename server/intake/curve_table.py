@@ -14,10 +14,14 @@ from server.intake.curve_columns import (
     ColumnMapping,
     RememberedColumns,
     columns_of,
+    taken_words,
 )
 from server.lab.refusal import Unacceptable
 
 _SHOWN_ROWS = 6
+#: What a probe can read at all, bubbles included, and what no burette delivers.
+_POSSIBLE = {"pH": (Decimal(-3), Decimal(17)), "mV": (Decimal(-5000), Decimal(5000))}
+_MOST_ML = Decimal(10_000)
 
 
 @dataclass(frozen=True, slots=True)
@@ -107,7 +111,7 @@ def _columns(
     if asked.mapping is not None:
         mapping, says = asked.mapping, "Columns as you set them."
     elif asked.remembered is not None and asked.remembered.fits(shape.header, shape.width):
-        mapping, says = asked.remembered.mapping, "Columns as they were set for this instrument."
+        mapping, says = asked.remembered.mapping, "Columns as in this instrument's last file."
     else:
         told = [
             [cells.number(0, 0, one) if cells.is_number(one) else None for one in row]
@@ -117,22 +121,22 @@ def _columns(
     if mapping.last >= shape.width:
         says = f"Column {mapping.last + 1} is asked for; the table has {shape.width}."
         raise Unacceptable(says, field="mapping", example="0")
-    return mapping, [says]
+    return mapping, [taken_words(mapping, shape.header), says]
 
 
 def _left_out(
-    cells: Cells, mapping: ColumnMapping, body: Sequence[Row], rows: Sequence[int]
+    cells: Cells, mapping: ColumnMapping, body: Sequence[Row], asked: Asked
 ) -> list[SetAside]:
-    """Return the rows that a person passes over; only such as hold no numbers can be."""
-    by_number = dict(body)
+    """Return the rows that a person passes over; only such as hold no readings can be."""
+    by_number, scale = dict(body), _volume_scale(mapping, asked.drop)
     aside = []
-    for number in sorted(set(rows)):
+    for number in sorted(set(asked.leave_out)):
         row = by_number.get(number)
         if row is None:
             says = f"Row {number} is none of the table's rows; it cannot be left out."
             raise Unacceptable(says, field="leave_out")
         try:
-            _point(cells, mapping, number, row)
+            _point(cells, mapping, number, row, scale=scale)
         except Unacceptable as unread:
             aside.append(SetAside(number, f"Left out by hand. {unread.says}"))
             continue
@@ -161,10 +165,28 @@ def _curve(
         words.append(f"{passed} line{'s' if passed > 1 else ''} before the table passed over.")
     mapping, more = _columns(cells, body, shape, asked)
     words += more
+    try:
+        return _points_of(cells, body, mapping, words, shape=shape, sha256=sha256, asked=asked)
+    except Unacceptable as refused:
+        refused.shown.setdefault("mapping", mapping.to_document())
+        raise
+
+
+def _points_of(
+    cells: Cells,
+    body: Sequence[Row],
+    mapping: ColumnMapping,
+    words: Sequence[str],
+    *,
+    shape: TableShape,
+    sha256: str,
+    asked: Asked,
+) -> CurveTable:
+    """Return the curve in columns that are understood."""
     scale = _volume_scale(mapping, asked.drop)
-    by_hand = _left_out(cells, mapping, body, asked.leave_out)
+    by_hand = _left_out(cells, mapping, body, asked)
     body = [(number, row) for number, row in body if number not in set(asked.leave_out)]
-    points = [_point(cells, mapping, number, row) for number, row in body]
+    points = [_point(cells, mapping, number, row, scale=scale) for number, row in body]
     numbers = [number for number, _ in body]
     aside = _set_aside(numbers, [one[0] for one in points], cells, mapping)
     keep = [at for at in range(len(points)) if at not in {row for row, _ in aside}]
@@ -209,11 +231,24 @@ def _volume_scale(mapping: ColumnMapping, drop: Drop | None) -> Decimal:
 
 
 def _point(
-    cells: Cells, mapping: ColumnMapping, number: int, row: tuple[str, ...]
+    cells: Cells, mapping: ColumnMapping, number: int, row: tuple[str, ...], *, scale: Decimal
 ) -> tuple[Decimal, Decimal]:
-    """Return volume and reading of a row in the file's own units."""
+    """Return volume and reading of a row in the file's own units, both possible ones."""
     volume = _cell(cells, number, row, mapping.volume)
-    return volume, _cell(cells, number, row, mapping.reading)
+    reading = _cell(cells, number, row, mapping.reading)
+    low, high = _POSSIBLE[mapping.kind]
+    looked_at = (
+        (mapping.volume, volume * scale, "mL", (Decimal(0), _MOST_ML)),
+        (mapping.reading, reading * READING_UNITS[mapping.reading_unit], mapping.kind, (low, high)),
+    )
+    for column, value, unit, (least, most) in looked_at:
+        if not least <= value <= most:
+            says = (
+                f"{cells.where(number, column)}: {_text(value)} {unit} is not possible on a curve "
+                f"({least} to {most} {unit})."
+            )
+            raise Unacceptable(says, field="file", shown={"row": number, "column": column + 1})
+    return volume, reading
 
 
 def _cell(cells: Cells, number: int, row: tuple[str, ...], column: int) -> Decimal:

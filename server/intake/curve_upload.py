@@ -18,6 +18,8 @@ from server.lab.curve_entry import (
     CurveFile,
     CurveRow,
     positive_text,
+    read_curve_entry,
+    write_curve_entry,
 )
 from server.lab.refusal import Unacceptable
 
@@ -99,6 +101,7 @@ def read_sent_curve(
         drop=_drop_kept(sent, instrument) if counted else None,
         file=CurveFile(name, sha256_of(content)),
     )
+    read_curve_entry(write_curve_entry(entry))  # what is kept can be read again, or is refused now
     return ReadCurve(table, original, entry)
 
 

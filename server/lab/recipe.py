@@ -18,6 +18,7 @@ _KEYS = (
     "valid_for", "blank", "excess", "buoyancy", "temperature", "liquid_expansion",
     "repeatability", "interval_days", "notice_days", "steps", "limits",
 )  # fmt: skip
+_STANDARDS = {"khp-naoh": "KHP", "tris-hcl": "TRIS", "carbonate-hcl": "Na2CO3"}
 _RATIO = re.compile(r"[0-9]{1,9}([./][0-9]{1,9})?")
 _STEP_KEY = re.compile(r"[a-z][a-z0-9_-]{0,39}")
 
@@ -97,6 +98,8 @@ def read_recipe(document: Any) -> RecipeDocument:
     blank = reading.choice_at(
         doc, "blank", "", choices=("none", "reagent", "indicator"), default="none"
     ) if doc.get("blank") is not None else "none"  # fmt: skip
+    if end_point.takes_curve:
+        _check_curve(doc, end_point, blank)
     expansion = reading.quantity_at(doc, "liquid_expansion", "", unit="1/K")
     if titrant.medium != "water" and expansion is None:
         says = f"liquid_expansion must be stated: the titrant's medium is {titrant.medium}."
@@ -175,6 +178,25 @@ def _on_curve(end_point: Mapping[str, Any]) -> EndPoint:
             says = f"end_point.{key} is for a curve: name the method that is taken on it."
             raise Unacceptable(says, field="end_point.method", example=CURVE_METHODS[-1])
     return EndPoint("potentiometric", None, method, system, flask)
+
+
+def _check_curve(doc: Mapping[str, Any], end_point: EndPoint, blank: str) -> None:
+    """Refuse before the work what no curve could be evaluated with."""
+    standard = doc.get("standard")
+    meant = _STANDARDS.get(end_point.system or "")
+    if meant is not None and standard != meant:
+        says = f"end_point.system {end_point.system} is a titration of {meant}, not of {standard}."
+        raise Unacceptable(says, field="end_point.system", example="none")
+    unknown = end_point.system == "none" or (
+        end_point.system is None and standard not in _STANDARDS.values()
+    )
+    if end_point.method == "model fit" and unknown:
+        says = "The model fit needs a reaction that it knows: KHP, TRIS or Na2CO3 as the standard."
+        raise Unacceptable(says, field="end_point.method", example="first derivative")
+    if blank == "indicator" or doc.get("excess") is not None:
+        field = "blank" if blank == "indicator" else "excess"
+        says = f"{field}: on a curve there is no colour to overshoot; it has none of this kind."
+        raise Unacceptable(says, field=field)
 
 
 def _words(end_point: EndPoint) -> str:

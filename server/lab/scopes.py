@@ -21,7 +21,7 @@ class Scope(StrEnum):
 SAYS: dict[Scope, str] = {
     Scope.LOOK_UP: "read bottles: state, number, date",
     Scope.USES: "write down what a bottle was used for",
-    Scope.EXPORT: "read the lists and uses as files",
+    Scope.EXPORT: "read lists, uses and certificates as files",
 }
 
 

@@ -161,7 +161,7 @@ class EvaluationFact:
 
 @dataclass(frozen=True, slots=True)
 class SignatureFact:
-    """A signature on the sheet; ``reasons`` a mapping (measured) or a list (countersigned)."""
+    """A signature on the sheet; ``reasons`` as ``server.lab.signing`` reads them."""
 
     id: str
     person_id: str
@@ -173,6 +173,26 @@ class SignatureFact:
     signed_digest: str
     reasons: Any
     remark: str | None
+
+
+@dataclass(frozen=True, slots=True)
+class RowRemark:
+    """A countersigner's remark on one row; replicate 0 is the sheet."""
+
+    replicate: int
+    slot: str
+    text: str
+    segment: int = 1
+
+
+@dataclass(frozen=True, slots=True)
+class ReturnFact:
+    """A sheet sent back: when, by whom, with which remark and which remarks on rows."""
+
+    at: datetime
+    by: str
+    remark: str
+    rows: tuple[RowRemark, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -188,7 +208,10 @@ class CertificateFact:
 
 @dataclass(frozen=True, slots=True)
 class SheetFacts:
-    """A bench sheet and all it rests on. ``signatures`` oldest first; ``entries`` by position."""
+    """A bench sheet and all it rests on.
+
+    ``signatures`` and ``returns`` stand oldest first; ``entries`` by position.
+    """
 
     id: str
     number: str
@@ -210,6 +233,7 @@ class SheetFacts:
     evaluation: EvaluationFact | None
     laboratory: LaboratoryFact
     last_certificate: CertificateFact | None
+    returns: tuple[ReturnFact, ...] = ()
 
     @property
     def state(self) -> str:

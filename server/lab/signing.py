@@ -1,7 +1,7 @@
 """What a signature is bound to: a digest that belongs to one record and no other."""
 
-from collections.abc import Sequence
-from typing import Protocol
+from collections.abc import Mapping, Sequence
+from typing import Any, Protocol
 
 from server.lab.canonical import canonical, digest
 from server.lab.ink import WrittenEntry, ink_digest
@@ -50,3 +50,22 @@ def digest_to_sign(signature: SignatureFact, facts: Inked, snapshot_digest: str)
 def signature_holds(signature: SignatureFact, facts: Inked, snapshot_digest: str) -> bool:
     """Say whether a signature still belongs to this sheet, this evaluation and what is written."""
     return signature.signed_digest == digest_to_sign(signature, facts, snapshot_digest)
+
+
+def countersign_reasons(accepted: Sequence[str], trail_seen: int) -> dict[str, Any]:
+    """Return what a countersignature notes: the findings accepted by name, the trail's last act."""
+    return {"accepted": list(accepted), "trail_seen": trail_seen}
+
+
+def accepted_findings(signature: SignatureFact) -> tuple[str, ...]:
+    """Return the findings that a countersignature accepts; earlier releases kept the list alone."""
+    reasons = signature.reasons
+    return tuple(reasons.get("accepted", ()) if isinstance(reasons, Mapping) else reasons)
+
+
+def trail_seen(signature: SignatureFact) -> int | None:
+    """Return up to which act the countersigner had read the sheet's trail; None if not noted."""
+    reasons = signature.reasons
+    if signature.meaning != COUNTERSIGNED or not isinstance(reasons, Mapping):
+        return None
+    return reasons.get("trail_seen")

@@ -1,7 +1,7 @@
 """The trail: append-only rows, each chained to the one before by SHA-256."""
 
 import json
-from collections.abc import Generator, Mapping
+from collections.abc import Generator, Iterable, Mapping
 from contextlib import closing
 from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
@@ -87,21 +87,35 @@ def head(session: Session) -> tuple[int, str]:
     return last.seq, last.hash
 
 
-def hash_of(row: Any, *, at: str | None = None) -> str:
-    """Return the hash that a row must carry: SHA-256 over the previous hash and all it says.
+def hash_of(row: Any) -> str:
+    """Return the hash that a row must carry: SHA-256 over the previous hash and all it says."""
+    said = {name: getattr(row, name) for name in _HASHED}
+    return _hash_said(row.previous_hash, row.at.isoformat(), *said.values())
 
-    ``at`` is the row's instant in ISO 8601, where the caller has it as text already. What is hashed
-    is the canonical text of the row's columns by name, spelled out here: a check makes it for
-    every row there is, and a general writer of JSON takes most of its time.
+
+#: What is hashed beside the previous hash and the instant.
+_HASHED = (
+    "act", "body", "kind", "person_id", "person_name", "seq", "thing_id", "thing_name", "why",
+    "zone",
+)  # fmt: skip
+
+
+def _hash_said(  # noqa: PLR0913, PLR0917 - the columns of a row
+    previous_hash: str, at: str, act: str, body: str, kind: str, person_id: str | None,
+    person_name: str, seq: int, thing_id: str, thing_name: str, why: str | None, zone: str,
+) -> str:  # fmt: skip
+    """Return the hash of what a row says.
+
+    What is hashed is the canonical text of the columns by name, spelled out here: a check makes it
+    for every row there is, and a general writer of JSON would take most of its time.
     """
-    person = "null" if row.person_id is None else quoted(row.person_id)
-    why = "null" if row.why is None else quoted(row.why)
+    person = "null" if person_id is None else quoted(person_id)
+    reason = "null" if why is None else quoted(why)
     return digest(
-        f'{row.previous_hash}\n{{"act":{quoted(row.act)},"at":"{at or row.at.isoformat()}",'
-        f'"body":{quoted(row.body)},"kind":{quoted(row.kind)},"person_id":{person},'
-        f'"person_name":{quoted(row.person_name)},"seq":{row.seq},'
-        f'"thing_id":{quoted(row.thing_id)},"thing_name":{quoted(row.thing_name)},'
-        f'"why":{why},"zone":{quoted(row.zone)}}}'
+        f'{previous_hash}\n{{"act":{quoted(act)},"at":"{at}","body":{quoted(body)},'
+        f'"kind":{quoted(kind)},"person_id":{person},"person_name":{quoted(person_name)},'
+        f'"seq":{seq},"thing_id":{quoted(thing_id)},"thing_name":{quoted(thing_name)},'
+        f'"why":{reason},"zone":{quoted(zone)}}}'
     )
 
 
@@ -166,13 +180,8 @@ def read_chain(
             if problem is not None:
                 raise DoesNotHold(problem)
             seq, last_hash = row.seq, row.hash
-            for number, anchor in anchors.pop(seq, ()):
-                if anchor != last_hash:
-                    says = f"Certificate {number} is anchored to another row {seq}."
-                    raise DoesNotHold(says)
-            if known.pop(seq, last_hash) != last_hash:
-                says = f"Row {seq} is not the one whose hash was kept elsewhere."
-                raise DoesNotHold(says)
+            if seq in anchors or seq in known:
+                _check_anchors(anchors.pop(seq, ()), known.pop(seq, last_hash), (seq, last_hash))
             yield row
     standing = session.get(TrailHead, 1)
     if standing is None or (standing.seq, standing.hash) != (seq, last_hash):
@@ -186,9 +195,23 @@ def read_chain(
         raise DoesNotHold(says)
 
 
+def _check_anchors(
+    certificates: Iterable[tuple[str, str]], kept: str, row: tuple[int, str]
+) -> None:
+    seq, row_hash = row
+    for number, anchor in certificates:
+        if anchor != row_hash:
+            says = f"Certificate {number} is anchored to another row {seq}."
+            raise DoesNotHold(says)
+    if kept != row_hash:
+        says = f"Row {seq} is not the one whose hash was kept elsewhere."
+        raise DoesNotHold(says)
+
+
 def _rows(session: Session, after: int) -> Generator[Any, None, None]:
-    columns = [one for one in TrailRow.__table__.columns if one.name != "at"]
-    rows = select(type_coerce(TrailRow.at, BigInteger).label("at"), *columns)
+    hashed = [getattr(TrailRow, name) for name in _HASHED]
+    at = type_coerce(TrailRow.at, BigInteger).label("at")
+    rows = select(TrailRow.previous_hash, TrailRow.hash, at, *hashed)
     ordered = rows.where(TrailRow.seq > after).order_by(TrailRow.seq)
     yield from fetched(session, ordered, f"A row of the trail after row {after}")
 
@@ -201,7 +224,8 @@ def fetched(session: Session, rows: Executable, what: str) -> Generator[Any, Non
     """
     try:
         with session.connection().execute(rows, execution_options=_STREAMED) as result:
-            yield from result
+            for rows_at_once in result.partitions():
+                yield from rows_at_once
     except (DBAPIError, ValueError, OverflowError, TypeError) as problem:
         says = f"{what} cannot be read: it is damaged."
         raise DoesNotHold(says) from problem
@@ -229,17 +253,21 @@ def _check_documents(session: Session, issued: Mapping[str, str | None], after: 
                 raise DoesNotHold(says)
 
 
-def _problem_of(row: Any, seq: int, last_hash: str) -> str | None:
-    if row.seq != seq + 1:
-        return f"Row {seq + 1} is missing."
-    if row.previous_hash != last_hash:
-        return f"Row {row.seq} does not follow from row {seq}."
+def _problem_of(row: Any, before: int, last_hash: str) -> str | None:
+    """Return what does not hold of a row as ``_rows`` reads it."""
+    previous_hash, row_hash, microseconds, *said = row
+    seq = row.seq
+    if seq != before + 1:
+        return f"Row {before + 1} is missing."
+    if previous_hash != last_hash:
+        return f"Row {seq} does not follow from row {before}."
     try:
-        at = (_EPOCH + timedelta(microseconds=row.at)).isoformat()
-        held = row.hash == hash_of(row, at=at)
+        at = (_EPOCH + timedelta(0, 0, microseconds)).isoformat()
+        if row_hash == _hash_said(previous_hash, at, *said):
+            return None
     except (TypeError, ValueError, OverflowError):
-        held = False
-    return None if held else f"Row {row.seq} was changed after it was written."
+        pass
+    return f"Row {seq} was changed after it was written."
 
 
 def _head_seq(session: Session) -> int:

@@ -156,11 +156,11 @@ def _state_says(session: Session, kept: KeptCertificate, zone: str) -> str:
     """Return since when, and where it was pulled why, a certificate stands no more."""
     if kept.replaced_by is not None:
         later = certificate_by_number(session, kept.replaced_by)
-        return f"Since {signed_words(later.row.issued_at, zone)}." if later else ""
+        return f"Since {moment_words(later.row.issued_at, zone)}." if later else ""
     pull = last_pull(session, kept.row.lot_id) if kept.pulled else None
     if pull is None or pull.confirmed_at is None:
         return ""
-    return f"Since {signed_words(pull.confirmed_at, zone)}: {pull.reason}"
+    return f"Since {moment_words(pull.confirmed_at, zone)}: {pull.reason}"
 
 
 def _files(number: str, *, has_dcc: bool) -> Iterator[CertificateFile]:

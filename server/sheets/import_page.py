@@ -1,5 +1,6 @@
 """A calibration from outside: the values of its file, for a person to confirm."""
 
+from collections.abc import Mapping
 from dataclasses import asdict, dataclass
 from datetime import datetime
 
@@ -154,8 +155,19 @@ def _filled(found: ReadCalibration) -> dict[str, str]:
     for key, value in found.fragment.items():
         if key == "error_table":
             filled[key] = "\n".join(f"{at}  {added}" for at, added in value)
-        elif isinstance(value, dict) and value.get("u"):
-            filled |= {f"{key}_statement": "u", f"{key}_bound": str(value["u"])}
+        elif isinstance(value, dict):
+            filled |= _quantity(key, value)
+    return filled
+
+
+def _quantity(key: str, stated: Mapping[str, str]) -> dict[str, str]:
+    """Return a quantity's fields: its value, and how its uncertainty is stated."""
+    filled = {f"{key}_value": stated["value"]} if stated.get("value") else {}
+    for statement in ("u", "U"):
+        if stated.get(statement):
+            filled |= {f"{key}_statement": statement, f"{key}_bound": stated[statement]}
+    if stated.get("k"):
+        filled[f"{key}_k"] = stated["k"]
     return filled
 
 

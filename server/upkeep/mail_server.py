@@ -78,9 +78,13 @@ def send_letter(server: MailServer, *, to: str, subject: str, body: str) -> None
 
 def _connected(server: MailServer) -> smtplib.SMTP:
     context = ssl.create_default_context()
+    # greeting with the sender's domain: this machine's own full name may take long to find out
+    name = server.sender.rpartition("@")[2]
     if server.tls:
-        return smtplib.SMTP_SSL(server.host, server.port, timeout=_TIMEOUT_S, context=context)
-    line = smtplib.SMTP(server.host, server.port, timeout=_TIMEOUT_S)
+        return smtplib.SMTP_SSL(
+            server.host, server.port, local_hostname=name, timeout=_TIMEOUT_S, context=context
+        )
+    line = smtplib.SMTP(server.host, server.port, local_hostname=name, timeout=_TIMEOUT_S)
     line.ehlo()
     if line.has_extn("starttls"):
         line.starttls(context=context)

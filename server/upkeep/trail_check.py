@@ -27,7 +27,7 @@ from server.records.transaction import Transactions
 
 _EPOCH = datetime(1970, 1, 1, tzinfo=UTC)
 #: Sheets whose rows are held in memory together.
-_TOGETHER = 20
+_TOGETHER = 100
 _KNOWN = re.compile(r"^Row ([0-9]{1,18}): ([0-9a-fA-F]{64})\s*$", re.MULTILINE)
 _STATES = (USED_UP, PROPOSED, PULLED)
 

@@ -26,6 +26,12 @@ ROUTES: Mapping[str, Scope] = MappingProxyType(
         "GET /api/bottles/{code}/uses": Scope.EXPORT,
         "GET /api/lots/{code}/uses": Scope.EXPORT,
         "GET /lots/{code}/uses.csv": Scope.EXPORT,
+        "GET /api/certificates/{number}": Scope.EXPORT,
+        "GET /api/certificates/{number}.pdf": Scope.EXPORT,
+        "GET /api/certificates/{number}.json": Scope.EXPORT,
+        "GET /api/certificates/{number}.jws": Scope.EXPORT,
+        "GET /api/certificates/{number}.dcc.xml": Scope.EXPORT,
+        "GET /api/certificates/{number}.bench-record.json": Scope.EXPORT,
         "GET /shelf/list.csv": Scope.EXPORT,
         "GET /lots/list.csv": Scope.EXPORT,
         "GET /stores/standard-lots/list.csv": Scope.EXPORT,
@@ -74,5 +80,5 @@ def _scope_of(request: Request) -> Scope | None:
 
 
 _PATTERNS: Mapping[str, re.Pattern[str]] = MappingProxyType(
-    {pattern: re.compile(re.sub(r"\{\w+\}", "[^/]+", pattern)) for pattern in ROUTES}
+    {pattern: re.compile(re.sub(r"\\{\w+\\}", "[^/]+", re.escape(pattern))) for pattern in ROUTES}
 )

@@ -112,8 +112,10 @@ def refuse(request: Request, refusal: Refusal) -> Response:
         return problem_json(answer, refusal.says, more=more, headers=headers)
     if isinstance(refusal, NotSignedIn):
         return show_sign_in(request, refusal, status=answer.status, headers=headers)
-    says = f"{refusal.says} For example: {refusal.example}." if refusal.example else refusal.says
     nearest = refusal.shown.get("nearest", ())
+    says = refusal.says
+    if refusal.example and not nearest:
+        says = f"{says} For example: {refusal.example}."
     return show_problem(request, says, status=answer.status, headers=headers, nearest=nearest)
 
 

@@ -9,9 +9,9 @@ pytestmark = pytest.mark.browser
 WIDTHS = {390: 844, 820: 1180, 1440: 900}
 PAGES = {
     None: ("/", "/sign-in", "/about"),
-    "ida": ("/bench", "/me", "/countersign", "/stores", "/instruments", "/trail", "/lots/new"),
+    "ida": ("/bench", "/me", "/countersign", "/stores", "/instruments", "/trail", "/lots/new", "/labels"),
     "nils": ("/stores/recipes/new", "/stores/standard-lots/new", "/instruments/new"),
-    "runa": ("/people",),
+    "runa": ("/people", "/laboratory"),
 }
 
 
@@ -21,7 +21,7 @@ def test_page_fits_its_window_and_keeps_the_policy(desks, laboratory, who, width
     desk = desks(who, width=width, height=WIDTHS[width])
     paths = [*PAGES[who], f"/b/{laboratory.bottle}"]
     if who == "ida":
-        paths.append(f"/bench/begin?lot={laboratory.lot}")
+        paths += [f"/bench/begin?lot={laboratory.lot}", f"/labels?thing={laboratory.lot}"]
     for path in paths:
         answer = desk.page.goto(path)
         assert answer.status == 200, path

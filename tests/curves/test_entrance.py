@@ -162,16 +162,24 @@ def test_circumstances_that_cannot_be_are_refused_by_name(more, says):
     assert says in caught.value.says
 
 
+def by_drops(end_mL, rng):
+    """One drop of 0.05 mL after the other, as a drop counter gives them."""
+    return np.round(np.arange(0, 1.22 * end_mL, 0.05) + 0.05 * float(rng.uniform()), 4)
+
+
 @pytest.mark.slow
 @pytest.mark.parametrize("name", list(SYSTEMS))
-@pytest.mark.parametrize("noise", [0.005, 0.02])
-def test_every_method_covers_over_noisy_repeats(name, noise, usual, volumes_by_hand):
+@pytest.mark.parametrize(
+    ("noise", "spacing"), [(0.005, "by hand"), (0.02, "by hand"), (0.01, "by drops")]
+)
+def test_every_method_covers_over_noisy_repeats(name, noise, spacing, usual, volumes_by_hand):
     truth = usual[name]
     rng = np.random.default_rng(21)
     known = Circumstances(system=SYSTEMS[name], flask_volume_mL=truth.V0, amount_mmol=truth.n)
+    volumes = {"by hand": volumes_by_hand, "by drops": by_drops}[spacing]
     covered = {one: [] for one in METHODS}
     for _ in range(200):
-        V = volumes_by_hand(truth.effective_mL, rng)
+        V = volumes(truth.effective_mL, rng)
         y = np.round(truth.pH(V) + rng.normal(0, noise, V.size), 3)
         for found in analysed(Points("pH", tuple(V), tuple(y)), known).outcomes:
             if isinstance(found, EndPoint):

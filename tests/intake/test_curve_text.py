@@ -156,7 +156,7 @@ def test_curve_text_remembered_columns_count_only_where_the_same_header_comes(he
     if taken:
         read = read_curve_text(table(header=header, rows=rows), asked=asked)
         assert (read.volume_mL, read.mapping) == (VOLUMES, kept.mapping)
-        assert "Columns as they were set for this instrument." in read.says
+        assert "Columns as in this instrument's last file." in read.says
         return
     rows = list(zip(VOLUMES, READINGS, map(str, range(8)), strict=True))
     if header is not None:  # nothing in it names a volume
@@ -175,6 +175,7 @@ def test_curve_text_bad_row_is_pointed_at_and_can_be_left_out_by_hand():
     with pytest.raises(Unacceptable) as caught:
         read_curve_text(text)
     assert (caught.value.shown["row"], caught.value.shown["column"]) == (6, 2)
+    assert caught.value.shown["mapping"]["reading"] == 1
     assert caught.value.shown["table"]["rows"][0] == {"row": 1, "cells": ["0.00", "4.01"]}
     read = read_curve_text(text, asked=Asked(leave_out=(6,)))
     assert len(read.volume_mL) == len(VOLUMES) - 1
@@ -215,6 +216,8 @@ def test_curve_text_with_too_many_rows_is_refused():
         ({"volume": 0, "reading": 1, "kind": "redox"}, "mapping.kind"),
         ({"volume": 0, "reading": 1, "kind": "pH", "reading_unit": "mV"}, "mapping.reading_unit"),
         ({"volume": 0, "reading": 1, "kind": "pH", "colour": 1}, "mapping.colour"),
+        ({"volume": 0, "reading": 1, "kind": "pH", "time_unit": []}, "mapping.time_unit"),
+        ({"volume": 0, "reading": 1, "kind": ["pH"]}, "mapping.kind"),
     ],
 )
 def test_column_mapping_that_cannot_be_is_refused_by_its_field(document, field):
@@ -338,3 +341,21 @@ def test_curve_text_of_any_kind_is_read_or_refused_in_words(seed):
         else:
             said, points = "", len(read.volume_mL)
         assert said.endswith(".") or points >= 6
+
+
+@pytest.mark.parametrize(
+    ("cell", "says"),
+    [
+        ("77", "Row 6, column 2: 77 pH is not possible on a curve (-3 to 17 pH)."),
+        ("1e99", "Row 6, column 2: “1e99” is too large or too small to be a reading."),
+        ("1e-60", "Row 6, column 2: “1e-60” is too large or too small to be a reading."),
+    ],
+)
+def test_curve_text_reading_that_cannot_be_is_named_and_can_be_left_out(cell, says):
+    text = table(header="mL;pH").replace("20.00;6.20", f"20.00;{cell}")
+    assert refusal(text) == says
+    assert len(read_curve_text(text, asked=Asked(leave_out=(6,))).rows) == len(VOLUMES) - 1
+
+
+def test_curve_text_volume_below_zero_is_refused():
+    assert "-0.10 mL is not possible" in refusal(table().replace("0.00;", "-0.10;", 1))

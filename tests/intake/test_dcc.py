@@ -10,8 +10,9 @@ import pytest
 
 from server.evaluation.entrance import evaluate
 from server.intake.dcc import read_dcc
-from server.intake.dcc_balance import balance_proposal, balance_tables
+from server.intake.dcc_errors import TEMPERATURE, error_proposal, error_tables
 from server.intake.dcc_units import unit_of
+from server.intake.dcc_volumes import burette_proposal, volume_proposal, volume_tables
 from server.lab.papers import read_calibration
 from server.lab.refusal import Unacceptable
 
@@ -148,8 +149,8 @@ def test_what_nobody_knows_is_shown_and_nothing_is_dropped():
 
 def test_balance_takes_the_opposite_of_the_error():
     found = read_dcc(certificate())
-    assert balance_tables(found.tables) == (0,)
-    proposal = balance_proposal(found.tables[0])
+    assert error_tables(found.tables) == (0,)
+    proposal = error_proposal(found.tables[0])
     assert proposal.fragment["error_table"] == [
         ["0", "0"], ["50.0002", "-0.00018"], ["100.0004", "-0.00037"], ["200.0008", "-0.00086"],
     ]  # fmt: skip
@@ -158,7 +159,7 @@ def test_balance_takes_the_opposite_of_the_error():
 
 
 def test_imported_balance_corrects_a_mass():
-    proposal = balance_proposal(read_dcc(certificate()).tables[0])
+    proposal = error_proposal(read_dcc(certificate()).tables[0])
     linearity = {"unit": "g", "half_width": "0.0001", "shape": "rectangular"}
     calibration = read_calibration("balance", {"linearity": linearity, **proposal.fragment})
     record = {
@@ -190,7 +191,7 @@ def test_uncertainty_is_read_in_its_old_and_new_spelling(uncertainty):
     columns = column("basic_nominalValue", "50 100 200", r"\gram") + column(
         "basic_measurementError_error", "0.0 -0.10 0.20", r"\milli\gram", uncertainty
     )
-    proposal = balance_proposal(read_dcc(certificate(columns)).tables[0])
+    proposal = error_proposal(read_dcc(certificate(columns)).tables[0])
     assert [row[3] for row in proposal.rows] == ["0.00005", "0.00008", "0.00015"]
     # the zeros that were printed stay: 0.0 mg is 0.0000 g, −0.10 mg is −0.00010 g
     assert [row[2] for row in proposal.rows] == ["0.0000", "0.00010", "-0.00020"]
@@ -220,8 +221,8 @@ def test_single_values_and_hybrids_are_read():
     assert found.tables[0].columns[0].amounts[0].value == "0.080"
     listed = found.tables[1]
     assert listed.columns[0].others[0][1].value == "0.1000001"
-    assert balance_tables(found.tables) == (1,)
-    assert balance_proposal(listed).rows == (
+    assert error_tables(found.tables) == (1,)
+    assert error_proposal(listed).rows == (
         ("50.0000", "0.0002", "-0.0002", "0.0002"), ("100.0001", "0.0001", "-0.0001", "0.0002"),
     )  # fmt: skip
 
@@ -271,19 +272,74 @@ def test_list_that_makes_no_error_table_is_refused(change, says):
     assert change[0] in text
     data = text.replace(*change).encode()
     if says is None:  # two of the three columns are enough
-        assert len(balance_proposal(read_dcc(data).tables[0]).rows) == 3
+        assert len(error_proposal(read_dcc(data).tables[0]).rows) == 3
         return
     with pytest.raises(Unacceptable, match=says):
-        balance_proposal(read_dcc(data).tables[0])
+        error_proposal(read_dcc(data).tables[0])
 
 
 def test_list_without_loads_or_errors_is_refused():
     only = column("basic_measurementError", "0.1 0.2", r"\milli\gram")
     with pytest.raises(Unacceptable, match="without the loads"):
-        balance_proposal(read_dcc(certificate(only)).tables[0])
+        error_proposal(read_dcc(certificate(only)).tables[0])
     loads = column("basic_nominalValue", "1 2", r"\gram")
     with pytest.raises(Unacceptable, match="neither errors nor"):
-        balance_proposal(read_dcc(certificate(loads)).tables[0])
+        error_proposal(read_dcc(certificate(loads)).tables[0])
+
+
+def test_thermometer_takes_the_opposite_of_the_error_and_no_zero_is_made_up():
+    columns = column("basic_referenceValue", "9.97 20.03 30.10", r"\degreecelsius") + column(
+        "basic_measuredValue", "10.0 20.1 30.2", r"\degreecelsius", STANDARD
+    )
+    (table,) = read_dcc(certificate(columns)).tables
+    assert error_tables((table,)) == ()
+    assert error_tables((table,), TEMPERATURE) == (0,)
+    proposal = error_proposal(table, TEMPERATURE)
+    assert proposal.fragment == {
+        "error_table": [["10.0", "-0.03"], ["20.1", "-0.07"], ["30.2", "-0.10"]],
+        "reading": {"unit": "Cel", "u": "0.15"},
+    }
+    assert read_calibration("thermometer", proposal.fragment) == proposal.fragment
+
+
+def test_burette_adds_what_was_delivered_beyond_the_reading():
+    columns = column("basic_nominalValue", "5 10 20", r"\milli\litre") + column(
+        "basic_measuredValue", "5003.1 10004.0 19990.0", r"\micro\litre",
+        UNCERTAIN.replace("0.10 0.16 0.30", "3.0 4.0 6.0"),
+    )  # fmt: skip
+    (table,) = read_dcc(certificate(columns)).tables
+    assert volume_tables((table,), several=True) == (0,)
+    assert volume_tables((table,), several=False) == ()
+    found = burette_proposal(table)
+    assert found.fragment == {
+        "error_table": [["0", "0"], ["5", "0.0031"], ["10", "0.0040"], ["20", "-0.0100"]],
+        "delivery": {"unit": "mL", "u": "0.003"},
+    }
+    assert "A reading of 20 mL is then taken as 19.9900 mL." in found.says
+    with pytest.raises(Unacceptable, match="beside the readings"):
+        burette_proposal(read_dcc(certificate()).tables[0])
+
+
+@pytest.mark.parametrize(
+    ("uncertainty", "stated"),
+    [
+        (UNCERTAIN.replace("0.10 0.16 0.30", "0.0040"), {"U": "0.0040", "k": "2"}),
+        (STANDARD.replace("0.05 0.08 0.15", "0.0020"), {"u": "0.002"}),
+        ("", {}),
+    ],
+)
+@pytest.mark.parametrize(("kind", "key"), [("pipette", "delivery"), ("flask", "volume")])
+def test_pipette_and_flask_take_their_one_volume(uncertainty, stated, kind, key):
+    columns = column("basic_nominalValue", "10", r"\milli\litre") + column(
+        "basic_measuredValue", "10.0030", r"\milli\litre", uncertainty
+    )
+    (table,) = read_dcc(certificate(columns)).tables
+    assert volume_tables((table,), several=False) == (0,)
+    found = volume_proposal(table, key)
+    assert found.fragment == {key: {"value": "10.0030", "unit": "mL", **stated}}
+    assert any("state it yourself" in one for one in found.says) is not bool(stated)
+    if stated:
+        assert read_calibration(kind, found.fragment)[key]["value"] == "10.0030"
 
 
 def entity_bomb():

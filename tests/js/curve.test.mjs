@@ -66,7 +66,7 @@ test("a refusal tells which row can be left out, and what else helps", () => {
   assert.equal(remedyOf({ field: "file", shown: { row: 12, column: 2 } }).row, 12);
   assert.equal(remedyOf({ field: "drop_mL" }).drop, true);
   assert.equal(remedyOf({ field: "sheet" }).sheet, true);
-  assert.deepEqual(remedyOf({}), { row: null, table: null, drop: false, sheet: false });
+  assert.deepEqual(remedyOf({}), { row: null, table: null, mapping: null, drop: false, sheet: false });
 });
 
 test("a file that is too large is not sent", () => {

@@ -131,3 +131,46 @@ def test_recipe_no_object_is_refused(document):
 
 def test_recipe_read_from_json_text_is_the_same():
     assert read_recipe(json.loads(json.dumps(SMALLEST))) == read_recipe(SMALLEST)
+
+
+CURVE = {"mode": "potentiometric", "method": "model fit"}
+
+
+def by_probe(**end_point):
+    return {**SMALLEST, "blank": "none", "end_point": {**CURVE, **end_point}}
+
+
+def test_recipe_with_a_method_takes_a_curve():
+    recipe = read_recipe(by_probe(system="khp-naoh", flask_volume_mL="50"))
+    told = recipe.end_point
+    assert told.takes_curve
+    assert (told.method, told.system, told.flask_volume_mL) == ("model fit", "khp-naoh", "50")
+    assert recipe.valid_for == "potentiometric, model fit"
+
+
+def test_recipe_without_a_method_takes_burette_readings_as_before():
+    recipe = read_recipe({**SMALLEST, "end_point": {"mode": "potentiometric"}})
+    assert not recipe.end_point.takes_curve
+    assert recipe.valid_for == "potentiometric"
+
+
+@pytest.mark.parametrize(
+    ("document", "field"),
+    [
+        (by_probe(method="by eye"), "end_point.method"),
+        (by_probe(system="water"), "end_point.system"),
+        (by_probe(system="tris-hcl"), "end_point.system"),
+        (by_probe(system="none"), "end_point.method"),
+        (by_probe(flask_volume_mL="0"), "end_point.flask_volume_mL"),
+        (by_probe(flask_volume_mL=50), "end_point.flask_volume_mL"),
+        (by_probe(indicator="phenolphthalein", method="", system="khp-naoh"), "end_point.method"),
+        (by_probe(mode="visual", indicator="phenolphthalein"), "end_point.method"),
+        ({**by_probe(), "blank": "indicator"}, "blank"),
+        ({**by_probe(), "excess": {"value": "0.02", "unit": "mL", "u": "0.01"}}, "excess"),
+        ({**by_probe(), "standard": "NaCl"}, "end_point.method"),
+    ],
+)
+def test_recipe_for_a_curve_that_cannot_be_names_the_field(document, field):
+    with pytest.raises(Unacceptable) as refused:
+        read_recipe(document)
+    assert refused.value.field == field

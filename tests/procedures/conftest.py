@@ -4,7 +4,7 @@ import os
 import shutil
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field, replace
-from datetime import UTC, datetime
+from datetime import UTC, datetime, timedelta
 from pathlib import Path
 from typing import Any
 from uuid import uuid4
@@ -363,3 +363,74 @@ def shared_lab(fresh_sqlite: Callable[[], Database]) -> Iterator[Laboratory]:
     found = Transactions(fresh_sqlite())
     yield set_up(found, lambda: START)
     found.close()
+
+
+def certify_at_start(built: Laboratory, transactions: Transactions) -> Laboratory:
+    """Return the small laboratory with the certificate of its lot, issued five minutes later."""
+
+    class Moving:
+        at = START
+
+        def __call__(self) -> datetime:
+            return self.at
+
+        def move(self, **span: float) -> datetime:
+            self.at += timedelta(**span)
+            return self.at
+
+    lab = replace(built, transactions=transactions, clock=Moving())
+    lab.certify()
+    return lab
+
+
+@pytest.fixture(scope="session")
+def certified_file(
+    lab_in_file: tuple[Path, Laboratory], tmp_path_factory: pytest.TempPathFactory
+) -> tuple[Path, Laboratory]:
+    """The small laboratory with a certificate, in a SQLite file to be copied."""
+    source, built = lab_in_file
+    path = tmp_path_factory.mktemp("certified") / "laboratory.sqlite"
+    shutil.copy(source, path)
+    database = open_database(sqlite_url(path))
+    transactions = Transactions(database)
+    certify_at_start(built, transactions)
+    with database.engine.connect() as connection:
+        connection.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)")
+    transactions.close()
+    return path, built
+
+
+@pytest.fixture(scope="session")
+def certified_on_server(
+    lab_on_server: tuple[str, Laboratory],
+) -> Iterator[tuple[str, Laboratory]]:
+    """The small laboratory with a certificate, in a PostgreSQL database to be copied."""
+    source, built = lab_on_server
+    name = f"certified_{uuid4().hex[:12]}"
+    on_server(f'CREATE DATABASE "{name}" TEMPLATE "{source}"')
+    transactions = Transactions(open_database(address_of(name)))
+    certify_at_start(built, transactions)
+    transactions.close()
+    yield name, built
+    on_server(f'DROP DATABASE "{name}" WITH (FORCE)')
+
+
+@pytest.fixture(params=["sqlite", pytest.param("postgres", marks=pytest.mark.postgres)])
+def certified(request: pytest.FixtureRequest, tmp_path: Path, clock: Any) -> Iterator[Laboratory]:
+    """The small laboratory with a certificate of an hour ago, on each engine."""
+    clock.move(hours=1)
+    if request.param == "sqlite":
+        source, built = request.getfixturevalue("certified_file")
+        path = tmp_path / "laboratory.sqlite"
+        shutil.copy(source, path)
+        transactions = Transactions(open_database(sqlite_url(path)))
+        yield replace(built, transactions=transactions, clock=clock)
+        transactions.close()
+        return
+    template, built = request.getfixturevalue("certified_on_server")
+    name = f"test_{uuid4().hex[:12]}"
+    on_server(f'CREATE DATABASE "{name}" TEMPLATE "{template}"')
+    transactions = Transactions(open_database(address_of(name)))
+    yield replace(built, transactions=transactions, clock=clock)
+    transactions.close()
+    on_server(f'DROP DATABASE "{name}" WITH (FORCE)')

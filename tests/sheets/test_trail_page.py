@@ -1,10 +1,15 @@
 """The trail: filters, pages, and a badge that tells the truth."""
 
+import hashlib
+import json
+
 import pytest
 import sqlalchemy as sa
 
 from server.lab.refusal import NotSignedIn, Unacceptable
 from server.records.tables.trail import TrailRow
+from server.reports.trail_record import trail_json_lines
+from server.sheets.trail_list import open_trail_record
 from server.sheets.trail_page import LINES, open_trail
 
 
@@ -61,6 +66,48 @@ def test_trail_correction_tells_what_was_struck_and_why(demo) -> None:
     assert line.why == "misread by a whole millilitre"
     assert line.details.startswith("replicate 3, burette end: ")
     assert "an earlier value struck through (misread" in line.details
+
+
+def test_trail_words_are_looked_for_in_act_reason_details_and_names(demo) -> None:
+    def found(words: str) -> set[str]:
+        return {line.act for line in trail(demo, words=words).lines}
+
+    assert found("misread millilitre") == {"corrected entries"}
+    assert found("COUNTERSIGNED") >= {"countersigned"}
+    assert found("ottilie certificate") >= {"issued a certificate", "countersigned"}
+    assert found("no-such-word") == set()
+    assert found("100%_") == set()
+    page = trail(demo, words="wrote entries", page=1)
+    assert page.asked == "words=wrote+entries"
+    assert page.older_url in (None, "/trail?words=wrote+entries&page=2")
+
+
+def test_trail_taken_out_whole_is_checked_by_a_few_lines_without_this_program(demo) -> None:
+    rows = demo.read(open_trail_record, who="ottilie", person="", thing="", day="")
+    before = "0" * 64
+    for line in trail_json_lines(rows).decode("utf-8").splitlines():
+        row = json.loads(line)
+        previous, named = row.pop("previous_hash"), row.pop("hash")
+        said = json.dumps(row, sort_keys=True, separators=(",", ":"), ensure_ascii=False)
+        assert previous == before
+        before = hashlib.sha256(f"{previous}\n{said}".encode()).hexdigest()
+        assert before == named
+    assert trail(demo).seal == f"Row {len(rows)}: {before}"
+
+
+def test_trail_taken_out_is_that_of_the_filter(demo) -> None:
+    rows = demo.read(open_trail_record, who="ottilie", person="", thing="S-2026-0005", day="")
+    assert {row["thing_name"] for row in rows} == {"S-2026-0005"}
+    with pytest.raises(NotSignedIn):
+        demo.read(open_trail_record, who=None, person="", thing="", day="")
+
+
+def test_trail_longer_than_a_page_checks_says_from_where_to_where(demo, monkeypatch) -> None:
+    monkeypatch.setattr("server.sheets.trail_page.MOST_CHECKED", 100)
+    page = trail(demo)
+    last = page.lines[0].seq
+    assert page.holds
+    assert f"newest 100 rows, from {last - 99} to {last}" in page.badge
 
 
 def test_trail_badge_says_that_the_chain_holds(demo) -> None:

@@ -181,6 +181,7 @@ def test_run_keeps_all_that_was_typed_and_shows_volumes_as_they_come(keeper: Any
         ({"balance_id": "none"}, "balance_id", "no such balance"),
         ({"u_weighing": "-1"}, "u_weighing", "negative"),
         ({"w2_air_pressure": "100"}, "w2_air_pressure", "Weighing 3, air pressure"),
+        ({"w2_minutes": "x"}, "w2_minutes", "Weighing 3, minutes"),
     ],
 )
 def test_odd_run_form_names_its_field_and_row(
@@ -309,6 +310,33 @@ def test_table_over_the_api_is_proposed_and_confirmed(keeper: Any) -> None:
     assert keeper.post(f"/api/instruments/{balance}/calibrations", calibration).status_code == 201
     newest = keeper.get(f"/api/instruments/{balance}").json()["calibrations"][0]
     assert newest["file"]["name"] == "B-2.csv"
+
+
+def test_certificate_of_a_pipette_fills_its_volume_and_that_of_a_balance_does_not(
+    keeper: Any,
+) -> None:
+    pipette = register(keeper, "pipette", "Pipette 1", capacity="10", serial="00417")
+    lists = re.search(rb"<dcc:list>.*</dcc:list>", DCC, re.DOTALL)
+    assert lists is not None
+    one = b"""<dcc:list><dcc:quantity refType="basic_measuredValue">
+<dcc:name><dcc:content>Delivered</dcc:content></dcc:name><si:real><si:value>10.0030</si:value>
+<si:unit>\\milli\\litre</si:unit><si:measurementUncertaintyUnivariate><si:expandedMU>
+<si:valueExpandedMU>0.0040</si:valueExpandedMU><si:coverageFactor>2</si:coverageFactor>
+<si:coverageProbability>0.95</si:coverageProbability></si:expandedMU>
+</si:measurementUncertaintyUnivariate></si:real></dcc:quantity></dcc:list>"""
+    taken = hand_over(keeper, pipette, DCC.replace(lists[0], one))
+    assert taken.status_code == 303, taken.text
+    page = keeper.get(taken.headers["location"]).text
+    held = dict(re.findall(r'<input id="(\w+)" name="\w+" type="\w+" value="([^"]*)"', page))
+    assert (held["delivery_value"], held["delivery_bound"], held["delivery_k"]) == (
+        "10.0030", "0.0040", "2",
+    )  # fmt: skip
+    assert "look whether the certificate says so" in page
+
+    other = hand_over(keeper, pipette, DCC)
+    told = keeper.get(f"/api{other.headers['location'].partition('?')[0]}").json()
+    assert told["chosen"] is None
+    assert "No list of this certificate is read by itself" in told["says"][0]
 
 
 def entity_bomb() -> bytes:

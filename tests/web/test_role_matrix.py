@@ -7,6 +7,8 @@ from uuid import uuid4
 
 import pytest
 
+from server.lab.scopes import Scope
+from server.web.bearer import ROUTES as TOKEN_ROUTES
 from server.web.wiring import ROUTERS
 
 NOBODY = str(uuid4())
@@ -18,7 +20,10 @@ EVERYBODY = frozenset(ROLES)
 
 @dataclass(frozen=True)
 class Case:
-    """Who may, what an allowed one is answered, and what is sent."""
+    """Who may, what an allowed one is answered, and what is sent.
+
+    ``token`` is what a script with an analyst's token is answered, whose scopes are all ticked.
+    """
 
     who: frozenset[str]
     status: int
@@ -26,6 +31,7 @@ class Case:
     body: dict[str, Any] | None = None
     refused: int = 403
     visitor: int = 401
+    token: int = 403
 
 
 def only(*roles: str) -> frozenset[str]:
@@ -80,10 +86,25 @@ HOLD = {"kind": "lot", "thing": "NOCODE00", "reason": "cloudy"}
 # there, 422 for a value that cannot be taken, 409 for a revision that is none.
 PAGES: dict[str, Case] = {
     "GET /": Case(EVERYBODY, 200),
-    "GET /shelf/list.csv": Case(EVERYBODY, 200),
+    "GET /shelf/list.csv": Case(EVERYBODY, 200, token=200),
     "GET /b/{code}": Case(EVERYBODY, 200),
     "GET /B/{code}": Case(EVERYBODY, 200),
     "POST /b/{code}/used-up": Case(ANALYST, 404, f"/b/{NO_CODE}/used-up"),
+    "POST /b/{code}/opened": Case(ANALYST, 404, f"/b/{NO_CODE}/opened"),
+    "POST /b/{code}/moved": Case(ANALYST, 404, f"/b/{NO_CODE}/moved", {"place": "Shelf 9"}),
+    "POST /b/{code}/uses": Case(LOGGERS, 404, f"/b/{NO_CODE}/uses", {"result_id": "W-1"}),
+    "POST /b/{code}/uses/{use_id}/strike": Case(
+        LOGGERS, 404, f"/b/{NO_CODE}/uses/{NOBODY}/strike", REASON
+    ),
+    "POST /watch": Case(SIGNED_IN, 404, None, {"kind": "bottle", "thing": NO_CODE}),
+    "POST /watch/stop": Case(SIGNED_IN, 404, None, {"kind": "bottle", "thing": NO_CODE}),
+    "GET /notices": Case(SIGNED_IN, 200),
+    "POST /notices/read": Case(SIGNED_IN, 422, None, {"until": "never"}),
+    "POST /notices/address": Case(SIGNED_IN, 422, None, {"address": "nowhere"}),
+    "POST /me/tokens": Case(
+        SIGNED_IN, 422, None, {"name": "x", "days": "1", "password": "{password}"}
+    ),
+    "POST /me/tokens/{token_id}/revoke": Case(SIGNED_IN, 404, f"/me/tokens/{NOBODY}/revoke"),
     "GET /sign-in": Case(EVERYBODY, 200),
     "POST /sign-in": Case(SIGNED_IN, 303),
     "POST /sign-out": Case(EVERYBODY, 303),
@@ -136,14 +157,14 @@ PAGES: dict[str, Case] = {
     "POST /stores/standard-lots/{standard_lot_id}/certificate": Case(
         KEEPER, 404, f"{NO_LOT}/certificate"
     ),
-    "GET /stores/standard-lots/list.csv": Case(SIGNED_IN, 200),
+    "GET /stores/standard-lots/list.csv": Case(SIGNED_IN, 200, token=200),
     "GET /files/{file_id}": Case(SIGNED_IN, 200),
     "GET /planner": Case(SIGNED_IN, 200),
     "GET /stores/recipes/new": Case(KEEPER, 200),
     "POST /stores/recipes/new": Case(KEEPER, 422),
     "GET /stores/recipes/{recipe_id}": Case(SIGNED_IN, 200),
     "GET /instruments": Case(SIGNED_IN, 200),
-    "GET /instruments/list.csv": Case(SIGNED_IN, 200),
+    "GET /instruments/list.csv": Case(SIGNED_IN, 200, token=200),
     "GET /instruments/new": Case(KEEPER, 200),
     "POST /instruments/new": Case(KEEPER, 422, None, {"kind": "teapot"}),
     "GET /instruments/{instrument_id}": Case(SIGNED_IN, 200),
@@ -175,7 +196,8 @@ PAGES: dict[str, Case] = {
     "GET /instruments/{instrument_id}/imports/{file_id}": Case(KEEPER, 200),
     "POST /instruments/{instrument_id}/imports/{file_id}": Case(KEEPER, 422),
     "GET /lots": Case(SIGNED_IN, 200),
-    "GET /lots/list.csv": Case(SIGNED_IN, 200),
+    "GET /lots/list.csv": Case(SIGNED_IN, 200, token=200),
+    "GET /lots/{code}/uses.csv": Case(SIGNED_IN, 200, "/lots/{lot}/uses.csv", token=200),
     "GET /lots/new": Case(ANALYST, 200),
     "POST /lots/new": Case(ANALYST, 422),
     "GET /lots/{code}": Case(SIGNED_IN, 200, "/lots/{lot}"),
@@ -192,7 +214,8 @@ PAGES: dict[str, Case] = {
     "POST /hold": Case(HOLDERS, 404, None, HOLD),
     "POST /release": Case(RELEASERS, 404, None, HOLD),
     "GET /trail": Case(SIGNED_IN, 200),
-    "GET /trail/list.csv": Case(SIGNED_IN, 200),
+    "GET /trail/list.csv": Case(SIGNED_IN, 200, token=200),
+    "GET /trail/list.jsonl": Case(SIGNED_IN, 200, token=200),
     "GET /people": Case(STEWARD, 200),
     "POST /people/new": Case(STEWARD, 422, None, PERSON),
     "POST /people/{person_id}/roles": Case(
@@ -210,9 +233,31 @@ API: dict[str, Case] = {
     "GET /api/session": Case(SIGNED_IN, 200),
     "DELETE /api/session": Case(SIGNED_IN, 204),
     "POST /api/session/password": Case(SIGNED_IN, 422, None, {"old": "x", "new": "short"}),
-    "GET /api/bottles/{code}": Case(EVERYBODY, 200),
+    "GET /api/bottles/{code}": Case(EVERYBODY, 200, token=200),
     "POST /api/bottles/{code}/used-up": Case(ANALYST, 404, f"/api/bottles/{NO_CODE}/used-up"),
-    "GET /api/shelf": Case(EVERYBODY, 200),
+    "POST /api/bottles/{code}/opened": Case(ANALYST, 404, f"/api/bottles/{NO_CODE}/opened"),
+    "POST /api/bottles/{code}/moved": Case(
+        ANALYST, 404, f"/api/bottles/{NO_CODE}/moved", {"place": "Shelf 9"}
+    ),
+    "GET /api/bottles/{code}/uses": Case(SIGNED_IN, 200, token=200),
+    "POST /api/bottles/{code}/uses": Case(
+        LOGGERS, 404, f"/api/bottles/{NO_CODE}/uses", {"result_id": "W-1"}, token=404
+    ),
+    "POST /api/bottles/{code}/uses/{use_id}/strike": Case(
+        LOGGERS, 404, f"/api/bottles/{NO_CODE}/uses/{NOBODY}/strike", REASON
+    ),
+    "GET /api/lots/{code}/uses": Case(SIGNED_IN, 200, "/api/lots/{lot}/uses", token=200),
+    "GET /api/notices": Case(SIGNED_IN, 200),
+    "POST /api/watches": Case(SIGNED_IN, 404, None, {"kind": "bottle", "thing": NO_CODE}),
+    "POST /api/watches/stop": Case(SIGNED_IN, 404, None, {"kind": "bottle", "thing": NO_CODE}),
+    "POST /api/notices/read": Case(SIGNED_IN, 422, None, {"until": "never"}),
+    "POST /api/notices/address": Case(SIGNED_IN, 422, None, {"address": "nowhere"}),
+    "GET /api/tokens": Case(SIGNED_IN, 200),
+    "POST /api/tokens": Case(
+        SIGNED_IN, 422, None, {"name": "x", "scopes": [], "password": "{password}"}
+    ),
+    "POST /api/tokens/{token_id}/revoke": Case(SIGNED_IN, 404, f"/api/tokens/{NOBODY}/revoke"),
+    "GET /api/shelf": Case(EVERYBODY, 200, token=200),
     "GET /api/sheets": Case(SIGNED_IN, 200),
     "POST /api/sheets": Case(ANALYST, 404, None, BEGIN),
     "GET /api/sheets/{sheet_id}": Case(SIGNED_IN, 200),
@@ -221,6 +266,12 @@ API: dict[str, Case] = {
         404,
         f"/api/sheets/{NOBODY}/entries",
         {"entries": [{"id": NOBODY, "replicate": 0, "slot": "temperature", "text": "21.0"}]},
+    ),
+    "POST /api/sheets/{sheet_id}/curves/preview": Case(
+        ANALYST,
+        404,
+        f"/api/sheets/{NOBODY}/curves/preview",
+        {"replicate": 1, "pasted": "0.00; 4.01"},
     ),
     "GET /api/sheets/{sheet_id}/curves/{replicate}": Case(
         SIGNED_IN, 200, "/api/sheets/{curve_sheet}/curves/1"
@@ -249,13 +300,13 @@ API: dict[str, Case] = {
     "POST /api/sheets/{sheet_id}/send-back": Case(
         COUNTERSIGNER, 404, f"/api/sheets/{NOBODY}/send-back", {"revision": 1, "remark": "x"}
     ),
-    "GET /api/certificates/{number}": Case(SIGNED_IN, 200),
-    "GET /api/certificates/{number}.pdf": Case(SIGNED_IN, 200),
-    "GET /api/certificates/{number}.json": Case(SIGNED_IN, 200),
-    "GET /api/certificates/{number}.jws": Case(SIGNED_IN, 200),
-    "GET /api/certificates/{number}.dcc.xml": Case(SIGNED_IN, 200),
-    "GET /api/certificates/{number}.bench-record.json": Case(SIGNED_IN, 200),
-    "GET /.well-known/jwks.json": Case(EVERYBODY, 200),
+    "GET /api/certificates/{number}": Case(SIGNED_IN, 200, token=200),
+    "GET /api/certificates/{number}.pdf": Case(SIGNED_IN, 200, token=200),
+    "GET /api/certificates/{number}.json": Case(SIGNED_IN, 200, token=200),
+    "GET /api/certificates/{number}.jws": Case(SIGNED_IN, 200, token=200),
+    "GET /api/certificates/{number}.dcc.xml": Case(SIGNED_IN, 200, token=200),
+    "GET /api/certificates/{number}.bench-record.json": Case(SIGNED_IN, 200, token=200),
+    "GET /.well-known/jwks.json": Case(EVERYBODY, 200, token=200),
     "POST /api/lots": Case(ANALYST, 422, None, {"titrant": "NaOH", "nominal": "-1"}),
     "GET /api/lots/{code}": Case(SIGNED_IN, 200, "/api/lots/{lot}"),
     "GET /api/lots/{code}/methods": Case(SIGNED_IN, 200, "/api/lots/{lot}/methods"),
@@ -381,9 +432,11 @@ API: dict[str, Case] = {
     "POST /api/laboratory/hazards": Case(STEWARD, 409, None, HAZARDS),
     "POST /api/laboratory/hazards/withdraw": Case(STEWARD, 409, None, WITHDRAW),
     "POST /api/laboratory": Case(STEWARD, 409, None, SETTINGS),
-    "GET /health": Case(EVERYBODY, 200),
+    "GET /health": Case(EVERYBODY, 200, token=200),
 }
 MATRIX = PAGES | API
+#: Routes that ask nobody who he is, so that a token neither opens nor closes them.
+ASKS_NOBODY = frozenset({"GET /health", "GET /.well-known/jwks.json"})
 #: Beginning and ending sessions is tried on sessions of their own.
 SESSIONS = frozenset(
     {"POST /sign-in", "POST /sign-out", "POST /api/session", "DELETE /api/session"}
@@ -488,6 +541,44 @@ def test_route_for_role_answers_what_the_table_says(
     answer = _send(people(role), name, _address(name, case, things), case)
 
     assert answer.status_code == wanted, answer.text[:2000]
+
+
+@pytest.fixture(scope="module")
+def scripts(shared_web: Any) -> Callable[..., Any]:
+    """Makers of scripts: each comes with an analyst's token of some scopes, and nothing else."""
+    owner, found = shared_web.client("imke"), {}
+
+    def script(*scopes: str) -> Any:
+        if scopes not in found:
+            asked = {"name": "script", "scopes": list(scopes), "password": owner.password}
+            made = owner.post("/api/tokens", asked).json()
+            client = shared_web.visitor()
+            client.headers["Authorization"] = f"Bearer {made['token']}"
+            found[scopes] = client
+        return found[scopes]
+
+    return script
+
+
+@pytest.mark.parametrize("name", sorted(MATRIX))
+def test_route_for_token_answers_what_the_table_says(
+    name: str, scripts: Callable[..., Any], things: dict[str, str]
+) -> None:
+    case = MATRIX[name]
+    address = _address(name, case, things)
+
+    answer = _send(scripts(*Scope), name, address, case)
+    assert answer.status_code == case.token, answer.text[:2000]
+    assert "set-cookie" not in answer.headers
+    if name in TOKEN_ROUTES:
+        others = [scope for scope in Scope if scope is not TOKEN_ROUTES[name]]
+        assert _send(scripts(*others), name, address, case).status_code == 403
+
+
+def test_token_opens_the_routes_of_the_table_and_what_asks_nobody() -> None:
+    asks_nobody = {name for name in MATRIX if name in ASKS_NOBODY}
+    opened = {name for name, case in MATRIX.items() if case.token != 403}
+    assert opened == set(TOKEN_ROUTES) | asks_nobody
 
 
 @pytest.mark.parametrize("role", ROLES)

@@ -10,7 +10,7 @@ from server.drawing.svg import element, words
 WIDTH, LEFT, RIGHT = 480.0, 46.0, 470.0
 _RULE = "#ded8ca"
 #: Dots nearer than this to the one before, in pixels, would only make the page longer.
-_SAME_DOT = 0.6
+_SAME_DOT, _SAME_PLACE = 1.1, 1.2
 
 
 @dataclass(frozen=True, slots=True)
@@ -82,15 +82,33 @@ def volumes_along(frame: Frame, name: str) -> list[str]:
 
 def dots(places: Iterable[tuple[float, float]], *, kind: str = "dots", width: float = 4) -> str:
     """Return points as one path of round dots; those that would cover each other are drawn once."""
-    d, last = [], (-9.0, -9.0)
-    for x, y in places:
-        if abs(x - last[0]) + abs(y - last[1]) < _SAME_DOT:
-            continue
-        last = (x, y)
-        d.append(f"M{x:.1f} {y:.1f}h0")
+    kept = _apart(places, _SAME_DOT)
     look = {"stroke": "currentColor", "stroke-width": width, "stroke-linecap": "round",
             "fill": "none", "class": f"chart-{kind}"}  # fmt: skip
-    return element("path", {"d": "".join(d), **look}) if d else ""
+    return element("path", {"d": _moves(kept, "m", after="h0"), **look}) if kept else ""
+
+
+def _apart(places: Iterable[tuple[float, float]], least: float) -> list[tuple[float, float]]:
+    """Return the places, without those that lie on the pixels of the one kept before."""
+    kept: list[tuple[float, float]] = []
+    for x, y in places:
+        if not kept or abs(x - kept[-1][0]) + abs(y - kept[-1][1]) >= least:
+            kept.append((x, y))
+    return kept
+
+
+def _moves(places: Sequence[tuple[float, float]], step: str, *, after: str = "") -> str:
+    """Return a path from place to place in steps of a tenth of a pixel, which are short to write.
+
+    The steps are those between rounded places, so that no rounding adds up.
+    """
+    x, y = round(10 * places[0][0]), round(10 * places[0][1])
+    d = [f"M{x / 10:g} {y / 10:g}{after}"]
+    for place in places[1:]:
+        to_x, to_y = round(10 * place[0]), round(10 * place[1])
+        d.append(f"{step}{(to_x - x) / 10:g} {(to_y - y) / 10:g}{after}".replace(" -", "-"))
+        x, y = to_x, to_y
+    return "".join(d)
 
 
 def crosses(places: Iterable[tuple[float, float]]) -> str:
@@ -104,15 +122,10 @@ def line(places: Sequence[tuple[float, float]], *, kind: str = "model") -> str:
     """Return a line through points; ones that lie on their neighbours' pixel are left out."""
     if len(places) < 2:
         return ""
-    kept = [places[0]]
-    for x, y in places[1:-1]:
-        if abs(x - kept[-1][0]) + abs(y - kept[-1][1]) >= 1.2:
-            kept.append((x, y))
-    kept.append(places[-1])
-    d = "M" + "L".join(f"{x:.1f} {y:.1f}" for x, y in kept)
+    kept = [*_apart(places[:-1], _SAME_PLACE), places[-1]]
     look = {"stroke": "currentColor", "stroke-width": 1.3, "fill": "none",
             "class": f"chart-{kind}"}  # fmt: skip
-    return element("path", {"d": d, **look})
+    return element("path", {"d": _moves(kept, "l"), **look})
 
 
 def taken_line(frame: Frame, volume: float | None) -> str:

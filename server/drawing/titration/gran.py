@@ -14,7 +14,7 @@ from server.drawing.titration.frame import (
     halo,
     taken_line,
 )
-from server.drawing.titration.told import Drawn, Numbers, shape, volume_words
+from server.drawing.titration.told import Drawn, Numbers, shape, shapes, volume_words
 
 _TOP, _BOTTOM, _HEIGHT = 30.0, 190.0, 232.0
 _MOST_SHAPES = 80
@@ -65,11 +65,9 @@ def _one(frame: Frame, one: GranDrawn, *, taken: bool) -> list[str]:
     ends = [frame.at(V, one.intercept + one.gradient * V) for V in (far, one.volume)]
     straight = {"d": "M" + "L".join(f"{x:.1f} {y:.1f}" for x, y in ends),
                 "stroke": "currentColor", "stroke-width": 1.3, "class": "chart-curve"}  # fmt: skip
-    points = [
-        shape(one.method, *frame.at(V, G), size=3.2)
-        for V, G in list(zip(one.V, one.G, strict=True))[::every]
-    ]
-    return [*points, element("path", straight), shape(one.method, *ends[1], size=5, taken=taken)]
+    places = [frame.at(V, G) for V, G in zip(one.V, one.G, strict=True)][::every]
+    points = shapes(one.method, places, size=3.2)
+    return [points, element("path", straight), shape(one.method, *ends[1], size=5, taken=taken)]
 
 
 def _names(frame: Frame, lines: Sequence[GranDrawn], taken: str) -> list[str]:

@@ -49,20 +49,29 @@ _SHAPES = {
 }
 
 
+_TAKEN = {"fill": "#b0125f", "stroke": "#fffdf8", "class": "chart-taken"}
+_OTHER = {"fill": "#fffdf8", "stroke": "currentColor", "class": "chart-other"}
+
+
 def shape(method: str, x: float, y: float, *, size: float = 4.5, taken: bool = False) -> str:
     """Return the mark of a method about a point; the one that counts is filled with the accent."""
-    look = (
-        {"fill": "#b0125f", "stroke": "#fffdf8", "class": "chart-taken"}
-        if taken
-        else {"fill": "#fffdf8", "stroke": "currentColor", "class": "chart-other"}
-    )
+    look = _TAKEN if taken else _OTHER
     size += 1.5 if taken else 0.0
     form = _SHAPES.get(method)
     if form is None:
         return element("circle", {"cx": x, "cy": y, "r": size, **look})
+    return element("path", {"d": _outline(form, x, y, size), **look})
+
+
+def shapes(method: str, places: Sequence[tuple[float, float]], *, size: float) -> str:
+    """Return a method's mark at many places as one path."""
+    form = _SHAPES.get(method, _SHAPES["steepest segment"])
+    return element("path", {"d": "".join(_outline(form, x, y, size) for x, y in places), **_OTHER})
+
+
+def _outline(form: str, x: float, y: float, size: float) -> str:
     places = {"x": x, "y": y, "l": x - size, "r": x + size, "t": y - size, "b": y + size}
-    d = form.format(**{name: f"{place:.2f}" for name, place in places.items()})
-    return element("path", {"d": d, **look})
+    return form.format(**{name: f"{round(place, 1):g}" for name, place in places.items()})
 
 
 def method_mark(method: str, *, taken: bool = False) -> str:

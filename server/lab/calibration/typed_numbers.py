@@ -75,7 +75,7 @@ def list_at(
     where = f"{path}.{key}" if path else key
     value = document.get(key)
     if not isinstance(value, list | tuple) or not least <= len(value) <= most:
-        count = len(value) if isinstance(value, list | tuple) else "no"
+        count = len(value) if isinstance(value, list | tuple) else "none"
         says = f"{where} takes {least} to {most} {what}; there are {count}."
         raise Unacceptable(says, field=where)
     return value

@@ -4,19 +4,28 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime
 
-from sqlalchemy import and_, or_, select
+from sqlalchemy import Select, and_, or_, select
 from sqlalchemy.orm import Session
 
 from server.records.tables.bench import Certificate
 from server.records.tables.trail import TrailRow
 
+_WORDS = (
+    TrailRow.act, TrailRow.why, TrailRow.body, TrailRow.thing_name, TrailRow.kind,
+    TrailRow.person_name,
+)  # fmt: skip
+
 
 @dataclass(frozen=True, slots=True)
 class TrailFilter:
-    """Which rows: the printed name, a part of kind or name of the thing, instants from and to."""
+    """Which rows: the printed name, parts of the thing's kind or name, words, instants from and to.
+
+    A word may stand anywhere in what was done, to what, by whom, why, and with which details.
+    """
 
     person: str = ""
     thing: str = ""
+    words: str = ""
     start: datetime | None = None
     end: datetime | None = None
 
@@ -25,6 +34,16 @@ def trail_rows(
     session: Session, wanted: TrailFilter, *, offset: int, most: int
 ) -> Sequence[TrailRow]:
     """Return a page of the trail's rows, the newest first."""
+    ordered = _wanted(wanted).order_by(TrailRow.seq.desc()).offset(offset).limit(most)
+    return session.scalars(ordered).all()
+
+
+def trail_rows_forward(session: Session, wanted: TrailFilter, *, most: int) -> Sequence[TrailRow]:
+    """Return the first of the trail's rows that answer, the oldest first."""
+    return session.scalars(_wanted(wanted).order_by(TrailRow.seq).limit(most)).all()
+
+
+def _wanted(wanted: TrailFilter) -> Select[TrailRow]:
     rows = select(TrailRow)
     if wanted.person:
         rows = rows.where(TrailRow.person_name == wanted.person)
@@ -36,12 +55,13 @@ def trail_rows(
                 TrailRow.thing_id == word,
             )
         )
+    for word in wanted.words.split():
+        rows = rows.where(or_(*(one.icontains(word, autoescape=True) for one in _WORDS)))
     if wanted.start is not None:
         rows = rows.where(TrailRow.at >= wanted.start)
     if wanted.end is not None:
         rows = rows.where(TrailRow.at < wanted.end)
-    ordered = rows.order_by(TrailRow.seq.desc()).offset(offset).limit(most)
-    return session.scalars(ordered).all()
+    return rows
 
 
 def trail_people(session: Session) -> list[str]:

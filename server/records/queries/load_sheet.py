@@ -92,6 +92,7 @@ class _Loaded:
             select(Certificate).where(Certificate.lot_id.in_(lot_ids))
         ).all()
         self.people = load_people(session, self._named(sheets))
+        self.returns = load_returns(session, [sheet.id for sheet in sheets])
 
     def facts(self, sheets: Iterable[Sheet]) -> tuple[SheetFacts, ...]:
         return tuple(self._facts(sheet) for sheet in sheets)
@@ -126,6 +127,7 @@ class _Loaded:
             evaluation=_evaluation(evaluation) if evaluation else None,
             laboratory=self.laboratory,
             last_certificate=self._last_certificate(sheet),
+            returns=tuple(self.returns.get(sheet.id, ())),
         )
 
     def _standard_lot(self, sheet: Sheet) -> StandardLotFact | None:

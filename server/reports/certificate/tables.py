@@ -26,6 +26,7 @@ _STATED = {
     "error_u": "each error {}",
     "glass_expansion": "expansion of the glass {} per K",
     "minimum_sample_g": "minimum sample {} g",
+    "received_g": "received {} g",
 }
 
 
@@ -125,7 +126,9 @@ def _stated(statements: Mapping[str, Any]) -> Iterator[str]:
     for key, value in statements.items():
         says = _STATED.get(key, f"{key.replace('_', ' ')} {{}}")
         if isinstance(value, Mapping):
-            yield says.format(quantity_words(value))
+            words = quantity_words(value)
+            if words:  # what is no quantity is told in its own words beside it
+                yield says.format(words)
         elif key == "error_table":
             yield f"errors at {len(value)} points"
         elif isinstance(value, str | int | float):

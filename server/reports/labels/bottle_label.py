@@ -82,7 +82,8 @@ def bottle_url(base_url: str, code: str) -> str:
 def label_told(label: BottleLabel, *, brief: bool = False) -> dict[str, Any]:
     """Return what a label shows, as texts.
 
-    ``brief``: for a small label, the laboratory's name without its address, no day of making.
+    ``brief``: for a small label, the laboratory's name without its address, no day of making, no
+    reason of a reprint.
 
     Raises:
         Unacceptable: hazards without who confirmed them, a pictogram that is none, a reprint or a
@@ -99,7 +100,7 @@ def label_told(label: BottleLabel, *, brief: bool = False) -> dict[str, Any]:
         ),
         "value": _value(label.value, brief=brief),
         "hazards": _hazards(label.hazards),
-        "reprint": _reprint(label),
+        "reprint": _reprint(label, brief=brief),
     }
 
 
@@ -134,11 +135,11 @@ def _hazards(hazards: ConfirmedHazards | None) -> dict[str, Any] | None:
     }
 
 
-def _reprint(label: BottleLabel) -> str:
+def _reprint(label: BottleLabel, *, brief: bool) -> str:
     if label.reprint is None:
         return ""
     if not label.reprint.reason.strip():
         says = "A label is printed again with a reason."
         raise Unacceptable(says, field="reprint.reason", example="label lost in the wash")
     day = day_words(local_day(label.reprint.at, label.zone))
-    return f"Printed again {day}: {label.reprint.reason}"
+    return f"Printed again {day}" if brief else f"Printed again {day}: {label.reprint.reason}"

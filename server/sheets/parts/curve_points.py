@@ -8,7 +8,7 @@ from server.drawing.titration.told import slope_words
 from server.lab.curve_entry import CurveEntry
 from server.sheets.curves import CurvePoint, PointsPart
 
-ROWS = 100
+ROWS = 60
 _SHORT = {
     "steepest segment": "segment",
     "first derivative": "first",
@@ -22,7 +22,7 @@ _SHORT = {
 def points_part(
     curve: CurveEntry, analysis: Analysis | None, *, first: int | None, url: str
 ) -> PointsPart:
-    """Return a hundred points from ``first`` on (counted from 1).
+    """Return sixty points from ``first`` on (counted from 1).
 
     Without a first point it is the part in which the curve jumps.
     """

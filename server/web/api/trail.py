@@ -12,8 +12,13 @@ router = APIRouter(tags=["trail"])
 
 @router.get("/trail")
 def trail(
-    visit: AtDesk, person: str = "", thing: str = "", day: str = "", page: str = "1"
+    visit: AtDesk,
+    person: str = "",
+    thing: str = "",
+    day: str = "",
+    words: str = "",
+    page: str = "1",
 ) -> Response:
     """Tell what was done, newest first, and whether the chain holds."""
-    named = {"person": person, "thing": thing, "day": day, "page": page_number(page)}
-    return answer(visit.read(open_trail, **named))
+    asked = {"person": person, "thing": thing, "day": day, "words": words}
+    return answer(visit.read(open_trail, **asked, page=page_number(page)))

@@ -10,8 +10,8 @@ from fastapi.responses import RedirectResponse
 from server.lab.refusal import KeyMissing, Refusal
 from server.web.acting import act
 from server.web.errors import answer_of, headers_of
+from server.web.forms.field_words import in_words
 from server.web.forms.fields import form_field
-from server.web.forms.labels import in_words
 from server.web.forms.typed import Typed, TypedForm
 from server.web.refusals import NotFromHere
 from server.web.showing import problem_of, show

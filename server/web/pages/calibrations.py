@@ -22,8 +22,8 @@ from server.sheets.import_page import (
 from server.sheets.instruments_page import open_calibration, open_instrument
 from server.sheets.run_form import AskedRun, judge_preview, open_drop_form, open_run_form
 from server.sheets.run_form import read_run as read_for_preview
+from server.web.forms.field_words import in_words
 from server.web.forms.instruments import read_calibration_form, read_class
-from server.web.forms.labels import in_words
 from server.web.forms.posts import Again, Post, Posted
 from server.web.forms.runs import (
     picked_of,

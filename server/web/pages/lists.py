@@ -50,9 +50,11 @@ def lots(visit: AtDesk, state: str = "", titrant: str = "") -> Response:
 
 
 @router.get("/trail/list.csv")
-def trail(visit: AtDesk, person: str = "", thing: str = "", day: str = "") -> Response:
+def trail(
+    visit: AtDesk, person: str = "", thing: str = "", day: str = "", words: str = ""
+) -> Response:
     """Hand out the trail, newest first."""
-    found = visit.read(open_trail_list, person=person, thing=thing, day=day)
+    found = visit.read(open_trail_list, person=person, thing=thing, day=day, words=words)
     return _answer(visit, trail_csv(found), "trail")
 
 

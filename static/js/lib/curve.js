@@ -114,6 +114,7 @@ export function remedyOf(problem) {
   return {
     row: problem.field === "file" && Number.isInteger(shown.row) && shown.row > 0 ? shown.row : null,
     table: shown.table ?? null,
+    mapping: shown.mapping ?? null,
     drop: problem.field === "drop_mL" || problem.field === "drop_u_mL",
     sheet: problem.field === "sheet",
   };

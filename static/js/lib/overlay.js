@@ -6,6 +6,9 @@ export const TABLET = "on this tablet";
 /** What is written to let a replicate that was left out count again. */
 export const COUNTS_AGAIN = "counts again";
 
+/** The row in which another method than the recipe's is taken; it asks for the reason. */
+export const METHOD_SLOT = "end_point_method";
+
 /** The name of a row inside its sheet. */
 export function keyOf(row) {
   return `${row.replicate}/${row.slot}/${row.segment}`;

@@ -2,7 +2,7 @@
 
 import { sentOf } from "../lib/curve.js";
 import { clockOf, newEntry } from "../lib/entry.js";
-import { COUNTS_AGAIN, keyOf, layOver, nextOf, rowsOf } from "../lib/overlay.js";
+import { COUNTS_AGAIN, METHOD_SLOT, keyOf, layOver, nextOf, rowsOf } from "../lib/overlay.js";
 import { press } from "../lib/pad.js";
 import { questionFor } from "../lib/questions.js";
 import { readReason, readTyped, readWords, unitOf } from "../lib/reading.js";
@@ -130,7 +130,7 @@ function drawAside() {
 
 function writeLabel() {
   const { lit, typed } = view;
-  if (lit.kind !== "number") return [lit.value ? "Strike the old one and write" : "Write"];
+  if (lit.kind !== "number") return [lit.value ? "Strike the old one and write" : lit.kind === "curve" ? "Write this curve" : "Write"];
   const what = [typed.trim(), typed.trim() ? unitOf(lit) : ""].filter(Boolean).join(" ");
   const verb = lit.value ? `Strike ${lit.value.text}, write` : "Write";
   return [el("span", { class: "verb" }, verb), " ", el("span", { class: "what" }, what)];
@@ -224,7 +224,10 @@ const acts = {
     if (here.note) acts.type(view.typed);
   },
   choose(text) {
-    put(view.lit, { text, unit: null, raw: null }, null);
+    const { lit } = view;
+    if (lit.slot !== METHOD_SLOT) return put(lit, { text, unit: null, raw: null }, null);
+    const why = readReason(here.reason, "Say first why another method is taken, then choose it.");
+    return why.says ? ask(why) : put(lit, { text, unit: null, raw: null }, why.text);
   },
   write() {
     const { lit, typed, rows } = view;

@@ -73,8 +73,24 @@ function problemOf(curve, acts) {
     answers.length ? el("div", { class: "answers" }, answers) : null,
     remedy.drop ? dropOf(chosen, acts) : null,
     remedy.sheet ? sheetOf(chosen, acts) : null,
-    remedy.table && !remedy.drop ? columnsOf({ width: remedy.table.width, header: remedy.table.header, rows: remedy.table.rows.map((one) => one.cells), roles: rolesOf(chosen.mapping, remedy.table.width), mark: remedy.row === null ? -1 : remedy.table.rows.findIndex((one) => one.row === remedy.row) }, acts) : null,
+    remedy.table && !remedy.drop ? tableOf(remedy, acts) : null,
   );
+}
+
+/** The columns as they stand; folded away where it is a row that is odd. */
+function tableOf({ row, table, mapping }, acts) {
+  const columns = columnsOf({
+    width: table.width,
+    header: table.header,
+    rows: table.rows.map((one) => one.cells),
+    roles: rolesOf(mapping, table.width),
+    mark: table.rows.findIndex((one) => one.row === row),
+  }, acts);
+  return row === null ? columns : folded(columns);
+}
+
+function folded(columns) {
+  return el("details", { class: "fold curve-columns" }, el("summary", {}, "The columns"), columns);
 }
 
 function previewOf(curve, acts) {
@@ -90,7 +106,7 @@ function previewOf(curve, acts) {
     el("p", { class: "curve-told", id: "curve-told" }, `${preview.points} points, ${preview.kind}${preview.timed ? ", with times" : ""}: from ${preview.first[0][0]} mL, ${preview.first[0][1]}, to ${last[0]} mL, ${last[1]}.`),
     el("ul", { class: "curve-says" }, preview.says.map((one) => el("li", {}, one))),
     preview.set_aside.map((one) => el("p", { class: "look", "data-aside": true }, one)),
-    el("details", { class: "fold curve-columns" }, el("summary", {}, "The columns"), columnsOf({ width, header, rows, roles: rolesOf(preview.mapping, width), mark: -1 }, acts)),
+    folded(columnsOf({ width, header, rows, roles: rolesOf(preview.mapping, width), mark: -1 }, acts)),
     drops ? dropOf(chosen, acts) : null,
     picturesOf(preview.curve),
     preview.same_as === null ? null : el("p", { class: "ask look", id: "curve-twice" }, `This file is the curve of replicate ${preview.same_as} already.`),

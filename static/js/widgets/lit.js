@@ -1,7 +1,7 @@
 // The lit row: the one that is written next, or the one that is being corrected.
 
 import { echo, readTyped, unitOf } from "../lib/reading.js";
-import { keyOf } from "../lib/overlay.js";
+import { METHOD_SLOT, keyOf } from "../lib/overlay.js";
 import { curveField } from "./curve_row.js";
 import { el, unseen } from "./dom.js";
 
@@ -23,7 +23,7 @@ export function litRow(row, view, acts) {
     el("span", { class: "where" }, correcting ? "correcting" : "next"),
     row.kind === "number" ? el("p", { class: "echo", id: "echo" }, echoOf(row, view.typed)) : null,
     noteOf(row, view, acts),
-    correcting ? reasonsOf(row, view, acts) : null,
+    correcting ? reasonsOf(row, view, acts) : row.slot === METHOD_SLOT ? whyOf(view, acts) : null,
   );
   return el("li", { class: "row next", "data-key": key, "aria-current": "step" }, form);
 }
@@ -156,6 +156,19 @@ function reasonsOf(row, view, acts) {
       value: own,
       on: { input: (event) => acts.reason(event.target.value) },
     }),
+    el("button", { type: "button", class: "button", on: { click: acts.leave } }, "Leave it as it is"),
+  );
+}
+
+/** The reason that a choice needs although nothing is struck. */
+function whyOf(view, acts) {
+  const input = (event) => acts.reason(event.target.value);
+  return el(
+    "fieldset",
+    { class: "reasons" },
+    el("legend", {}, "Why is another method taken?"),
+    el("label", { class: "own", for: "own-reason" }, "In your own words"),
+    el("input", { id: "own-reason", type: "text", autocomplete: "off", value: view.reason, on: { input } }),
     el("button", { type: "button", class: "button", on: { click: acts.leave } }, "Leave it as it is"),
   );
 }

@@ -36,8 +36,8 @@ function rowOf(row, view, acts) {
 }
 
 function wordy(row) {
-  if (row.kind === "text" || row.kind === "curve") return " is-words is-text";
-  return row.kind === "choice" ? " is-words" : "";
+  if (row.kind === "text") return " is-words is-text";
+  return row.kind === "choice" || row.kind === "curve" ? " is-words" : "";
 }
 
 function writtenRow(row, view, acts) {
