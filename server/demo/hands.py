@@ -20,7 +20,7 @@ from server.lab.ink import standing
 from server.lab.people import initials_of
 from server.procedures.bench import BeginSheet, begin_sheet
 from server.procedures.countersign import Countersign, countersign_sheet
-from server.procedures.entries import NewEntry, WriteEntries, write_entries
+from server.procedures.entries import WriteEntries, write_entries
 from server.procedures.hand_in import (
     HandIn,
     evaluate_sheet,
@@ -28,7 +28,9 @@ from server.procedures.hand_in import (
     hand_in_sheet,
     prepare_hand_in,
 )
+from server.procedures.new_entries import NewEntry
 from server.records.queries.load_sheet import load_sheet_facts
+from server.records.queries.sheet_trail import last_act_of_sheet
 from server.records.transaction import Transactions
 
 T = TypeVar("T")
@@ -147,7 +149,8 @@ class Hands:
         """Countersign a sheet, accepting by name what fails."""
         facts = self.transactions.read(lambda session: load_sheet_facts(session, sheet_id))
         accepted = failing(facts.evaluation.result["findings"]) if facts.evaluation else []
-        command = Countersign(sheet_id, facts.revision, tuple(accepted))
+        seen = self.transactions.read(lambda session: last_act_of_sheet(session, sheet_id))
+        command = Countersign(sheet_id, facts.revision, tuple(accepted), trail_seen=seen)
         proof = Proof(self.ids[member.sign_in_name], at)
         self.do(countersign_sheet, command, member, at, proof=proof)
 

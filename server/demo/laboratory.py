@@ -15,7 +15,6 @@ from server.demo.simulated import Line, Truth, replicate_lines, sheet_lines
 from server.demo.workshop import Workshop
 from server.lab.validity import local_day
 from server.procedures.bench import BeginSheet
-from server.procedures.countersign import SendBack, send_back_sheet
 from server.procedures.holds import HoldThing, hold_thing
 from server.procedures.laboratory import SetUpLaboratory, set_up_laboratory
 from server.procedures.lots import (
@@ -27,6 +26,7 @@ from server.procedures.lots import (
     use_up_bottle,
 )
 from server.procedures.people import AddPerson, add_person, hash_new_password
+from server.procedures.send_back import SendBack, send_back_sheet
 from server.procedures.stores import (
     ReceiveStandardLot,
     WriteRecipe,

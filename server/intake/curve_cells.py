@@ -53,31 +53,35 @@ class Cells:
         Raises:
             Unacceptable: it is none; the sentence names row and column.
         """
-        plain = text.strip().replace("−", "-")
-        if self.decimal_comma:
-            plain = plain.replace(",", ".")
+        number = self._decimal(text)
         place = self.where(row, column)
-        if len(plain) <= _MOST_NUMBER and _NUMBER.fullmatch(plain):
-            number = Decimal(plain)
-            if _FINEST <= int(number.as_tuple().exponent) <= _COARSEST:
-                return number
-            says = f"{place}: “{text.strip()[:40]}” is too large or too small to be a reading."
-            raise Unacceptable(says, field="file", shown={"row": row, "column": column + 1})
-        if plain[:1] in {"=", "@"} or re.match(r"[+-][A-Za-z(]", plain):
-            says = f"{place}: “{text.strip()[:40]}” is a formula; only numbers are taken."
+        if number is not None and _FINEST <= int(number.as_tuple().exponent) <= _COARSEST:
+            return number
+        plain = text.strip()
+        if number is not None:
+            says = f"{place}: “{plain[:40]}” is too large or too small to be a reading."
+        elif plain[:1] in {"=", "@"} or re.match(r"[+-][A-Za-z(]", plain):
+            says = f"{place}: “{plain[:40]}” is a formula; only numbers are taken."
         elif not plain:
             says = f"{place} is empty; a point needs its volume and its reading."
         else:
-            says = f"{place}: “{text.strip()[:40]}” is not a number."
-        place_shown = {"row": row, "column": column + 1}
-        raise Unacceptable(says, field="file", example="12.35", shown=place_shown)
+            says = f"{place}: “{plain[:40]}” is not a number."
+        shown = {"row": row, "column": column + 1}
+        raise Unacceptable(says, field="file", example="12.35", shown=shown)
 
     def is_number(self, text: str) -> bool:
         """Tell whether a cell could be a number."""
+        return self._decimal(text) is not None
+
+    def told(self, row: Sequence[str]) -> list[Decimal | None]:
+        """Return a row's numbers, None where a cell holds none."""
+        return [self._decimal(one) for one in row]
+
+    def _decimal(self, text: str) -> Decimal | None:
         plain = text.strip().replace("−", "-")
         if self.decimal_comma:
             plain = plain.replace(",", ".")
-        return bool(_NUMBER.fullmatch(plain))
+        return Decimal(plain) if len(plain) <= _MOST_NUMBER and _NUMBER.fullmatch(plain) else None
 
     def is_value(self, text: str) -> bool:
         """Tell whether a cell stands where a number does: a number, or a formula for one."""

@@ -21,7 +21,7 @@ from server.lab.refusal import Unacceptable
 _SHOWN_ROWS = 6
 #: What a probe can read at all, bubbles included, and what no burette delivers.
 _POSSIBLE = {"pH": (Decimal(-3), Decimal(17)), "mV": (Decimal(-5000), Decimal(5000))}
-_MOST_ML = Decimal(10_000)
+_MOST_ML = Decimal(100_000)
 
 
 @dataclass(frozen=True, slots=True)
@@ -113,10 +113,7 @@ def _columns(
     elif asked.remembered is not None and asked.remembered.fits(shape.header, shape.width):
         mapping, says = asked.remembered.mapping, "Columns as in this instrument's last file."
     else:
-        told = [
-            [cells.number(0, 0, one) if cells.is_number(one) else None for one in row]
-            for _, row in body[:500]
-        ]
+        told = [cells.told(row) for _, row in body[:500]]
         return columns_of(shape.header, told)
     if mapping.last >= shape.width:
         says = f"Column {mapping.last + 1} is asked for; the table has {shape.width}."

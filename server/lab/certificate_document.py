@@ -10,6 +10,7 @@ from server.lab.ink import excluded, standing, strikes
 from server.lab.rig import rig_of
 from server.lab.segregation import own_part
 from server.lab.sheet_facts import EvaluationFact, SheetFacts, SignatureFact
+from server.lab.signing import accepted_findings, trail_seen
 from server.lab.slots import row_at
 from server.lab.validity import ValidUntil, last_day, local_day
 
@@ -20,12 +21,13 @@ NOT_REVIEWED = "Not independently reviewed: the laboratory allows one person's o
 
 @dataclass(frozen=True, slots=True)
 class Issue:
-    """What is known only when a certificate is issued."""
+    """What is known only when a certificate is issued; ``because`` says why it replaces one."""
 
     number: str
     issued_at: datetime
     replaces: str | None
     valid: ValidUntil
+    because: str = ""
 
 
 def build_certificate(
@@ -39,7 +41,7 @@ def build_certificate(
 ) -> dict[str, Any]:
     """Return the certificate's document.
 
-    Keys: ``format``, ``number``, ``title``, ``replaces``, ``issued_at``, ``laboratory``, ``lot``,
+    Keys: ``format``, ``number``, ``title``, ``replaces``, ``replaces_because``, ``issued_at``, ``laboratory``, ``lot``,
     ``sheet``, ``recipe``, ``result`` (bench result), ``findings`` (with ``reason`` and
     ``accepted_by``), ``valid_for``, ``end_point``, ``validity``, ``measured``,
     ``replicates_left_out``, ``corrections``, ``entries``,
@@ -54,6 +56,7 @@ def build_certificate(
         "number": issue.number,
         "title": TITLE,
         "replaces": issue.replaces,
+        "replaces_because": issue.because if issue.replaces else "",
         "issued_at": issue.issued_at.isoformat(),
         "laboratory": {
             "name": facts.laboratory.name,
@@ -144,13 +147,12 @@ def _lot(facts: SheetFacts) -> dict[str, Any]:
 def _findings(
     result: Mapping[str, Any], measured: SignatureFact, countersigned: SignatureFact
 ) -> list[dict[str, Any]]:
+    accepted = accepted_findings(countersigned)
     return [
         {
             **finding,
             "reason": measured.reasons.get(finding["name"]),
-            "accepted_by": (
-                countersigned.printed_name if finding["name"] in countersigned.reasons else None
-            ),
+            "accepted_by": countersigned.printed_name if finding["name"] in accepted else None,
         }
         for finding in result["findings"]
     ]
@@ -238,6 +240,7 @@ def _signature(signature: SignatureFact) -> dict[str, Any]:
         "zone": signature.zone,
         "signed_digest": signature.signed_digest,
         "remark": signature.remark,
+        "trail_seen": trail_seen(signature),
     }
 
 

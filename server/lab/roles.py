@@ -33,6 +33,7 @@ class Act(StrEnum):
     CONFIRM_PULL = "confirm a pull"
     ADMINISTER = "keep people and settings"
     READ = "read the notebook"
+    READ_UNCERTIFIED = "read a number that is not certified yet"
 
 
 _HOLDERS: dict[Act, frozenset[Role]] = {
@@ -52,6 +53,7 @@ _HOLDERS: dict[Act, frozenset[Role]] = {
     Act.CONFIRM_PULL: frozenset({Role.COUNTERSIGNER}),
     Act.ADMINISTER: frozenset({Role.STEWARD}),
     Act.READ: frozenset(Role),
+    Act.READ_UNCERTIFIED: frozenset({Role.ANALYST, Role.COUNTERSIGNER}),
 }
 
 

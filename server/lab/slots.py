@@ -172,7 +172,12 @@ def row_at(recipe: RecipeDocument, rig: Rig, place: Place) -> Row:
         if row.place == place:
             return row
     where = "the sheet" if replicate == 0 else f"replicate {replicate}"
-    raise Unacceptable(f"This recipe has no row “{slot}” for {where}.", field="slot")
+    raise Unacceptable(f"This recipe has no row “{slot[:40]}” for {where}.", field="slot")
+
+
+def place_words(replicate: int, label: str) -> str:
+    """Return a row with its replicate, as a sentence names it: ``Replicate 2, Burette, end``."""
+    return f"Replicate {replicate}, {label}" if replicate else f"Sheet, {label}"
 
 
 def _masses(recipe: RecipeDocument, rig: Rig, replicate: int) -> list[Row]:

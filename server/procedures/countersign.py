@@ -1,4 +1,4 @@
-"""Countersigning: the act of a second person that certifies; or sending back."""
+"""Countersigning: the act of a second person that certifies."""
 
 import json
 from collections.abc import Sequence
@@ -12,13 +12,13 @@ from sqlalchemy.orm import Session
 from server.lab.actor import Actor, Proof
 from server.lab.canonical import canonical, digest
 from server.lab.certificate_document import Issue, build_certificate, measured_at
-from server.lab.free_text import read_text
+from server.lab.free_text import MOST_REASON, read_text
 from server.lab.in_use import things_in_use
 from server.lab.refusal import NotAllowed, Stale, Unacceptable
 from server.lab.roles import Act
 from server.lab.segregation import countersign_refusal
 from server.lab.sheet_facts import EvaluationFact, SheetFacts, SignatureFact
-from server.lab.signing import COUNTERSIGNED, signature_holds
+from server.lab.signing import COUNTERSIGNED, countersign_reasons, signature_holds
 from server.lab.states import HANDED_IN
 from server.lab.validity import local_day, valid_until
 from server.procedures.acts import Thing, note_act
@@ -29,6 +29,7 @@ from server.procedures.signatures import ToSign, sign
 from server.records.queries.load_lots import standing_certificate
 from server.records.queries.load_sheet import load_sheet_facts
 from server.records.queries.loading import next_number
+from server.records.queries.sheet_trail import last_act_of_sheet
 from server.records.tables.bench import Certificate
 from server.records.tables.lots import Lot
 from server.records.trail import head
@@ -36,21 +37,18 @@ from server.records.trail import head
 
 @dataclass(frozen=True, slots=True)
 class Countersign:
-    """A second signature; ``accepted`` names each finding that fails and is accepted."""
+    """A second signature; ``accepted`` names each finding that fails and is accepted.
+
+    ``trail_seen`` is the number of the last act in the sheet's trail that was read before signing;
+    ``because`` says why the lot's standing certificate is replaced, printed on the new one.
+    """
 
     sheet_id: str
     revision: int
     accepted: tuple[str, ...] = ()
     remark: str = ""
-
-
-@dataclass(frozen=True, slots=True)
-class SendBack:
-    """A sheet sent back to the bench, with a remark."""
-
-    sheet_id: str
-    revision: int
-    remark: str
+    trail_seen: int = 0
+    because: str = ""
 
 
 def countersign_sheet(
@@ -60,14 +58,14 @@ def countersign_sheet(
 
     Raises:
         NotAllowed: one's own work, a sheet that does not wait, or something that was not valid.
-        Unacceptable: a finding that fails is not accepted by name.
-        Stale: the sheet has changed since it was looked at.
+        Unacceptable: a finding that fails is not accepted by name, or the trail was not read.
+        Stale: the sheet or its trail has changed since it was looked at.
     """
     actor.need(Act.COUNTERSIGN)
     need_proof(proof, actor, now=now)
     sheet = lock_sheet(session, command.sheet_id)
     facts = load_sheet_facts(session, sheet.id)
-    evaluation, measured = _waiting(facts)
+    evaluation, measured = waiting_parts(facts)
     refusal = countersign_refusal(facts, actor.person_id)
     if refusal:
         raise NotAllowed(refusal)
@@ -75,12 +73,16 @@ def countersign_sheet(
     _need_same_last(facts, evaluation)
     refuse_not_valid(facts)
     accepted = _accepted(evaluation, command.accepted)
+    _need_trail_seen(session, sheet.id, command.trail_seen)
+    because = read_text(command.because, "because", most=MOST_REASON)
     _need_intact(facts, evaluation, measured)
+    reasons = countersign_reasons(accepted, command.trail_seen)
     to_sign = ToSign(
-        COUNTERSIGNED, evaluation.id, evaluation.snapshot_digest, accepted, command.remark
+        COUNTERSIGNED, evaluation.id, evaluation.snapshot_digest, reasons, command.remark
     )
     signature = sign(session, facts, to_sign, actor=actor, now=now)
-    certificate = _issue(session, facts, evaluation, (measured, signature), actor=actor, now=now)
+    signed = _Signed(evaluation, measured, signature, because)
+    certificate = _issue(session, facts, signed, actor=actor, now=now)
     sheet.countersigned_at = now
     sheet.revision += 1
     session.flush()
@@ -88,6 +90,7 @@ def countersign_sheet(
     body = {
         "reported": reported,
         "accepted": accepted,
+        "trail_seen": command.trail_seen,
         "signature": signature.id,
         "signed_digest": signature.signed_digest,
         "certificate": certificate.number,
@@ -106,31 +109,38 @@ def countersign_sheet(
     }
 
 
-def send_back_sheet(session: Session, command: SendBack, *, actor: Actor, now: datetime) -> int:
-    """Send a sheet back with a remark; return its new revision."""
+def _need_trail_seen(session: Session, sheet_id: str, seen: int) -> None:
+    """Refuse to sign before the sheet's trail was read, up to its last act."""
+    last = last_act_of_sheet(session, sheet_id)
+    if not 1 <= seen <= last:
+        says = f"Read the trail of this sheet before you sign; its last act is no. {last}."
+        raise Unacceptable(says, field="trail_seen", example=str(last))
+    if seen < last:
+        says = (
+            f"Since you read the trail of this sheet up to act {seen}, act {last} was noted; look "
+            "again before you sign."
+        )
+        raise Stale(says, field="trail_seen", shown={"standing": {"last act": last}})
+
+
+def check_waits(session: Session, sheet_id: str, *, actor: Actor, now: datetime) -> None:
+    """Refuse a sheet that does not wait, before a password is asked for it.
+
+    Raises:
+        NotFound: there is no such sheet.
+        NotAllowed: it does not wait.
+    """
+    del now
     actor.need(Act.COUNTERSIGN)
-    sheet = lock_sheet(session, command.sheet_id)
-    facts = load_sheet_facts(session, sheet.id)
-    _waiting(facts)
-    refusal = countersign_refusal(facts, actor.person_id)
-    if refusal:
-        raise NotAllowed(refusal.replace("countersigns", "sends it back"))
-    need_revision(sheet, command.revision)
-    remark = read_text(command.remark, "remark")
-    if not remark:
-        says = "Say in a remark what shall be looked at again."
-        raise Unacceptable(says, field="remark", example="replicate 3: is 18.46 a slip?")
-    sheet.sent_back_at = now
-    sheet.sent_back_remark = remark
-    sheet.revision += 1
-    session.flush()
-    thing = Thing("sheet", sheet.id, sheet.number)
-    note_act(session, "sent back a bench sheet", thing, actor=actor, now=now, why=remark)
-    return sheet.revision
+    waiting_parts(load_sheet_facts(session, sheet_id))
 
 
-def _waiting(facts: SheetFacts) -> tuple[EvaluationFact, SignatureFact]:
-    """Return the evaluation and the *measured* signature of a sheet that waits."""
+def waiting_parts(facts: SheetFacts) -> tuple[EvaluationFact, SignatureFact]:
+    """Return the evaluation and the *measured* signature of a sheet that waits.
+
+    Raises:
+        NotAllowed: it does not wait, or its lot was pulled.
+    """
     if facts.state != HANDED_IN or facts.evaluation is None or facts.measured_signature is None:
         raise NotAllowed(f"This sheet is {facts.state}; it does not wait for a second person.")
     if facts.lot.pulled:
@@ -175,14 +185,18 @@ def _need_intact(facts: SheetFacts, evaluation: EvaluationFact, measured: Signat
         raise NotAllowed(says)
 
 
+@dataclass(frozen=True, slots=True)
+class _Signed:
+    """An evaluation with its two signatures, and why it replaces what stood."""
+
+    evaluation: EvaluationFact
+    measured: SignatureFact
+    countersigned: SignatureFact
+    because: str
+
+
 def _issue(
-    session: Session,
-    facts: SheetFacts,
-    evaluation: EvaluationFact,
-    signatures: tuple[SignatureFact, SignatureFact],
-    *,
-    actor: Actor,
-    now: datetime,
+    session: Session, facts: SheetFacts, signed: _Signed, *, actor: Actor, now: datetime
 ) -> Certificate:
     """Issue the certificate; it replaces the lot's standing one."""
     session.get_one(Lot, facts.lot.id, with_for_update=True)
@@ -200,15 +214,16 @@ def _issue(
         issued_at=now,
         replaces=before.number if before else None,
         valid=valid,
+        because=signed.because,
     )
     document = canonical(
         build_certificate(
             facts,
-            evaluation,
+            signed.evaluation,
             issue=issue,
             in_use=things_in_use(facts),
-            measured=signatures[0],
-            countersigned=signatures[1],
+            measured=signed.measured,
+            countersigned=signed.countersigned,
         )
     )
     seq, anchor = head(session)
@@ -217,7 +232,7 @@ def _issue(
         number=issue.number,
         lot_id=facts.lot.id,
         sheet_id=facts.id,
-        evaluation_id=evaluation.id,
+        evaluation_id=signed.evaluation.id,
         replaces_id=before.id if before else None,
         issued_at=now,
         valid_until=valid.at,

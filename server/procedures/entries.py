@@ -1,27 +1,23 @@
 """Writing entries: the one door, in ink."""
 
-from dataclasses import asdict, dataclass, replace
-from datetime import UTC, datetime
+from dataclasses import dataclass, replace
+from datetime import datetime
 from typing import Any
-from uuid import UUID
 
 from sqlalchemy.orm import Session
 
-from server.intake.curve_upload import SentCurve
 from server.lab.actor import Actor
-from server.lab.canonical import canonical, digest
 from server.lab.curve_entry import write_curve_entry
-from server.lab.free_text import check_text
+from server.lab.device_clock import CLOCK_OFF, MOST_SKEW_S, is_late, read_instant
 from server.lab.in_use import kind_of_slot, things_in_use
 from server.lab.ink import WrittenEntry, entry_digest, standing
 from server.lab.readings import Beside, check_reading
-from server.lab.refusal import KeyMissing, NotAllowed, SavedFirst, Unacceptable
+from server.lab.refusal import NotAllowed, SavedFirst, Unacceptable
 from server.lab.rig import rig_of
 from server.lab.roles import Act
 from server.lab.sheet_facts import SheetFacts
 from server.lab.slots import CURVE_KIND, Row, row_at
 from server.lab.states import OPEN, SENT_BACK
-from server.lab.validity import read_zone
 from server.procedures.acts import Thing, note_act
 from server.procedures.bench import lock_sheet
 from server.procedures.curves import (
@@ -30,6 +26,14 @@ from server.procedures.curves import (
     keep_curve,
     read_curve_of,
 )
+from server.procedures.new_entries import (
+    EXAMPLE_CURVE,
+    NewEntry,
+    Written,
+    body_digest,
+    check_key,
+    instant_of,
+)
 from server.records.queries.curve_columns import CurveSource, curve_source
 from server.records.queries.load_entries import entry_of_device
 from server.records.queries.load_sheet import load_sheet_facts
@@ -37,48 +41,20 @@ from server.records.tables.bench import Entry, Sheet
 from server.records.tables.people import Device
 
 MOST_ENTRIES = 500
-_MOST_TEXT = 2000
-#: What the columns hold: a device counts up to this, and its clock runs up to this.
-_MOST = {"device_sequence": 2**31 - 1, "base_revision": 2**31 - 1, "monotonic_ms": 2**53}
-
-
-@dataclass(frozen=True, slots=True)
-class NewEntry:
-    """One thing to write. ``id`` is a UUID made by the writer: the entry's idempotency key.
-
-    ``text`` stays as typed; an empty one only strikes. ``strikes`` is the entry that this one
-    replaces, with ``reason``. Replicate 0 is the sheet. A row of kind *curve* takes its original in
-    ``curve``: its points become ``raw`` here, and its ``text`` the words for them.
-    """
-
-    id: str
-    replicate: int
-    slot: str
-    text: str
-    segment: int = 1
-    unit: str | None = None
-    raw: str | None = None
-    strikes: str | None = None
-    reason: str | None = None
-    device_id: str | None = None
-    device_sequence: int | None = None
-    device_at: str | None = None
-    device_zone: str | None = None
-    monotonic_ms: int | None = None
-    base_revision: int | None = None
-    curve: SentCurve | None = None
 
 
 @dataclass(frozen=True, slots=True)
 class WriteEntries:
     """Entries for one sheet, in the order in which they were written; all or none are taken.
 
-    ``curves`` are those of the entries that were read already.
+    ``curves`` are those of the entries that were read already. ``sent_at`` is what the device's
+    clock showed when it sent them: by it the server knows how wrong that clock is.
     """
 
     sheet_id: str
     entries: tuple[NewEntry, ...]
     curves: CurvesRead | None = None
+    sent_at: str | None = None
 
 
 def read_curves(command: WriteEntries, source: CurveSource) -> WriteEntries:
@@ -93,15 +69,6 @@ def read_curves(command: WriteEntries, source: CurveSource) -> WriteEntries:
         if entry.curve is not None
     }
     return replace(command, curves=CurvesRead(source, read))
-
-
-@dataclass(frozen=True, slots=True)
-class Written:
-    """Where an entry stands now; ``repeated`` where it had come before."""
-
-    id: str
-    position: int
-    repeated: bool
 
 
 def write_entries(
@@ -119,7 +86,7 @@ def write_entries(
         says = f"Send 1 to {MOST_ENTRIES} entries at a time."
         raise Unacceptable(says, field="entries")
     for entry in command.entries:
-        _check_key(entry)
+        check_key(entry)
     sheet = lock_sheet(session, command.sheet_id)
     answers = [_earlier(session, sheet, entry) for entry in command.entries]
     if all(answers):
@@ -127,7 +94,9 @@ def write_entries(
     facts = load_sheet_facts(session, sheet.id)
     _need_writable(facts)
     curves = command.curves or CurvesRead(curve_source(session, sheet))
-    pen = _Pen(session, sheet, facts, curves=curves, actor=actor, now=now)
+    pen = _Pen(
+        session, sheet, facts, curves=curves, sent_at=command.sent_at, actor=actor, now=now
+    )
     written = tuple(
         answer or pen.write(entry) for answer, entry in zip(answers, command.entries, strict=True)
     )
@@ -135,47 +104,12 @@ def write_entries(
     return written
 
 
-def _check_key(entry: NewEntry) -> None:
-    if not entry.id:
-        raise KeyMissing("An entry needs its own UUID.", field="id", example=_EXAMPLE_UUID)
-    for field in ("id", "strikes", "device_id"):
-        value = getattr(entry, field)
-        if value is not None and not _is_uuid(value):
-            raise Unacceptable(f"{field} must be a UUID.", field=field, example=_EXAMPLE_UUID)
-    for field in ("slot", "text", "raw", "reason"):
-        check_text(getattr(entry, field) or "", field, most=_MOST_TEXT)
-    for field, most in _MOST.items():
-        value = getattr(entry, field)
-        if value is not None and not 0 <= value <= most:
-            says = f"{field} must be a whole number from 0 to {most}."
-            raise Unacceptable(says, field=field, example="1")
-
-
-_EXAMPLE_CURVE = '{"pasted": "0.00; 4.01"}'
-_EXAMPLE_UUID = "7f0f3b1e-2f57-4c0c-9d62-0c6f8c1c9a11"
-
-
-def _is_uuid(text: str) -> bool:
-    try:
-        return str(UUID(text)) == text
-    except ValueError:
-        return False
-
-
-def _body_digest(sheet_id: str, entry: NewEntry) -> str:
-    body = {"sheet_id": sheet_id, **asdict(entry)}
-    if entry.curve is None:
-        # entries without one keep the digest that they had before there were curves
-        del body["curve"]
-    return digest(canonical(body))
-
-
 def _earlier(session: Session, sheet: Sheet, entry: NewEntry) -> Written | None:
     """Return the first answer where this entry came before."""
     row = session.get(Entry, entry.id)
     if row is None:
         return None
-    if row.body_digest != _body_digest(sheet.id, entry):
+    if row.body_digest != body_digest(sheet.id, entry):
         says = "This entry's UUID came before with something else in it; nothing was written now."
         raise Unacceptable(says, field="id")
     return Written(row.id, row.position, repeated=True)
@@ -211,6 +145,7 @@ class _Pen:
         facts: SheetFacts,
         *,
         curves: CurvesRead,
+        sent_at: str | None,
         actor: Actor,
         now: datetime,
     ) -> None:
@@ -220,6 +155,8 @@ class _Pen:
         self._entries = list(facts.entries)
         self._refused = {one.kind: one for one in things_in_use(facts, at=now) if one.blocks}
         self._lines: list[dict[str, Any]] = []
+        sent = read_instant(sent_at, "sent_at")
+        self._skew_s = round((sent - now).total_seconds()) if sent else None
 
     def write(self, entry: NewEntry) -> Written:
         """Check one entry and write it."""
@@ -251,7 +188,7 @@ class _Pen:
             if entry.strikes and not entry.text.strip():
                 return self._add(entry, row.unit)
             says = f"{row.label} takes a file or pasted text, in curve; not words alone."
-            raise Unacceptable(says, field="curve", example=_EXAMPLE_CURVE)
+            raise Unacceptable(says, field="curve", example=EXAMPLE_CURVE)
         read = self._curves.by_entry.get(entry.id)
         if read is None:
             read = read_curve_of(entry.curve, self._curves.source)
@@ -282,8 +219,13 @@ class _Pen:
             actor=self._actor,
             now=self._now,
             why="; ".join(dict.fromkeys(reasons)) or None,
-            body={"entries": self._lines},
+            body={"entries": self._lines, **self._clock()},
         )
+
+    def _clock(self) -> dict[str, int]:
+        """Return how wrong the device's clock is, where it is too wrong to be trusted."""
+        off = self._skew_s is not None and abs(self._skew_s) > MOST_SKEW_S
+        return {CLOCK_OFF: self._skew_s} if off and self._skew_s is not None else {}
 
     def _check_in_date(self, entry: NewEntry, label: str) -> None:
         for kind in kind_of_slot(entry.slot):
@@ -326,6 +268,7 @@ class _Pen:
     def _add(self, entry: NewEntry, unit: str | None, curve: "_CurveKept | None" = None) -> Written:
         self._check_device(entry)
         position = len(self._entries) + 1
+        device_at = instant_of(entry)
         row = Entry(
             id=entry.id,
             sheet_id=self._sheet.id,
@@ -342,12 +285,13 @@ class _Pen:
             posted_by=self._actor.person_id,
             device_id=entry.device_id,
             device_sequence=entry.device_sequence if entry.device_id else None,
-            device_at=_instant(entry),
+            device_at=device_at,
             device_zone=entry.device_zone,
             monotonic_ms=entry.monotonic_ms,
             received_at=self._now,
             base_revision=entry.base_revision,
-            body_digest=_body_digest(self._sheet.id, entry),
+            body_digest=body_digest(self._sheet.id, entry),
+            late=is_late(device_at, self._now, skew_s=self._skew_s),
             file_id=curve.file_id if curve else None,
         )
         self._session.add(row)
@@ -407,21 +351,3 @@ class _Pen:
             late=row.late,
             file_id=row.file_id,
         )
-
-
-def _instant(entry: NewEntry) -> datetime | None:
-    """Return the device's time; it is kept beside the server's, which rules."""
-    if entry.device_zone is not None:
-        read_zone(entry.device_zone)
-    if entry.device_at is None:
-        return None
-    example = "2026-05-31T10:00:00+02:00"
-    try:
-        at = datetime.fromisoformat(entry.device_at)
-        if at.tzinfo is None:
-            says = "device_at needs its offset from UTC."
-            raise Unacceptable(says, field="device_at", example=example)
-        return at.astimezone(UTC)
-    except (ValueError, OverflowError) as problem:
-        says = "device_at must be a time in ISO 8601 with its offset."
-        raise Unacceptable(says, field="device_at", example=example) from problem

@@ -21,6 +21,7 @@ from server.procedures.throttle import (
     too_often_says,
     wait_s,
 )
+from server.records.queries.load_sign_ins import signed_since
 from server.records.queries.loading import laboratory_row, person_by_name
 from server.records.tables.people import Person, SignIn
 from server.records.trail import note
@@ -157,6 +158,12 @@ def sign_out(session: Session, token: str, *, now: datetime) -> None:
     session.flush()
     person = session.get_one(Person, row.person_id)
     note_act(session, "signed out", _thing(person), actor=_actor(session, person), now=now)
+
+
+def is_first_signing(session: Session, actor: Actor, *, token: str | None) -> bool:
+    """Say whether this person has signed nothing yet since this session began (21 CFR 11.200)."""
+    row = session.get(SignIn, token_digest(token)) if token else None
+    return row is None or not signed_since(session, actor.person_id, row.began_at)
 
 
 def find_own_account(session: Session, actor: Actor, *, source: str, now: datetime) -> AccountCheck:

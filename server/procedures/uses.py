@@ -22,7 +22,7 @@ from server.records.tables.shelf import BottleUse
 
 
 @dataclass(frozen=True, slots=True)
-class RecordUse:
+class UseBottle:
     """A result that rests on a bottle.
 
     ``certificate``: the number that the result was reckoned with, empty for the one that stood
@@ -45,9 +45,9 @@ class StrikeUse:
     reason: str
 
 
-def record_use(
+def use_bottle(
     session: Session,
-    command: RecordUse,
+    command: UseBottle,
     *,
     actor: Actor,
     now: datetime,

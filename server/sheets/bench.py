@@ -10,7 +10,8 @@ from server.sheets.plan import PlanView
 class EntryView:
     """One entry as written. ``at`` is ISO 8601 in UTC; ``clock`` the local hh:mm for the row.
 
-    ``raw`` is the line that an instrument sent; ``file_url`` the original of a curve.
+    ``raw`` is the line that an instrument sent; ``file_url`` the original of a curve. ``clock_says``
+    tells what was wrong with the clock that it was written by, and how late it came.
     """
 
     id: str
@@ -24,6 +25,7 @@ class EntryView:
     late: bool
     reason: str | None
     file_url: str | None = None
+    clock_says: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,8 +40,17 @@ class StruckEntry:
 
 
 @dataclass(frozen=True, slots=True)
+class RemarkView:
+    """A countersigner's remark on a row: who sent the sheet back with it, and when."""
+
+    text: str
+    by: str
+    says_at: str
+
+
+@dataclass(frozen=True, slots=True)
 class BenchRow:
-    """One row. ``kind``: number, step, choice, text, curve.
+    """One row. ``kind``: number, step, choice, text, curve; ``remarks`` stand oldest first.
 
     ``low`` and ``high`` are what is possible, ``usual_low`` and ``usual_high`` what is usual.
     """
@@ -61,6 +72,7 @@ class BenchRow:
     struck: tuple[StruckEntry, ...]
     usual_low: str | None = None
     usual_high: str | None = None
+    remarks: tuple[RemarkView, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)
@@ -137,7 +149,10 @@ class CautionView:
 
 @dataclass(frozen=True, slots=True)
 class SignatureView:
-    """A signature as printed: name, time with zone, meaning, and whether it still holds."""
+    """A signature as printed: name, time with zone, meaning, and whether it still holds.
+
+    ``trail_seen`` is the act up to which the countersigner had read the sheet's trail.
+    """
 
     printed_name: str
     meaning: str
@@ -146,6 +161,7 @@ class SignatureView:
     digest: str
     holds: bool
     remark: str | None
+    trail_seen: int | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -155,6 +171,17 @@ class NextRow:
     replicate: int
     slot: str
     segment: int
+
+
+@dataclass(frozen=True, slots=True)
+class ReturnView:
+    """A sheet sent back: by whom, when, with which remark; ``rows`` name rows and their remarks."""
+
+    by: str
+    at: str
+    says_at: str
+    remark: str
+    rows: tuple[tuple[str, str], ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -183,6 +210,7 @@ class BenchSheet:
     may_hand_in: bool
     sent_back_remark: str | None
     signatures: tuple[SignatureView, ...]
+    sent_back: ReturnView | None = None
 
 
 @dataclass(frozen=True, slots=True)

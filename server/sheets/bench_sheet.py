@@ -15,9 +15,10 @@ from server.lab.sheet_facts import SheetFacts, StandardLotFact
 from server.lab.states import OPEN, SENT_BACK
 from server.records.queries.list_sheets import snapshots_of
 from server.records.queries.load_sheet import load_sheet_facts
-from server.sheets.bench import BenchSheet
-from server.sheets.parts.doors import need_reader
-from server.sheets.parts.margin import margin_of
+from server.sheets.bench import BenchSheet, ReturnView
+from server.sheets.parts.doors import may_read_number, need_reader
+from server.sheets.parts.margin import margin_of, margin_withheld
+from server.sheets.parts.returned import return_views
 from server.sheets.parts.roots import caution_views, rests_on
 from server.sheets.parts.rows import groups_of, next_row
 from server.sheets.parts.sheet_lines import sheet_title
@@ -66,14 +67,25 @@ def bench_sheet(
         deferral=DEFERRAL,
         groups=groups,
         next=next_row(groups) if may_write else None,
-        margin=margin_of(facts, prepared, groups),
+        margin=(
+            margin_of(facts, prepared, groups)
+            if may_read_number(reader, facts.state)
+            else margin_withheld()
+        ),
         missing=missing,
         correction_reasons=CORRECTION_REASONS,
         may_write=may_write,
         may_hand_in=writable and not missing and reader.may(Act.HAND_IN),
         sent_back_remark=facts.sent_back_remark if facts.state == SENT_BACK else None,
         signatures=signature_views(facts, snapshots),
+        sent_back=_sent_back(facts),
     )
+
+
+def _sent_back(facts: SheetFacts) -> ReturnView | None:
+    """Return what was said when the sheet was sent back last, while that is not answered."""
+    views = return_views(facts) if facts.state in {OPEN, SENT_BACK} else ()
+    return views[-1] if views else None
 
 
 def against(facts: SheetFacts) -> str:

@@ -20,6 +20,7 @@ from server.sheets.look_up import at_temperature, read_celsius
 from server.sheets.parts.by_code import find_bottle
 from server.sheets.parts.doors import may_hold, may_release, need_shelf
 from server.sheets.parts.history import history_chart, history_lines, state_of_certificate
+from server.sheets.parts.label_state import label_says
 from server.sheets.parts.outcome import Printed, printed
 from server.sheets.parts.roots import caution_views
 from server.sheets.parts.shelf_state import (
@@ -95,6 +96,7 @@ def open_bottle_card(
         may_open=tends and bottle.opened_at is None,
         may_move=tends,
         held_says=_held_says(one, zone) if actor is not None else "",
+        label_says=label_says(session, one, laboratory.settings) if actor is not None else "",
         opened=_opened(one, zone),
         watching=(
             actor is not None

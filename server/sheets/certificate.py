@@ -16,8 +16,22 @@ class CertificateFile:
 
 
 @dataclass(frozen=True, slots=True)
+class CertificateChanges:
+    """Why a certificate replaces the one before it, and what it says otherwise.
+
+    A line holds what changed, what stood there, and what stands now.
+    """
+
+    reason: str
+    lines: tuple[tuple[str, str, str], ...]
+
+
+@dataclass(frozen=True, slots=True)
 class CertificatePage:
-    """The issued statement of a lot's concentration."""
+    """The issued statement of a lot's concentration.
+
+    ``reviewed`` False: nobody but whoever did the work has signed it.
+    """
 
     number: str
     state: str
@@ -65,3 +79,5 @@ class CertificatePage:
     statements: tuple[str, ...]
     files: tuple[CertificateFile, ...]
     no_dcc: str
+    changes: CertificateChanges | None
+    reviewed: bool

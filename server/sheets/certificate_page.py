@@ -22,7 +22,7 @@ from server.records.queries.list_trail import issue_noted
 from server.records.queries.load_papers import load_laboratory_fact
 from server.records.queries.load_sheet import load_sheet_facts
 from server.sheets.bench import SignatureView
-from server.sheets.certificate import CertificateFile, CertificatePage
+from server.sheets.certificate import CertificateChanges, CertificateFile, CertificatePage
 from server.sheets.parts import outcome
 from server.sheets.parts.certificate_words import (
     CUSTOMER,
@@ -30,6 +30,7 @@ from server.sheets.parts.certificate_words import (
     item_words,
     statement_lines,
 )
+from server.sheets.parts.replacement import changed_lines, why_replaced
 from server.sheets.parts.doors import need_reader
 from server.sheets.parts.history import state_of_certificate
 from server.sheets.parts.roots import certificate_roots, root_urls
@@ -107,6 +108,8 @@ def open_certificate(
         statements=tuple(statement_lines(document)),
         files=tuple(_files(kept.row.number, has_dcc=has_dcc)),
         no_dcc="" if has_dcc else "No DCC: the laboratory's country is not set.",
+        changes=_changes(session, document),
+        reviewed=document["independently_reviewed"],
     )
 
 
@@ -150,6 +153,17 @@ def _kept(session: Session, number: str) -> KeptCertificate:
     if kept is None:
         raise NotFound(f"There is no certificate {number[:40]}.", field="number")
     return kept
+
+
+def _changes(session: Session, document: Mapping[str, Any]) -> CertificateChanges | None:
+    """Return what the certificate says otherwise than the one it replaces, None where none."""
+    before = certificate_by_number(session, document["replaces"]) if document["replaces"] else None
+    if before is None:
+        return None
+    return CertificateChanges(
+        reason=why_replaced(document, before.document),
+        lines=tuple(changed_lines(before.document, document)),
+    )
 
 
 def _state_says(session: Session, kept: KeptCertificate, zone: str) -> str:

@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from server.sheets.bench import BenchGroup, FindingView, RestsOn, SignatureView
+from server.sheets.bench import BenchGroup, FindingView, RestsOn, ReturnView, SignatureView
 from server.sheets.curves import CurveView
 from server.sheets.methods import ComparisonView
 
@@ -70,6 +70,14 @@ class Figure:
 
 
 @dataclass(frozen=True, slots=True)
+class ToSee:
+    """Something to see before signing; ``rows`` are the rows in question, each with its anchor."""
+
+    says: str
+    rows: tuple[tuple[str, str], ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
 class TrailLine:
     """A line of the trail."""
 
@@ -86,7 +94,11 @@ class TrailLine:
 
 @dataclass(frozen=True, slots=True)
 class CountersignPage:
-    """One sheet in three bands: the number, why, what was written."""
+    """One sheet in three bands: the number, why, what was written.
+
+    ``to_see`` is what a signer is shown before she signs, ``trail_last`` the number of the last act
+    of the sheet's trail, ``replaces`` the certificate that a new one would replace.
+    """
 
     sheet_id: str
     number: str
@@ -126,3 +138,7 @@ class CountersignPage:
     certificate_number: str | None
     refused: str | None
     signer: str
+    returns: tuple[ReturnView, ...]
+    to_see: tuple[ToSee, ...]
+    trail_last: int
+    replaces: str | None

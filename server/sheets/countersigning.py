@@ -10,6 +10,7 @@ from server.lab.actor import Actor
 from server.lab.in_use import things_in_use
 from server.lab.ink import strikes
 from server.lab.refusal import NotAllowed
+from server.lab.roles import Act, holders
 from server.lab.sheet_facts import EvaluationFact, SheetFacts
 from server.lab.states import HANDED_IN, OPEN
 from server.records.queries.list_certificates import certificate_of_sheet
@@ -22,12 +23,15 @@ from server.sheets.parts import outcome
 from server.sheets.parts.acts import trail_lines
 from server.sheets.parts.comparison_view import sheet_comparison
 from server.sheets.parts.curve_views import curve_views
-from server.sheets.parts.doors import need_reader
+from server.sheets.parts.doors import may_read_number, need_reader
+from server.sheets.parts.returned import return_views
 from server.sheets.parts.roots import rests_on, root_urls_of_sheet
 from server.sheets.parts.rows import groups_of
 from server.sheets.parts.sheet_lines import sheet_title
 from server.sheets.parts.signed import signature_views, signed_findings
 from server.sheets.parts.telling import moment_words
+from server.sheets.parts.to_see import things_to_see
+from server.sheets.parts.written_when import clocks_off
 from server.sheets.queue import countersign_problem
 
 _NOT_AS_SIGNED = (
@@ -43,12 +47,16 @@ def open_countersign(
 
     Raises:
         NotFound: there is no such sheet.
-        NotAllowed: nothing of it is handed in.
+        NotAllowed: nothing of it is handed in, or its number is not certified yet and not this
+            person's to read.
         NotSignedIn: a visitor.
     """
     del now
     reader = need_reader(actor)
     facts = load_sheet_facts(session, sheet_id)
+    if not may_read_number(reader, facts.state):
+        who = " or ".join(holders(Act.READ_UNCERTIFIED))
+        raise NotAllowed(f"This sheet is {facts.state}: only {who} reads its number by now.")
     evaluation = _evaluation(facts)
     result = evaluation.result
     zone = facts.laboratory.zone
@@ -56,6 +64,9 @@ def open_countersign(
     findings = signed_findings(facts, result["findings"])
     signatures = signature_views(facts, snapshots_of(session, facts.id))
     certificate = certificate_of_sheet(session, facts.id)
+    trail = trail_of_sheet(session, facts.id)
+    groups = groups_of(facts, clocks_off(trail))
+    standing = facts.last_certificate if facts.state == HANDED_IN else None
     return CountersignPage(
         sheet_id=facts.id,
         number=facts.number,
@@ -88,13 +99,17 @@ def open_countersign(
         methods=sheet_comparison(facts),
         curves=curve_views(facts),
         rests_on=rests_on(facts),
-        groups=groups_of(facts),
-        trail=trail_lines(trail_of_sheet(session, facts.id), zone),
+        groups=groups,
+        trail=trail_lines(trail, zone),
         signatures=signatures,
         certificate_url=f"/certificates/{certificate.number}" if certificate else None,
         certificate_number=certificate.number if certificate else None,
         refused=_refused(facts, signatures, reader),
         signer=reader.printed_name,
+        returns=return_views(facts),
+        to_see=things_to_see(facts, groups),
+        trail_last=max((one.seq for one in trail if one.kind == "sheet"), default=0),
+        replaces=standing.number if standing else None,
     )
 
 

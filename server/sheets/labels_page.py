@@ -27,6 +27,7 @@ from server.records.tables.lots import Lot
 from server.sheets.labels import LabelJob, LabelLine, LabelsPage, PrintLine
 from server.sheets.parts.by_code import as_code, find_lot
 from server.sheets.parts.doors import need_reader
+from server.sheets.parts.label_state import again_says, is_gone
 from server.sheets.parts.sheet_lines import lot_words
 from server.sheets.parts.telling import count_words, moment_words, typed_day_words
 
@@ -46,14 +47,14 @@ def open_labels(session: Session, thing: str, *, actor: Actor | None, now: datet
     shelf = bottles_of_lot(session, lot_on_shelf(session, lot.id)) if lot else _outdated(session)
     printed = labels_of_bottles(session, [one.bottle.id for one in shelf])
     code = as_code(thing)
-    good = [one for one in shelf if not _gone(one)]
+    good = [one for one in shelf if not is_gone(one)]
     named = code if any(one.bottle.code == code for one in shelf) else ""
     return LabelsPage(
         thing=thing.strip(),
         title=f"Labels of {lot_words(lot)}" if lot else "Labels",
         lot_code=lot.code if lot else "",
         bottles=tuple(_line(one, printed, now, reader.zone, named) for one in good),
-        no_label=", ".join(one.bottle.code for one in shelf if _gone(one)),
+        no_label=", ".join(one.bottle.code for one in shelf if is_gone(one)),
         prints=tuple(_print_line(one, reader.zone) for one in printed[:_MOST_PRINTS]),
         value_says=_value_says(laboratory),
         hazards_says=_hazards_says(laboratory, lot) if lot else "",
@@ -97,11 +98,7 @@ def _outdated(session: Session) -> list[BottleOnShelf]:
     if not last:
         return []
     found = [one for one in bottles_on_shelf(session) if one.bottle.id in last]
-    return [one for one in found if not _gone(one) and _again(one, last[one.bottle.id])]
-
-
-def _gone(one: BottleOnShelf) -> bool:
-    return one.bottle.used_up_at is not None or one.lot.pulled
+    return [one for one in found if not is_gone(one) and again_says(one, last[one.bottle.id])]
 
 
 def _line(
@@ -110,7 +107,7 @@ def _line(
     own = [label for label in printed if label.bottle_id == one.bottle.id]
     state = one.state(now)
     last = own[0] if own else None
-    again = _again(one, last) if last else ""
+    again = again_says(one, last) if last else ""
     code = one.bottle.code
     return LabelLine(
         code=code,
@@ -129,17 +126,6 @@ def _printed_words(own: Sequence[PrintedLabel], zone: str) -> str:
         return "no label yet"
     times = count_words(len(own), "label")
     return f"{times}, last {moment_words(own[0].at, zone)} by {own[0].person_name}"
-
-
-def _again(one: BottleOnShelf, last: PrintedLabel) -> str:
-    """Return why a bottle's label should be printed again: the value on it stands no more."""
-    value, standing = last.text.value, one.lot.certificate
-    if value is None:
-        return ""
-    if standing is None or standing.row.number != value.certificate:
-        now = f", which {standing.row.number} replaced" if standing else ""
-        return f"Its label bears the value of {value.certificate}{now}."
-    return ""
 
 
 def _print_line(one: PrintedLabel, zone: str) -> PrintLine:

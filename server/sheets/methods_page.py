@@ -17,6 +17,7 @@ from server.lab.actor import Actor
 from server.lab.calibration.typed_numbers import read_number
 from server.lab.refusal import NotFound, Unacceptable
 from server.lab.sheet_facts import SheetFacts
+from server.lab.states import COUNTERSIGNED
 from server.records.queries.list_sheets import ListedSheet, sheets_of_lot
 from server.records.queries.load_sheet import load_many_sheet_facts
 from server.sheets.methods import MethodsPage, SheetChoice
@@ -45,7 +46,7 @@ class MethodsAsked:
 def open_methods(
     session: Session, code: str, asked: MethodsAsked, *, actor: Actor | None, now: datetime
 ) -> MethodsPage:
-    """Return the end-point methods of a lot compared over its evaluated sheets.
+    """Return the end-point methods of a lot compared over its certified sheets.
 
     Raises:
         NotFound: no lot has this code, or the lot no sheet of a number that was asked for.
@@ -58,7 +59,8 @@ def open_methods(
     listed = sheets_of_lot(session, lot.id)
     _check_numbers(asked.sheets, {one.sheet.number for one in listed})
     facts = load_many_sheet_facts(session, [one.sheet.id for one in listed])
-    outcomes = {one.number: read for one in facts if (read := outcome_of(one)) is not None}
+    certified = [one for one in facts if one.state == COUNTERSIGNED]
+    outcomes = {one.number: read for one in certified if (read := outcome_of(one)) is not None}
     chosen = [one for number, one in outcomes.items() if _is_chosen(number, asked)]
     limits = _strictest(chosen)
     found = compare_sheets(
@@ -131,7 +133,7 @@ def _choices(
                 says=_sheet_says(known[one.sheet.id], outcome),
                 url=sheet_url(one.sheet, state),
                 chosen=outcome is not None and _is_chosen(one.sheet.number, asked),
-                refused="" if outcome else f"{state}: no result stands",
+                refused="" if outcome else f"{state}: no certified result stands",
             )
         )
     return found

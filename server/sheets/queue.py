@@ -1,5 +1,6 @@
 """The sheets that wait for a second person, longest first."""
 
+from dataclasses import replace
 from datetime import datetime
 
 from sqlalchemy.orm import Session
@@ -11,7 +12,7 @@ from server.lab.sheet_facts import SheetFacts
 from server.records.queries.list_sheets import done_sheet_ids, waiting_sheet_ids
 from server.records.queries.load_sheet import load_many_sheet_facts
 from server.sheets.countersign import Queue, QueueLine
-from server.sheets.parts.doors import need_reader
+from server.sheets.parts.doors import may_read_number, need_reader
 from server.sheets.parts.sheet_lines import sheet_title
 from server.sheets.parts.signed import countersignature, signed_findings
 from server.sheets.parts.telling import moment_words, span_words
@@ -43,11 +44,16 @@ def countersign_problem(facts: SheetFacts, reader: Actor) -> str | None:
 
 def _waiting(facts: SheetFacts, reader: Actor, now: datetime) -> QueueLine:
     since = facts.handed_in_at or now
-    return _line(
+    line = _line(
         facts,
         waiting=f"waits {span_words(now - since)}",
         refused=countersign_problem(facts, reader),
     )
+    if reader.may(Act.COUNTERSIGN):
+        return line
+    # a number that is not certified stands on its own sheet only
+    url = line.url if may_read_number(reader, facts.state) else f"/bench/{facts.id}"
+    return replace(line, reported="", stands_out=(), url=url)
 
 
 def _done(facts: SheetFacts) -> QueueLine:

@@ -108,6 +108,7 @@ class BottleCard:
     may_open: bool
     may_move: bool
     held_says: str
+    label_says: str
     opened: str
     watching: bool
     uses: UsesView | None

@@ -6,6 +6,7 @@ from typing import Any
 
 from fastapi import Request
 from fastapi.responses import HTMLResponse, Response
+from starlette.routing import Match
 
 from server.lab.refusal import Refusal
 from server.sheets.people import Chrome, open_chrome
@@ -137,8 +138,7 @@ def show_sign_in(
 ) -> Response:
     """Answer somebody who is not signed in with the sign-in page, which leads back here."""
     visit = open_visit(request)
-    here = request.url.path + (f"?{request.url.query}" if request.url.query else "")
-    page = SignInPage(next=here if request.method == "GET" else "/", typed=typed_lines(request))
+    page = SignInPage(next=_page_before(request), typed=typed_lines(request))
     return show(
         visit,
         "session/sign_in.html",
@@ -147,6 +147,19 @@ def show_sign_in(
         headers=headers,
         problem=problem_of(refusal) if request.method != "GET" else None,
     )
+
+
+def _page_before(request: Request) -> str:
+    """Return the page that somebody was on: this one, or the one whose form was sent."""
+    path = request.url.path
+    if request.method == "GET":
+        return path + (f"?{request.url.query}" if request.url.query else "")
+    return next((one for one in (path, path.rpartition("/")[0]) if _is_page(request, one)), "/")
+
+
+def _is_page(request: Request, path: str) -> bool:
+    scope = {**request.scope, "method": "GET", "path": path}
+    return any(route.matches(scope)[0] is Match.FULL for route in request.app.routes)
 
 
 def show_problem(

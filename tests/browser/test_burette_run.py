@@ -64,8 +64,11 @@ def certified(hand, second, sheet):
     revision = before["sheet"]["revision"]
     body = {"revision": revision, "reasons": reasons, "password": PASSWORD}
     hand.post(f"/api/sheets/{sheet}/hand-in", body)
-    revision = second.get(f"/api/sheets/{sheet}")["revision"]
-    body = {"revision": revision, "accepted": failing, "password": PASSWORD}
+    page = second.get(f"/api/sheets/{sheet}/countersign")
+    body = {
+        "revision": page["revision"], "accepted": failing, "password": PASSWORD,
+        "trail_seen": page["trail_last"],
+    }  # fmt: skip
     number = second.post(f"/api/sheets/{sheet}/countersign", body)["certificate"]
     return number, second.get(f"/api/certificates/{number}")
 

@@ -8,8 +8,9 @@ from uuid import uuid4
 import pytest
 from sqlalchemy import select
 
+from server.intake.curve_upload import SentCurve
 from server.procedures.bench import BeginSheet, begin_sheet
-from server.procedures.entries import NewEntry, SentCurve, WriteEntries, write_entries
+from server.procedures.entries import NewEntry, WriteEntries, write_entries
 from server.procedures.stores import WriteRecipe, write_recipe
 from server.records.tables.stores import Instrument, StandardLot
 from tests.browser.conftest import RECIPE

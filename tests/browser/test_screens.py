@@ -9,7 +9,9 @@ pytestmark = pytest.mark.browser
 WIDTHS = {390: 844, 820: 1180, 1440: 900}
 PAGES = {
     None: ("/", "/sign-in", "/about"),
-    "ida": ("/bench", "/me", "/countersign", "/stores", "/instruments", "/trail", "/lots/new", "/labels"),
+    "ida": (
+        "/bench", "/me", "/countersign", "/stores", "/instruments", "/trail", "/lots/new", "/labels",
+    ),  # fmt: skip
     "nils": ("/stores/recipes/new", "/stores/standard-lots/new", "/instruments/new"),
     "runa": ("/people", "/laboratory"),
 }

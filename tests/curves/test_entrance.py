@@ -164,7 +164,7 @@ def test_circumstances_that_cannot_be_are_refused_by_name(more, says):
 
 def by_drops(end_mL, rng):
     """One drop of 0.05 mL after the other, as a drop counter gives them."""
-    return np.round(np.arange(0, 1.22 * end_mL, 0.05) + 0.05 * float(rng.uniform()), 4)
+    return np.round(np.arange(0, 1.22 * end_mL, 0.05) + 0.0125 * int(rng.integers(4)), 4)
 
 
 @pytest.mark.slow

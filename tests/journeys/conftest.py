@@ -31,6 +31,7 @@ from server.procedures.stores import (
 )
 from server.records import trail
 from server.records.queries.load_sheet import load_sheet_facts
+from server.records.queries.sheet_trail import last_act_of_sheet
 from server.records.tables.trail import TrailRow
 from server.sheets.look_up import look_up
 
@@ -166,7 +167,8 @@ class Laboratory:
     def countersign(self, sheet: str, *accepted: str, who: str = "second") -> Any:
         """Countersign a sheet an hour later, accepting findings by name."""
         self.clock.move(hours=1)
-        command = Countersign(sheet, self.facts(sheet).revision, accepted)
+        seen = self.transactions.read(lambda session: last_act_of_sheet(session, sheet))
+        command = Countersign(sheet, self.facts(sheet).revision, accepted, trail_seen=seen)
         return self.act(countersign_sheet, command, who, proof=self.proof(who))
 
     def facts(self, sheet: str) -> Any:

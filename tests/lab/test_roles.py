@@ -20,6 +20,7 @@ TABLE = {
     Act.CONFIRM_PULL: {"countersigner"},
     Act.ADMINISTER: {"steward"},
     Act.READ: {"analyst", "countersigner", "keeper", "steward", "reader"},
+    Act.READ_UNCERTIFIED: {"analyst", "countersigner"},
 }
 
 

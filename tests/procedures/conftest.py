@@ -38,6 +38,7 @@ from server.procedures.stores import (
 from server.records import trail
 from server.records.database import Database, open_database, sqlite_url
 from server.records.queries.load_sheet import load_sheet_facts
+from server.records.queries.sheet_trail import last_act_of_sheet
 from server.records.tables.trail import TrailRow
 from server.records.transaction import Transactions
 
@@ -233,8 +234,17 @@ class Laboratory:
         self.clock.move(minutes=5)
         facts = self.facts(sheet or self.sheet)
         accepted = failing(facts.evaluation.result["findings"]) if facts.evaluation else []
-        command = Countersign(sheet or self.sheet, facts.revision, tuple(accepted))
+        seen = self.last_act(sheet)
+        command = Countersign(
+            sheet or self.sheet, facts.revision, tuple(accepted), trail_seen=seen
+        )
         return self.act(countersign_sheet, command, who, proof=self.proof(who))
+
+    def last_act(self, sheet: str = "") -> int:
+        """Return the number of the last act in a sheet's trail."""
+        return self.transactions.read(
+            lambda session: last_act_of_sheet(session, sheet or self.sheet)
+        )
 
     def certify(self, sheet: str = "") -> dict[str, Any]:
         """Write a whole sheet, hand it in and countersign it."""

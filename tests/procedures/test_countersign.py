@@ -10,12 +10,7 @@ from server.lab.canonical import digest
 from server.lab.refusal import NotAllowed, NotSignedIn, Refusal, Stale, Unacceptable
 from server.lab.signing import signature_holds
 from server.procedures.bench import LetBeUsed, let_be_used
-from server.procedures.countersign import (
-    Countersign,
-    SendBack,
-    countersign_sheet,
-    send_back_sheet,
-)
+from server.procedures.countersign import Countersign, countersign_sheet
 from server.procedures.entries import NewEntry
 from server.procedures.holds import HoldThing, hold_thing
 from server.procedures.laboratory import ChangeSettings, change_settings
@@ -28,6 +23,7 @@ from server.procedures.lots import (
     propose_pull,
 )
 from server.procedures.repeats import once
+from server.procedures.send_back import SendBack, send_back_sheet
 from server.records.queries.load_lots import lot_of_code, standing_certificate
 from server.records.tables.bench import Certificate, Signature
 from server.records.trail import head
@@ -57,7 +53,9 @@ def waiting(lab, count=3):
 
 def refusal(lab, kind, who="countersigner", *, accepted=(), revision=None, proof=None):
     before = (lab.facts(), lab.acts())
-    command = Countersign(lab.sheet, revision or before[0].revision, accepted)
+    command = Countersign(
+        lab.sheet, revision or before[0].revision, accepted, trail_seen=lab.last_act()
+    )
     with pytest.raises(kind) as refused:
         lab.act(countersign_sheet, command, who, proof=proof or lab.proof(who))
     assert (lab.facts(), lab.acts()) == before
@@ -226,7 +224,10 @@ def test_finding_that_fails_is_accepted_by_name_or_not_at_all(sqlite_lab):
     assert refusal(sqlite_lab, Unacceptable).example == "replicates"
     refused = refusal(sqlite_lab, Unacceptable, accepted=("replicates", "spread"))
     assert "“spread” does not fail" in refused.says
-    command = Countersign(sqlite_lab.sheet, sqlite_lab.facts().revision, ("replicates",), "seen")
+    seen = sqlite_lab.last_act()
+    command = Countersign(
+        sqlite_lab.sheet, sqlite_lab.facts().revision, ("replicates",), "seen", seen
+    )
     sqlite_lab.act(
         countersign_sheet, command, "countersigner", proof=sqlite_lab.proof("countersigner")
     )
@@ -270,7 +271,8 @@ def test_lot_pulled_after_hand_in_stops_the_certificate(sqlite_lab):
 
 def test_remark_too_long_is_refused_never_cut(sqlite_lab):
     waiting(sqlite_lab)
-    command = Countersign(sqlite_lab.sheet, sqlite_lab.facts().revision, (), "x" * 2001)
+    seen = sqlite_lab.last_act()
+    command = Countersign(sqlite_lab.sheet, sqlite_lab.facts().revision, (), "x" * 2001, seen)
     with pytest.raises(Unacceptable) as refused:
         sqlite_lab.act(
             countersign_sheet, command, "countersigner", proof=sqlite_lab.proof("countersigner")
@@ -341,11 +343,11 @@ def test_sheet_with_an_entry_smuggled_in_is_not_certified(sqlite_lab):
 
 def test_twenty_countersign_at_once_and_exactly_one_certificate_is_issued(lab):
     waiting(lab)
-    revision = lab.facts().revision
+    revision, seen = lab.facts().revision, lab.last_act()
 
     def countersign(n):
         who = "countersigner" if n % 2 else "second countersigner"
-        command = Countersign(lab.sheet, revision)
+        command = Countersign(lab.sheet, revision, trail_seen=seen)
         try:
             return lab.act(countersign_sheet, command, who, proof=lab.proof(who))
         except Refusal as refused:
@@ -363,7 +365,8 @@ def test_countersigning_tapped_twenty_times_with_one_key_gets_equal_answers(lab)
     # R087: the second tap comes while the first is under way
     waiting(lab)
     actor = lab.people["countersigner"]
-    command, proof = Countersign(lab.sheet, lab.facts().revision), lab.proof("countersigner")
+    command = Countersign(lab.sheet, lab.facts().revision, trail_seen=lab.last_act())
+    proof = lab.proof("countersigner")
 
     def tap(_):
         def work(session):

@@ -10,11 +10,12 @@ import pytest
 from server.curves.circumstances import SYSTEMS
 from server.curves.outcome import METHODS
 from server.evaluation.sheet_curves import curves_of_sheet
+from server.intake.curve_upload import SentCurve
 from server.lab.curve_entry import CURVE_METHODS, CURVE_SYSTEMS, read_curve_entry
 from server.lab.ink import ink_digest, standing
 from server.lab.refusal import NotAllowed, Unacceptable
 from server.procedures.curves import find_curve_source
-from server.procedures.entries import SentCurve, WriteEntries, read_curves, write_entries
+from server.procedures.entries import WriteEntries, read_curves, write_entries
 from server.procedures.stores import WriteRecipe, write_recipe
 from server.records.queries.load_files import file_fact
 from server.records.tables.stores import CurveColumns, File

@@ -16,14 +16,10 @@ from server.procedures.bench import (
     begin_sheet,
     let_be_used,
 )
+from server.procedures.bottles import MoveBottle, OpenBottle, move_bottle, open_bottle
 from server.procedures.calibration_files import HandOver, hand_over
 from server.procedures.calibration_runs import RecordRun, StateClass, record_run, state_class
-from server.procedures.countersign import (
-    Countersign,
-    SendBack,
-    countersign_sheet,
-    send_back_sheet,
-)
+from server.procedures.countersign import Countersign, countersign_sheet
 from server.procedures.entries import WriteEntries, write_entries
 from server.procedures.hand_in import HandIn, hand_in_sheet, prepare_hand_in
 from server.procedures.holds import HoldThing, ReleaseThing, hold_thing, release_thing
@@ -73,6 +69,7 @@ from server.procedures.people import (
     change_roles,
     close_account,
 )
+from server.procedures.send_back import SendBack, send_back_sheet
 from server.procedures.standard_lots import (
     AttachCertificate,
     CountStandardLot,
@@ -95,6 +92,7 @@ from server.procedures.stores import (
     receive_standard_lot,
     write_recipe,
 )
+from server.procedures.uses import StrikeUse, UseBottle, strike_use, use_bottle
 
 ROLES = ("analyst", "countersigner", "keeper", "steward", "reader")
 NOBODY = "00000000-0000-0000-0000-000000000001"
@@ -104,6 +102,10 @@ TABLE = {
     make_up_lot: ({"analyst"}, MakeUpLot("", "0.1")),
     fill_bottles: ({"analyst"}, FillBottles("x", "Shelf", "1000")),
     use_up_bottle: ({"analyst"}, UseUpBottle("x")),
+    open_bottle: ({"analyst"}, OpenBottle("x")),
+    move_bottle: ({"analyst"}, MoveBottle("x", "Shelf 2")),
+    use_bottle: ({"analyst", "keeper"}, UseBottle("x", "W-1")),
+    strike_use: ({"analyst", "keeper"}, StrikeUse("x", NOBODY, "misread")),
     begin_sheet: ({"analyst"}, BeginSheet("x", NOBODY, NOBODY, NOBODY, NOBODY)),
     write_entries: ({"analyst"}, WriteEntries(NOBODY, ())),
     abandon_sheet: ({"analyst"}, AbandonSheet(NOBODY, "leak")),
@@ -170,8 +172,10 @@ def test_procedure_by_role_is_allowed_or_refused_by_the_table(shared_lab, proced
 
 
 def test_table_names_every_procedure_that_takes_an_actor():
-    # sessions, set up and one's own password are everybody's own affair
+    # sessions, set up, one's own password, tokens and watches are everybody's own affair
     own = {"change_password", "find_own_account", "record_proof", "sign_out", "once", "find_answer"}
+    own |= {"make_token", "revoke_token"}
+    own |= {"watch_thing", "stop_watching", "read_notices", "send_notices"}
     # parts of other procedures, which ask for the role
     own |= {"keep_calibration", "keep_file", "write_line", "strike_line"}
     found = set()

@@ -9,13 +9,13 @@ from sqlalchemy.exc import DBAPIError
 from server.lab.refusal import NotAllowed, NotFound, SavedFirst, Unacceptable
 from server.procedures.holds import HoldThing, hold_thing
 from server.procedures.lots import ConfirmPull, ProposePull, confirm_pull, propose_pull
-from server.procedures.uses import RecordUse, StrikeUse, record_use, strike_use
+from server.procedures.uses import StrikeUse, UseBottle, strike_use, use_bottle
 from server.records.tables.shelf import BottleUse
 from server.sheets.uses_page import open_uses_of_bottle, open_uses_of_lot
 
 
 def use(lab, result="W-1", who="analyst", **more):
-    return lab.act(record_use, RecordUse(lab.bottle, result, **more), who)
+    return lab.act(use_bottle, UseBottle(lab.bottle, result, **more), who)
 
 
 def uses(lab, who="reader", **more):

@@ -71,7 +71,7 @@ def test_stated_value_tells_which_method_is_the_truer(opened, facts) -> None:
 def test_sheet_that_is_open_is_named_and_cannot_be_picked(opened) -> None:
     page = opened()
     assert [bool(one.refused) for one in page.sheets] == [not one.chosen for one in page.sheets]
-    assert any(one.refused == "open: no result stands" for one in page.sheets)
+    assert any(one.refused == "open: no certified result stands" for one in page.sheets)
     assert any(one.chosen for one in page.sheets)
 
 
@@ -85,9 +85,20 @@ def test_picked_sheets_alone_are_compared(opened, facts) -> None:
 
 
 def test_lot_titrated_by_eye_alone_says_what_would_be_compared(demo) -> None:
+    pages = [
+        demo.read(open_methods, code, MethodsAsked(), who="imke")
+        for code in demo.summary.bottles_in_force
+    ]
+    problems = [one.comparison.problem for one in pages]
+    assert any(
+        one.startswith("Only “indicator phenolphthalein” has two values") for one in problems
+    )
+
+
+def test_sheet_that_is_not_certified_is_named_and_not_compared(demo) -> None:
     facts = demo.transactions.read(lambda s: load_sheet_facts(s, demo.summary.waiting_sheet_id))
     page = demo.read(open_methods, facts.lot.code, MethodsAsked(), who="imke")
-    assert page.comparison.problem.startswith("Only “indicator phenolphthalein” has two values")
+    assert [one.refused for one in page.sheets] == ["handed in: no certified result stands"]
 
 
 @pytest.mark.parametrize(

@@ -136,9 +136,9 @@ class Hand:
 
 
 @pytest.fixture
-def app(transactions: Transactions, clock: Any) -> Any:
+def app(transactions: Transactions, clock: Any, tmp_path: Path) -> Any:
     """The application on an empty database, of each engine."""
-    settings = Settings(data=Path(), database_url="")
+    settings = Settings(data=tmp_path, database_url="")
     return build_app(settings, transactions=transactions, clock=clock, setup_code=CODE)
 
 

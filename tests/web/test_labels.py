@@ -179,6 +179,8 @@ def test_value_on_labels_asks_for_new_ones_when_its_certificate_is_replaced(
     assert due["code"] == bottle
     assert "TL-2026-0004, which TL-2026-0005 replaced" in due["again"]
     assert "To be printed again" in imke.get("/labels").text
+    assert due["again"] in imke.get(f"/b/{bottle}").text
+    assert "Its label bears" not in web.visitor().get(f"/b/{bottle}").text
 
 
 def _forge_print_with_certificate(web: Any, bottle: str, number: str) -> None:
@@ -291,7 +293,7 @@ def test_form_prints_and_leads_to_the_print(web: Any, bottle: str) -> None:
     assert answer.status_code == 303
     page = imke.get(answer.headers["location"])
     assert page.status_code == 200
-    assert "onto 80x40, 203 dots per inch" in page.text
+    assert "onto one label, 80 × 40 mm, 203 dots per inch" in page.text
 
 
 def test_hazards_are_on_labels_only_of_the_solution_that_was_confirmed(
@@ -401,3 +403,36 @@ def test_settings_form_keeps_what_it_does_not_hold_and_takes_what_it_does(web: A
     assert marisol.form("/laboratory", **form, revision="2").status_code == 303
     later = marisol.get("/api/laboratory").json()
     assert later == {**now, "revision": 3}
+
+
+def test_settings_form_that_was_refused_keeps_what_was_typed_and_ticked(shared_web: Any) -> None:
+    marisol = shared_web.client("marisol")
+    form = {"name": "Lower <weir>", "zone": "Europe/Zurich", "address": "", "labels": "shown"}
+
+    answer = marisol.form(
+        "/laboratory", **form, revision="1", label_value="yes", country="Helvetia", base_url=""
+    )
+
+    assert answer.status_code == 422
+    assert 'value="Helvetia"' in answer.text
+    assert 'value="Lower &lt;weir&gt;"' in answer.text
+    assert 'name="label_value" value="yes" checked' in answer.text
+    assert 'name="shelf_open" value="yes" checked' not in answer.text
+
+
+def test_hazards_form_that_was_refused_stands_open_with_what_was_typed(shared_web: Any) -> None:
+    marisol = shared_web.client("marisol")
+
+    answer = marisol.form(
+        "/laboratory/hazards", titrant="NaOH", nominal="0,1", medium="water", confirmed_by="",
+        confirmed_on="2026-05-01", pictograms=["GHS05", "GHS07"], statements="H290 <metals>",
+        revision="1",
+    )  # fmt: skip
+
+    assert answer.status_code == 422
+    assert '<details class="fold" open><summary>Write down a confirmation' in answer.text
+    for key in ("GHS05", "GHS07"):
+        assert f'value="{key}" checked' in answer.text
+    assert "H290 &lt;metals&gt;</textarea>" in answer.text
+    assert 'value="0,1"' in answer.text
+    assert 'name="shelf_open" value="yes" checked' in answer.text

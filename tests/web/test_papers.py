@@ -12,13 +12,16 @@ import zipfile
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 import pypdf
+import pypdfium2
 import pytest
+import zxingcpp
 from joserfc import jws as jose
 from joserfc.jwk import KeySet
 from lxml import etree
 
-from server.credentials.signing_keys import open_signing_keys, retire_signing_key
+from server.credentials.signing_keys import KeyProblem, open_signing_keys, retire_signing_key
 from server.lab.canonical import canonical
 
 ROOT = Path(__file__).resolve().parents[2]
@@ -91,7 +94,19 @@ def test_key_lies_beside_the_database_for_its_owner_alone(shared_web: Any) -> No
     assert stat.S_IMODE(file.stat().st_mode) == 0o600
 
 
-def test_key_that_is_retired_still_verifies_what_it_signed(start_web: Any, web: Any) -> None:
+def test_key_that_others_may_read_stops_the_program_from_starting(web: Any, tmp_path: Path) -> None:
+    from server.app import build_app
+    from server.settings import Settings
+
+    open_signing_keys(tmp_path / "keys", now=web.clock())
+    next((tmp_path / "keys").iterdir()).chmod(0o640)
+    settings = Settings(tmp_path, str(web.transactions.database.engine.url))
+
+    with pytest.raises(KeyProblem, match="chmod 600"):
+        build_app(settings, transactions=web.transactions, clock=web.clock)
+
+
+def test_key_that_is_retired_still_verifies_what_it_signed(web: Any) -> None:
     from server.app import build_app
     from server.settings import Settings
 
@@ -131,6 +146,31 @@ def test_dcc_without_a_country_is_refused_by_field_and_not_offered(web: Any) -> 
     page = rosa.get(f"/certificates/{STANDS}").text
     assert ".dcc.xml" not in page
     assert "No DCC: the laboratory&#39;s country is not set." in page
+
+
+def test_pdf_leads_by_its_qr_code_to_where_its_state_is_told(web: Any) -> None:
+    """Without an own address it has none; with one the code is read by zxing-cpp."""
+    rosa, marisol = web.client("rosa"), web.client("marisol")
+    assert _codes(rosa.get(f"/certificates/{STANDS}.pdf").content) == []
+    kept = marisol.get("/api/laboratory").json()
+    given = {"name": kept["laboratory"], "zone": kept["zone"], "address": kept["address"]}
+    given |= {"base_url": "https://testserver/", "revision": kept["revision"]}
+    assert marisol.post("/api/laboratory", given).status_code == 200
+
+    (address,) = _codes(rosa.get(f"/certificates/{STANDS}.pdf").content)
+
+    assert address == f"https://testserver/certificates/{STANDS}"
+    assert rosa.get(address).status_code == 200
+
+
+def _codes(pdf: bytes) -> list[str]:
+    found: list[str] = []
+    document = pypdfium2.PdfDocument(pdf)
+    for page in document:
+        drawn = page.render(scale=200 / 72, grayscale=True).to_numpy().squeeze()
+        found += [one.text for one in zxingcpp.read_barcodes(np.ascontiguousarray(drawn))]
+    document.close()
+    return found
 
 
 @pytest.mark.parametrize("kind", KINDS)

@@ -41,6 +41,7 @@ def only(*roles: str) -> frozenset[str]:
 REASON = {"reason": "cloudy"}
 ANALYST, KEEPER, STEWARD = only("analyst"), only("keeper"), only("steward")
 COUNTERSIGNER = only("countersigner")
+BENCH = only("analyst", "countersigner")
 HOLDERS = only("analyst", "countersigner", "keeper")
 RELEASERS = only("keeper", "countersigner")
 LOGGERS = only("analyst", "keeper")
@@ -131,7 +132,7 @@ PAGES: dict[str, Case] = {
         SIGNED_IN, 200, "/sheets/{curve_sheet}/curves/1/part"
     ),
     "GET /countersign": Case(SIGNED_IN, 200),
-    "GET /countersign/{sheet_id}": Case(SIGNED_IN, 200),
+    "GET /countersign/{sheet_id}": Case(BENCH, 200),
     "POST /countersign/{sheet_id}": Case(
         COUNTERSIGNER, 404, f"/countersign/{NOBODY}", {"revision": "1", "password": "{password}"}
     ),
@@ -290,7 +291,7 @@ API: dict[str, Case] = {
         KEEPER, 404, f"/api/sheets/{NOBODY}/let-be-used", {"what": "balance", **REASON}
     ),
     "GET /api/countersign": Case(SIGNED_IN, 200),
-    "GET /api/sheets/{sheet_id}/countersign": Case(SIGNED_IN, 200),
+    "GET /api/sheets/{sheet_id}/countersign": Case(BENCH, 200),
     "POST /api/sheets/{sheet_id}/countersign": Case(
         COUNTERSIGNER,
         404,

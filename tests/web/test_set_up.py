@@ -24,9 +24,9 @@ FORM = {
 
 
 @pytest.fixture
-def browser(fresh_sqlite: Callable[[], Any], clock: Any) -> Iterator[TestClient]:
+def browser(fresh_sqlite: Callable[[], Any], clock: Any, tmp_path: Path) -> Iterator[TestClient]:
     transactions = Transactions(fresh_sqlite())
-    settings = Settings(data=Path(), database_url="sqlite://")
+    settings = Settings(data=tmp_path, database_url="sqlite://")
     app = build_app(settings, transactions=transactions, clock=clock, setup_code=CODE)
     with TestClient(app, base_url="https://testserver", follow_redirects=False) as client:
         yield client

@@ -38,6 +38,7 @@ from server.records.queries.list_stores import (
 )
 from server.records.queries.load_papers import load_laboratory_fact, load_people
 from server.records.queries.load_standard_lots import standard_lot_fact
+from server.records.queries.sheet_trail import load_returns
 from server.records.tables.bench import Certificate, Entry, Evaluation, Sheet, Signature
 from server.records.tables.lots import Lot, Pull
 from server.records.tables.stores import Calibration, Instrument, Recipe, StandardLot

@@ -4,6 +4,7 @@ import json
 from collections.abc import Iterable, Iterator, Mapping
 from typing import Any
 
+from server.lab.integrity import HANDED_IN
 from server.records.tables.trail import TrailRow
 from server.sheets.countersign import TrailLine
 from server.sheets.parts.telling import moment_words, unit_words
@@ -21,10 +22,19 @@ def trail_lines(rows: Iterable[TrailRow], zone: str) -> tuple[TrailLine, ...]:
             thing=row.thing_name,
             kind=row.kind,
             why=row.why,
-            details="; ".join(_told(json.loads(row.body))),
+            details="; ".join(_told(_shown(row))),
         )
         for row in rows
     )
+
+
+def _shown(row: TrailRow) -> Any:
+    """Return what a row says beside its columns; not a number before it was certified."""
+    body = json.loads(row.body)
+    if row.act == HANDED_IN and isinstance(body, dict):
+        # earlier releases noted it
+        body.pop("reported", None)
+    return body
 
 
 def _told(body: Any, name: str = "") -> Iterator[str]:

@@ -10,7 +10,7 @@ from server.lab.sheet_facts import InstrumentFact
 from server.sheets.curves import CurveFindingView, CurveMethod, CurveView
 from server.sheets.parts.curve_drawn import NOTHING_DRAWN, drawn_of, pictures_of, steps_of
 from server.sheets.parts.curve_probe import probe_beside
-from server.sheets.parts.curve_words import believe, picture_says, the, volume_words
+from server.sheets.parts.curve_words import apart_words, believe, picture_says, the, volume_words
 from server.sheets.parts.telling import moment_words
 
 _LEANS = (
@@ -60,7 +60,7 @@ def curve_view(
         taken=taken,
         volume=volume,
         u=u,
-        choice=_choice(told, taken, zone),
+        choice=_choice(told, taken, zone) + (apart_words(analysis, taken) if analysis else ""),
         believe=believe(analysis) if analysis else "",
         says=says,
         methods=tuple(_methods(analysis, taken)) if analysis else (),

@@ -48,6 +48,17 @@ def believe(analysis: Analysis) -> str:
     return f"Believe {the(method)}, {volume}: {because}."
 
 
+def apart_words(analysis: Analysis, taken: str | None) -> str:
+    """Return how far the volume taken lies from the one to believe; nothing where they are one."""
+    found = next((one for one in analysis.outcomes if one.method == taken), None)
+    best = analysis.outcome(analysis.proposed)
+    if taken == best.method or not (isinstance(found, EndPoint) and isinstance(best, EndPoint)):
+        return ""
+    apart = found.volume_mL - best.volume_mL
+    size = f"{significant(abs(apart))} mL ({significant(abs(100 * apart / best.volume_mL))} %)"
+    return f" That is {size} {'more' if apart > 0 else 'less'} than by {the(best.method)}."
+
+
 def the(method: str) -> str:
     """Return a method's name as it stands in a sentence."""
     named = {"gran acid side": "Gran's line of the acid side",

@@ -7,6 +7,7 @@ from server.lab.actor import Actor
 from server.lab.refusal import NotSignedIn
 from server.lab.roles import Act
 from server.lab.segregation import release_refusal
+from server.lab.states import COUNTERSIGNED
 from server.records.queries.list_holds import StandingHold
 
 
@@ -22,6 +23,11 @@ def need_shelf(settings: Mapping[str, Any], actor: Actor | None) -> None:
     """Refuse a visitor where the laboratory has closed its shelf."""
     if actor is None and not settings.get("shelf_open", True):
         raise NotSignedIn("This laboratory shows its shelf to its own people only: sign in.")
+
+
+def may_read_number(actor: Actor, state: str) -> bool:
+    """Say whether a person may read what a sheet comes to: everybody once it is certified."""
+    return state == COUNTERSIGNED or actor.may(Act.READ_UNCERTIFIED)
 
 
 def may_hold(actor: Actor | None, hold: StandingHold | None) -> bool:

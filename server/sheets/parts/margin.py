@@ -35,6 +35,19 @@ def margin_of(facts: SheetFacts, prepared: PreparedSheet, groups: Sequence[Bench
     )
 
 
+def margin_withheld() -> Margin:
+    """Return the strip for somebody who reads no number that is not certified."""
+    return Margin(
+        replicates=(),
+        unit=_UNIT,
+        mean=None,
+        spread=None,
+        to_go=0,
+        says="What this sheet comes to is shown once it is countersigned.",
+        finding=None,
+    )
+
+
 def _replicate(
     one: RunningReplicate, groups: Mapping[str, BenchGroup], exponent: int
 ) -> MarginReplicate:

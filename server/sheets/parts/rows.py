@@ -19,14 +19,21 @@ from server.lab.slots import (
     sheet_rows,
 )
 from server.sheets.bench import BenchGroup, BenchRow, EntryView, NextRow, StruckEntry
+from server.sheets.parts.returned import remarks_on_rows
 from server.sheets.parts.telling import clock_words
+from server.sheets.parts.written_when import clock_says
 
 _AS_LOGGED = "The log of the standard lot holds its last drying: take it over where it is this one."
 
 
-def groups_of(facts: SheetFacts) -> tuple[BenchGroup, ...]:
-    """Return all rows, the sheet's first, then replicate by replicate, with every strike."""
-    written = _Written(facts)
+def groups_of(
+    facts: SheetFacts, clocks_off: Mapping[str, int] | None = None
+) -> tuple[BenchGroup, ...]:
+    """Return all rows, the sheet's first, then replicate by replicate, with every strike.
+
+    ``clocks_off``: by how many seconds the clock was ahead by which an entry was written.
+    """
+    written = _Written(facts, clocks_off or {})
     left_out = excluded(facts.entries)
     rows = _rows(facts)
     return tuple(
@@ -52,8 +59,10 @@ def next_row(groups: Sequence[BenchGroup]) -> NextRow | None:
 class _Written:
     """What was written in each row of one sheet."""
 
-    def __init__(self, facts: SheetFacts) -> None:
+    def __init__(self, facts: SheetFacts, clocks_off: Mapping[str, int]) -> None:
         self._zone = facts.laboratory.zone
+        self._clocks_off = clocks_off
+        self._remarks = remarks_on_rows(facts)
         self._standing = standing(facts.entries)
         self._dried = _last_dried(facts)
         self._struck: dict[Place, list[StruckEntry]] = {}
@@ -76,6 +85,7 @@ class _Written:
             **asdict(row),
             value=self._view(value) if value else None,
             struck=tuple(self._struck.get(row.place, ())),
+            remarks=tuple(self._remarks.get(row.place, ())),
         )
 
     def _view(self, entry: WrittenEntry) -> EntryView:
@@ -91,6 +101,7 @@ class _Written:
             late=entry.late,
             reason=entry.reason,
             file_url=f"/files/{entry.file_id}" if entry.file_id else None,
+            clock_says=clock_says(entry, self._clocks_off.get(entry.id)),
         )
 
 
@@ -130,7 +141,8 @@ def _segments_ever(entries: Sequence[WrittenEntry], replicate: int) -> int:
 def _other_rows(facts: SheetFacts, known: set[Place]) -> Iterator[Row]:
     """Yield the rows of entries beside the recipe's own: remarks on a replicate."""
     recipe, rig = facts.recipe.document, rig_of(facts.instruments)
-    for place in dict.fromkeys(entry.place for entry in facts.entries):
+    places = [entry.place for entry in facts.entries] + list(remarks_on_rows(facts))
+    for place in dict.fromkeys(places):
         if place not in known:
             yield replace(row_at(recipe, rig, place), required=False)
 

@@ -5,7 +5,7 @@ from typing import Any
 
 from server.lab.canonical import digest
 from server.lab.sheet_facts import SheetFacts, SignatureFact
-from server.lab.signing import COUNTERSIGNED, signature_holds
+from server.lab.signing import COUNTERSIGNED, accepted_findings, signature_holds, trail_seen
 from server.sheets.bench import FindingView, SignatureView
 from server.sheets.parts.outcome import finding_views
 from server.sheets.parts.telling import signed_words
@@ -26,6 +26,7 @@ def signature_views(facts: SheetFacts, snapshots: Mapping[str, str]) -> tuple[Si
             digest=one.signed_digest,
             holds=signature_holds(one, facts, digest(snapshots.get(one.evaluation_id, ""))),
             remark=one.remark,
+            trail_seen=trail_seen(one),
         )
         for one in facts.signatures
     )
@@ -39,7 +40,7 @@ def signed_findings(
     return finding_views(
         findings,
         reasons=measured.reasons if measured else {},
-        accepted=second.reasons if second else (),
+        accepted=accepted_findings(second) if second else (),
         accepted_by=second.printed_name if second else None,
     )
 

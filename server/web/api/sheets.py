@@ -18,8 +18,9 @@ from server.procedures.bench import (
     let_be_used,
 )
 from server.procedures.curves import find_curve_source
-from server.procedures.entries import NewEntry, WriteEntries, read_curves, write_entries
+from server.procedures.entries import WriteEntries, read_curves, write_entries
 from server.procedures.hand_in import HandIn
+from server.procedures.new_entries import NewEntry
 from server.sheets.bench_home import open_bench_home
 from server.sheets.bench_sheet import open_bench_sheet
 from server.sheets.curve_preview import curve_preview, read_for_preview
@@ -28,6 +29,7 @@ from server.web.acting import act
 from server.web.api.desk import TOKEN_HEADER, AtApi, answer, made
 from server.web.bodies import Given, JsonBody, body_of, json_bytes, model_of, read_body
 from server.web.refusals import NotFromHere
+from server.web.signing import Given as Signer
 from server.web.signing import hand_in
 from server.web.visits import AtDesk, Visit
 
@@ -41,15 +43,19 @@ _ENTRY = model_of(NewEntry, without=("id",), also={"id": (str, "")})
 
 @dataclass(frozen=True, slots=True)
 class _Entries:
-    """The body of the door: a list of entries, or an object that holds it."""
+    """The body of the door: a list of entries, or an object that holds it.
+
+    ``sent_at``: the time on the sender's clock, so that it is known how wrong that clock is.
+    """
 
     entries: list[_ENTRY]  # type: ignore[valid-type]
+    sent_at: str | None = None
 
 
 _BEGIN = body_of(BeginSheet)
 _ABANDON = body_of(AbandonSheet, "sheet_id")
 _LET = body_of(LetBeUsed, "sheet_id")
-_HAND_IN = body_of(HandIn, "sheet_id", password=str)
+_HAND_IN = body_of(HandIn, "sheet_id", password=str, name=(str, ""))
 _PREVIEW = body_of(SentCurve, replicate=int)
 _DOOR = JsonBody(model_of(_Entries))
 
@@ -106,7 +112,7 @@ def write(
 ) -> Response:
     """Write entries: each with its own UUID, all or none; a repeated one gets its first answer."""
     entries = tuple(NewEntry(**dict(entry)) for entry in given["entries"])
-    command = WriteEntries(sheet_id, entries)
+    command = WriteEntries(sheet_id, entries, sent_at=given["sent_at"])
     if any(entry.curve is not None for entry in entries):
         visit.person.need(Act.WRITE)
         command = read_curves(command, visit.read(find_curve_source, sheet_id))
@@ -138,10 +144,13 @@ def before_hand_in(visit: AtDesk, sheet_id: str) -> Response:
 
 @router.post("/sheets/{sheet_id}/hand-in", openapi_extra=_HAND_IN.openapi)
 def sign(desk: AtApi, sheet_id: str, given: Annotated[Given, Depends(_HAND_IN)]) -> Response:
-    """Sign a sheet as *measured* and hand it in; the password is asked again."""
-    password = given.pop("password")
+    """Sign a sheet as *measured* and hand it in.
+
+    The password is asked again, and at the first signature of a session the sign-in name too.
+    """
+    signer = Signer(given.pop("name"), given.pop("password"))
     command = HandIn(sheet_id=sheet_id, **given)
-    told: Any = hand_in(desk.visit, command, password, key=desk.key)
+    told: Any = hand_in(desk.visit, command, signer, key=desk.key)
     return answer(told)
 
 

@@ -5,14 +5,14 @@ from typing import Annotated
 from fastapi import APIRouter, Depends, Response
 
 from server.procedures.bottles import MoveBottle, OpenBottle, move_bottle, open_bottle
-from server.procedures.uses import RecordUse, StrikeUse, record_use, strike_use
+from server.procedures.uses import StrikeUse, UseBottle, strike_use, use_bottle
 from server.sheets.uses_page import open_uses_of_bottle, open_uses_of_lot
 from server.web.api.desk import AtApi, answer
 from server.web.bodies import Given, body_of
 from server.web.visits import AtDesk
 
 router = APIRouter(tags=["shelf"])
-_MOVE, _USE = body_of(MoveBottle, "code"), body_of(RecordUse, "code")
+_MOVE, _USE = body_of(MoveBottle, "code"), body_of(UseBottle, "code")
 _STRIKE = body_of(StrikeUse, "code", "use_id")
 
 
@@ -36,7 +36,7 @@ def use(desk: AtApi, code: str, given: Annotated[Given, Depends(_USE)]) -> Respo
     """
     visit = desk.visit
     token_id = visit.bearer.token_id if visit.bearer else None
-    made = desk.act(record_use, RecordUse(code=code, **given), token_id=token_id)
+    made = desk.act(use_bottle, UseBottle(code=code, **given), token_id=token_id)
     view = visit.read(open_uses_of_bottle, code)
     line = next(one for one in view.uses if one.id == made)
     return answer(line, status=201)

@@ -12,8 +12,9 @@ from server.procedures.bench import (
 from server.sheets.bench_home import open_begin, open_bench_home
 from server.sheets.bench_sheet import open_bench_sheet
 from server.sheets.hand_in import evaluate_hand_in, read_hand_in
-from server.web.forms.bench import read_begin, read_signing
+from server.web.forms.bench import read_begin, read_signer, read_signing
 from server.web.forms.posts import Again, Posted
+from server.web.proving import asks_name
 from server.web.showing import show
 from server.web.signing import hand_in
 from server.web.templating import script_json
@@ -66,7 +67,14 @@ def sheet(visit: AtDesk, sheet_id: str) -> Response:
 @router.get("/bench/{sheet_id}/hand-in")
 def hand_in_page(visit: AtDesk, sheet_id: str) -> Response:
     """Show everything on one page before the signature."""
-    return show(visit, "bench/hand_in.html", read_hand_in, sheet_id, finish=evaluate_hand_in)
+    return show(
+        visit,
+        "bench/hand_in.html",
+        read_hand_in,
+        sheet_id,
+        finish=evaluate_hand_in,
+        asks_name=asks_name(visit),
+    )
 
 
 @router.post("/bench/{sheet_id}/hand-in")
@@ -75,10 +83,16 @@ def sign_and_hand_in(post: Posted, sheet_id: str) -> Response:
 
     def work() -> str:
         command = read_signing(post.form, sheet_id)
-        hand_in(post.visit, command, post.form.text("password"), key=post.key)
+        hand_in(post.visit, command, read_signer(post.form), key=post.key)
         return f"/bench/{sheet_id}"
 
-    again = Again("bench/hand_in.html", read_hand_in, (sheet_id,), finish=evaluate_hand_in)
+    again = Again(
+        "bench/hand_in.html",
+        read_hand_in,
+        (sheet_id,),
+        finish=evaluate_hand_in,
+        more={"asks_name": asks_name(post.visit)},
+    )
     return post.answer(work, again=again)
 
 

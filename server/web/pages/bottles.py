@@ -3,7 +3,7 @@
 from fastapi import APIRouter, Response
 
 from server.procedures.bottles import MoveBottle, OpenBottle, move_bottle, open_bottle
-from server.procedures.uses import RecordUse, StrikeUse, record_use, strike_use
+from server.procedures.uses import StrikeUse, UseBottle, strike_use, use_bottle
 from server.reports.uses import uses_csv
 from server.sheets.bottle_card import open_bottle_card
 from server.sheets.uses_page import open_uses_of_lot
@@ -42,14 +42,14 @@ def use(post: Posted, code: str) -> Response:
 
     def work() -> str:
         form = post.form
-        command = RecordUse(
+        command = UseBottle(
             code,
             result_id=form.text("result_id"),
             certificate=form.text("certificate"),
             used_at=form.text("used_at"),
             says=form.text("says"),
         )
-        post.act(record_use, command)
+        post.act(use_bottle, command)
         return f"/b/{code}#uses"
 
     return post.answer(work, again=_again(code))

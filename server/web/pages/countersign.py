@@ -2,11 +2,12 @@
 
 from fastapi import APIRouter, Response
 
-from server.procedures.countersign import SendBack, send_back_sheet
+from server.procedures.send_back import send_back_sheet
 from server.sheets.countersigning import open_countersign
 from server.sheets.queue import open_queue
-from server.web.forms.bench import read_countersign
+from server.web.forms.bench import read_countersign, read_send_back, read_signer
 from server.web.forms.posts import Again, Posted
+from server.web.proving import asks_name
 from server.web.showing import show
 from server.web.signing import set_second_signature
 from server.web.visits import AtDesk
@@ -24,7 +25,7 @@ def queue(visit: AtDesk) -> Response:
 @router.get("/countersign/{sheet_id}")
 def sheet(visit: AtDesk, sheet_id: str) -> Response:
     """Show one sheet: the number, why, what was written."""
-    return show(visit, _TEMPLATE, open_countersign, sheet_id)
+    return show(visit, _TEMPLATE, open_countersign, sheet_id, asks_name=asks_name(visit), sent="")
 
 
 @router.post("/countersign/{sheet_id}")
@@ -33,20 +34,24 @@ def countersign(post: Posted, sheet_id: str) -> Response:
 
     def work() -> str:
         command = read_countersign(post.form, sheet_id)
-        password = post.form.text("password")
-        answer = set_second_signature(post.visit, command, password, key=post.key)
+        signer = read_signer(post.form)
+        answer = set_second_signature(post.visit, command, signer, key=post.key)
         return f"/certificates/{answer['certificate']}"
 
-    return post.answer(work, again=Again(_TEMPLATE, open_countersign, (sheet_id,)))
+    return post.answer(work, again=_again(post, sheet_id, sent="sign"))
 
 
 @router.post("/countersign/{sheet_id}/send-back")
 def send_back(post: Posted, sheet_id: str) -> Response:
-    """Send a sheet back to the bench with a remark."""
+    """Send a sheet back to the bench with a remark, remarks on rows, or both."""
 
     def work() -> str:
-        revision = post.form.whole("revision", example="7")
-        post.act(send_back_sheet, SendBack(sheet_id, revision, post.form.text("remark")))
+        post.act(send_back_sheet, read_send_back(post.form, sheet_id))
         return "/countersign"
 
-    return post.answer(work)
+    return post.answer(work, again=_again(post, sheet_id, sent="back"))
+
+
+def _again(post: Posted, sheet_id: str, *, sent: str) -> Again:
+    more = {"asks_name": asks_name(post.visit), "sent": sent}
+    return Again(_TEMPLATE, open_countersign, (sheet_id,), more=more)

@@ -6,6 +6,8 @@ from fastapi import APIRouter, Request, Response
 
 from server.procedures.labels import PrintLabels
 from server.reports.labels.printing import stock_choices
+from server.reports.labels.stock import find_stock
+from server.sheets.labels import LabelJob
 from server.sheets.labels_page import open_label_job, open_labels
 from server.web.forms.posts import Again, Posted
 from server.web.handing_out import hand_out_labels, show_labels
@@ -58,12 +60,16 @@ def picture(visit: AtDesk, number: int, sheet: int = 1) -> Response:
 @router.get("/labels/prints/{number}")
 def one_print(visit: AtDesk, number: int) -> Response:
     """Show one print."""
-    return show(visit, "labels/print.html", open_label_job, number)
+    return show(visit, "labels/print.html", open_label_job, number, with_page=_onto)
 
 
 def own_address(request: Request) -> str:
     """Return the address that this page was opened by."""
     return str(request.base_url).rstrip("/")
+
+
+def _onto(job: LabelJob) -> dict[str, str]:
+    return {"stock_name": find_stock(job.onto.stock).name}
 
 
 def _around(request: Request) -> dict[str, Any]:

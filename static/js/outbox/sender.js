@@ -68,7 +68,7 @@ export class Sender {
           "X-Titrant-Ledger": "bench",
           ...(this.person ? { "X-Titrant-Person": encodeURIComponent(this.person) } : {}),
         },
-        body: JSON.stringify({ entries: entries.map(forTheDoor) }),
+        body: JSON.stringify({ entries: entries.map(forTheDoor), sent_at: new Date().toISOString() }),
         signal: AbortSignal.timeout(PATIENCE_MS),
       });
       const said = await answer.json().catch(() => ({}));

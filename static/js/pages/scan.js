@@ -35,7 +35,7 @@ async function scan() {
   }
   if (!box.open) return stop();
   video.srcObject = stream;
-  await video.play();
+  video.play().catch(() => {}); // what it shows before it plays is no code
   const detector = new window.BarcodeDetector({ formats: ["qr_code"] });
   while (box.open) {
     for (const found of await detector.detect(video).catch(() => [])) {

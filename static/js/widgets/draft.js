@@ -1,11 +1,12 @@
 // What was typed in a long form, kept on this tablet until it is recorded.
 
-const SKIPPED = new Set(["form_token", "key", "rows", "do"]);
+const SKIPPED = new Set(["form_token", "key", "rows", "do", "name", "revision"]);
+const NEVER = new Set(["submit", "password", "checkbox", "radio", "file"]);
 
 export function keep(form, place) {
   const typed = {};
   for (const field of form.elements) {
-    if (field.name && !SKIPPED.has(field.name) && field.type !== "submit") typed[field.name] = field.value;
+    if (field.name && !SKIPPED.has(field.name) && !NEVER.has(field.type)) typed[field.name] = field.value;
   }
   try {
     localStorage.setItem(place, JSON.stringify(typed));

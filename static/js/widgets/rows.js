@@ -64,6 +64,7 @@ function writtenRow(row, view, acts) {
     el("span", { class: "unit" }, unitOf(row)),
     whereOf(row),
     row.struck.map(reasonOf),
+    remarksOf(row),
     row.refused ? bothOf(row, view, acts) : null,
     row.kind === "curve" ? curveLinks(row, view) : null,
   );
@@ -117,6 +118,14 @@ function emptyRow(row, view, acts) {
     el("span", { class: "unit" }, unitOf(row)),
     el("span", { class: "where" }, state),
     row.refused ? el("p", { class: "row-note fails" }, row.refused.problem.detail ?? "Not taken.") : null,
+    remarksOf(row),
+  );
+}
+
+/** What a countersigner said about this row when the sheet was sent back. */
+export function remarksOf(row) {
+  return (row.remarks ?? []).map((one) =>
+    el("p", { class: "row-note row-remark" }, el("b", {}, `Sent back, ${one.by}, ${one.says_at}: `), one.text),
   );
 }
 

@@ -1,11 +1,14 @@
 """Measurements: their tables hold what they should and say what is not reached; no timed test."""
 
 import re
+import sqlite3
 
 import numpy as np
 import pytest
 
 from server.cli import NOT_SO, REFUSED, Verbs, run
+from server.records.database import open_database, sqlite_url
+from server.records.transaction import Transactions
 from server.upkeep.bench import curve_fit, curve_upload, named
 from server.upkeep.bench.curve_fit import CASES, Case
 from server.upkeep.bench.known_curve import KnownCurve, fit_by_roots, volumes_by_hand
@@ -84,10 +87,40 @@ def test_missing_lmfit_is_said_and_counts_as_not_reached(monkeypatch) -> None:
     assert "RMS" in line.says
 
 
-def test_table_of_the_upload_has_a_ratio_for_each_curve() -> None:
-    lines = list(curve_upload.lines(times=1))
+@pytest.fixture
+def laboratory(forger, tmp_path):
+    """A copy of the demonstration, and its open sheet with curves."""
+
+    def made(folder):
+        copy = sqlite3.connect(tmp_path / "copy.sqlite")
+        source = sqlite3.connect(forger.database.url.database)
+        source.backup(copy)
+        (sheet,) = copy.execute(
+            "SELECT DISTINCT s.id FROM sheet s JOIN entry e ON e.sheet_id = s.id"
+            " WHERE e.slot = 'curve' AND s.handed_in_at IS NULL"
+        ).fetchone()
+        source.close()
+        copy.close()
+        database = open_database(sqlite_url(tmp_path / "copy.sqlite"))
+        return Transactions(database), sheet
+
+    return made
+
+
+def test_table_of_the_upload_has_both_ratios_and_stores_each_curve(laboratory, tmp_path) -> None:
+    lines = list(curve_upload.lines(times=1, made=laboratory))
     assert len(lines) == 5
-    assert all(re.search(r"= [\d.]+ fits", line.says) for line in lines[1:])
+    for line in lines[1:]:
+        figures = re.findall(r"([\d.]+) ms = ([\d.]+) fits", line.says)
+        fit = float(re.search(r"fit +([\d.]+) ms", line.says)[1])
+        assert len(figures) == 2
+        for taken, ratio in figures:
+            assert float(ratio) == pytest.approx(float(taken) / fit, rel=0.02, abs=0.06)
+        assert bool(line.missed) == (float(figures[1][1]) > curve_upload.MOST_FITS)
+    with sqlite3.connect(tmp_path / "copy.sqlite") as kept:
+        struck = "SELECT count(*) FROM entry WHERE reason = 'measured again'"
+        assert kept.execute(struck).fetchone() == (4,)
+    kept.close()
 
 
 def test_yardstick_finds_the_end_point_too() -> None:
