@@ -1,8 +1,11 @@
 """Tables of an XLSX workbook as text, read within bounds; formulas are never computed."""
 
 import io
+import lzma
 import re
+import struct
 import zipfile
+import zlib
 from dataclasses import dataclass
 
 from server.intake.safe_xml import Bounds, Node, read_xml
@@ -15,6 +18,11 @@ _MOST_RATIO = 100
 _MOST_ROWS, _MOST_COLUMNS = 20_000, 60
 _XML = Bounds(most_bytes=12_000_000, most_elements=120_000, most_depth=20)
 _MAIN = "http://schemas.openxmlformats.org/spreadsheetml/2006/main"
+#: What a damaged, encrypted or oddly packed archive raises on its way.
+_DAMAGED = (
+    zipfile.BadZipFile, NotImplementedError, RuntimeError, EOFError, OSError, ValueError, KeyError,
+    zlib.error, lzma.LZMAError, struct.error,
+)  # fmt: skip
 _CELL = re.compile(r"([A-Z]{1,3})([1-9][0-9]{0,6})")
 
 
@@ -64,7 +72,7 @@ def read_workbook(data: bytes, *, formulas: bool = False) -> tuple[Sheet, ...]:
                 Sheet(name, _Cells(strings, name, formulas=formulas).rows(members.xml(path)))
                 for name, path in _sheet_paths(members)
             )
-    except (zipfile.BadZipFile, NotImplementedError, EOFError, OSError, ValueError) as problem:
+    except _DAMAGED as problem:
         raise Unacceptable("The file is no workbook that can be read.", field="file") from problem
 
 

@@ -187,7 +187,7 @@ def _object(doc: Mapping[str, Any], key: str) -> Mapping[str, Any]:
 
 
 def _set_aside(doc: Mapping[str, Any]) -> tuple[CurveRow, ...]:
-    rows = doc.get("set_aside") or []
+    rows = doc.get("set_aside", [])
     path = f"{SLOT}.set_aside"
     if not isinstance(rows, list):
         raise Unacceptable(f"{path} must be a list.", field=path)

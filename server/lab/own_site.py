@@ -1,9 +1,12 @@
-"""The laboratory's own address on the network and its country, as labels and papers state them."""
+"""The laboratory's own address on the network, its country and its paper."""
 
 import re
 from urllib.parse import urlsplit
 
 from server.lab.refusal import Unacceptable
+
+#: What certificates are printed on; the first is the default.
+PAPERS = ("a4", "us-letter")
 
 _COUNTRY = re.compile(r"[A-Z]{2}", re.ASCII)
 _MOST = 200
@@ -52,3 +55,15 @@ def read_country(text: str, field: str = "country") -> str:
         says = "The country is told by its two letters of ISO 3166-1."
         raise Unacceptable(says, field=field, example="CH")
     return country
+
+
+def read_paper(text: str, field: str = "paper") -> str:
+    """Return what certificates are printed on.
+
+    Raises:
+        Unacceptable: it is none of the papers that are known.
+    """
+    if text not in PAPERS:
+        says = f"{field} is one of {', '.join(PAPERS)}."
+        raise Unacceptable(says, field=field, example=PAPERS[0])
+    return text

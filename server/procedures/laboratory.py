@@ -11,7 +11,7 @@ from sqlalchemy.orm import Session
 from server.lab.actor import Actor
 from server.lab.free_text import read_text
 from server.lab.limits import check_limits
-from server.lab.own_site import read_base_url, read_country
+from server.lab.own_site import PAPERS, read_base_url, read_country, read_paper
 from server.lab.people import check_name, initials_of, sign_in_key
 from server.lab.refusal import NotAllowed, SavedFirst, Unacceptable
 from server.lab.roles import Act, Role
@@ -33,6 +33,7 @@ _SETTINGS: Mapping[str, Any] = {
     "absolute_hours": 12,
     "base_url": "",
     "label_value": False,
+    "paper": PAPERS[0],
 }
 
 
@@ -54,7 +55,7 @@ class ChangeSettings:
     """The laboratory's settings as they shall be; ``revision`` is the one that was read.
 
     What is None stays as it is. ``country`` is that of ISO 3166-1, ``base_url`` the laboratory's
-    own address; ``label_value`` prints the certified value on labels.
+    own address; ``label_value`` prints the certified value on labels, ``paper`` is that of certificates.
     """
 
     name: str
@@ -68,6 +69,7 @@ class ChangeSettings:
     country: str | None = None
     base_url: str | None = None
     label_value: bool | None = None
+    paper: str | None = None
 
 
 def set_up_laboratory(
@@ -170,6 +172,8 @@ def _stated(command: ChangeSettings) -> dict[str, Any]:
         given["country"] = read_country(command.country)
     if command.base_url is not None:
         given["base_url"] = read_base_url(command.base_url)
+    if command.paper is not None:
+        given["paper"] = read_paper(command.paper)
     if command.label_value is not None:
         given["label_value"] = command.label_value
     return given

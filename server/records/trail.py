@@ -6,7 +6,7 @@ from contextlib import closing
 from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
 from json.encoder import encode_basestring as quoted
-from typing import Any
+from typing import Any, NamedTuple
 
 from sqlalchemy import BigInteger, Executable, select, type_coerce
 from sqlalchemy.exc import DBAPIError
@@ -34,6 +34,24 @@ class TrailCheck:
     says: str
     seq: int
     hash: str
+
+
+class Link(NamedTuple):
+    """A row of the trail as a check reads it; ``at`` in microseconds since 1970 in UTC."""
+
+    previous_hash: str
+    hash: str
+    at: int
+    act: str
+    body: str
+    kind: str
+    person_id: str | None
+    person_name: str
+    seq: int
+    thing_id: str
+    thing_name: str
+    why: str | None
+    zone: str
 
 
 class DoesNotHold(Exception):
@@ -89,15 +107,8 @@ def head(session: Session) -> tuple[int, str]:
 
 def hash_of(row: Any) -> str:
     """Return the hash that a row must carry: SHA-256 over the previous hash and all it says."""
-    said = {name: getattr(row, name) for name in _HASHED}
-    return _hash_said(row.previous_hash, row.at.isoformat(), *said.values())
-
-
-#: What is hashed beside the previous hash and the instant.
-_HASHED = (
-    "act", "body", "kind", "person_id", "person_name", "seq", "thing_id", "thing_name", "why",
-    "zone",
-)  # fmt: skip
+    said = (getattr(row, name) for name in Link._fields[3:])
+    return _hash_said(row.previous_hash, row.at.isoformat(), *said)
 
 
 def _hash_said(  # noqa: PLR0913, PLR0917 - the columns of a row
@@ -163,8 +174,8 @@ def check(session: Session, *, newest: int | None = None) -> TrailCheck:
 
 def read_chain(
     session: Session, *, after: int = 0, known: Mapping[int, str] | None = None
-) -> Generator[Any, None, None]:
-    """Yield the rows in order, each once it is found to hold: columns as stored, ``at`` as µs.
+) -> Generator[Link, None, None]:
+    """Yield the rows in order, each once it is found to hold.
 
     ``known`` maps numbers of rows to the hashes that somebody kept elsewhere.
 
@@ -208,12 +219,13 @@ def _check_anchors(
         raise DoesNotHold(says)
 
 
-def _rows(session: Session, after: int) -> Generator[Any, None, None]:
-    hashed = [getattr(TrailRow, name) for name in _HASHED]
-    at = type_coerce(TrailRow.at, BigInteger).label("at")
-    rows = select(TrailRow.previous_hash, TrailRow.hash, at, *hashed)
+def _rows(session: Session, after: int) -> Generator[Link, None, None]:
+    columns = {name: getattr(TrailRow, name) for name in Link._fields}
+    columns["at"] = type_coerce(TrailRow.at, BigInteger)
+    rows = select(*columns.values())
     ordered = rows.where(TrailRow.seq > after).order_by(TrailRow.seq)
-    yield from fetched(session, ordered, f"A row of the trail after row {after}")
+    with closing(fetched(session, ordered, f"A row of the trail after row {after}")) as found:
+        yield from map(Link._make, found)
 
 
 def fetched(session: Session, rows: Executable, what: str) -> Generator[Any, None, None]:
@@ -253,21 +265,17 @@ def _check_documents(session: Session, issued: Mapping[str, str | None], after: 
                 raise DoesNotHold(says)
 
 
-def _problem_of(row: Any, before: int, last_hash: str) -> str | None:
-    """Return what does not hold of a row as ``_rows`` reads it."""
-    previous_hash, row_hash, microseconds, *said = row
-    seq = row.seq
-    if seq != before + 1:
+def _problem_of(row: Link, before: int, last_hash: str) -> str | None:
+    if row.seq != before + 1:
         return f"Row {before + 1} is missing."
-    if previous_hash != last_hash:
-        return f"Row {seq} does not follow from row {before}."
+    if row.previous_hash != last_hash:
+        return f"Row {row.seq} does not follow from row {before}."
     try:
-        at = (_EPOCH + timedelta(0, 0, microseconds)).isoformat()
-        if row_hash == _hash_said(previous_hash, at, *said):
-            return None
+        at = (_EPOCH + timedelta(microseconds=row.at)).isoformat()
+        held = row.hash == _hash_said(last_hash, at, *row[3:])
     except (TypeError, ValueError, OverflowError):
-        pass
-    return f"Row {seq} was changed after it was written."
+        held = False
+    return None if held else f"Row {row.seq} was changed after it was written."
 
 
 def _head_seq(session: Session) -> int:

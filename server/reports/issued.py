@@ -7,6 +7,7 @@ from datetime import datetime
 from typing import Any
 
 from server.lab.canonical import canonical
+from server.lab.own_site import PAPERS
 from server.lab.states import STANDING
 
 
@@ -26,7 +27,7 @@ class Issued:
     is the one that was issued, ``signatures_hold`` the same of each signature in its order.
     ``snapshot`` is the kept text of its evaluation, ``previous`` the document it replaces. ``url``
     is the address where its state today can be asked. ``state_says`` adds to a state why and since
-    when, in words.
+    when, in words. ``paper`` is what the laboratory prints on.
     """
 
     document: Mapping[str, Any] = field(repr=False)
@@ -41,6 +42,7 @@ class Issued:
     previous: Mapping[str, Any] | None = field(default=None, repr=False)
     url: str | None = None
     state_says: str = ""
+    paper: str = PAPERS[0]
 
     @property
     def number(self) -> str:
@@ -72,6 +74,7 @@ def issued_from(
     snapshot: str | None = None,
     previous: Mapping[str, Any] | None = None,
     url: str | None = None,
+    paper: str = PAPERS[0],
 ) -> Issued:
     """Return what ``open_certificate_document`` found, ready to leave the laboratory."""
     return Issued(
@@ -87,4 +90,5 @@ def issued_from(
         previous=previous,
         url=url,
         state_says=found["state_says"],
+        paper=paper,
     )

@@ -211,6 +211,8 @@ class BenchSheet:
     sent_back_remark: str | None
     signatures: tuple[SignatureView, ...]
     sent_back: ReturnView | None = None
+    #: What is no longer as the trail noted it; empty where all is.
+    altered: str = ""
 
 
 @dataclass(frozen=True, slots=True)

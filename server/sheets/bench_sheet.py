@@ -1,6 +1,7 @@
 """One bench sheet as the bench page's script gets it."""
 
 from collections.abc import Iterator
+from dataclasses import replace
 from datetime import datetime
 
 from sqlalchemy.orm import Session
@@ -17,6 +18,7 @@ from server.records.queries.list_sheets import snapshots_of
 from server.records.queries.load_sheet import load_sheet_facts
 from server.sheets.bench import BenchSheet, ReturnView
 from server.sheets.parts.doors import may_read_number, need_reader
+from server.sheets.parts.integrity import altered_says
 from server.sheets.parts.margin import margin_of, margin_withheld
 from server.sheets.parts.returned import return_views
 from server.sheets.parts.roots import caution_views, rests_on
@@ -38,7 +40,10 @@ def open_bench_sheet(
     del now
     reader = need_reader(actor)
     facts = load_sheet_facts(session, sheet_id)
-    return bench_sheet(facts, prepare_sheet(facts), snapshots_of(session, facts.id), reader)
+    sheet = bench_sheet(facts, prepare_sheet(facts), snapshots_of(session, facts.id), reader)
+    if facts.state in {OPEN, SENT_BACK}:
+        return sheet  # asked for after every entry: what was signed has not come yet
+    return replace(sheet, altered=altered_says(session, facts.id))
 
 
 def bench_sheet(

@@ -81,3 +81,5 @@ class CertificatePage:
     no_dcc: str
     changes: CertificateChanges | None
     reviewed: bool
+    #: What is no longer as the trail noted it; empty where all is.
+    altered: str = ""

@@ -30,9 +30,10 @@ from server.sheets.parts.certificate_words import (
     item_words,
     statement_lines,
 )
-from server.sheets.parts.replacement import changed_lines, why_replaced
 from server.sheets.parts.doors import need_reader
 from server.sheets.parts.history import state_of_certificate
+from server.sheets.parts.integrity import altered_says
+from server.sheets.parts.replacement import changed_lines, why_replaced
 from server.sheets.parts.roots import certificate_roots, root_urls
 from server.sheets.parts.shelf_state import nominal_words
 from server.sheets.parts.signed import signature_views
@@ -104,6 +105,7 @@ def open_certificate(
         input_digest=document["input_digest"],
         document_digest=kept.row.document_digest,
         document_holds=document_holds(session, kept),
+        altered=altered_says(session, kept.row.sheet_id),
         trail_anchor=f"act {kept.row.trail_seq}, {kept.row.trail_hash}",
         statements=tuple(statement_lines(document)),
         files=tuple(_files(kept.row.number, has_dcc=has_dcc)),

@@ -142,3 +142,5 @@ class CountersignPage:
     to_see: tuple[ToSee, ...]
     trail_last: int
     replaces: str | None
+    #: What is no longer as the trail noted it; empty where all is.
+    altered: str = ""

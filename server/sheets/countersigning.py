@@ -24,6 +24,7 @@ from server.sheets.parts.acts import trail_lines
 from server.sheets.parts.comparison_view import sheet_comparison
 from server.sheets.parts.curve_views import curve_views
 from server.sheets.parts.doors import may_read_number, need_reader
+from server.sheets.parts.integrity import altered_says
 from server.sheets.parts.returned import return_views
 from server.sheets.parts.roots import rests_on, root_urls_of_sheet
 from server.sheets.parts.rows import groups_of
@@ -106,6 +107,7 @@ def open_countersign(
         certificate_number=certificate.number if certificate else None,
         refused=_refused(facts, signatures, reader),
         signer=reader.printed_name,
+        altered=altered_says(session, facts.id),
         returns=return_views(facts),
         to_see=things_to_see(facts, groups),
         trail_last=max((one.seq for one in trail if one.kind == "sheet"), default=0),

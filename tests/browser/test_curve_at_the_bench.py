@@ -182,6 +182,8 @@ def hand_in(page):
     page.get_by_role("button", name="Sign and hand in").wait_for()
     for field in page.get_by_label(re.compile("Reason for handing in")).all():
         field.fill("seen, and kept")
+    page.get_by_label("Your sign-in name").fill("ida")
+    page.get_by_label("Your sign-in name").fill("ida")
     page.get_by_label(re.compile("password", re.IGNORECASE)).fill(PASSWORD)
     page.get_by_role("button", name="Sign and hand in").click()
     page.get_by_text("handed in").first.wait_for()
@@ -196,6 +198,8 @@ def countersign(page, sheet):
     assert "to see how it compares" in seen
     for box in page.get_by_role("checkbox").all():
         box.check()
+    page.get_by_label("Your sign-in name").fill("lene")
+    page.get_by_label("Your sign-in name").fill("lene")
     page.get_by_label(re.compile("password", re.IGNORECASE)).fill(PASSWORD)
     page.get_by_role("button", name="Countersign").click()
     page.get_by_role("heading", name=re.compile("certificate", re.IGNORECASE)).first.wait_for()

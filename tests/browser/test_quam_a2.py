@@ -103,6 +103,7 @@ def hand_in(page):
     page.get_by_role("link", name="Read it over and hand in").click()
     page.get_by_label(re.compile("replicates")).fill("only one weighing was left")
     page.get_by_label(re.compile("burette use")).fill("the portion was larger than planned")
+    page.get_by_label("Your sign-in name").fill("ida")
     page.get_by_label(re.compile("password", re.IGNORECASE)).fill("meadow willow heron 4")
     page.get_by_role("button", name="Sign and hand in").click()
     page.get_by_text("handed in").first.wait_for()
@@ -114,5 +115,7 @@ def countersign(page):
     page.get_by_text("0.10214").first.wait_for()
     for name in ("replicates", "burette use"):
         page.get_by_role("checkbox", name=re.compile(name)).check()
+    page.get_by_role("checkbox", name=re.compile("I have read the sheet")).check()
+    page.get_by_label("Your sign-in name").fill("lene")
     page.get_by_label(re.compile("password", re.IGNORECASE)).fill("meadow willow heron 4")
     page.get_by_role("button", name="Countersign").click()

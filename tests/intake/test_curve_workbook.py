@@ -1,6 +1,8 @@
 """Curves from workbooks, written part by part (ECMA-376)."""
 
+import contextlib
 import io
+import random
 import zipfile
 
 import pytest
@@ -124,3 +126,13 @@ def test_curve_workbook_doctype_is_refused():
 
 def test_curve_file_of_the_old_binary_kind_is_refused_in_words():
     assert "old binary kind" in refusal(b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1" + bytes(600))
+
+
+def test_curve_workbook_damaged_at_any_place_is_read_or_refused_in_words():
+    whole, chance = workbook(), random.Random(5)
+    for _ in range(400):
+        data = bytearray(whole)
+        for _ in range(chance.randint(1, 6)):
+            data[chance.randrange(4, len(data))] = chance.randrange(256)
+        with contextlib.suppress(Unacceptable):  # anything else would be a failure
+            read_curve_file(bytes(data))

@@ -57,3 +57,10 @@ def test_ink_digest_covers_what_is_struck_and_why(entry):
     for change in changes:
         assert ink_digest([replace(entries[0], **change), *entries[1:]]) != whole
     assert ink_digest(entries[:-1]) != whole
+
+
+def test_ink_digest_covers_a_curves_points_and_no_other_raw_line(entry):
+    curve, reading = entry(1, "curve", "6 points"), entry(1, "burette_end", "18.64")
+    for one, covered in ((curve, True), (reading, False)):
+        other = replace(one, raw="another")
+        assert (ink_digest([other]) != ink_digest([replace(one, raw="one")])) is covered

@@ -67,6 +67,17 @@ def test_replicate_rows_repeat_the_burette_for_each_filling(recipe):
     assert [row.segment for row in rows if row.slot == "burette_end"] == [1, 2, 3]
 
 
+def test_replicate_rows_of_a_curve_take_the_place_of_the_burettes(recipe):
+    by_probe = recipe(end_point={"mode": "potentiometric", "method": "model fit"})
+    rows = replicate_rows(by_probe, RIG, 2)
+    assert slots_of(rows) == [
+        "container_and_standard", "container_less_standard", "curve", "end_point_method",
+        "excluded",
+    ]  # fmt: skip
+    assert [(row.kind, row.required) for row in rows[2:4]] == [("curve", True), ("choice", False)]
+    assert rows[3].choices[-1] == "model fit"
+
+
 def test_temperature_span_is_that_of_water_unless_an_expansion_is_stated(recipe):
     stated = recipe(liquid_expansion={"value": "1.1e-3", "unit": "1/K"})
     highs = [

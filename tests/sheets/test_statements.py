@@ -14,6 +14,7 @@ from server.sheets.bench_home import open_begin, open_bench_home
 from server.sheets.bench_sheet import open_bench_sheet
 from server.sheets.countersigning import open_countersign
 from server.sheets.instruments_page import open_instrument, open_instruments
+from server.sheets.labels_page import open_labels
 from server.sheets.lot_page import open_lot
 from server.sheets.lots_page import open_lots
 from server.sheets.people import open_people
@@ -89,6 +90,7 @@ def test_lists_take_the_same_statements_for_one_row_and_for_three(demo, grown) -
         "instruments": (open_instruments, (), {"who": "jonas"}),
         "instrument": (open_instrument, (keys["instrument"],), {"who": "jonas"}),
         "lot": (open_lot, (keys["lot"],), {"who": "jonas"}),
+        "labels": (open_labels, (keys["lot"],), {"who": "jonas"}),
         "lots": (open_lots, (), {"who": "jonas", "state": ""}),
         "planner": (open_planner, (PlanAsked(),), {"who": "jonas"}),
         "people": (open_people, (), {"who": "marisol"}),

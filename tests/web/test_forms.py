@@ -114,6 +114,7 @@ class Hand:
 
     def __init__(self, app: Any, name: str | None = None) -> None:
         self.client = TestClient(app, base_url="https://testserver", follow_redirects=False)
+        self.name = name
         if name:
             self.send("/sign-in", "/sign-in", name=name, password=PASSWORD)
 
@@ -246,6 +247,9 @@ def _hand_in(hand: Hand, sheet: str) -> None:
     reasons = dict.fromkeys(named, "only one weighing was left")
     assert {"reason.replicates", "reason.burette use"} <= set(named)
 
+    unnamed = hand.send(url, url, status=401, **reasons, password=PASSWORD)
+    assert "first signature since you signed in" in unnamed.text
+    reasons |= {"name": hand.name}
     wrong = hand.send(url, url, status=401, **reasons, password="not mine at all")
     assert "only one weighing was left" in wrong.text
     assert "not mine at all" not in wrong.text
@@ -259,11 +263,15 @@ def _hand_in(hand: Hand, sheet: str) -> None:
 def _countersign(hand: Hand, sheet_id: str) -> str:
     url = f"/countersign/{sheet_id}"
     accepted = re.findall(r'name="accepted" value="([^"]+)"', hand.page(url))
-    partly = hand.send(url, url, status=422, accepted=accepted[:1], password=PASSWORD)
+    seen = re.findall(r'name="trail_seen" value="([^"]+)"', hand.page(url))
+    given = {"accepted": accepted, "trail_seen": seen, "name": hand.name, "password": PASSWORD}
+    partly = hand.send(url, url, status=422, **{**given, "accepted": accepted[:1]})
     assert "accept it by name" in partly.text
-    wrong = hand.send(url, url, status=401, accepted=accepted, password="no", remark="seen by me")
+    wrong = hand.send(url, url, status=401, **{**given, "password": "no"}, remark="seen by me")
     assert "seen by me" in wrong.text
-    done = hand.send(url, url, accepted=accepted, password=PASSWORD)
+    unread = hand.send(url, url, status=422, **{**given, "trail_seen": []})
+    assert "Read the trail of this sheet before you sign" in unread.text
+    done = hand.send(url, url, **given)
     return str(done.headers["location"])
 
 

@@ -358,6 +358,7 @@ def test_confirmation_that_cannot_be_is_refused_by_field(
 @pytest.mark.parametrize(
     ("change", "field"),
     [
+        ({"paper": "a5"}, "paper"),
         ({"country": "Switzerland"}, "country"),
         ({"country": "Ċ1"}, "country"),
         ({"base_url": "ftp://x"}, "base_url"),

@@ -122,6 +122,8 @@ def test_countersign_sent_twice_issues_one_certificate(web: Any) -> None:
     body = {
         "revision": page["revision"],
         "accepted": page["to_accept"],
+        "trail_seen": page["trail_last"],
+        "name": "cleo",
         "password": cleo.password,
     }
     headers, before = {"Idempotency-Key": str(uuid4())}, _count(web, "certificate")

@@ -1,5 +1,6 @@
 """What is kept of bench sheets beside what the trail noted, row by row, for checking."""
 
+from collections import namedtuple
 from collections.abc import Iterator, Sequence
 from datetime import datetime
 from typing import Any, NamedTuple
@@ -15,6 +16,7 @@ from server.records.tables.trail import TrailRow
 from server.records.trail import fetched, read_body
 
 USED_UP, PROPOSED, PULLED = "used up a bottle", "proposed a pull", "pulled a lot"
+_named: Any = namedtuple  # noqa: PYI024 - made with a table's own columns
 
 
 class Done(NamedTuple):
@@ -126,7 +128,10 @@ def _by_sheet(
     rows = select(*table.__table__.columns).where(table.sheet_id.in_(wanted))
     found: dict[str, list[Any]] = {}
     ordered = rows.order_by(order, table.id)
-    for one in fetched(session, ordered, f"The text of one {table.__tablename__} or more"):
+    # every column of every row is looked at: a plain tuple's attributes are the quickest
+    plain = _named(table.__tablename__, table.__table__.columns.keys())
+    for row in fetched(session, ordered, f"The text of one {table.__tablename__} or more"):
+        one = plain._make(row)
         found.setdefault(one.sheet_id, []).append(one)
     return found
 

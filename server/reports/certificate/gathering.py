@@ -9,6 +9,7 @@ from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.canonical import digest
+from server.lab.own_site import PAPERS
 from server.records.queries.list_certificates import certificate_by_number
 from server.records.queries.list_sheets import snapshots_of
 from server.records.queries.load_papers import load_laboratory_fact
@@ -71,12 +72,14 @@ def gather_issued(session: Session, number: str, *, actor: Actor | None, now: da
     found = open_certificate_document(session, number, actor=actor, now=now)
     kept = snapshots_of(session, found["document"]["sheet"]["id"])
     wanted = found["document"]["snapshot_digest"]
-    base_url = load_laboratory_fact(session).settings.get("base_url")
+    settings = load_laboratory_fact(session).settings
+    base_url = settings.get("base_url")
     return issued_from(
         found,
         signatures_hold=tuple(one.holds for one in page.signatures),
         snapshot=next((text for text in kept.values() if digest(text) == wanted), None),
         url=f"{base_url}/certificates/{number}" if base_url else None,
+        paper=str(settings.get("paper") or PAPERS[0]),
     )
 
 

@@ -34,6 +34,7 @@ def certificate_told(issued: Issued) -> dict[str, Any]:
     result, notes = document["result"], Notes(document, zone)
     shown = outcome.printed(result)
     return {
+        "paper": issued.paper,
         "number": issued.number,
         "title": document["title"],
         "laboratory": document["laboratory"]["name"],

@@ -1,4 +1,4 @@
-"""Labels to print on: single ones, and sheets of A4 with a grid of them.
+"""Labels to print on: single ones, and sheets of A4 or Letter with a grid of them.
 
 The measures of the sheets are those of common self-adhesive stock, from memory: print a test sheet
 on plain paper first.
@@ -9,7 +9,8 @@ from dataclasses import dataclass
 
 from server.lab.refusal import Unacceptable
 
-A4_WIDTH, A4_HEIGHT = 210.0, 297.0
+A4 = ("A4", 210.0, 297.0)
+LETTER = ("Letter", 215.9, 279.4)
 _LEAST, _MOST = (40.0, 25.0), (210.0, 297.0)
 
 
@@ -55,28 +56,37 @@ def single(width: float, height: float) -> Stock:
     return Stock(f"one label, {width:g} × {height:g} mm", width, height, 1, 1, width, height)
 
 
-def _sheet(columns: int, rows: int, size: tuple[float, float], gap_x: float = 0.0) -> Stock:
+def _sheet(
+    columns: int,
+    rows: int,
+    size: tuple[float, float],
+    *,
+    gap_x: float = 0.0,
+    paper: tuple[str, float, float] = A4,
+) -> Stock:
     width, height = size
+    name, page_width, page_height = paper
     across = columns * width + (columns - 1) * gap_x
     return Stock(
-        name=f"A4, {columns * rows} labels of {width:g} × {height:g} mm",
-        page_width=A4_WIDTH,
-        page_height=A4_HEIGHT,
+        name=f"{name}, {columns * rows} labels of {width:g} × {height:g} mm",
+        page_width=page_width,
+        page_height=page_height,
         columns=columns,
         rows=rows,
         width=width,
         height=height,
-        left=round((A4_WIDTH - across) / 2, 3),
-        top=round((A4_HEIGHT - rows * height) / 2, 3),
+        left=round((page_width - across) / 2, 3),
+        top=round((page_height - rows * height) / 2, 3),
         gap_x=gap_x,
     )
 
 
 SHEETS: Mapping[str, Stock] = {
-    "a4-8": _sheet(2, 4, (99.1, 67.7), 2.5),
-    "a4-12": _sheet(2, 6, (99.1, 42.3), 2.5),
-    "a4-14": _sheet(2, 7, (99.1, 38.1), 2.5),
-    "a4-21": _sheet(3, 7, (63.5, 38.1), 2.55),
+    "a4-8": _sheet(2, 4, (99.1, 67.7), gap_x=2.5),
+    "a4-12": _sheet(2, 6, (99.1, 42.3), gap_x=2.5),
+    "a4-14": _sheet(2, 7, (99.1, 38.1), gap_x=2.5),
+    "a4-21": _sheet(3, 7, (63.5, 38.1), gap_x=2.55),
+    "letter-10": _sheet(2, 5, (101.6, 50.8), gap_x=4.8, paper=LETTER),
 }
 
 

@@ -96,6 +96,7 @@ def _settings(post: Post) -> ChangeSettings:
         idle_minutes=kept.get("idle_minutes", 30),
         country=form.text("country") if "country" in form.values else None,
         base_url=form.text("base_url") if "base_url" in form.values else None,
+        paper=form.text("paper") if "paper" in form.values else None,
         # a tick that is off is not sent: the form says that it has one
         label_value=bool(form.text("label_value")) if "labels" in form.values else None,
     )

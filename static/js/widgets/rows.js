@@ -31,7 +31,11 @@ function numeral(group) {
 
 function rowOf(row, view, acts) {
   const lit = view.lit && keyOf(view.lit) === keyOf(row);
-  if (lit) return litRow(row, view, acts);
+  if (lit) {
+    const line = litRow(row, view, acts);
+    line.append(...remarksOf(row));
+    return line;
+  }
   return row.value ? writtenRow(row, view, acts) : emptyRow(row, view, acts);
 }
 

@@ -105,6 +105,20 @@ def test_certificate_is_a4_and_each_page_names_number_and_count(issued, pdf) -> 
         assert says in re.sub(r"\s+", " ", page.extract_text())
 
 
+def test_certificate_on_letter_paper_is_whole_within_its_margins(issued) -> None:
+    letter = replace(issued, paper="us-letter")
+    pages = opened(certificate_pdf(letter)).pages
+    assert {tuple(round(float(side)) for side in page.mediabox[2:]) for page in pages} == {
+        (612, 792)
+    }
+    assert f"End of certificate {issued.number}" in pages[-1].extract_text()
+    for picture in certificate_pictures(letter, dots_per_inch=60):
+        drawn = np.asarray(Image.open(io.BytesIO(picture)).convert("L"))
+        edge = 25
+        for strip in (drawn[:, :edge], drawn[:, -edge:], drawn[:edge], drawn[-edge:]):
+            assert (strip > 200).all()
+
+
 def test_certificate_ends_with_its_end_mark(issued, pdf) -> None:
     mark = f"End of certificate {issued.number}"
     found = [mark in re.sub(r"\s+", " ", page) for page in pages_of(pdf)]
