@@ -24,6 +24,9 @@ _NEAR_BEYOND = 0.003
 _UNSEEN = 0.001
 """What activity, carbonate and the electrode may shift a line by without bending it, as u over the
 volume: 0.1 to 0.2 % in simulated curves of phthalate, TRIS and carbonate."""
+_UNSEEN_IN_LYE = 0.005
+"""The same beyond the end point of an alkaline titrant, whose carbonate (up to 1.4 % of it) shifts
+the line by as much as 1 % where readings are few."""
 _SMALLEST = 1e-12
 """Beyond twelve powers of ten no line can be seen."""
 
@@ -76,7 +79,9 @@ def gran_line(
         raise CannotTell("Beyond the end point Gran's function needs the volume in the flask.")
     picked = np.flatnonzero(near_mL * (1 + _NEAR_BEYOND) <= V)
     G = (flask_volume_mL + V) * np.exp(_LN10 * power)
-    return _named(clean, picked, G, method, "(V0 + V)·10^±pH beyond the end point")
+    form = "(V0 + V)·10^±pH beyond the end point"
+    unseen = _UNSEEN_IN_LYE if rising else _UNSEEN
+    return _named(clean, picked, G, method, form, unseen=unseen)
 
 
 def _before(
@@ -110,7 +115,13 @@ def _bend(line: GranLine) -> float:
 
 
 def _named(
-    clean: CleanCurve, picked: NDArray[np.intp], G: Floats, method: Method, form: str
+    clean: CleanCurve,
+    picked: NDArray[np.intp],
+    G: Floats,
+    method: Method,
+    form: str,
+    *,
+    unseen: float = _UNSEEN,
 ) -> GranLine:
     if picked.size < _FEWEST:
         says = f"Only {picked.size} points lie on that side; a line needs at least {_FEWEST}."
@@ -127,9 +138,9 @@ def _named(
     says = (
         f"Weighted line of {form}, {picked.size} points; its nearer half alone gives "
         f"{half.crossing:.3f} mL. Activity, carbonate and the probe's slope bend and shift it: u "
-        f"allows {100 * _UNSEEN:g} % for what no bend shows."
+        f"allows {100 * unseen:g} % for what no bend shows."
     )
-    u = float(np.linalg.norm([whole.u, bend, _UNSEEN * whole.crossing]))
+    u = float(np.linalg.norm([whole.u, bend, unseen * whole.crossing]))
     end_point = EndPoint(method, whole.crossing, u, tuple(at.tolist()), says)
     return GranLine(end_point, V, G, whole.intercept, whole.gradient)
 

@@ -20,6 +20,7 @@ _BEGAN, _COUNTERSIGNED, _ABANDONED = (
     "countersigned",
     "abandoned a bench sheet",
 )
+_MOST_SHOWN = 60
 #: What every release noted of an entry, and what it is called in a sentence.
 _NOTED_OF_ENTRY = {
     "text": "text", "unit": "unit", "slot": "row", "replicate": "replicate", "segment": "filling",
@@ -154,8 +155,10 @@ def _unlike(entry: Any, line: Mapping[str, Any], act: NotedAct, where: str) -> I
 
 
 def _shown(value: object) -> str:
-    text = "nothing" if value in (None, "") else str(value)
-    return text if len(text) <= 60 else f"{text[:60]}…"
+    if value in {None, ""}:
+        return "nothing"
+    text = str(value)
+    return f"“{text}”" if len(text) <= _MOST_SHOWN else f"“{text[:_MOST_SHOWN]}…”"
 
 
 def _evaluations(kept: KeptSheet) -> Iterator[str]:

@@ -94,9 +94,7 @@ def write_entries(
     facts = load_sheet_facts(session, sheet.id)
     _need_writable(facts)
     curves = command.curves or CurvesRead(curve_source(session, sheet))
-    pen = _Pen(
-        session, sheet, facts, curves=curves, sent_at=command.sent_at, actor=actor, now=now
-    )
+    pen = _Pen(session, sheet, facts, curves=curves, sent_at=command.sent_at, actor=actor, now=now)
     written = tuple(
         answer or pen.write(entry) for answer, entry in zip(answers, command.entries, strict=True)
     )

@@ -126,7 +126,8 @@ class Margin:
 class RestsOn:
     """Something the sheet rests on, with its state at the time of use.
 
-    ``flag`` says what speaks against it without stopping it: a check that failed.
+    ``flag`` says what speaks against it without stopping it: a check that failed. ``stated`` is
+    what its certificate or calibration states, line by line.
     """
 
     kind: str
@@ -136,6 +137,7 @@ class RestsOn:
     override: str | None
     url: str | None
     flag: str = ""
+    stated: tuple[tuple[str, str], ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

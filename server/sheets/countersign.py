@@ -9,7 +9,10 @@ from server.sheets.methods import ComparisonView
 
 @dataclass(frozen=True, slots=True)
 class QueueLine:
-    """A sheet that waits, longest first; ``stands_out`` is what to look at."""
+    """A sheet that waits, longest first; ``stands_out`` is what to look at.
+
+    ``notes`` tells what its writing holds beside that: corrections, late entries, earlier returns.
+    """
 
     sheet_id: str
     number: str
@@ -21,6 +24,7 @@ class QueueLine:
     stands_out: tuple[FindingView, ...]
     refused: str | None
     url: str
+    notes: str
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,12 +65,16 @@ class ReplicateRow:
 
 @dataclass(frozen=True, slots=True)
 class Figure:
-    """A figure of the first band: caption, number, and what it means. ``verdict`` may be empty."""
+    """A figure of the first band: caption, number, and what it means. ``verdict`` may be empty.
+
+    ``roots`` is what the number comes from, line by line.
+    """
 
     caption: str
     number: str
     says: str
     verdict: str
+    roots: tuple[tuple[str, str], ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

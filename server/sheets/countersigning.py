@@ -154,23 +154,35 @@ def _figures(
     if number.interval:
         says = "Monte Carlo does not validate first order: this interval is the one printed."
         yield Figure("95 % interval", number.interval, says, "look")
-    yield _figure("Factor", number.factor, by_name.get("nominal"), "")
+    ratio = f"{number.value} ÷ {facts.lot.nominal} {number.unit}"
+    factor = ("factor", f"concentration ÷ nominal = {ratio}")
+    yield _figure("Factor", number.factor, by_name.get("nominal"), roots=(factor,))
     spread = by_name.get("spread")
-    yield _figure("Spread", spread.figure if spread else "", spread, "")
+    mean = ("relative s", outcome.dots_says(result))
+    yield _figure("Spread", spread.figure if spread else "", spread, roots=(mean,))
     last = by_name.get("last certificate")
     if last is None:
         yield Figure("Last certificate", "none", "This is the first one of the lot.", "")
     else:
-        yield _figure("Against the last certificate", last.figure, last, "")
+        yield _figure("Against the last certificate", last.figure, last)
     left_out = by_name.get("excluded")
     if left_out is not None:
-        yield _figure("With all replicates", left_out.figure, left_out, "")
+        yield _figure("With all replicates", left_out.figure, left_out)
     elif facts.last_certificate is not None:
         was = facts.last_certificate.document["result"]["concentration"]["reported"]
         yield Figure("Last time", was, f"Certificate {facts.last_certificate.number}", "")
 
 
-def _figure(caption: str, number: str, finding: FindingView | None, otherwise: str) -> Figure:
+def _figure(
+    caption: str,
+    number: str,
+    finding: FindingView | None,
+    *,
+    roots: tuple[tuple[str, str], ...] = (),
+) -> Figure:
+    """Return a figure with what it comes from, and the check that judges it."""
     if finding is None:
-        return Figure(caption, number, otherwise, "")
-    return Figure(caption, number, finding.says, finding.verdict)
+        return Figure(caption, number, "", "", roots)
+    judged = (("figure", finding.figure), ("limit", finding.limit), ("basis", finding.basis))
+    lines = (*roots, *(pair for pair in judged if pair[1]))
+    return Figure(caption, number, finding.says, finding.verdict, lines)

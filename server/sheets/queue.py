@@ -6,6 +6,7 @@ from datetime import datetime
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
+from server.lab.ink import strikes
 from server.lab.roles import Act, holders
 from server.lab.segregation import countersign_refusal
 from server.lab.sheet_facts import SheetFacts
@@ -15,7 +16,7 @@ from server.sheets.countersign import Queue, QueueLine
 from server.sheets.parts.doors import may_read_number, need_reader
 from server.sheets.parts.sheet_lines import sheet_title
 from server.sheets.parts.signed import countersignature, signed_findings
-from server.sheets.parts.telling import moment_words, span_words
+from server.sheets.parts.telling import count_words, moment_words, span_words
 
 DONE_SHOWN = 8
 
@@ -78,4 +79,17 @@ def _line(facts: SheetFacts, *, waiting: str, refused: str | None) -> QueueLine:
         stands_out=signed_findings(facts, odd),
         refused=refused,
         url=f"/countersign/{facts.id}",
+        notes=_notes(facts),
     )
+
+
+def _notes(facts: SheetFacts) -> str:
+    """Return in a line what was corrected, came late, or was sent back before."""
+    late = sum(one.late for one in facts.entries)
+    told = [
+        (len(strikes(facts.entries)), "entry struck through", "entries struck through"),
+        (late, "late entry", "late entries"),
+        (len(facts.overrides), "thing used out of date", "things used out of date"),
+        (len(facts.returns), "time sent back", "times sent back"),
+    ]
+    return ", ".join(count_words(count, one, many) for count, one, many in told if count)

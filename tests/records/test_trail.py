@@ -1,11 +1,14 @@
+import hashlib
+import json
 from concurrent.futures import ThreadPoolExecutor
 from datetime import UTC, datetime
 
 import pytest
-from sqlalchemy import text
+from sqlalchemy import select, text
 from sqlalchemy.exc import DBAPIError
 
-from server.records.trail import GENESIS, check, head, note
+from server.records.tables.trail import TrailRow
+from server.records.trail import GENESIS, check, hash_of, head, note
 
 NOW = datetime(2026, 5, 4, 8, 30, tzinfo=UTC)
 
@@ -62,3 +65,35 @@ def test_check_row_changed_behind_the_triggers_is_named(sqlite_transactions, sta
     found = sqlite_transactions.read(check)
     assert not found.holds
     assert says in found.says
+
+
+@pytest.mark.parametrize("why", [None, "", 'a "quoted" \\ line\n\ttab \x1f \u2028 Ω € 𝛼'])
+def test_hash_of_a_row_is_that_of_its_canonical_text(transactions, why):
+    """The check spells that text out for speed; here it is made by the general writer of JSON."""
+    transactions.write(
+        lambda session: note(
+            session, actor=None, act="wrote", kind="sheet", thing_id="s1", thing_name='S "1" \\ Ω',
+            why=why, body={"text": '18.60 "', "n": 1}, now=NOW, zone="Europe/Berlin",
+        )
+    )  # fmt: skip
+
+    def compare(session):
+        row = session.scalars(select(TrailRow)).one()
+        named = ("seq", "zone", "person_id", "person_name", "act", "kind", "thing_id",
+                 "thing_name", "why", "body")  # fmt: skip
+        said = {name: getattr(row, name) for name in named} | {"at": row.at.isoformat()}
+        text = json.dumps(said, sort_keys=True, ensure_ascii=False, separators=(",", ":"))
+        wanted = hashlib.sha256(f"{row.previous_hash}\n{text}".encode()).hexdigest()
+        assert row.hash == hash_of(row) == wanted
+
+    transactions.read(compare)
+    assert transactions.read(check).holds
+
+
+def test_check_of_the_newest_rows_begins_where_it_says(sqlite_transactions):
+    for _ in range(6):
+        write(sqlite_transactions)
+    found = sqlite_transactions.read(lambda session: check(session, newest=2))
+    assert (found.holds, found.rows, found.seq) == (True, 2, 6)
+    assert "newest 2 rows, from 5 to 6" in found.says
+    assert sqlite_transactions.read(lambda session: check(session, newest=99)).rows == 6

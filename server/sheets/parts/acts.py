@@ -60,9 +60,9 @@ def _entry(one: Mapping[str, Any]) -> str:
     where = f"replicate {one['replicate']}" if one["replicate"] else "sheet"
     filling = f", filling {one['segment']}" if one["segment"] > 1 else ""
     slot = one["slot"].partition(":")[2] or one["slot"].replace("_", " ")
-    written = f"{one['text']} {unit_words(one['unit'])}".strip() or "nothing"
-    why = f" ({one['reason']})" if one["reason"] else ""
-    struck = ", an earlier value struck through" if one["strikes"] else ""
+    written = f"{one['text']} {unit_words(one.get('unit'))}".strip() or "nothing"
+    why = f" ({one['reason']})" if one.get("reason") else ""
+    struck = ", an earlier value struck through" if one.get("strikes") else ""
     return f"{where}, {slot}{filling}: {written}{struck}{why}"
 
 

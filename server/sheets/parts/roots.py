@@ -7,7 +7,12 @@ from server.chemistry.cautions import cautions_for
 from server.lab.in_use import InUse, things_in_use
 from server.lab.sheet_facts import STANDARD_LOT, SheetFacts
 from server.sheets.bench import CautionView, RestsOn
-from server.sheets.parts.telling import moment_words
+from server.sheets.parts.calibration_views import error_table, stated_facts
+from server.sheets.parts.telling import moment_words, quantity_words
+
+_OF_STANDARD = {
+    "mass_fraction": "Mass fraction", "molar_mass": "Molar mass", "density": "Density",
+}  # fmt: skip
 
 
 def rests_on(facts: SheetFacts) -> tuple[RestsOn, ...]:
@@ -88,7 +93,23 @@ def _thing(facts: SheetFacts, one: InUse) -> RestsOn:
         override=override,
         url=_url(one.kind, one.thing_id),
         flag=one.flag,
+        stated=_stated(one.kind, paper.document) if paper is not None else (),
     )
+
+
+def _stated(kind: str, document: Mapping[str, Any]) -> tuple[tuple[str, str], ...]:
+    """Return what a certificate or calibration states for use, its corrections row by row."""
+    lines = [(one.label, one.value) for one in stated_facts(kind, document)]
+    if kind == STANDARD_LOT:
+        lines += [
+            (label, quantity_words(document[key]))
+            for key, label in _OF_STANDARD.items()
+            if document.get(key)
+        ]
+    table = error_table(kind, document)
+    if table is not None:
+        lines.append((f"{table.heads[0]}: {table.heads[1]}", "; ".join(map(": ".join, table.rows))))
+    return tuple(lines)
 
 
 def _paper(about: Mapping[str, Any]) -> str:
