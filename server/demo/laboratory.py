@@ -7,7 +7,7 @@ from datetime import datetime, timedelta
 from functools import partial
 from random import Random
 
-from server.demo import cast, runs, stores
+from server.demo import cast, runs, shelf, stores
 from server.demo.cast import BASHIR, IMKE, JONAS, OTTILIE, STEWARD, Member
 from server.demo.hands import Hands, minutes
 from server.demo.probe_bench import ProbeBench
@@ -213,6 +213,8 @@ class _Story:
         self._titrate(second, Truth("KHP", 0.10211, 21.1), BASHIR, 4, count=6, slip=3)
         self._certify(second, BASHIR, 4)
         self._hands.do(use_up_bottle, UseUpBottle(used_up), IMKE, self._before(3))
+        shelf.use_the_acid(self._hands, self.in_force[0], self._before)
+        shelf.watch(self._hands, held, self._before)
         doubt = HoldThing("bottle", held, "stood open over the weekend")
         self._hands.do(hold_thing, doubt, BASHIR, self._before(2))
         self.in_force.append(good)

@@ -12,7 +12,8 @@ MOST_ROWS, MOST_COLUMNS = 200_000, 50
 _SHOWN_CELL = 40
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d{1,2})?")
 _MOST_NUMBER = 40
-_FINEST, _COARSEST = -16, 8
+#: A double precision number is written with 17 digits, and noise about zero begins at the 16th.
+_FINEST, _COARSEST = -34, 8
 
 Row = tuple[int, tuple[str, ...]]
 

@@ -41,8 +41,8 @@ def build_certificate(
 ) -> dict[str, Any]:
     """Return the certificate's document.
 
-    Keys: ``format``, ``number``, ``title``, ``replaces``, ``replaces_because``, ``issued_at``, ``laboratory``, ``lot``,
-    ``sheet``, ``recipe``, ``result`` (bench result), ``findings`` (with ``reason`` and
+    Keys: ``format``, ``number``, ``title``, ``replaces``, ``replaces_because``, ``issued_at``,
+    ``laboratory``, ``lot``, ``sheet``, ``recipe``, ``result`` (bench result), ``findings`` (with ``reason`` and
     ``accepted_by``), ``valid_for``, ``end_point``, ``validity``, ``measured``,
     ``replicates_left_out``, ``corrections``, ``entries``,
     ``traceability``, ``signatures``, ``independently_reviewed``,

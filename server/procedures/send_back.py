@@ -8,7 +8,6 @@ from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.free_text import read_text
-from server.lab.ink import Place
 from server.lab.refusal import NotAllowed, Unacceptable
 from server.lab.rig import rig_of
 from server.lab.roles import Act
@@ -72,7 +71,7 @@ def _row_remarks(facts: SheetFacts, remarks: Sequence[RowRemark]) -> list[tuple[
     if len(remarks) > MOST_ROW_REMARKS:
         says = f"Up to {MOST_ROW_REMARKS} rows take a remark at a time; these are {len(remarks)}."
         raise Unacceptable(says, field="remarks")
-    found: dict[Place, tuple[str, RowRemark]] = {}
+    found: dict[tuple[int, str, int], tuple[str, RowRemark]] = {}
     recipe, rig = facts.recipe.document, rig_of(facts.instruments)
     for number, one in enumerate(remarks):
         place = (one.replicate, one.slot, one.segment)

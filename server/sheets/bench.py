@@ -10,8 +10,8 @@ from server.sheets.plan import PlanView
 class EntryView:
     """One entry as written. ``at`` is ISO 8601 in UTC; ``clock`` the local hh:mm for the row.
 
-    ``raw`` is the line that an instrument sent; ``file_url`` the original of a curve. ``clock_says``
-    tells what was wrong with the clock that it was written by, and how late it came.
+    ``raw`` is the line that an instrument sent; ``file_url`` the original of a curve.
+    ``clock_says`` tells what was wrong with the clock that it was written by, and how late it came.
     """
 
     id: str

@@ -33,9 +33,18 @@ def look_up(
     need_shelf(load_laboratory_fact(session).settings, actor)
     celsius = None if at is None else read_celsius(at)
     one = find_bottle(session, code)
+    found = tell(one, now=now)
+    if celsius is not None:
+        certified = found["in_force"]
+        found["at_temperature"] = at_temperature(session, one.lot, celsius) if certified else None
+    return found
+
+
+def tell(one: BottleOnShelf, *, now: datetime) -> dict[str, Any]:
+    """Return what is to be told of a bottle that was looked up, at an instant."""
     state = state_of_bottle(one, now)
     result = concentration_in_force(one.lot, state)
-    found: dict[str, Any] = {
+    return {
         "bottle": one.bottle.code,
         "titrant": one.lot.lot.titrant,
         "lot": one.lot.lot.name,
@@ -46,9 +55,6 @@ def look_up(
         **_certified(one, good=result is not None),
         "as_of": now.isoformat(),
     }
-    if celsius is not None:
-        found["at_temperature"] = result and at_temperature(session, one.lot, celsius)
-    return found
 
 
 def read_celsius(text: str) -> Decimal:

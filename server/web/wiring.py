@@ -57,6 +57,7 @@ from server.web.pages import (
     trail,
 )
 from server.web.parts import Parts
+from server.web.quick_look_up import QuickLookUp
 from server.web.static_files import StaticFiles, static_router
 
 _PAGES = (
@@ -106,6 +107,9 @@ def create_app(parts: Parts, static: StaticFiles) -> FastAPI:
     )
     app.state.parts = parts
     add_error_handlers(app)
+    if parts.transactions.database.is_sqlite:
+        # before the route that it takes the plain case from
+        app.router.routes.append(QuickLookUp(f"{API_PREFIX}/bottles/{{code}}", parts))
     for prefix, router in ROUTERS:
         described = bool(router.tags)
         app.include_router(

@@ -235,9 +235,7 @@ class Laboratory:
         facts = self.facts(sheet or self.sheet)
         accepted = failing(facts.evaluation.result["findings"]) if facts.evaluation else []
         seen = self.last_act(sheet)
-        command = Countersign(
-            sheet or self.sheet, facts.revision, tuple(accepted), trail_seen=seen
-        )
+        command = Countersign(sheet or self.sheet, facts.revision, tuple(accepted), trail_seen=seen)
         return self.act(countersign_sheet, command, who, proof=self.proof(who))
 
     def last_act(self, sheet: str = "") -> int:

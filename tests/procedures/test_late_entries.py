@@ -69,8 +69,8 @@ def test_entry_is_flagged_by_its_delay_and_by_its_clock(
 
 def test_sender_whose_clock_is_no_time_is_refused_by_name(sqlite_lab):
     entry = NewEntry(str(uuid4()), 0, "temperature", "20.4")
+    command = WriteEntries(sqlite_lab.sheet, (entry,), sent_at="yesterday")
     with pytest.raises(Unacceptable) as refused:
-        command = WriteEntries(sqlite_lab.sheet, (entry,), sent_at="yesterday")
         sqlite_lab.act(write_entries, command, "analyst")
     assert refused.value.field == "sent_at"
     assert sqlite_lab.facts().entries == ()

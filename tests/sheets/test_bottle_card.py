@@ -4,11 +4,15 @@ from dataclasses import asdict
 from datetime import timedelta
 
 import pytest
+import sqlalchemy as sa
 
 from server.demo.cast import MEMBERS
 from server.lab.refusal import NotFound, NotSignedIn, Unacceptable
 from server.procedures.holds import HoldThing, hold_thing
+from server.records.tables.lots import Bottle
 from server.sheets.bottle_card import open_bottle_card
+from server.sheets.look_up import look_up
+from server.sheets.lot_page import open_lot
 from server.sheets.shelf_page import open_shelf
 
 NO_NUMBER = ("value", "uncertainty", "k", "factor", "good_until", "certificate_number")
@@ -141,3 +145,28 @@ def test_card_on_a_closed_shelf_asks_visitors_to_sign_in(own_demo) -> None:
     with pytest.raises(NotSignedIn):
         card(own_demo, code)
     assert card(own_demo, code, who="bashir").in_force
+
+
+def test_opened_bottle_lapses_before_its_lot_and_says_which_rule_sets_the_day(own_demo) -> None:
+    code = own_demo.summary.bottles_in_force[1]  # its certificate is good until 11 December
+
+    def opened(session):
+        bottle = session.scalar(sa.select(Bottle).where(Bottle.code == code))
+        bottle.opened_at = own_demo.now - timedelta(days=1)
+        bottle.opened_until = own_demo.now + timedelta(days=2)
+
+    own_demo.write(opened)
+    page = card(own_demo, code)
+    assert page.in_force
+    assert page.good_until == "3 Dec 2026"
+    assert "open" in page.good_until_rule
+    assert page.opened.startswith("30 Nov 2026, 14:05; open it keeps until 3 Dec 2026")
+
+    later = own_demo.at(own_demo.now + timedelta(days=2))
+    page = card(later, code)
+    assert (page.state, page.in_force, page.value) == ("lapsed", False, "")
+    assert "Take another bottle" in page.why
+    lot = later.read(open_lot, code, who="bashir")
+    assert lot.state == "in force"  # another bottle of it may be used
+    found = later.transactions.read(lambda session: look_up(session, code, at=None, now=later.now))
+    assert (found["state"], found["in_force"], found["valid_until"]) == ("lapsed", False, None)

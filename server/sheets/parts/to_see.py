@@ -1,4 +1,4 @@
-"""What a second person is shown before she signs: strikes, late entries, clocks, what was let be."""
+"""What a second person is shown before she signs: strikes, late entries, wrong clocks."""
 
 from collections.abc import Callable, Iterable, Iterator
 

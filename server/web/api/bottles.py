@@ -39,7 +39,7 @@ async def bottle(request: Request, code: str, at: str | None = None) -> Response
         raise
     if seen is not None:
         await run_in_threadpool(touch, seen)
-    return PlainTextResponse(one_line(found)) if _wants_text(request) else answer(found)
+    return PlainTextResponse(one_line(found)) if wants_text(request) else answer(found)
 
 
 @router.get("/shelf")
@@ -66,6 +66,7 @@ def one_line(found: dict[str, Any]) -> str:
     return f"{concentration['reported'].split()[0]} {concentration['unit']}\n"
 
 
-def _wants_text(request: Request) -> bool:
+def wants_text(request: Request) -> bool:
+    """Say whether a request asks for one line of text instead of JSON."""
     accept = request.headers.get("accept", "")
     return "text/plain" in accept and "json" not in accept

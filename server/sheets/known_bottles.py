@@ -1,0 +1,64 @@
+"""Bottles that were looked up before, kept until anything at all is committed."""
+
+from collections.abc import Callable
+from dataclasses import replace
+from datetime import datetime
+from threading import Lock
+from typing import Any
+
+from sqlalchemy.orm import Session
+
+from server.records.queries.list_shelf import BottleOnShelf
+from server.records.queries.load_papers import load_laboratory_fact
+from server.records.transaction import Transactions
+from server.records.unchanged import Unchanged
+from server.sheets.look_up import tell
+from server.sheets.parts.by_code import find_bottle
+from server.sheets.parts.doors import need_shelf
+
+#: Bottles that are kept at most; those of one lot share its certificate.
+MOST = 5_000
+
+
+class KnownBottles:
+    """What a visitor gets of a bottle, from memory while the database is unchanged.
+
+    What is kept are the facts, never the answer: the state is computed anew for every instant.
+    """
+
+    def __init__(self, transactions: Transactions) -> None:
+        self._transactions = transactions
+        self._unchanged = Unchanged(transactions.database)
+        self._lock = Lock()
+        self._version: int | None = None
+        self._bottles: dict[str, BottleOnShelf] = {}
+        self._lots: dict[str, Any] = {}
+
+    def look_up(self, code: str, *, now: datetime) -> dict[str, Any]:
+        """Return what ``look_up`` would return to a visitor.
+
+        Raises:
+            NotFound: no bottle has this code.
+            NotSignedIn: the laboratory has closed its shelf.
+        """
+        with self._lock:
+            # asked before anything is read: what is read is then at least as new
+            version = self._unchanged.version()
+            if version != self._version or len(self._bottles) >= MOST:
+                self._bottles.clear()
+                self._lots.clear()
+                self._version = version
+            one = self._bottles.get(code)
+            if one is None:
+                one = self._transactions.read(_finding(code))
+                one = replace(one, lot=self._lots.setdefault(one.bottle.lot_id, one.lot))
+                self._bottles[code] = one
+        return tell(one, now=now)
+
+
+def _finding(code: str) -> Callable[[Session], BottleOnShelf]:
+    def find(session: Session) -> BottleOnShelf:
+        need_shelf(load_laboratory_fact(session).settings, None)
+        return find_bottle(session, code)
+
+    return find
