@@ -8,7 +8,7 @@ from server.curves.analysis import Analysis, proposed_method
 from server.curves.circumstances import Circumstances, system_named
 from server.curves.derivatives import first_derivative, second_derivative, steepest_segment
 from server.curves.findings import CurveFinding
-from server.curves.fitting import Fitted, fitted, in_pH, only_first_step
+from server.curves.fitting import Fitted, fitted, in_pH, only_first_step, slowed
 from server.curves.gran import GranLine, gran_line
 from server.curves.jumps import CleanCurve, cleaned, jumps, steepest_about
 from server.curves.model.fit import FitProblem
@@ -66,6 +66,7 @@ def analysed(points: PointsLike, known: Circumstances | None = None) -> Analysis
         outcomes["model fit"] = NoEndPoint("model fit", str(problem))
         notes = [findings.of_bubbles(curve, clean.bubbles), spacing]
     else:
+        outcomes = {method: slowed(one, fit.lag) for method, one in outcomes.items()}
         outcomes["model fit"] = fit.end_point()
         notes = [*_fit_findings(curve, fit, outcomes), spacing]
     return Analysis(
@@ -110,7 +111,8 @@ def _other_step(
 ) -> tuple[Outcome, ...]:
     answers: list[Outcome] = []
     if jump is not None:
-        answers += _by_slopes(clean, jump).values()
+        by_slopes = _by_slopes(clean, jump).values()
+        answers += by_slopes if fit is None else [slowed(one, fit.lag) for one in by_slopes]
     if fit is not None and known.system is not None and known.system.inner_step:
         answers.append(fit.inner_end_point(known.system.inner_step))
     return tuple(answers)

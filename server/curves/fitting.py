@@ -13,7 +13,7 @@ from server.curves.model.lag_look import LagLook, look_for_lag
 from server.curves.model.scatter import Given
 from server.curves.model.systems import AcidBaseSystem
 from server.curves.model.uncertainty import EndPointUncertainty, end_point_uncertainty
-from server.curves.outcome import CannotTell, EndPoint
+from server.curves.outcome import CannotTell, EndPoint, NoEndPoint, Outcome
 from server.curves.points import Floats, TitrationCurve
 
 _USUAL_STEPS_PER_SCATTER = 10
@@ -123,6 +123,18 @@ def _needed(known: Circumstances) -> tuple[AcidBaseSystem, Flask]:
         raise CannotTell(f"The model fit needs {' and '.join(missing)}.")
     flask = Flask(known.flask_volume_mL, known.amount_mmol, known.temperature_C)
     return known.system, flask
+
+
+def slowed(outcome: Outcome, lag: LagLook) -> Outcome:
+    """Return what another method answers, its u widened by what a lag that was found can do to it.
+
+    Slopes and lines are read off the points as they are, so that the whole lag is in them.
+    """
+    if isinstance(outcome, NoEndPoint) or not lag.shift_mL:
+        return outcome
+    u = float(np.hypot(outcome.u_mL, lag.shift_mL))
+    says = f"{outcome.says} u allows {abs(lag.shift_mL):.3f} mL for the lag of the probe."
+    return replace(outcome, u_mL=u, says=says)
 
 
 def _given(curve: TitrationCurve, clean: CleanCurve, known: Circumstances) -> Given:

@@ -182,6 +182,7 @@ class _Story:
         sheet = self._begin("acid", "TRIS", BASHIR, 61)
         self._titrate(sheet, Truth("TRIS", 0.09985, 21.2), BASHIR, 61, count=4)
         self._certify(sheet, BASHIR, 61)
+        shelf.open_acid(self._hands, self.in_force[0], self._before(60))
 
     def _acid_again(self) -> None:
         sheet = self._begin("acid", "TRIS", IMKE, 26)
@@ -213,8 +214,8 @@ class _Story:
         self._titrate(second, Truth("KHP", 0.10211, 21.1), BASHIR, 4, count=6, slip=3)
         self._certify(second, BASHIR, 4)
         self._hands.do(use_up_bottle, UseUpBottle(used_up), IMKE, self._before(3))
-        shelf.use_the_acid(self._hands, self.in_force[0], self._before)
         shelf.watch(self._hands, held, self._before)
+        shelf.tell_uses(self._hands, self.in_force[0], self._before)
         doubt = HoldThing("bottle", held, "stood open over the weekend")
         self._hands.do(hold_thing, doubt, BASHIR, self._before(2))
         self.in_force.append(good)

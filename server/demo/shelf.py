@@ -9,7 +9,7 @@ from server.procedures.bottles import OpenBottle, open_bottle
 from server.procedures.uses import UseBottle, use_bottle
 from server.procedures.watches import WatchThing, watch_thing
 
-#: Results that rest on the acid: days ago, number, what for.
+#: Results that rest on the acid: days ago, number, what for, who wrote it down later.
 _USES = (
     (50.0, "W-0412", "alkalinity, raw water", BASHIR),
     (21.1, "W-0588", "alkalinity, reservoir 2", IMKE),
@@ -17,13 +17,19 @@ _USES = (
 )
 
 
-def use_the_acid(hands: Hands, acid: str, before: Callable[[float], datetime]) -> None:
-    """Open the acid's bottle and write down what it was used for."""
-    hands.do(open_bottle, OpenBottle(acid), BASHIR, before(50.1))
-    for days, result, says, member in _USES:
-        hands.do(use_bottle, UseBottle(acid, result, says=says), member, before(days))
+def open_acid(hands: Hands, acid: str, at: datetime) -> None:
+    """Open the acid's bottle."""
+    hands.do(open_bottle, OpenBottle(acid), BASHIR, at)
+
+
+def tell_uses(hands: Hands, acid: str, before: Callable[[float], datetime]) -> None:
+    """Write down what the acid was used for, from the results' own times."""
+    for turn, (days, result, says, member) in enumerate(_USES):
+        used_at = before(days).isoformat()
+        command = UseBottle(acid, result, used_at=used_at, says=says)
+        hands.do(use_bottle, command, member, before(2.3 - 0.01 * turn))
 
 
 def watch(hands: Hands, bottle: str, before: Callable[[float], datetime]) -> None:
     """Let the keeper watch a bottle, so that he is told when somebody doubts it."""
-    hands.do(watch_thing, WatchThing("bottle", bottle), JONAS, before(2.9))
+    hands.do(watch_thing, WatchThing("bottle", bottle), JONAS, before(2.4))

@@ -21,7 +21,7 @@ from server.evaluation.circumstances import (
 from server.evaluation.drying_of_sheet import drying_of_sheet
 from server.evaluation.entrance import evaluate
 from server.evaluation.snapshot import make_snapshot
-from server.lab.calibration.check_log import CHECK_OF_KIND, charts_of, last_checked
+from server.lab.calibration.check_log import CHECK_OF_KIND, charts_of, check_that_counts
 from server.lab.canonical import canonical, digest
 from server.lab.curve_entry import METHOD_SLOT
 from server.lab.curve_entry import SLOT as CURVE_SLOT
@@ -350,7 +350,7 @@ def _interim(facts: SheetFacts) -> Iterator[Interim]:
         instrument = facts.instrument(used.kind)
         if instrument is None or not charts_of(instrument.log, used.kind, as_of=as_of):
             continue
-        last = last_checked(instrument.log, used.kind, at=used.used_at, as_of=as_of)
+        last = check_that_counts(instrument, at=used.used_at, zone=zone, as_of=as_of)
         yield Interim(
             name=CHECK_OF_KIND[used.kind],
             thing=instrument.name,

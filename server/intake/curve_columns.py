@@ -4,6 +4,7 @@ import re
 from collections.abc import Collection, Mapping, Sequence
 from dataclasses import asdict, dataclass
 from decimal import Decimal
+from itertools import pairwise
 from types import MappingProxyType
 from typing import Any, Literal
 
@@ -36,6 +37,7 @@ _UNITS: Mapping[str, str] = MappingProxyType(
         "minutes": "min", "h": "h", "ms": "ms", "drops": "drops", "ph": "pH",
     }
 )  # fmt: skip
+_MOST_pH = 14
 _HEADER = re.compile(
     r"(?P<name>[^,(\[/]*?)\s*(?:[,/]\s*(?P<after>[^()\[\]]+)|[(\[]\s*(?P<inside>[^)\]]*)[)\]])?\s*"
 )
@@ -163,6 +165,10 @@ def columns_of(
     """
     width = max(len(row) for row in values)
     if header is None:
+        if width > 2 and _counts(values):
+            kind = _kind_of(values, 2)
+            says = "No header: column 1 counts the points, column 2 taken as the volume in mL, "
+            return ColumnMapping(1, 2, kind, reading_unit=kind), [f"{says}column 3 as {kind}."]
         kind = _kind_of(values, 1)
         says = f"No header: column 1 taken as the volume in mL, column 2 as {kind}" + (
             ", column 3 as seconds." if width > 2 else "."
@@ -239,6 +245,26 @@ def taken_words(mapping: ColumnMapping, header: Sequence[str] | None) -> str:
     if mapping.time is not None:
         names.append(f"time in {mapping.time_unit} from {named(mapping.time)}")
     return f"Taken: {', '.join(names)}."
+
+
+def _counts(values: Sequence[Sequence[Decimal | None]]) -> bool:
+    """Tell whether the first of three columns only numbers the points: 1, 2, 3 and on.
+
+    The second must grow as volumes do, and the third be what seconds are not: a pH throughout, or
+    readings that fall.
+    """
+    columns = []
+    for at in range(3):
+        column = [row[at] for row in values if len(row) > at]
+        known = [one for one in column if one is not None]
+        if len(known) < len(values):
+            return False
+        columns.append(known)
+    count, volume, reading = columns
+    numbered = count[0] in {0, 1} and all(b - a == 1 for a, b in pairwise(count))
+    grows = all(a <= b for a, b in pairwise(volume))
+    falls = any(a > b for a, b in pairwise(reading))
+    return numbered and grows and (falls or 0 <= reading[0] <= reading[-1] <= _MOST_pH)
 
 
 def _known(unit: str | None, units: Collection[str], usual: str) -> str:

@@ -5,11 +5,12 @@ from dataclasses import dataclass
 from datetime import datetime
 from typing import Any
 
+from server.lab.end_point_taken import methods_taken, valid_for_of
 from server.lab.in_use import InUse, kind_of_slot
 from server.lab.ink import excluded, standing, strikes
 from server.lab.rig import rig_of
 from server.lab.segregation import own_part
-from server.lab.sheet_facts import EvaluationFact, SheetFacts, SignatureFact
+from server.lab.sheet_facts import EvaluationFact, OverrideFact, SheetFacts, SignatureFact
 from server.lab.signing import accepted_findings, trail_seen
 from server.lab.slots import row_at
 from server.lab.validity import ValidUntil, last_day, local_day
@@ -42,8 +43,8 @@ def build_certificate(
     """Return the certificate's document.
 
     Keys: ``format``, ``number``, ``title``, ``replaces``, ``replaces_because``, ``issued_at``,
-    ``laboratory``, ``lot``, ``sheet``, ``recipe``, ``result`` (bench result), ``findings`` (with ``reason`` and
-    ``accepted_by``), ``valid_for``, ``end_point``, ``validity``, ``measured``,
+    ``laboratory``, ``lot``, ``sheet``, ``recipe``, ``result`` (bench result), ``findings`` (with
+    ``reason`` and ``accepted_by``), ``valid_for``, ``end_point``, ``validity``, ``measured``,
     ``replicates_left_out``, ``corrections``, ``entries``,
     ``traceability``, ``signatures``, ``independently_reviewed``,
     ``statements``, ``calculation``, ``input_digest``, ``snapshot_digest``. Instants are ISO 8601
@@ -73,10 +74,11 @@ def build_certificate(
         },
         "result": result,
         "findings": _findings(result, measured, countersigned),
-        "valid_for": recipe.document.valid_for,
+        "valid_for": valid_for_of(recipe.document, result),
         "end_point": {
             "mode": recipe.document.end_point.mode,
             "indicator": recipe.document.end_point.indicator,
+            "methods": methods_taken(result),
         },
         "validity": {
             "until": issue.valid.at.isoformat(),
@@ -250,10 +252,15 @@ def _statements(facts: SheetFacts, in_use: Sequence[InUse], *, reviewed: bool) -
         "The concentration is that of the liquid at 20 °C.",
         "To be reproduced only in full.",
     ]
-    lines += [
-        f"Used out of date by {one.override.by.printed_name}'s word: {one.name}. "
-        f"Reason: {one.override.reason}."
-        for one in in_use
-        if one.override is not None and one.state != "in date"
-    ]
+    lines += [_let(one, one.override) for one in in_use if one.override is not None]
+    lines = [line for line in lines if line]
     return lines if reviewed else [*lines, NOT_REVIEWED]
+
+
+def _let(one: InUse, word: OverrideFact) -> str:
+    """Return the sentence about a thing let be used; empty where it was valid when it was used."""
+    if one.state == "in date" and not one.off_limits:
+        return ""
+    how = "Used out of date" if one.state != "in date" else "Used after a failed check"
+    failed = f" {one.off_limits}" if one.off_limits else ""
+    return f"{how} by {word.by.printed_name}'s word: {one.name}.{failed} Reason: {word.reason}."

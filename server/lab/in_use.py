@@ -4,7 +4,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from datetime import datetime
 
-from server.lab.calibration.check_log import last_checked
+from server.lab.calibration.check_log import check_that_counts
 from server.lab.curve_entry import SLOT as CURVE
 from server.lab.ink import standing
 from server.lab.sheet_facts import (
@@ -23,7 +23,7 @@ from server.lab.sheet_facts import (
     StandardLotFact,
 )
 from server.lab.states import HELD, IN_DATE, LAPSED
-from server.lab.validity import last_day
+from server.lab.validity import last_day, local_day
 
 MASS_SLOTS = frozenset({"container_and_standard", "container_less_standard", "mass", "tare_load"})
 _SLOTS = {
@@ -43,7 +43,8 @@ class InUse:
     """One thing that a sheet rests on, at its last time of use.
 
     ``state``: in date, lapsed or held; ``says`` is a sentence; ``override`` a keeper's word.
-    ``flag`` says what speaks against it without stopping it: a check that failed.
+    ``flag`` says what speaks against it without stopping what is under way; ``off_limits`` is the
+    sentence about a last check that failed, for which no sheet is begun with it.
     """
 
     kind: str
@@ -55,6 +56,7 @@ class InUse:
     says: str
     override: OverrideFact | None
     flag: str = ""
+    off_limits: str = ""
 
     @property
     def blocks(self) -> bool:
@@ -96,6 +98,8 @@ def _in_use(
         used_at=used_at, zone=facts.laboratory.zone, what="certificate" if lot else "calibration",
     )  # fmt: skip
     words = [one for one in facts.overrides if one.what == kind]
+    zone, as_of = facts.laboratory.zone, facts.log_as_of
+    instrument = None if isinstance(thing, StandardLotFact) else thing
     return InUse(
         kind=kind,
         thing_id=thing.id if isinstance(thing, StandardLotFact) else thing.instrument_id,
@@ -105,17 +109,30 @@ def _in_use(
         state=state,
         says=says,
         override=words[-1] if words else None,
-        flag=(
-            ""
-            if isinstance(thing, StandardLotFact)
-            else flag_of(thing, at=used_at, as_of=facts.log_as_of)
-        ),
+        flag=flag_of(instrument, at=used_at, zone=zone, as_of=as_of) if instrument else "",
+        off_limits=off_limits(instrument, at=used_at, zone=zone, as_of=as_of) if instrument else "",
     )
 
 
-def flag_of(instrument: InstrumentFact, *, at: datetime, as_of: datetime | None = None) -> str:
+def off_limits(
+    instrument: InstrumentFact, *, at: datetime, zone: str, as_of: datetime | None = None
+) -> str:
+    """Return why no sheet is begun with an instrument: its last check failed; empty if not."""
+    last = check_that_counts(instrument, at=at, zone=zone, as_of=as_of)
+    if last is None or last.outcome.verdict != "fails":
+        return ""
+    day = local_day(last.line.at, zone).isoformat()
+    return (
+        f"The last {last.line.what} of {instrument.name}, {day}, failed. {last.outcome.says} "
+        f"Limits: {last.outcome.limit_text}."
+    )
+
+
+def flag_of(
+    instrument: InstrumentFact, *, at: datetime, zone: str, as_of: datetime | None = None
+) -> str:
     """Return what speaks against an instrument at an instant, empty where nothing does."""
-    last = last_checked(instrument.log, instrument.kind, at=at, as_of=as_of)
+    last = check_that_counts(instrument, at=at, zone=zone, as_of=as_of)
     says = [f"Its calibration: {one}" for one in instrument.failing]
     if last is not None and last.outcome.verdict != "holds":
         says.append(f"Last {last.line.what}: {last.outcome.says}")

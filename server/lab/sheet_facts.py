@@ -116,7 +116,8 @@ class InstrumentFact:
 
     ``identity`` is the instrument's own document (resolution, capacity, serial number);
     ``document`` the calibration's record fragment. ``failing`` says what of the calibration does
-    not hold; ``log`` holds the checks between two calibrations, oldest first.
+    not hold; ``log`` holds the checks between two calibrations, oldest first; ``recorded_at`` is
+    when the calibration was entered.
     """
 
     kind: str
@@ -134,6 +135,7 @@ class InstrumentFact:
     holds: tuple[HoldFact, ...]
     failing: tuple[str, ...] = ()
     log: tuple[LogFact, ...] = ()
+    recorded_at: datetime | None = None
 
 
 @dataclass(frozen=True, slots=True)

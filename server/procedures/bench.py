@@ -1,6 +1,6 @@
 """Beginning a bench sheet, letting something out of date be used, abandoning."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date, datetime
 from decimal import Decimal
 from typing import Any
@@ -10,9 +10,10 @@ from sqlalchemy.orm import Session
 
 from server.chemistry.substances import SUBSTANCES
 from server.lab.actor import Actor
+from server.lab.calibration.check_log import CHECK_OF_KIND
 from server.lab.codes import read_code
 from server.lab.free_text import MOST_REASON, read_reason, read_text
-from server.lab.in_use import judge, things_in_use
+from server.lab.in_use import judge, off_limits, things_in_use
 from server.lab.recipe import RecipeDocument
 from server.lab.refusal import NotAllowed, NotFound, Stale, Unacceptable
 from server.lab.roles import Act
@@ -29,6 +30,7 @@ from server.lab.sheet_facts import (
 from server.lab.states import IN_DATE, OPEN, SENT_BACK
 from server.lab.validity import local_day
 from server.procedures.acts import Thing, note_act
+from server.records.queries.list_stores import CHECK_SPAN, checks_since
 from server.records.queries.load_lots import lot_is_pulled, lot_of_code
 from server.records.queries.load_papers import (
     load_instrument_fact,
@@ -60,7 +62,7 @@ class BeginSheet:
 
     ``lot_code`` may be the code of one of its bottles. ``probe_id`` is the probe of a
     potentiometric end point, where a pH probe is used. ``override_reason`` is a keeper's reason to
-    use something out of date.
+    use something that is out of date, held, or failed its last check.
     """
 
     lot_code: str
@@ -113,7 +115,7 @@ def begin_sheet(session: Session, command: BeginSheet, *, actor: Actor, now: dat
         says = f"The recipe weighs {recipe.document.standard}; {standard.name} is another standard."
         raise Unacceptable(says, field="standard_lot_id")
     _check_density(standard, recipe.document)
-    instruments = _instruments(session, command, recipe.document)
+    instruments = _instruments(session, command, recipe.document, now=now)
     overrides = _overrides(standard, instruments, reason, actor=actor, now=now)
     if not overrides:
         actor.need(Act.WRITE)
@@ -259,7 +261,7 @@ def _check_density(standard: StandardLotFact, recipe: RecipeDocument) -> None:
 
 
 def _instruments(
-    session: Session, command: BeginSheet, recipe: RecipeDocument
+    session: Session, command: BeginSheet, recipe: RecipeDocument, *, now: datetime
 ) -> tuple[InstrumentFact, ...]:
     wanted = {BALANCE: command.balance_id, BURETTE: command.burette_id}
     wanted[THERMOMETER] = command.thermometer_id or ""
@@ -270,7 +272,10 @@ def _instruments(
             says = "This recipe's end point is seen, not measured: it takes no probe."
             raise Unacceptable(says, field="probe_id")
         wanted[PROBE] = command.probe_id
-    return tuple(_instrument(session, kind, key) for kind, key in wanted.items())
+    found = [_instrument(session, kind, key) for kind, key in wanted.items()]
+    checked = [one.instrument_id for one in found if one.kind in CHECK_OF_KIND]
+    logs = checks_since(session, checked, now - CHECK_SPAN)
+    return tuple(replace(one, log=logs.get(one.instrument_id, ())) for one in found)
 
 
 def _instrument(session: Session, kind: str, instrument_id: str) -> InstrumentFact:
@@ -308,8 +313,12 @@ def _overrides(
             thing.name, due_at=thing.due_at, basis=thing.due_basis, holds=thing.holds,
             used_at=now, zone=actor.zone, what=what,
         )  # fmt: skip
-        if state == IN_DATE:
+        stopped = (
+            "" if isinstance(thing, StandardLotFact) else off_limits(thing, at=now, zone=actor.zone)
+        )
+        if state == IN_DATE and not stopped:
             continue
+        says = " ".join(part for part in ("" if state == IN_DATE else says, stopped) if part)
         if not (reason and actor.may(Act.OVERRIDE)):
             says += " A keeper may let it be used and gives the reason."
             raise Unacceptable(says, field=field)

@@ -123,18 +123,6 @@ def _need_trail_seen(session: Session, sheet_id: str, seen: int) -> None:
         raise Stale(says, field="trail_seen", shown={"standing": {"last act": last}})
 
 
-def check_waits(session: Session, sheet_id: str, *, actor: Actor, now: datetime) -> None:
-    """Refuse a sheet that does not wait, before a password is asked for it.
-
-    Raises:
-        NotFound: there is no such sheet.
-        NotAllowed: it does not wait.
-    """
-    del now
-    actor.need(Act.COUNTERSIGN)
-    waiting_parts(load_sheet_facts(session, sheet_id))
-
-
 def waiting_parts(facts: SheetFacts) -> tuple[EvaluationFact, SignatureFact]:
     """Return the evaluation and the *measured* signature of a sheet that waits.
 

@@ -160,10 +160,10 @@ def sign_out(session: Session, token: str, *, now: datetime) -> None:
     note_act(session, "signed out", _thing(person), actor=_actor(session, person), now=now)
 
 
-def is_first_signing(session: Session, actor: Actor, *, token: str | None) -> bool:
+def is_first_signing(session: Session, person_id: str, *, token: str | None) -> bool:
     """Say whether this person has signed nothing yet since this session began (21 CFR 11.200)."""
     row = session.get(SignIn, token_digest(token)) if token else None
-    return row is None or not signed_since(session, actor.person_id, row.began_at)
+    return row is None or not signed_since(session, person_id, row.began_at)
 
 
 def find_own_account(session: Session, actor: Actor, *, source: str, now: datetime) -> AccountCheck:

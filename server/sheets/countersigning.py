@@ -7,6 +7,7 @@ from typing import Any
 from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
+from server.lab.end_point_taken import valid_for_of
 from server.lab.in_use import things_in_use
 from server.lab.ink import strikes
 from server.lab.refusal import NotAllowed
@@ -82,7 +83,7 @@ def open_countersign(
         uncertainty=number.uncertainty,
         unit=number.unit,
         k=number.k,
-        valid_for=facts.recipe.document.valid_for,
+        valid_for=valid_for_of(facts.recipe.document, result),
         figures=tuple(_figures(facts, result, findings)),
         findings=findings,
         to_accept=outcome.failing_names(result["findings"]),

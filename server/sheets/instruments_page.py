@@ -89,7 +89,7 @@ def open_instrument(
         due_in=due_words(newest.due_at, now, zone) if newest else "",
         due_basis=newest.due_basis if newest else "",
         held_says=held_says(hold, row.kind, zone),
-        flag=flag_of(fact, at=now) if fact else "",
+        flag=flag_of(fact, at=now, zone=zone) if fact else "",
         identity=identity_fields(row.name, row.kind, row.document, kept, zone),
         described={key: row.document.get(key, "") for key in DESCRIBED},
         facts=(*scale_facts(row.kind, row.document), registered),
@@ -176,5 +176,5 @@ def _line(one: ListedInstrument, now: datetime, zone: str, *, held: bool) -> Ins
         due_in=due_words(fact.due_at, now, zone) if fact else "",
         due_basis=fact.due_basis if fact else "",
         certificate=fact.certificate_number if fact else "",
-        flag=flag_of(fact, at=now) if fact else "",
+        flag=flag_of(fact, at=now, zone=zone) if fact else "",
     )

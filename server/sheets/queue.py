@@ -7,11 +7,13 @@ from sqlalchemy.orm import Session
 
 from server.lab.actor import Actor
 from server.lab.ink import strikes
+from server.lab.refusal import NotAllowed
 from server.lab.roles import Act, holders
 from server.lab.segregation import countersign_refusal
 from server.lab.sheet_facts import SheetFacts
+from server.lab.states import HANDED_IN
 from server.records.queries.list_sheets import done_sheet_ids, waiting_sheet_ids
-from server.records.queries.load_sheet import load_many_sheet_facts
+from server.records.queries.load_sheet import load_many_sheet_facts, load_sheet_facts
 from server.sheets.countersign import Queue, QueueLine
 from server.sheets.parts.doors import may_read_number, need_reader
 from server.sheets.parts.sheet_lines import sheet_title
@@ -34,6 +36,20 @@ def open_queue(session: Session, *, actor: Actor | None, now: datetime) -> Queue
         waiting=tuple(_waiting(facts[one], reader, now) for one in waiting),
         done=tuple(_done(facts[one]) for one in done),
     )
+
+
+def need_waiting(session: Session, sheet_id: str, *, actor: Actor | None, now: datetime) -> None:
+    """Refuse a sheet that does not wait, before a password is asked for it.
+
+    Raises:
+        NotFound: there is no such sheet.
+        NotAllowed: it does not wait.
+    """
+    del now
+    need_reader(actor)
+    state = load_sheet_facts(session, sheet_id).state
+    if state != HANDED_IN:
+        raise NotAllowed(f"This sheet is {state}; it does not wait for a second person.")
 
 
 def countersign_problem(facts: SheetFacts, reader: Actor) -> str | None:

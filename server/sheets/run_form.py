@@ -11,7 +11,7 @@ from sqlalchemy.orm import Session
 from server.lab.actor import Actor
 from server.lab.calibration.preview import Preview, preview_run
 from server.lab.calibration.run import KINDS, WARE_OF_KIND, UsedInstrument
-from server.lab.in_use import judge
+from server.lab.in_use import judge, off_limits
 from server.lab.refusal import NotAllowed
 from server.lab.roles import Act
 from server.lab.sheet_facts import BALANCE, BURETTE, PROBE, ROOM, THERMOMETER
@@ -19,6 +19,7 @@ from server.lab.states import IN_DATE
 from server.lab.validity import local_day
 from server.metrology.conformity import RULES
 from server.records.queries.list_stores import (
+    CHECK_SPAN,
     ListedInstrument,
     calibrations_of,
     listed_instruments,
@@ -89,7 +90,7 @@ def _form(session: Session, instrument_id: str, reader: Actor, now: datetime) ->
         says = f"A {row.kind} is calibrated elsewhere: record its certificate."
         raise NotAllowed(says, field="instrument_id")
     ware = row.kind in WARE_OF_KIND
-    listed = listed_instruments(session) if ware else []
+    listed = listed_instruments(session, since=now - CHECK_SPAN) if ware else []
     kept = calibrations_of(session, row.id)
 
     def choices(kind: str) -> tuple[Choice, ...]:
@@ -171,4 +172,6 @@ def _choice(one: ListedInstrument, now: datetime, zone: str) -> Choice:
         used_at=now, zone=zone, what="calibration",
     )  # fmt: skip
     about = f"calibrated until {last_day_words(fact.due_at, zone)}"
-    return Choice(row.id, row.name, about, None if state == IN_DATE else says)
+    stopped = off_limits(fact, at=now, zone=zone)
+    refused = says if state != IN_DATE else stopped
+    return Choice(row.id, row.name, about, refused or None)

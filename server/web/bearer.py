@@ -37,6 +37,7 @@ ROUTES: Mapping[str, Scope] = MappingProxyType(
         "GET /stores/standard-lots/list.csv": Scope.EXPORT,
         "GET /instruments/list.csv": Scope.EXPORT,
         "GET /trail/list.csv": Scope.EXPORT,
+        "GET /trail/list.jsonl": Scope.EXPORT,
     }
 )
 

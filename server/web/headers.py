@@ -1,8 +1,7 @@
 """The headers that every answer carries."""
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 
-from starlette.datastructures import MutableHeaders
 from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
 #: Scripts, styles, pictures and requests of this server alone; nothing inline, no framing.
@@ -32,6 +31,17 @@ _ALWAYS = {
 _YEAR = "max-age=31536000; includeSubDomains"
 
 
+def _raw(headers: Mapping[str, str]) -> list[tuple[bytes, bytes]]:
+    """Return headers as they are sent: made once, for every answer carries them."""
+    return [(name.lower().encode(), value.encode()) for name, value in headers.items()]
+
+
+_RAW = _raw({**_ALWAYS, "Cache-Control": "no-store"})
+_RAW_SECURE = _raw({"Referrer-Policy": "no-referrer", "Strict-Transport-Security": _YEAR})
+# plain http tells no Sec-Fetch-Site, and without a referrer forms name no origin
+_RAW_PLAIN = _raw({"Referrer-Policy": "same-origin"})
+
+
 class SecurityHeaders:
     """Adds the headers; what is not a static file is never stored, for its truth may end."""
 
@@ -46,15 +56,12 @@ class SecurityHeaders:
 
         async def send_with_headers(message: Message) -> None:
             if message["type"] == "http.response.start":
-                headers = MutableHeaders(scope=message)
-                for name, value in _ALWAYS.items():
-                    headers.setdefault(name, value)  # a file's own policy is stricter
-                headers.setdefault("Cache-Control", "no-store")
+                sent = {name.lower() for name, _ in message.get("headers", ())}
                 secure = self._secure or scope["scheme"] == "https"
-                # plain http tells no Sec-Fetch-Site, and without a referrer forms name no origin
-                headers["Referrer-Policy"] = "no-referrer" if secure else "same-origin"
-                if secure:
-                    headers["Strict-Transport-Security"] = _YEAR
+                # a file's own policy is stricter than the one for all
+                added = [one for one in _RAW if one[0] not in sent]
+                added += _RAW_SECURE if secure else _RAW_PLAIN
+                message = {**message, "headers": [*message.get("headers", ()), *added]}
             await send(message)
 
         await self._app(scope, receive, send_with_headers)

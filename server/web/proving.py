@@ -52,7 +52,7 @@ def asks_name(visit: Visit) -> bool:
     """Say whether the next signature takes name and password: the first one of a session does."""
     actor = visit.actor
     return actor is not None and visit.parts.transactions.read(
-        lambda session: is_first_signing(session, actor, token=visit.token)
+        lambda session: is_first_signing(session, actor.person_id, token=visit.token)
     )
 
 

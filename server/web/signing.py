@@ -5,10 +5,11 @@ from typing import Any
 
 from server.lab.refusal import Unacceptable
 from server.lab.roles import Act
-from server.procedures.countersign import Countersign, check_waits, countersign_sheet
+from server.procedures.countersign import Countersign, countersign_sheet
 from server.procedures.hand_in import HandIn, evaluate_sheet, hand_in_sheet, prepare_hand_in
 from server.procedures.people import ChangePassword, change_password, hash_new_password
 from server.procedures.sign_in import SignedIn, find_own_account, record_sign_in
+from server.sheets.queue import need_waiting
 from server.web.acting import act, first_answer
 from server.web.proving import prove, prove_to_sign
 from server.web.visits import Visit
@@ -41,7 +42,7 @@ def set_second_signature(
     earlier = first_answer(visit, countersign_sheet, command, key=key)
     if earlier is not None:
         return earlier
-    visit.read(check_waits, command.sheet_id)
+    visit.read(need_waiting, command.sheet_id)
     proof = prove_to_sign(visit, given.name, given.password)
     return act(visit, countersign_sheet, command, key=key, proof=proof)
 

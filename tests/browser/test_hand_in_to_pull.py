@@ -136,7 +136,7 @@ def look_at_what_was_done(page, sheet):
     assert row.locator("s").inner_text().endswith("18.64")
     row.get_by_text("is 18.64 a slip?").wait_for()
     # the trail stands open before the signature
-    page.get_by_role("cell", name="sent back a bench sheet").wait_for()
+    page.locator(".acts").get_by_text("sent back a bench sheet").wait_for()
     # a draft of an earlier round does not come back
     assert page.get_by_label("What should be looked at on the whole").input_value() == ""
 

@@ -76,6 +76,14 @@ def test_lag_without_times_is_flagged_and_the_fit_is_not_proposed():
     assert abs(answer.volume_mL - LAGGING["equivalence_mL"]) < 2.5 * answer.u_mL
 
 
+@pytest.mark.parametrize("seconds", [None, SECONDS])
+def test_lag_that_was_found_is_in_the_u_of_every_other_method(seconds):
+    found = analysis(LAGGING["V"], LAGGING["y"], seconds)
+    for one in found.outcomes:
+        assert abs(one.volume_mL - LAGGING["equivalence_mL"]) < 2.5 * one.u_mL, one.method
+        assert one.method == "model fit" or one.says.endswith("mL for the lag of the probe.")
+
+
 @pytest.mark.slow
 @pytest.mark.parametrize("timed", [False, True])
 def test_lag_is_not_seen_where_there_is_none(timed, titration):

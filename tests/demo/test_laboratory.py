@@ -121,6 +121,7 @@ def test_demo_trail_holds_and_tells_every_kind_of_act(demo):
         "set up the laboratory", "added a person", "registered an instrument",
         "recorded a calibration", "received a standard lot", "wrote a recipe", "made up a lot",
         "filled a bottle", "used up a bottle", "held a bottle", "began a bench sheet",
+        "opened a bottle", "used a bottle",
         "wrote entries", "corrected entries", "handed in a bench sheet", "sent back a bench sheet",
         "countersigned", "issued a certificate", "opened a standard lot", "dried a standard lot",
         "used a standard lot", "struck a line of a log through", "calibrated an instrument",

@@ -359,3 +359,33 @@ def test_curve_text_reading_that_cannot_be_is_named_and_can_be_left_out(cell, sa
 
 def test_curve_text_volume_below_zero_is_refused():
     assert "-0.10 mL is not possible" in refusal(table().replace("0.00;", "-0.10;", 1))
+
+
+def test_curve_text_numbers_with_all_digits_of_a_double_are_taken_as_they_stand():
+    # what a script or a worksheet writes for 3 * 0.05, and for nothing with noise on it
+    text = table(header="mL;pH").replace("20.00;", "20.000000000000004;")
+    text = text.replace("0.00;", "4.4408920985006262E-16;", 1)
+    read = read_curve_text(text)
+    assert read.volume_mL[0] == "0.00000000000000044408920985006262"
+    assert "20.000000000000004" in read.volume_mL
+
+
+@pytest.mark.parametrize(("unit", "factor"), [("pH", 1), ("mV", -60)])
+def test_curve_text_without_header_whose_first_column_counts_takes_the_second(unit, factor):
+    plain = table(header=None)
+    points = [line.split(";") for line in plain.splitlines()]
+    rows = [f"{at};{V};{float(y) * factor:.2f}" for at, (V, y) in enumerate(points, start=1)]
+    read = read_curve_text("\n".join(rows))
+    assert (read.kind, read.seconds) == (unit, None)
+    assert read.volume_mL == read_curve_text(plain).volume_mL
+    assert read.says[-1] == (
+        "No header: column 1 counts the points, column 2 taken as the volume in mL, "
+        f"column 3 as {unit}."
+    )
+
+
+def test_curve_text_without_header_of_whole_millilitres_keeps_its_seconds():
+    rows = [f"{at};{4 + at / 10:.2f};{3 * at}" for at in range(30)]
+    read = read_curve_text("\n".join(rows))
+    assert read.volume_mL[3] == "3"
+    assert read.seconds[3] == "9"

@@ -12,7 +12,7 @@ from server.lab.certificate_document import (
     measured_at,
 )
 from server.lab.in_use import things_in_use
-from server.lab.sheet_facts import LaboratoryFact, OverrideFact
+from server.lab.sheet_facts import LaboratoryFact, LogFact, OverrideFact
 from server.lab.validity import ValidUntil
 
 ISSUE = Issue(
@@ -125,6 +125,26 @@ def test_certificate_prints_a_keepers_word_for_what_was_out_of_date(whole, issue
     assert printed in document["statements"]
 
 
+def test_certificate_prints_a_keepers_word_for_a_balance_that_failed_its_check(
+    whole, issue_of, sheet_parts
+):
+    keeper, now = sheet_parts["keeper"], sheet_parts["now"]
+    limits = {"name": "100 g", "centre": "100.0000", "warning": "0.0002", "action": "0.0003"}
+    before = now - timedelta(hours=1)
+    log = (
+        LogFact("l1", "check weight", limits, keeper, before - timedelta(days=1)),
+        LogFact("l2", "check weighing", {"chart": "l1", "reading": "100.0009"}, keeper, before),
+    )
+    balance = sheet_parts["instrument"]("balance", log=log)
+    instruments = (balance, *(one for one in whole.instruments if one.kind != "balance"))
+    word = OverrideFact("balance", "the check weight was dropped", keeper, now)
+    document = issue_of(replace(whole, instruments=instruments, overrides=(word,)))
+    (printed,) = [one for one in document["statements"] if "word: Balance 1" in one]
+    assert printed.startswith("Used after a failed check by Nils Obermark's word: Balance 1. ")
+    assert "100 g: 100.0009 g is +0.0009" in printed
+    assert printed.endswith("Reason: the check weight was dropped.")
+
+
 def test_corrections_of_a_second_filling_name_their_row(facts, entry):
     first = entry(1, "burette_end", "3.10", segment=2)
     again = entry(1, "burette_end", "3.11", segment=2, strikes=first.id, reason="misread")
@@ -143,3 +163,35 @@ def test_measured_at_is_the_last_reading_not_a_later_remark(whole, entry, sheet_
 
 def test_measured_at_without_readings_is_the_beginning(facts, sheet_parts):
     assert measured_at(facts()) == sheet_parts["now"]
+
+
+def test_certificate_of_curves_says_by_which_way_each_end_point_was_taken(
+    whole, issue_of, sheet_parts, recipe
+):
+    # R052: a number is good for the way to the end point that it was found by
+    asked = {"mode": "potentiometric", "method": "model fit", "flask_volume_mL": "50"}
+    document = recipe(blank="none", end_point=asked)
+    by_probe = replace(whole, entries=(), recipe=replace(whole.recipe, document=document))
+    ways = ("model fit", "first derivative", "steepest segment")
+    found = [
+        {"label": str(at), "taken": way, "excluded": "spilled" if at == 3 else None}
+        for at, way in enumerate(ways, start=1)
+    ]
+    sheet_parts["evaluation"] = with_methods(sheet_parts["evaluation"], found)
+    document = issue_of(by_probe)
+    assert document["end_point"]["methods"] == [
+        {"method": "model fit", "replicates": ["1"]},
+        {"method": "first derivative", "replicates": ["2"]},
+    ]
+    assert document["valid_for"] == "potentiometric, model fit and first derivative"
+    assert issue_of(whole)["valid_for"] == "visual, phenolphthalein"
+
+
+def with_methods(evaluation, methods):
+    """Return a maker of evaluations whose result has these curves."""
+
+    def make():
+        made = evaluation()
+        return replace(made, result={**made.result, "methods": methods})
+
+    return make

@@ -13,7 +13,12 @@ from server.procedures.instrument_log import (
     strike_check,
     write_check,
 )
-from server.procedures.instruments import RegisterInstrument, register_instrument
+from server.procedures.instruments import (
+    RecordCalibration,
+    RegisterInstrument,
+    record_calibration,
+    register_instrument,
+)
 from server.records.queries.list_log import log_lines
 
 LIMITS = {"name": "100 g", "centre": "100.0000", "warning": "0.0002", "action": "0.0003"}
@@ -160,6 +165,62 @@ def test_check_beyond_the_action_limit_fails_the_sheet_that_weighs_after_it(sqli
     lab.clock.move(minutes=5)
     check(lab, "100.0001")
     # the weighings were made before the second check: it does not heal them
+    assert findings(lab, sheet)["check weighing"]["verdict"] == "fails"
+
+
+def refused_for(lab, who="analyst", **other):
+    with pytest.raises(Unacceptable) as refused:
+        lab.begin(who, **other)
+    assert refused.value.field == "balance_id"
+    return refused.value.says
+
+
+def test_balance_beyond_its_action_limit_begins_no_sheet_until_a_good_check(lab):
+    limits(lab)
+    check(lab, "100.0009")
+    lab.clock.move(minutes=1)
+    says = refused_for(lab)
+    assert "The last check weighing of Balance B-1, 2026-05-04, failed. 100 g: 100.0009 g" in says
+    assert "action ± 0.0003" in says
+    # waiting heals nothing, and a reason is a keeper's to give
+    lab.clock.move(days=40)
+    assert "2026-05-04, failed" in refused_for(lab)
+    assert "2026-05-04, failed" in refused_for(lab, override_reason="looks fine to me")
+    check(lab, "100.0001")
+    lab.clock.move(minutes=1)
+    assert lab.facts(lab.begin()).overrides == ()
+
+
+def test_balance_that_failed_its_check_is_freed_by_a_new_calibration(sqlite_lab):
+    lab = sqlite_lab
+    limits(lab)
+    check(lab, "100.0009")
+    lab.clock.move(minutes=1)
+    # done in January, entered today: it says nothing about the balance of today
+    lab.calibrate(lab.balance, {}, "2027-05-31")
+    assert "failed" in refused_for(lab)
+    command = RecordCalibration(
+        lab.balance, "C-18", "calibration house", "2026-05-04", "2027-05-03", "own plan", {}
+    )
+    lab.act(record_calibration, command, "keeper")
+    sheet = lab.begin()
+    lab.clock.move(minutes=1)
+    write_one(lab, sheet)
+    found = findings(lab, sheet)["check weighing"]
+    assert found["verdict"] == "look"
+    assert "It was calibrated after that." in found["says"]
+
+
+def test_keepers_word_lets_a_balance_that_failed_its_check_be_used(sqlite_lab):
+    lab = sqlite_lab
+    limits(lab)
+    check(lab, "100.0009")
+    lab.clock.move(minutes=1)
+    sheet = lab.begin("keeper", override_reason="the check weight was dropped")
+    (word,) = lab.facts(sheet).overrides
+    assert (word.what, word.reason) == ("balance", "the check weight was dropped")
+    write_one(lab, sheet)
+    # the word lets it be used; that the check failed stays told
     assert findings(lab, sheet)["check weighing"]["verdict"] == "fails"
 
 

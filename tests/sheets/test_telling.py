@@ -4,6 +4,7 @@ from datetime import UTC, datetime, timedelta
 
 import pytest
 
+from server.sheets.parts.certificate_words import end_point_words
 from server.sheets.parts.telling import (
     count_words,
     due_words,
@@ -84,3 +85,16 @@ def test_count_takes_the_plural_from_two_on() -> None:
         "1 entry",
         "2 entries",
     ]
+
+
+def test_end_point_words_name_the_way_and_its_replicates_where_they_differ():
+    ways = [
+        {"method": "model fit", "replicates": ["1", "2", "4"]},
+        {"method": "first derivative", "replicates": ["3"]},
+    ]
+    probe = {"mode": "potentiometric", "indicator": None}
+    assert end_point_words(probe) == "potentiometric"  # issued before ways were noted
+    assert end_point_words({**probe, "methods": ways[:1]}) == "potentiometric, model fit"
+    assert end_point_words({**probe, "methods": ways}) == (
+        "potentiometric, model fit (replicates 1, 2 and 4) and first derivative (replicate 3)"
+    )

@@ -1,10 +1,12 @@
 """Countersigning by page and API: what goes wrong is said in words, and nothing is lost."""
 
+import io
 import re
 from datetime import timedelta
 from html import unescape
 from uuid import uuid4
 
+import pypdf
 import pytest
 import sqlalchemy as sa
 
@@ -58,9 +60,9 @@ def test_first_signature_of_a_session_takes_the_name_and_later_ones_the_password
     assert cleo.post(f"/api/sheets/{again}/countersign", later).status_code == 200
 
 
-def _hand_in_another(web):
-    """A twin of the sheet that was countersigned: begun on its lot, written anew, handed in."""
-    bashir = web.client("bashir")
+def _hand_in_another(web, who="bashir"):
+    """A twin of the sheet that waits at first: begun on its lot, written anew, handed in."""
+    bashir = web.client(who)
     first = bashir.get(f"/api/sheets/{web.demo.waiting_sheet_id}").json()
     facts = web.transactions.read(
         lambda session: dict(
@@ -102,7 +104,7 @@ def _hand_in_another(web):
     before = bashir.get(f"/api/sheets/{sheet}/hand-in").json()
     reasons = {one["name"]: "seen" for one in before["findings"] if one["verdict"] == "fails"}
     given = {
-        "revision": before["sheet"]["revision"], "reasons": reasons, "name": "bashir",
+        "revision": before["sheet"]["revision"], "reasons": reasons, "name": who,
         "password": bashir.password,
     }  # fmt: skip
     handed = bashir.post(f"/api/sheets/{sheet}/hand-in", given)
@@ -344,3 +346,29 @@ def test_certificate_that_replaces_another_says_why_and_what_changed(web):
     document = cleo.get(f"/api{done.headers['location']}").json()["document"]
     assert (document["replaces"], document["replaces_because"]) == (first, why)
     assert cleo.client.put(f"/api/certificates/{first}", json={}).status_code == 405
+
+
+# one person's laboratory: R058
+
+
+def test_own_signature_is_refused_unless_the_laboratory_allows_it_and_then_printed(web):
+    cleo, tove, words = web.client("cleo"), web.client("tove"), "Not independently reviewed"
+    ours = cleo.form(sheet_url(web), **signing(page_of(cleo, web), cleo, "cleo"))
+    assert words not in cleo.get(ours.headers["location"]).text
+    sheet = _hand_in_another(web, "tove")
+    page = tove.get(f"/api/sheets/{sheet}/countersign").json()
+    body = signing(page, tove, "tove")
+    refused = tove.post(f"/api/sheets/{sheet}/countersign", body)
+    assert refused.status_code == 403
+    assert "somebody else countersigns" in refused.json()["detail"]
+    allow = sa.text("UPDATE laboratory SET own_signature = true")
+    web.transactions.write(lambda session: session.execute(allow))
+    done = tove.form(f"/countersign/{sheet}", **body)
+    assert done.status_code == 303, done.text
+    at = done.headers["location"]
+    assert words in tove.get(at).text
+    pages = pypdf.PdfReader(io.BytesIO(tove.get(f"{at}.pdf").content)).pages
+    assert words in " ".join(one.extract_text() for one in pages)
+    document = tove.get(f"/api{at}").json()["document"]
+    assert document["independently_reviewed"] is False
+    assert any(words in one for one in document["statements"])

@@ -1,5 +1,6 @@
 """What is not valid is stopped, what is doubtful is flagged: on the page and over the API alike."""
 
+import re
 from datetime import timedelta
 from typing import Any
 from uuid import uuid4
@@ -91,6 +92,39 @@ def test_held_standard_lot_and_held_balance_are_stopped_on_page_and_api(web: Any
     hold = {"kind": "instrument", "thing": body["balance_id"], "reason": "level is off"}
     assert jonas.post("/api/holds", hold).status_code == 201
     refused_both_ways(imke, body, "balance_id", "is held: level is off")
+
+
+def test_balance_that_failed_its_last_check_is_stopped_on_page_and_api(
+    web: Any,
+) -> None:
+    jonas, imke = web.client("jonas"), web.client("imke")
+    body = picks(imke)
+    url = f"/api/instruments/{body['balance_id']}"
+    limits = {"name": "50 g", "centre": "50.0000", "warning": "0.0003", "action": "0.0005"}
+    chart = jonas.post(f"{url}/limits", {"document": limits})
+    assert chart.status_code == 201, chart.text
+
+    def check(reading: str) -> None:
+        web.clock.at += timedelta(minutes=1)
+        given = {"chart": chart.json()["id"], "reading": reading}
+        written = imke.post(f"{url}/checks", given)
+        assert written.status_code == 201, written.text
+        web.clock.at += timedelta(minutes=1)
+
+    check("50.0009")
+    says = "The last check weighing of Balance B-2"
+    refused_both_ways(imke, body, "balance_id", says)
+    assert says in imke.get(f"/bench/begin?lot={body['lot_code']}").text
+    page = imke.get(f"/bench/begin?lot={body['lot_code']}&recipe={body['recipe_id']}").text
+    assert re.search(rf'value="{body["balance_id"]}"[^>]*disabled', page)
+    reason = {"override_reason": "the 50 g weight was dropped"}
+    refused_both_ways(imke, body | reason, "balance_id", says)
+    let = jonas.post("/api/sheets", body | reason)
+    assert let.status_code == 201, let.text
+    assert "the 50 g weight was dropped" in imke.get(let.json()["url"]).text
+    check("50.0001")
+    begun = imke.post("/api/sheets", body)
+    assert begun.status_code == 201, begun.text
 
 
 @pytest.fixture

@@ -1,7 +1,7 @@
 """The checks of an instrument between two calibrations, from the lines of its log."""
 
-from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import dataclass
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import dataclass, replace
 from datetime import datetime
 from types import MappingProxyType
 
@@ -10,7 +10,8 @@ from server.lab.calibration.check_buffers import judge_buffer, read_buffer_chart
 from server.lab.calibration.check_weights import judge_check, read_check_weight
 from server.lab.log_lines import standing_lines
 from server.lab.refusal import Unacceptable
-from server.lab.sheet_facts import BALANCE, PROBE, LogFact
+from server.lab.sheet_facts import BALANCE, PROBE, InstrumentFact, LogFact
+from server.lab.validity import local_day
 
 WEIGHT_CHART, CHECK_WEIGHING = "check weight", "check weighing"
 BUFFER_CHART, BUFFER_CHECK = "check buffer", "buffer check"
@@ -117,13 +118,33 @@ def judged_checks(
     return tuple(found)
 
 
+def check_that_counts(
+    instrument: InstrumentFact, *, at: datetime, zone: str, as_of: datetime | None = None
+) -> Checked | None:
+    """Return an instrument's last check before an instant, healed by a calibration after it."""
+
+    def healed(line: LogFact) -> bool:
+        entered = instrument.recorded_at
+        # the day it was done is stated, the instant it was entered is known: both come after
+        after = entered is not None and line.at < entered
+        return after and local_day(line.at, zone).isoformat() <= instrument.done_on
+
+    return last_checked(instrument.log, instrument.kind, at=at, as_of=as_of, healed=healed)
+
+
 def last_checked(
-    log: Sequence[LogFact], kind: str, *, at: datetime, as_of: datetime | None = None
+    log: Sequence[LogFact],
+    kind: str,
+    *,
+    at: datetime,
+    as_of: datetime | None = None,
+    healed: Callable[[LogFact], bool] = lambda _: False,
 ) -> Checked | None:
     """Return the check before an instant that counts, as the log stood at ``as_of``, or None.
 
     Of each chart the last one counts; where there are several charts, the gravest of them, for a
-    check of one weight does not heal that of another.
+    check of one weight does not heal that of another. One that fails and is ``healed`` is only
+    to be looked at.
     """
     by_chart: dict[str, list[tuple[LogFact, Chart]]] = {}
     for line, chart in _on_charts(log, kind, as_of=as_of):
@@ -133,7 +154,15 @@ def last_checked(
         judge_line(pairs[-1][1], pairs[-1][0], [line for line, _ in pairs[:-1]])
         for pairs in by_chart.values()
     ]
+    last = [_healed(one) if healed(one.line) else one for one in last]
     return max(last, key=lambda one: (_GRAVITY[one.outcome.verdict], one.line.at), default=None)
+
+
+def _healed(one: Checked) -> Checked:
+    if one.outcome.verdict != "fails":
+        return one
+    says = f"{one.outcome.says} It was calibrated after that."
+    return replace(one, outcome=replace(one.outcome, verdict="look", says=says))
 
 
 def _on_charts(

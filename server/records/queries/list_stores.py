@@ -74,8 +74,23 @@ def listed_instruments(
 def checks_since(
     session: Session, instrument_ids: Sequence[str], since: datetime
 ) -> dict[str, tuple[LogFact, ...]]:
-    """Return the charts of instruments, and the checks on them from an instant on."""
-    return log_lines(session, "instrument", instrument_ids, since=since, always=CHARTS)
+    """Return the charts of instruments, and the checks on them from an instant on.
+
+    Where there is none on a chart since then, all there are: waiting does not heal a failed one.
+    """
+    found = log_lines(session, "instrument", instrument_ids, since=since, always=CHARTS)
+    quiet = [key for key, lines in found.items() if _is_quiet(lines)]
+    return {**found, **log_lines(session, "instrument", quiet)} if quiet else found
+
+
+def _is_quiet(lines: Sequence[LogFact]) -> bool:
+    names = ("name", "set", "buffer")
+    charts = {
+        tuple(one.document.get(key) for key in names): one.id
+        for one in lines
+        if one.what in CHARTS and one.struck is None
+    }
+    return not set(charts.values()) <= {one.document.get("chart") for one in lines}
 
 
 def calibrations_of(session: Session, instrument_id: str) -> list[KeptCalibration]:
@@ -168,4 +183,5 @@ def instrument_fact(
         holds=holds,
         failing=tuple(one["says"] for one in checks if one["verdict"] == "fails"),
         log=log,
+        recorded_at=calibration.made_at,
     )

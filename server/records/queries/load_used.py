@@ -1,15 +1,17 @@
 """The instruments that a calibration run is done with, each with the calibration that serves it."""
 
 from collections.abc import Mapping
+from dataclasses import replace
 from datetime import datetime
 
 from sqlalchemy.orm import Session
 
 from server.lab.calibration.run import KINDS, WARE_OF_KIND, UsedInstrument, used_instrument
-from server.lab.in_use import judge
+from server.lab.in_use import judge, off_limits
 from server.lab.refusal import Unacceptable
 from server.lab.sheet_facts import BALANCE, ROOM, THERMOMETER
 from server.lab.states import IN_DATE
+from server.records.queries.list_stores import CHECK_SPAN, checks_since
 from server.records.queries.load_papers import load_instrument_fact
 from server.records.queries.loading import newest_calibration
 from server.records.tables.stores import Instrument
@@ -29,7 +31,7 @@ def used_for_run(
 
     Raises:
         Unacceptable: a kind that is not calibrated here or not weighed; an instrument that is not
-            there, not in date, or held.
+            there, not in date, held, or failed its last check.
     """
     if kind not in KINDS:
         says = f"A {kind} is calibrated elsewhere: record its certificate."
@@ -49,11 +51,15 @@ def _used(
     calibration = newest_calibration(session, instrument_id) if row else None
     if row is None or row.kind != kind or calibration is None:
         raise Unacceptable(f"There is no such {kind} with a calibration.", field=field)
-    fact = load_instrument_fact(session, calibration.id)
+    log = checks_since(session, [row.id], now - CHECK_SPAN).get(row.id, ())
+    fact = replace(load_instrument_fact(session, calibration.id), log=log)
     state, says = judge(
         fact.name, due_at=fact.due_at, basis=fact.due_basis, holds=fact.holds,
         used_at=now, zone=zone, what="calibration",
     )  # fmt: skip
     if state != IN_DATE:
         raise Unacceptable(f"{says} Weigh with another one.", field=field)
+    stopped = off_limits(fact, at=now, zone=zone)
+    if stopped:
+        raise Unacceptable(f"{stopped} Weigh with another one.", field=field)
     return used_instrument(fact)

@@ -8,6 +8,7 @@ from server.chemistry.substances import name_of
 from server.lab.canonical import canonical, digest
 from server.metrology.rounding import rounded, significant
 from server.reports.dcc import elements as el
+from server.sheets.parts.certificate_words import end_point_words
 from server.sheets.parts.outcome import printed, replicate_rows
 
 _CONFORMITY = {"holds": "pass", "look": "conditionalPass", "fails": "fail"}
@@ -79,9 +80,7 @@ def _equipment(
 
 def _conditions(document: Mapping[str, Any]) -> Iterator[tuple[str, str, str]]:
     """Yield what was written for the sheet as a whole, and the end point."""
-    end_point = document["end_point"]
-    mode = ", ".join(one for one in (end_point["mode"], end_point["indicator"]) if one)
-    yield "end point", mode, ""
+    yield "end point", end_point_words(document["end_point"]), ""
     for one in document["entries"]:
         if one["replicate"] == 0 and one["slot"] != "remark":
             yield one["label"], one["text"], one["unit"] or ""

@@ -11,7 +11,7 @@ from server.reports.issued import Issued
 
 @dataclass(frozen=True, slots=True)
 class OriginalFile:
-    """A file as it was brought in, and which papers it belongs to."""
+    """A file as it was brought in, and which papers or curves it belongs to, in words."""
 
     name: str
     media_type: str

@@ -10,6 +10,7 @@ from sqlalchemy.orm import Session
 from server.lab.actor import Actor
 from server.lab.codes import read_code
 from server.lab.refusal import NotFound
+from server.lab.sheet_facts import SheetFacts
 from server.records.queries.list_certificates import certificates_of_lot
 from server.records.queries.list_sheets import sheets_of_lot
 from server.records.queries.list_shelf import bottles_of_lot, lot_on_shelf
@@ -18,6 +19,7 @@ from server.records.queries.load_lots import lot_of_code
 from server.records.queries.load_papers import load_laboratory_fact
 from server.records.queries.load_sheet import load_sheet_facts
 from server.records.tables.lots import Bottle
+from server.records.tables.stores import File
 from server.records.tables.trail import TrailRow
 from server.reports.certificate.gathering import Paper, gather_issued, papers_of
 from server.reports.lot.bundle import LotBundle, OriginalFile, WrittenSheet
@@ -59,24 +61,36 @@ def gather_lot(session: Session, code: str, *, actor: Actor | None, now: datetim
         sheets=[WrittenSheet(one.number, one.state, tuple(one.entries)) for one in sheets],
         bottles=[_bottle(one.bottle) for one in bottles],
         trail=_trail(session, things, [one.id for one in sheets]),
-        files=_files(papers),
+        files=_files(papers, [*_curves(session, sheets)]),
         paper_hashes={paper.thing_id: paper.file.sha256 for paper in papers},
     )
 
 
-def _files(papers: Sequence[Paper]) -> list[OriginalFile]:
-    """Return each file once, with all papers that it belongs to."""
-    files = {paper.file.id: paper.file for paper in papers}
+def _files(papers: Sequence[Paper], curves: Sequence[tuple[str, File]]) -> list[OriginalFile]:
+    """Return each file once, with all papers and curves that it belongs to."""
+    belongs = [*((paper.name, paper.file) for paper in papers), *curves]
+    files = {file.id: file for _, file in belongs}
     return [
         OriginalFile(
             name=file.name,
             media_type=file.media_type,
             sha256=file.sha256,
             content=file.content,
-            papers=tuple(paper.name for paper in papers if paper.file.id == file.id),
+            papers=tuple(dict.fromkeys(name for name, one in belongs if one.id == file.id)),
         )
         for file in files.values()
     ]
+
+
+def _curves(session: Session, sheets: Sequence[SheetFacts]) -> Iterator[tuple[str, File]]:
+    """Yield the originals of all curves, struck through or not, and whose they are in words."""
+    for sheet in sheets:
+        struck = {entry.strikes for entry in sheet.entries if entry.strikes}
+        for entry in sheet.entries:
+            file = session.get(File, entry.file_id) if entry.file_id else None
+            if file is not None:
+                note = ", struck through" if entry.id in struck else ""
+                yield f"curve of sheet {sheet.number}, replicate {entry.replicate}{note}", file
 
 
 def _trail(

@@ -17,7 +17,7 @@ What lies where
 {dcc}  entries.csv                           all that was written, also what was struck through
   trail.jsonl                           who did what to this lot and when, a row of the trail a line
   keys.json                             the laboratory's public keys (RFC 7517), retired ones too
-  files/                                original papers, as they were brought in
+  files/                                original papers and curves, as they were brought in
   manifest.json, SHA256SUMS             the hash of every file
 
 How to check it

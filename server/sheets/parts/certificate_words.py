@@ -5,7 +5,7 @@ from typing import Any
 
 from server.chemistry.substances import name_of
 from server.sheets.parts.shelf_state import nominal_words
-from server.sheets.parts.telling import typed_day_words
+from server.sheets.parts.telling import listed, typed_day_words
 
 CUSTOMER = "the laboratory itself, and performed at its own address"
 
@@ -20,9 +20,21 @@ def item_words(lot: Mapping[str, Any]) -> str:
 
 
 def end_point_words(end_point: Mapping[str, Any]) -> str:
-    """Return how the end point was found."""
-    indicator = end_point["indicator"]
-    return f"{end_point['mode']}, {indicator}" if indicator else str(end_point["mode"])
+    """Return how the end point was found: mode, and the indicator or the ways taken on curves.
+
+    Where replicates were taken by different ways, each way names its replicates.
+    """
+    ways = end_point.get("methods") or ()
+    told = [one["method"] for one in ways]
+    if len(told) > 1:
+        told = [_way_words(one) for one in ways]
+    parts = (end_point["mode"], end_point["indicator"], " and ".join(told))
+    return ", ".join(one for one in parts if one)
+
+
+def _way_words(way: Mapping[str, Any]) -> str:
+    labels = way["replicates"]
+    return f"{way['method']} (replicate{'s' if len(labels) > 1 else ''} {listed(labels)})"
 
 
 def statement_lines(document: Mapping[str, Any]) -> Iterator[str]:

@@ -7,7 +7,7 @@ from urllib.parse import urlencode
 
 from sqlalchemy.orm import Session
 
-from server.lab.in_use import flag_of, judge
+from server.lab.in_use import flag_of, judge, off_limits
 from server.lab.lot_log import done_words, drying_of, last_drying
 from server.lab.recipe import RecipeDocument
 from server.lab.rig import rig_of
@@ -132,8 +132,11 @@ class Offered:
         about = (row.document.get("type"), row.document.get("location"))
         due = f"calibrated until {last_day_words(fact.due_at, self._zone)}"
         says = ", ".join(part for part in (*about, due) if part)
-        flag = flag_of(fact, at=self._now)
-        return Choice(row.id, row.name, says, self._refused(fact, "calibration"), flag)
+        invalid = self._refused(fact, "calibration")
+        stopped = off_limits(fact, at=self._now, zone=self._zone)
+        flag = "" if stopped else flag_of(fact, at=self._now, zone=self._zone)
+        why = " ".join(part for part in (invalid, stopped) if part)
+        return Choice(row.id, row.name, says, why or None, flag)
 
     def _refused(self, thing: StandardLotFact | InstrumentFact, what: str) -> str | None:
         state, says = judge(

@@ -11,7 +11,7 @@ from server.lab.calibration.check_log import (
     last_checked,
     need_chart,
 )
-from server.lab.in_use import flag_of
+from server.lab.in_use import flag_of, off_limits
 from server.lab.refusal import Unacceptable
 from server.lab.sheet_facts import InstrumentFact, LogFact, PersonFact, StrikeFact
 
@@ -131,8 +131,8 @@ def test_flag_tells_a_failed_check_and_a_failing_calibration(line):
         "balance", "i", "B-1", {}, "c", 1, "C-1", "house", "2026-01-01", NOW, "plan", {}, (),
         failing=("The slope is off.",), log=log,
     )  # fmt: skip
-    assert flag_of(fact, at=NOW) == "Its calibration: The slope is off."
-    says = flag_of(fact, at=NOW + timedelta(days=2))
+    assert flag_of(fact, at=NOW, zone="UTC") == "Its calibration: The slope is off."
+    says = flag_of(fact, at=NOW + timedelta(days=2), zone="UTC")
     assert "Last check weighing" in says
     assert "do not weigh with this balance" in says
 
@@ -147,3 +147,39 @@ def test_check_of_one_weight_does_not_heal_that_of_another(line):
     counts = last_checked([heavy, light, bad, good, healed], "balance", at=NOW + timedelta(days=3))
     assert counts.outcome.verdict == "holds"
     assert counts.line is healed
+
+
+@pytest.mark.parametrize(
+    ("done_on", "entered", "stopped"),
+    # the check fails on 5 May
+    [("2026-05-05", 2, False), ("2026-05-06", 2, False), ("2026-05-04", 2, True),
+     ("2026-05-05", 0, True)],
+)  # fmt: skip
+def test_failed_check_is_healed_by_a_calibration_done_and_entered_after_it(
+    line, done_on, entered, stopped
+):
+    chart = line("check weight", LIMITS)
+    fact = InstrumentFact(
+        "balance", "i", "B-1", {}, "c", 2, "C-2", "house", done_on, NOW, "plan", {}, (),
+        log=(chart, *weighings(line, chart, "100.0009")),
+        recorded_at=NOW + timedelta(days=entered),
+    )  # fmt: skip
+    at = NOW + timedelta(days=3)
+    assert bool(off_limits(fact, at=at, zone="UTC")) is stopped
+    healed = "It was calibrated after that." in flag_of(fact, at=at, zone="UTC")
+    assert healed is not stopped
+
+
+@pytest.mark.parametrize(("reading", "stopped"), [("100.0003", False), ("100.00031", True)])
+def test_balance_is_off_limits_beyond_action_and_not_at_it(line, reading, stopped):
+    chart = line("check weight", LIMITS)
+    fact = InstrumentFact(
+        "balance", "i", "B-1", {}, "c", 1, "C-1", "house", "2026-01-01", NOW, "plan", {}, (),
+        log=(chart, *weighings(line, chart, reading)),
+    )  # fmt: skip
+    says = off_limits(fact, at=NOW + timedelta(days=2), zone="UTC")
+    if not stopped:
+        assert says == ""
+        return
+    assert says.startswith("The last check weighing of B-1, 2026-05-05, failed. 100 g: 100.00031 g")
+    assert "action ± 0.0003 g" in says

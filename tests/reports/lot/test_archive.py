@@ -234,6 +234,27 @@ def test_archive_carries_the_original_file_of_a_calibration(laboratory, bundle, 
     assert added.papers == (f"{root['name']}, {root['certificate_number']}",)
 
 
+def test_archive_of_a_lot_by_probe_holds_the_originals_of_its_curves(laboratory, made) -> None:
+    document = laboratory.issued("TL-2026-0006").document
+    found = laboratory.read(gather_lot, document["lot"]["code"])
+    opened = zipfile.ZipFile(io.BytesIO(lot_archive(found, made)))
+    sheet, files = document["sheet"]["number"], json.loads(opened.read("lot.json"))["files"]
+    named = {one: line for line in files for one in line["papers"]}
+    for replicate in range(1, 5):
+        line = named[f"curve of sheet {sheet}, replicate {replicate}"]
+        original = opened.read(line["path"])
+        assert line["name"] == f"run{replicate}.csv"
+        assert hashlib.sha256(original).hexdigest() == line["sha256"]
+        assert b"," in original or b";" in original
+    assert document["end_point"]["methods"] == [
+        {"method": "model fit", "replicates": ["1", "2", "3", "4"]}
+    ]
+    text = pypdf.PdfReader(io.BytesIO(opened.read("certificates/TL-2026-0006.pdf"))).pages[0]
+    assert "potentiometric, model fit" in " ".join(text.extract_text().split())
+    xml = opened.read("certificates/TL-2026-0006.dcc.xml").decode()
+    assert "potentiometric, model fit" in xml
+
+
 def test_gathering_by_a_bottles_code_finds_its_lot(laboratory, bundle) -> None:
     by_bottle = laboratory.read(gather_lot, bundle.bottles[0]["code"].lower())
     assert by_bottle.code == bundle.code
