@@ -36,13 +36,16 @@ _OXIDIZING = (
     "organic matter."
 )
 _CHROMIUM = (
-    "Toxic, carcinogenic, oxidizer (H272, H301, H330, H340, H350, H360FD, H410): restricted in "
-    "many places. Ask for a method without chromium(VI)."
+    "Toxic, carcinogenic, oxidizer (H272, H301, H312, H314, H317, H330, H334, H340, H350, H360FD, "
+    "H372, H410): restricted in many places. Ask for a method without chromium(VI). Keep away "
+    "from organic matter."
 )
 _IODINE = "Harmful vapour, irritates, harms water life (H312, H332, H315, H319, H335, H372, H400)."
 _FUMING = "Concentrated: burns skin and eyes, vapour irritates (H314, H290, H335); use the hood."
 _ACID = "Acid into water, never the other way. Keep away from hypochlorite, cyanide, sulfide."
 _COOLED = "Acid into water, slowly, cooled. Keep away from hypochlorite, cyanide, sulfide."
+_OXIDIZER = "Keep away from organic matter and other things that burn."
+_LOW = "Low hazard; avoid raising dust."
 _GLOVES = "Wear eye protection and gloves."
 _DRAIN = "Waste goes where your local rules say."
 
@@ -114,7 +117,11 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
         ),
         "I2": (
             "iodine",
-            (_IODINE, _GLOVES),
+            (
+                _IODINE,
+                "Never together with ammonia: an explosive solid can form.",
+                _GLOVES,
+            ),
         ),
         "Na2S2O3": (
             "sodium thiosulfate",
@@ -127,10 +134,10 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
         ),
         "KHP": (
             "potassium hydrogen phthalate",
-            ("Low hazard; avoid raising dust.",),
+            (_LOW,),
         ),
         "Na2CO3": ("sodium carbonate", ("Irritates eyes (H319). Froths with acid.",)),
-        "TRIS": ("tris(hydroxymethyl)aminomethane", ("Low hazard; avoid raising dust.",)),
+        "TRIS": ("tris(hydroxymethyl)aminomethane", (_LOW,)),
         "C7H6O2": ("benzoic acid", ("Serious eye damage, irritates (H318, H315, H372).",)),
         "H2C2O4": (
             "oxalic acid",
@@ -139,9 +146,16 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
         "Na2C2O4": ("sodium oxalate", ("Harmful if swallowed or on skin (H302, H312).", _GLOVES)),
         "KIO3": (
             "potassium iodate",
-            ("Oxidizer; harmful if swallowed, eye damage (H272, H302, H318).", _GLOVES),
+            (
+                "Oxidizer; harmful if swallowed, eye damage (H272, H302, H318).",
+                _OXIDIZER,
+                _GLOVES,
+            ),
         ),
-        "KH(IO3)2": ("potassium hydrogen iodate", ("Oxidizer, corrosive (H272, H314).", _GLOVES)),
+        "KH(IO3)2": (
+            "potassium hydrogen iodate",
+            ("Oxidizer, corrosive (H272, H314).", _OXIDIZER, _GLOVES),
+        ),
         "As2O3": (
             "arsenic trioxide",
             (
@@ -150,6 +164,18 @@ _CAUTIONS: Mapping[str, tuple[str, tuple[str, ...]]] = MappingProxyType(
                 _DRAIN,
             ),
         ),
+        "Na2B4O7": (
+            "borax",
+            ("May harm fertility or the unborn child, irritates eyes (H360FD, H319).", _GLOVES),
+        ),
+        "NaCl": ("sodium chloride", (_LOW,)),
+        "KCl": ("potassium chloride", (_LOW,)),
+        "CaCO3": ("calcium carbonate", (f"{_LOW} Froths with acid.",)),
+        "Zn": (
+            "zinc",
+            ("Gives off hydrogen with acid: no flame. Its dust burns, harms water life (H410).",),
+        ),
+        "ZnO": ("zinc oxide", ("Harms water life (H410).", _DRAIN)),
         "H3NO3S": ("sulfamic acid", ("Irritates eyes and skin (H319, H315).", _GLOVES)),
     }
 )

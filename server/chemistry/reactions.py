@@ -8,6 +8,7 @@ import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
+from itertools import pairwise
 from types import MappingProxyType
 
 #: (titrant, standard or reference titrant): mol of titrant per mol of standard, by stoichiometry.
@@ -124,7 +125,7 @@ class Reaction:
     def ratio_of_steps(self) -> Fraction:
         """Return mol of titrant per mol of standard as the steps' coefficients give it."""
         found = Fraction(1)
-        for step, (taken, given) in zip(self.steps, zip(self.path, self.path[1:]), strict=True):
+        for step, (taken, given) in zip(self.steps, pairwise(self.path), strict=True):
             found *= Fraction(step.coefficient(given), step.coefficient(taken))
         return found
 
@@ -147,7 +148,7 @@ def read_equation(text: str) -> Equation:
         ValueError: it is not written like that.
     """
     sides = text.split(" = ")
-    if len(sides) != 2:  # noqa: PLR2004 (two sides)
+    if len(sides) != 2:
         raise ValueError(f"“{text}” is no equation: it needs one = between spaces")
     left, right = (tuple(_species(one) for one in side.split(" + ")) for side in sides)
     return Equation(left, right)

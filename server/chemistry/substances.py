@@ -1,15 +1,20 @@
-"""Substances: formula, density and drying of primary standards, with their sources."""
+"""Substances: formula, density and drying of primary standards, storage of titrants, sources."""
 
 from collections.abc import Mapping
 from dataclasses import dataclass
 from types import MappingProxyType
 
 _HANDBOOK = "common handbook value, from memory"
+#: Where drying and storage come from.
+PRACTICE = "common practice, from memory; a certificate's or supplier's own statement goes first"
 
 
 @dataclass(frozen=True, slots=True)
 class Substance:
-    """A substance by its key: name, formula as weighed, density in g/cm³, drying."""
+    """A substance by its key: name, formula as weighed, density in g/cm³, drying, storage.
+
+    ``storage`` is how a solution of it is kept, empty for what is only weighed.
+    """
 
     key: str
     name: str
@@ -17,12 +22,28 @@ class Substance:
     density_g_cm3: float | None = None
     density_source: str | None = None
     drying: str = ""
+    storage: str = ""
+    source: str = PRACTICE
 
 
 def _standard(key: str, name: str, formula: str, density: float | None, drying: str) -> Substance:
     source = None if density is None else _HANDBOOK
     return Substance(key, name, formula, density, source, drying)
 
+
+_LYE = (
+    "Polyethylene bottle, or glass with a rubber stopper, never a ground-glass one; a soda-lime "
+    "tube keeps carbon dioxide out."
+)
+_CLOSED = "Tightly closed bottle."
+_DARK = "Brown bottle, in the dark, tightly closed."
+_BOILED = "Made with water that was boiled and cooled; brown bottle, in the dark, tightly closed."
+_PERMANGANATE = (
+    "Made with boiled water and filtered through glass, never paper; brown bottle, in the dark."
+)
+_IODINE = "Brown bottle with a glass stopper, no rubber; in the dark and cool."
+_EDTA = "Polyethylene bottle, tightly closed: glass gives off metal ions."
+_ACETIC = "Brown bottle, tightly closed against moisture; concentration belongs to a temperature."
 
 _ALL = (
     _standard("KHP", "potassium hydrogen phthalate", "C8H5KO4", 1.636, "120 °C, 2 h"),
@@ -39,19 +60,20 @@ _ALL = (
     _standard("NaCl", "sodium chloride", "NaCl", 2.165, "500 to 600 °C"),
     _standard("KCl", "potassium chloride", "KCl", 1.984, "500 °C"),
     _standard("Zn", "zinc", "Zn", 7.13, "etched in dilute acid, rinsed"),
+    _standard("ZnO", "zinc oxide", "ZnO", 5.61, "800 °C to constant mass"),
     _standard("CaCO3", "calcium carbonate", "CaCO3", 2.71, "110 °C, 2 h"),
     _standard("H2C2O4", "oxalic acid dihydrate", "C2H2O4.2H2O", 1.65, "never in an oven"),
-    Substance("NaOH", "sodium hydroxide", "NaOH"),
-    Substance("KOH", "potassium hydroxide", "KOH"),
-    Substance("HCl", "hydrochloric acid", "HCl"),
-    Substance("H2SO4", "sulfuric acid", "H2SO4"),
-    Substance("HClO4", "perchloric acid", "HClO4"),
-    Substance("Na2S2O3", "sodium thiosulfate", "Na2S2O3.5H2O", 1.69, _HANDBOOK),
-    Substance("KMnO4", "potassium permanganate", "KMnO4"),
-    Substance("AgNO3", "silver nitrate", "AgNO3", 4.35, _HANDBOOK),
-    Substance("EDTA", "disodium edetate dihydrate", "C10H14N2Na2O8.2H2O"),
-    Substance("I2", "iodine", "I2"),
-    Substance("Ce(SO4)2", "cerium(IV) sulfate", "Ce(SO4)2"),
+    Substance("NaOH", "sodium hydroxide", "NaOH", storage=_LYE),
+    Substance("KOH", "potassium hydroxide", "KOH", storage=_LYE),
+    Substance("HCl", "hydrochloric acid", "HCl", storage=_CLOSED),
+    Substance("H2SO4", "sulfuric acid", "H2SO4", storage=_CLOSED),
+    Substance("HClO4", "perchloric acid", "HClO4", storage=_ACETIC),
+    Substance("Na2S2O3", "sodium thiosulfate", "Na2S2O3.5H2O", 1.69, _HANDBOOK, storage=_BOILED),
+    Substance("KMnO4", "potassium permanganate", "KMnO4", storage=_PERMANGANATE),
+    Substance("AgNO3", "silver nitrate", "AgNO3", 4.35, _HANDBOOK, storage=_DARK),
+    Substance("EDTA", "disodium edetate dihydrate", "C10H14N2Na2O8.2H2O", storage=_EDTA),
+    Substance("I2", "iodine", "I2", storage=_IODINE),
+    Substance("Ce(SO4)2", "cerium(IV) sulfate", "Ce(SO4)2", storage=_DARK),
 )
 
 #: Substances by key. Densities and drying are common handbook values, from memory: a certificate's

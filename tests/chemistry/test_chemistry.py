@@ -66,7 +66,7 @@ def test_molar_mass_element_without_a_weight_is_refused_by_name():
 EQUIVALENTS = {
     "NaOH": 1, "KOH": 1, "HCl": 1, "HClO4": 1, "H2SO4": 2, "KHP": 1, "C7H6O2": 1, "H3NO3S": 1,
     "Na2CO3": 2, "TRIS": 1, "Na2B4O7": 2, "AgNO3": 1, "NaCl": 1, "KCl": 1, "EDTA": 2, "Zn": 2,
-    "Ce(SO4)2": 1, "KMnO4": 5, "Na2S2O3": 1, "I2": 2, "KIO3": 6, "K2Cr2O7": 6,
+    "ZnO": 2, "Ce(SO4)2": 1, "KMnO4": 5, "Na2S2O3": 1, "I2": 2, "KIO3": 6, "K2Cr2O7": 6,
 }  # fmt: skip
 # what gives another number in another reaction
 SPECIAL = {
@@ -97,6 +97,30 @@ def test_cautions_every_titrant_has_lines_and_dilute_lye_is_never_harmless():
     (lye,) = cautions_for(["NaOH"])
     assert "Strongly alkaline" in lye.lines[0]
     assert "first" in DEFERRAL
+
+
+def test_cautions_every_substance_has_lines_of_its_own_and_says_where_they_are_from():
+    for one in cautions_for(SUBSTANCES):
+        assert "No caution is stored" not in one.lines[0], one.substance
+        assert "memory" in one.source
+
+
+@pytest.mark.parametrize(
+    ("key", "word"),
+    [
+        ("KMnO4", "organic"),
+        ("K2Cr2O7", "organic"),
+        ("KIO3", "organic"),
+        ("HClO4", "organic"),
+        ("HCl", "cyanide"),
+        ("H2SO4", "hypochlorite"),
+        ("AgNO3", "ammonia"),
+        ("Na2S2O3", "acid"),
+    ],
+)
+def test_cautions_what_must_not_meet_a_substance_is_told(key, word):
+    (one,) = cautions_for([key])
+    assert word in " ".join(one.lines).lower()
 
 
 def test_cautions_unknown_substance_sends_to_the_data_sheet():

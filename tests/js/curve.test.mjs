@@ -47,6 +47,12 @@ test("the door gets only what it knows, with decimal points in the volume of a d
   assert.deepEqual(forPreview({ pasted: "1;2", leave_out: [7] }, 3), { replicate: 3, pasted: "1;2", leave_out: [7] });
 });
 
+test("an empty file is sent and kept as one, so that the answer is about it", () => {
+  const empty = chosenFile("empty.csv", new Uint8Array());
+  assert.deepEqual(forPreview(empty, 2), { replicate: 2, file_name: "empty.csv", content_base64: "" });
+  assert.deepEqual(chosenFrom(JSON.stringify(empty)), empty);
+});
+
 test("columns become roles and roles the same columns", () => {
   const mapping = { volume: 2, volume_unit: "drops", reading: 0, reading_unit: "mV", kind: "mV", time: 1, time_unit: "min" };
   const roles = rolesOf(mapping, 4);

@@ -197,11 +197,13 @@ def test_balance_that_failed_its_check_is_freed_by_a_new_calibration(sqlite_lab)
     check(lab, "100.0009")
     lab.clock.move(minutes=1)
     # done in January, entered today: it says nothing about the balance of today
-    lab.calibrate(lab.balance, {}, "2027-05-31")
+    linearity = {"unit": "g", "half_width": "0.0002", "shape": "rectangular"}
+    lab.calibrate(lab.balance, {"linearity": linearity}, "2027-05-31")
     assert "failed" in refused_for(lab)
     command = RecordCalibration(
-        lab.balance, "C-18", "calibration house", "2026-05-04", "2027-05-03", "own plan", {}
-    )
+        lab.balance, "C-18", "calibration house", "2026-05-04", "2027-05-03", "own plan",
+        {"linearity": linearity},
+    )  # fmt: skip
     lab.act(record_calibration, command, "keeper")
     sheet = lab.begin()
     lab.clock.move(minutes=1)

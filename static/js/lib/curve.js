@@ -48,7 +48,7 @@ export function chosenFrom(draft) {
   if (!draft) return null;
   try {
     const kept = JSON.parse(draft);
-    return kept && typeof kept === "object" && (kept.pasted || kept.content_base64) ? kept : chosenText(draft);
+    return kept && typeof kept === "object" && ("pasted" in kept || "content_base64" in kept) ? kept : chosenText(draft);
   } catch {
     return chosenText(draft);
   }
@@ -70,7 +70,8 @@ export function sentOf(chosen) {
   const sent = {};
   for (const name of ["file_name", "content_base64", "pasted", "mapping", "sheet", "drop_mL", "drop_u_mL"]) {
     const value = chosen[name];
-    if (value !== undefined && value !== null && value !== "") sent[name] = name.startsWith("drop") ? value.trim().replace(",", ".") : value;
+    if (value === "" && name === "content_base64") sent[name] = value; // an empty file is told to be one
+    else if (value !== undefined && value !== null && value !== "") sent[name] = name.startsWith("drop") ? value.trim().replace(",", ".") : value;
   }
   if (chosen.leave_out?.length) sent.leave_out = chosen.leave_out;
   return sent;
