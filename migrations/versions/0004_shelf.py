@@ -1,4 +1,4 @@
-"""Uses of bottles, tokens of scripts, watches and their letters; a bottle's opening."""
+"""Uses of bottles, tokens of scripts, watches and letters; a bottle's opening; the trail by thing."""
 
 import sqlalchemy as sa
 from alembic import op
@@ -46,6 +46,8 @@ def upgrade():
         "ALTER TABLE bottle ADD COLUMN opened_by VARCHAR(36) "
         "CONSTRAINT fk_bottle_opened_by_person REFERENCES person (id)"
     )
+    # what happened to one thing is asked on its own page
+    op.create_index("ix_trail_thing_id", "trail", ["thing_id"])
     _access_token()
     _bottle_use()
     _watch_and_letters()

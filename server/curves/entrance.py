@@ -65,10 +65,14 @@ def analysed(points: PointsLike, known: Circumstances | None = None) -> Analysis
     except (CannotTell, FitProblem) as problem:
         outcomes["model fit"] = NoEndPoint("model fit", str(problem))
         notes = [findings.of_bubbles(curve, clean.bubbles), spacing]
+        if isinstance(problem, FitProblem):
+            notes.append(findings.of_reach(str(problem), fit_holds=False))
     else:
         outcomes = {method: slowed(one, fit.lag) for method, one in outcomes.items()}
         outcomes["model fit"] = fit.end_point()
         notes = [*_fit_findings(curve, fit, outcomes), spacing]
+    if all(one.name != "end point" for one in notes):
+        notes += _reach(outcomes, notes)
     return Analysis(
         curve=curve,
         clean=clean,
@@ -157,6 +161,16 @@ def _gran_lines(
         except CannotTell as problem:
             refused.append(NoEndPoint(method, str(problem)))
     return lines, refused
+
+
+def _reach(outcomes: dict[Method, Outcome], notes: list[CurveFinding]) -> list[CurveFinding]:
+    """Return a finding where neither derivative has a volume."""
+    first, second = outcomes["first derivative"], outcomes["second derivative"]
+    if not isinstance(first, NoEndPoint) or not isinstance(second, NoEndPoint):
+        return []
+    fit_stands = isinstance(outcomes["model fit"], EndPoint)
+    holds = fit_stands and all(one.verdict != "fails" for one in notes)
+    return [findings.of_reach(first.why, fit_holds=holds)]
 
 
 def _fit_findings(

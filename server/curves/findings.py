@@ -60,6 +60,18 @@ def of_spacing(clean: CleanCurve, jump: int) -> CurveFinding:
     )
 
 
+def of_reach(why: str, *, fit_holds: bool) -> CurveFinding:
+    """Return the words on points in which nothing shows an end point; ``why`` says what misses it.
+
+    Without a fit that holds, nothing shows that the titration was carried past its end point.
+    """
+    says = f"These points do not show an end point on both its sides. {why}"
+    if not fit_holds:
+        says += " What is read off their slopes is only the steepest of what was read."
+    verdict: Literal["look", "fails"] = "look" if fit_holds else "fails"
+    return CurveFinding("end point", verdict, says, "fit and derivatives")
+
+
 def of_residuals(fit: ModelFit, uncertainty: EndPointUncertainty) -> CurveFinding:
     """Return whether the residuals look like scatter, in words."""
     trusted = fit.trust > 0.5

@@ -112,3 +112,29 @@ def test_finding_carbon_dioxide_is_said_for_carbonate_with_acid(usual, volumes_b
     found = findings_of(truth, V, y)
     assert "takes the flask as closed" in found["carbon dioxide"].says
     assert found["carbon dioxide"].verdict == "holds"
+
+
+@pytest.mark.parametrize("short_mL", [0.1, 0.6, 1.0, 2.0])
+def test_finding_of_points_that_end_before_the_end_point_fails(curve, short_mL):
+    truth, V, y = curve
+    read = truth.effective_mL - short_mL > V
+    found = findings_of(truth, V[read], y[read])["end point"]
+    assert found.verdict == "fails"
+    assert "only the steepest of what was read" in found.says
+
+
+def test_finding_of_points_that_end_in_the_jump_is_only_looked_at_where_the_fit_holds(curve):
+    truth, V, y = curve
+    read = truth.effective_mL + 0.06 > V
+    found = findings_of(truth, V[read], y[read])["end point"]
+    assert found.verdict == "look"
+    assert "only the steepest" not in found.says
+
+
+def test_finding_of_a_bump_of_noise_taken_for_the_end_point_fails():
+    one = CURVES["khp-drop-counter"]
+    read = [at for at, V in enumerate(one["V"]) if one["equivalence_mL"] - 1 > V]
+    V, y = (tuple(one[key][at] for at in read) for key in ("V", "y"))
+    known = Circumstances(SYSTEMS["khp-naoh"], one["V0_mL"], one["n_acid_mmol"])
+    found = {note.name: note for note in analysed(Points("pH", V, y), known).findings}
+    assert found["end point"].verdict == "fails"

@@ -6,6 +6,7 @@ from sqlalchemy import select
 from server.lab.refusal import NotAllowed, NotFound, Unacceptable
 from server.procedures.calibration_runs import RecordRun, StateClass, record_run, state_class
 from server.procedures.holds import HoldThing, hold_thing
+from server.procedures.instrument_log import SetLimits, WriteCheck, set_limits, write_check
 from server.procedures.instruments import RegisterInstrument, register_instrument
 from server.records.queries.load_sheet import load_sheet_facts
 from server.records.tables.stores import Calibration
@@ -125,6 +126,17 @@ def test_run_and_class_are_a_keepers_act(shared_lab, who):
         run(shared_lab, who=who)
     with pytest.raises(NotAllowed):
         shared_lab.act(state_class, StateClass(shared_lab.burette, "25", **PAPERS), who)
+
+
+def test_balance_that_failed_its_last_check_is_not_weighed_with(sqlite_lab):
+    lab = sqlite_lab
+    limits = {"name": "100 g", "centre": "100.0000", "warning": "0.0002", "action": "0.0003"}
+    lab.act(set_limits, SetLimits(lab.balance, limits), "keeper")
+    lab.act(write_check, WriteCheck(lab.balance, reading="100.0009"), "analyst")
+    lab.clock.move(minutes=1)
+    with pytest.raises(Unacceptable, match=r"100.0009 g is .* Weigh with another one") as refused:
+        run(lab)
+    assert refused.value.field == "balance_id"
 
 
 def test_balance_that_is_held_or_lapsed_is_not_weighed_with(sqlite_lab):

@@ -152,3 +152,13 @@ def test_probe_stands_beside_what_its_buffers_said(found):
         "not known", "not known",
     ]  # fmt: skip
     assert probe_beside(found["fe-ce-redox-mV"], probe) is None
+
+
+def test_no_method_is_believed_on_points_that_end_before_the_end_point():
+    one = CURVES["khp-manual-burette"]
+    read = [at for at, V in enumerate(one["V"]) if one["equivalence_mL"] - 0.2 > V]
+    V, y = (tuple(one[key][at] for at in read) for key in ("V", "y"))
+    known = Circumstances(system_named("khp-naoh"), one["V0_mL"], one["n_acid_mmol"])
+    says = believe(analysed(Points("pH", V, y), known))
+    assert says.startswith("Believe none of them as it stands, not the steepest segment either")
+    assert says.endswith("only the steepest of what was read.")

@@ -17,7 +17,7 @@ class TrailRow(Table):
     person_name: Mapped[str] = mapped_column(Text)
     act: Mapped[str] = mapped_column(Text)
     kind: Mapped[str] = mapped_column(Text)
-    thing_id: Mapped[Uuid]
+    thing_id: Mapped[Uuid] = mapped_column(index=True)
     thing_name: Mapped[str] = mapped_column(Text)
     why: Mapped[str | None] = mapped_column(Text)
     body: Mapped[str] = mapped_column(Text)

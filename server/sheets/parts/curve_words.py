@@ -44,8 +44,16 @@ def believe(analysis: Analysis) -> str:
     method = analysis.proposed
     found = analysis.outcome(method)
     volume = f"{volume_words(found)[0]} mL" if isinstance(found, EndPoint) else "no volume"
+    reach = next((one for one in analysis.findings if one.name == "end point"), None)
+    if reach is not None and reach.verdict == "fails":
+        none = f"Believe none of them as it stands, not {the(method)} either, {volume}"
+        return f"{none}: {_lower(reach.says)}"
     because = _because_fit(analysis) if method == "model fit" else _because_other(analysis)
     return f"Believe {the(method)}, {volume}: {because}."
+
+
+def _lower(says: str) -> str:
+    return says[0].lower() + says[1:]
 
 
 def apart_words(analysis: Analysis, taken: str | None) -> str:
