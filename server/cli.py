@@ -198,7 +198,8 @@ def _equivalence(given: argparse.Namespace, _: Verbs) -> int:
     except Unacceptable as refusal:
         return _problem(refusal.says, refusal.field or "FILE.csv", refusal.example)
     except CurveProblem as problem:
-        return _problem(str(problem), "FILE.csv")
+        option = None if problem.field is None else f"--{problem.field.replace('_', '-')}"
+        return _problem(str(problem), option or "FILE.csv")
     _say(json.dumps(result, ensure_ascii=False, indent=2, allow_nan=False))
     return GOOD
 

@@ -1,4 +1,4 @@
-"""Uses of bottles, tokens of scripts, watches and letters; a bottle's opening; the trail by thing."""
+"""Uses of bottles, tokens of scripts, watches, letters; a bottle opened; the trail by thing."""
 
 import sqlalchemy as sa
 from alembic import op

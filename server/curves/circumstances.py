@@ -36,13 +36,13 @@ class Circumstances:
         for name in ("flask_volume_mL", "amount_mmol", "volume_u_mL", "reading_u"):
             value = getattr(self, name)
             if value is not None and not (isfinite(value) and value > 0):
-                raise CurveProblem(f"{name} must be above zero, not {value:g}.")
+                raise CurveProblem(f"{name} must be above zero, not {value:g}.", field=name)
         if not LOWEST_C <= self.temperature_C <= HIGHEST_C:
             says = (
                 f"temperature_C must lie between {LOWEST_C:g} and {HIGHEST_C:g}, not at "
                 f"{self.temperature_C:g}."
             )
-            raise CurveProblem(says)
+            raise CurveProblem(says, field="temperature_C")
 
     def given(self) -> Given:
         """Return what a fit is given by these circumstances."""
@@ -66,5 +66,5 @@ def system_named(name: str | None) -> AcidBaseSystem | None:
         return None
     if name not in SYSTEMS:
         known = ", ".join([*SYSTEMS, "none"])
-        raise CurveProblem(f"No system {name!r} is known; there are: {known}.")
+        raise CurveProblem(f"No system {name!r} is known; there are: {known}.", field="system")
     return SYSTEMS[name]

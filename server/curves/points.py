@@ -15,12 +15,16 @@ FEWEST_POINTS = 6
 
 
 class CurveProblem(ValueError):
-    """Points that make no curve: what is wrong, in words, and at which point (counted from 0)."""
+    """Points that make no curve: what is wrong, in words, and at which point (counted from 0).
 
-    def __init__(self, says: str, *, index: int | None = None) -> None:
+    ``field`` names what was given beside the points, where that is wrong.
+    """
+
+    def __init__(self, says: str, *, index: int | None = None, field: str | None = None) -> None:
         super().__init__(says)
         self.says = says
         self.index = index
+        self.field = field
 
 
 class PointsLike(Protocol):

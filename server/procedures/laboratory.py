@@ -55,7 +55,8 @@ class ChangeSettings:
     """The laboratory's settings as they shall be; ``revision`` is the one that was read.
 
     What is None stays as it is. ``country`` is that of ISO 3166-1, ``base_url`` the laboratory's
-    own address; ``label_value`` prints the certified value on labels, ``paper`` is that of certificates.
+    own address; ``label_value`` prints the certified value on labels, ``paper`` is that of
+    certificates.
     """
 
     name: str

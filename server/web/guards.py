@@ -130,7 +130,7 @@ def _most_body(path: str) -> int:
 
 
 def _too_large(most: int) -> TooLarge:
-    return TooLarge(f"This is more than {most // 1024} kB; send it in parts.")
+    return TooLarge(f"This is more than {most // 1024} kB, the most that is taken at once.")
 
 
 def _counted(receive: Receive, most: int) -> Receive:

@@ -10,8 +10,9 @@ WIDTHS = {390: 844, 820: 1180, 1440: 900}
 PAGES = {
     None: ("/", "/sign-in", "/about"),
     "ida": (
-        "/bench", "/me", "/countersign", "/stores", "/instruments", "/trail", "/lots/new", "/labels",
-    ),  # fmt: skip
+        *("/bench", "/me", "/countersign", "/stores", "/instruments", "/trail"),
+        *("/lots/new", "/labels"),
+    ),
     "nils": ("/stores/recipes/new", "/stores/standard-lots/new", "/instruments/new"),
     "runa": ("/people", "/laboratory"),
 }

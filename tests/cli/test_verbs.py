@@ -377,6 +377,20 @@ def test_equivalence_of_a_simulated_curve_finds_its_known_volume(tmp_path: Path)
     assert abs(fit["volume_mL"] - curve["equivalence_mL"]) < 0.002
 
 
+@pytest.mark.parametrize(
+    ("option", "value"),
+    [("--system", "nope"), ("--amount-mmol", "-1"), ("--temperature-C", "900")],
+)
+def test_equivalence_names_the_option_that_cannot_be(
+    option: str, value: str, tmp_path: Path
+) -> None:
+    path = tmp_path / "curve.csv"
+    path.write_text("0,3\n1,4\n2,5\n3,9\n4,10\n5,11\n6,11.2\n")
+    done = run("equivalence", path, option, value)
+    assert done.returncode == 2
+    assert json.loads(done.stderr)["field"] == option
+
+
 def test_equivalence_of_a_file_that_is_no_curve_ends_with_2(tmp_path: Path) -> None:
     path = tmp_path / "curve.csv"
     path.write_text("mL,pH\n0.0,4.0\n")

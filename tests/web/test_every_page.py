@@ -47,7 +47,8 @@ def test_every_form_of_every_page_goes_to_a_route_that_takes_it(shared_web: Any)
     ]
     demo, found = shared_web.demo, set()
     pages = [
-        "/bench", "/lots/new", "/stores/standard-lots/new", "/stores/recipes/new", "/people", "/laboratory",
+        "/bench", "/lots/new", "/stores/standard-lots/new", "/stores/recipes/new", "/people",
+        "/laboratory",
         f"/labels?thing={demo.bottles_in_force[0]}",
         "/instruments/new", "/me", f"/countersign/{demo.waiting_sheet_id}",
         f"/bench/{demo.sent_back_sheet_id}", f"/bench/{demo.sent_back_sheet_id}/hand-in",
