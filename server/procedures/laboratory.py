@@ -63,10 +63,10 @@ class ChangeSettings:
     address: str
     zone: str
     revision: int
-    shelf_open: bool = False
-    own_signature: bool = False
-    limits: dict[str, str] = field(default_factory=dict)
-    idle_minutes: int = 30
+    shelf_open: bool | None = None
+    own_signature: bool | None = None
+    limits: dict[str, str] | None = None
+    idle_minutes: int | None = None
     country: str | None = None
     base_url: str | None = None
     label_value: bool | None = None
@@ -138,21 +138,16 @@ def change_settings(
         says = "Somebody else changed the settings meanwhile; look at both and save again."
         raise SavedFirst(says, field="revision", shown={"standing": before})
     read_zone(command.zone)
-    check_limits(command.limits, "limits")
-    if not 1 <= command.idle_minutes <= 12 * 60:
+    check_limits(command.limits or {}, "limits")
+    if command.idle_minutes is not None and not 1 <= command.idle_minutes <= 12 * 60:
         says = "idle_minutes must be from 1 to 720."
         raise Unacceptable(says, field="idle_minutes", example="30")
     row.name = check_name(command.name, "name", example="Waterworks laboratory")
     row.address = read_text(command.address, "address")
     row.zone = command.zone
-    row.own_signature = command.own_signature
-    row.settings = {
-        **row.settings,
-        "shelf_open": command.shelf_open,
-        "limits": dict(command.limits),
-        "idle_minutes": command.idle_minutes,
-        **_stated(command),
-    }
+    if command.own_signature is not None:
+        row.own_signature = command.own_signature
+    row.settings = {**row.settings, **_stated(command)}
     row.revision += 1
     session.flush()
     note_act(
@@ -169,6 +164,12 @@ def change_settings(
 def _stated(command: ChangeSettings) -> dict[str, Any]:
     """Return the settings that stay as they are unless they are given."""
     given: dict[str, Any] = {}
+    if command.shelf_open is not None:
+        given["shelf_open"] = command.shelf_open
+    if command.limits is not None:
+        given["limits"] = dict(command.limits)
+    if command.idle_minutes is not None:
+        given["idle_minutes"] = command.idle_minutes
     if command.country is not None:
         given["country"] = read_country(command.country)
     if command.base_url is not None:

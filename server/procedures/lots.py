@@ -133,7 +133,8 @@ def make_up_lot(
     )
     session.add(lot)
     session.flush()
-    body = {"code": lot.code, "titrant": titrant, "nominal": nominal, **lot.document}
+    body = {"code": lot.code, "titrant": titrant, "nominal": nominal, "medium": lot.medium}
+    body |= lot.document
     note_act(session, "made up a lot", _lot_thing(lot), actor=actor, now=now, body=body)
     return lot.code
 

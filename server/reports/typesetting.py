@@ -13,9 +13,10 @@ from datetime import datetime
 from functools import cache
 from pathlib import Path
 from threading import Lock
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-import typst
+if TYPE_CHECKING:
+    import typst
 
 #: Archival (ISO 19005-3, level a) and accessible (ISO 14289-1).
 ARCHIVAL = ("a-3a", "ua-1")
@@ -102,6 +103,8 @@ def _compile(
     made_at: datetime | None = None,
     **asked: Any,
 ) -> Any:
+    import typst  # noqa: PLC0415 - the first paper loads it, not the start
+
     inputs = {"told": json.dumps(_breakable(told), ensure_ascii=False), **files}
     if standards:
         asked["pdf_standards"] = list(standards)
@@ -117,7 +120,9 @@ def _compile(
 
 
 @cache
-def _compiler(page: str, *, own_fonts: bool) -> typst.Compiler:
+def _compiler(page: str, *, own_fonts: bool) -> "typst.Compiler":
+    import typst  # noqa: PLC0415 - the same
+
     return typst.Compiler(str(_PAGES / f"{page}.typ"), ignore_system_fonts=own_fonts)
 
 

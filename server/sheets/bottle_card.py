@@ -34,7 +34,7 @@ from server.sheets.parts.telling import due_words, last_day_words, moment_words,
 from server.sheets.shelf import AtTemperature, BottleCard
 from server.sheets.uses_page import uses_of
 
-_NO_NUMBER = Printed("", "", "", "", "", "", 0, "")
+_NO_NUMBER = Printed("", "", "", "", "", "", "", 0, "")
 _AT_FIRST = "20.0"
 _STEP = Decimal(1)
 
@@ -76,6 +76,7 @@ def open_bottle_card(
         uncertainty=number.uncertainty,
         unit=number.unit,
         k=number.k,
+        beside=number.beside,
         coverage=number.coverage,
         factor=number.factor,
         valid_for=certificate.document["valid_for"] if certificate else "",

@@ -53,6 +53,7 @@ class CertificatePage:
     uncertainty: str
     unit: str
     k: str
+    beside: str
     coverage: str
     factor: str
     temperature: str

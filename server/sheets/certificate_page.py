@@ -83,6 +83,7 @@ def open_certificate(
         uncertainty=shown.uncertainty,
         unit=shown.unit,
         k=shown.k,
+        beside=shown.beside,
         coverage=shown.coverage,
         factor=shown.factor,
         temperature=f"at {result['concentration']['temperature_C']} °C",

@@ -119,6 +119,8 @@ class CountersignPage:
     corrections: int
     value: str
     uncertainty: str
+    beside: str
+    coverage: str
     unit: str
     k: str
     valid_for: str

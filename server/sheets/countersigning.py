@@ -81,6 +81,8 @@ def open_countersign(
         corrections=len(strikes(facts.entries)),
         value=number.value,
         uncertainty=number.uncertainty,
+        beside=number.beside,
+        coverage=number.coverage,
         unit=number.unit,
         k=number.k,
         valid_for=valid_for_of(facts.recipe.document, result),

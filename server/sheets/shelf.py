@@ -88,6 +88,7 @@ class BottleCard:
     uncertainty: str
     unit: str
     k: str
+    beside: str
     coverage: str
     factor: str
     valid_for: str

@@ -24,6 +24,8 @@ from server.records.queries.load_kept import (
 )
 from server.records.trail import GENESIS, DoesNotHold, TrailCheck, read_chain
 from server.records.transaction import Transactions
+from server.upkeep.file_check import FileCheck
+from server.upkeep.shelf_check import ShelfCheck
 
 _EPOCH = datetime(1970, 1, 1, tzinfo=UTC)
 #: Sheets whose rows are held in memory together.
@@ -35,7 +37,7 @@ _STATES = (USED_UP, PROPOSED, PULLED)
 def check_trail(
     transactions: Transactions, *, known: Mapping[int, str] | None = None
 ) -> TrailCheck:
-    """Return whether chain, anchors, sheets, certificates and states hold; name the first not.
+    """Return whether chain, anchors, sheets, shelf, files and states hold; name the first not.
 
     ``known`` maps numbers of rows to hashes that were kept outside the database.
     """
@@ -73,6 +75,7 @@ class _Checking:
         self._rows_of: dict[str, array[int]] = {}
         self._noted: dict[Done, list[tuple[int, str]]] = {}
         self._counted: Counter[str] = Counter()
+        self._shelf, self._files = ShelfCheck(), FileCheck()
 
     def check(self, known: Mapping[int, str]) -> TrailCheck:
         holds, says = True, ""
@@ -81,7 +84,11 @@ class _Checking:
                 for row in chain:
                     self._seq, self._hash = row.seq, row.hash
                     self._take(row)
+                    self._shelf.take(row)
+                    self._files.take(row)
             self._check_sheets()
+            self._counted["bottles"] = self._shelf.check(self._session)
+            self._counted["files"] = self._files.check(self._session)
             self._check_states()
             says = self._told()
         except DoesNotHold as broken:
@@ -133,7 +140,8 @@ class _Checking:
         says = (
             f"The chain holds over {self._seq} rows. {counted['certificates']} certificates are "
             f"anchored in it; {counted['entries']} entries and {counted['signatures']} signatures "
-            f"on {counted['sheets']} sheets are as it noted them."
+            f"on {counted['sheets']} sheets are as it noted them, and so are {counted['bottles']} "
+            f"bottles, their lots, and {counted['files']} files."
         )
         if counted["briefly"]:
             says += (

@@ -45,6 +45,7 @@ class Answer:
 STATUS: Mapping[type[Refusal], Answer] = MappingProxyType(
     {
         NotSignedIn: Answer(401, "Not signed in"),
+        TokenRefused: Answer(401, "Token does not hold"),
         NotAllowed: Answer(403, "Not allowed"),
         NotFromHere: Answer(403, "Not sent from here"),
         NotFound: Answer(404, "Not found"),

@@ -237,7 +237,7 @@ class Server:
 
     def wait(self) -> None:
         """Wait until it answers."""
-        end = time.monotonic() + 90
+        end = time.monotonic() + 180
         while time.monotonic() < end:
             assert self.process.poll() is None, self.log.read_text()
             try:

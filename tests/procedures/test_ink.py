@@ -166,7 +166,7 @@ def test_certificate_is_not_issued_without_a_second_signature_by_direct_sql(wait
 def test_every_table_refuses_deletion_but_those_that_hold_no_record(full):
     free = {
         "laboratory", "sign_in", "sign_in_failure", "device", "counter", "idempotency_key",
-        "curve_columns",
+        "curve_columns", "mailbox",
         "alembic_version",
     }  # fmt: skip
     database = full.transactions.database

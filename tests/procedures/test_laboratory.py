@@ -102,3 +102,11 @@ def test_settings_odd_value_is_refused_by_field_and_nothing_changes(shared_lab, 
         change(shared_lab, **given)
     assert refused.value.field == field
     assert shared_lab.transactions.read(laboratory_row).revision == 1
+
+
+def test_settings_that_are_not_given_stay_as_they_are(lab):
+    change(lab, shelf_open=False, own_signature=True, idle_minutes=45)
+    change(lab, revision=2)
+    row = lab.transactions.read(load_laboratory_fact)
+    assert row.own_signature is True
+    assert (row.settings["shelf_open"], row.settings["idle_minutes"]) == (False, 45)

@@ -1,5 +1,6 @@
 """What the check names, one forgery at a time, and what it can say of older releases' rows."""
 
+import hashlib
 import json
 from collections.abc import Callable
 from typing import Any
@@ -10,8 +11,8 @@ from sqlalchemy.orm import Session
 
 from server.lab.canonical import canonical, digest
 from server.records.tables.bench import Certificate, Entry, Evaluation, Sheet, Signature
-from server.records.tables.lots import Bottle, Pull
-from server.records.tables.stores import Hold
+from server.records.tables.lots import Bottle, Lot, Pull
+from server.records.tables.stores import File, Hold
 from server.records.tables.trail import TrailRow
 from server.upkeep.trail_check import check_trail, read_known
 
@@ -56,6 +57,8 @@ def test_record_that_nobody_touched_holds_and_says_how_much(forger: Any) -> None
         (remove(Evaluation), "The evaluation of sheet"),
         (change(Hold, "reason", "no doubt at all"), "was never noted so"),
         (remove(Hold), "noted that somebody held a"),
+        (change(File, "content", b"another paper"), "is not as it came: its SHA-256 is another"),
+        (change(File, "sha256", "0" * 64), "is not as it came: its SHA-256 is another"),
         (change(Sheet, "number", "S-1999-0001"), "is not the one that row"),
         (remove(Sheet), "is not there"),
         (change(Certificate, "document_digest", digest("{}")), "is not the text that was issued"),
@@ -76,6 +79,61 @@ def test_bottle_that_was_emptied_cannot_be_filled_again_unseen(forger: Any) -> N
     found = forger.check_after(refill)
     assert not found.holds
     assert "noted that somebody used up a bottle" in found.says
+
+
+@pytest.mark.parametrize(
+    ("forgery", "says"),
+    [
+        (change(Bottle, "code", "22222222"), "The bottle 22222222 is not the one that row"),
+        (change(Bottle, "number", 7), "is not the one that row"),
+        (change(Bottle, "filled_by", "nobody"), "is not the one that row"),
+        (remove(Bottle), "is not there"),
+        (change(Lot, "code", "22222222"), "is not the one that row"),
+        (change(Lot, "nominal", "0.5"), "is not the one that row"),
+        (change(Lot, "medium", "ethanol"), "is not the one that row"),
+        (change(Lot, "document", {"use_by": "2099-01-01"}), "is not the one that row"),
+        (change(Lot, "document", ["no object"]), "cannot be read"),
+        (change(Lot, "made_by", "nobody"), "is not the one that row"),
+    ],
+)
+def test_bottle_or_lot_that_is_another_than_noted_is_named(
+    forger: Any, forgery: Forgery, says: str
+) -> None:
+    found = forger.check_after(forgery)
+    assert not found.holds
+    assert says in found.says
+
+
+def test_bottle_that_was_put_to_another_lot_is_named(forger: Any) -> None:
+    """On the shelf it would show the other lot's number."""
+
+    def exchange(session: Session) -> None:
+        bottle = session.scalars(first(Bottle)).one()
+        other = sa.select(Lot.id).where(Lot.id != bottle.lot_id).limit(1)
+        bottle.lot_id, bottle.number = session.scalars(other).one(), 99
+
+    assert "is not the one that row" in forger.check_after(exchange).says
+
+
+def test_bottle_that_was_never_filled_is_named(forger: Any) -> None:
+    def slip_in(session: Session) -> None:
+        row = session.scalars(first(Bottle)).one()
+        columns = {one.name: getattr(row, one.name) for one in Bottle.__table__.columns}
+        new = {"id": "slipped in", "code": "22222222", "number": 98}
+        session.add(Bottle(**columns | new))
+
+    assert "The bottle 22222222 was never noted" in forger.check_after(slip_in).says
+
+
+def test_file_that_was_exchanged_with_its_hash_is_named(forger: Any) -> None:
+    def exchange(session: Session) -> None:
+        paper = session.scalars(first(File)).one()
+        paper.content = b"a certificate that was never received"
+        paper.sha256 = hashlib.sha256(paper.content).hexdigest()
+
+    found = forger.check_after(exchange)
+    assert not found.holds
+    assert "was never noted in the trail" in found.says
 
 
 def test_pull_that_nobody_confirmed_is_named(forger: Any) -> None:

@@ -22,6 +22,7 @@ WANTED = {
     lab.TooOften: 429,
     lab.CannotWrite: 503,
     web_refusals.NotFromHere: 403,
+    web_refusals.TokenRefused: 401,
     web_refusals.TooLarge: 413,
     web_refusals.WrongKind: 415,
     web_refusals.Unreadable: 400,

@@ -1,6 +1,6 @@
 """Originals that were kept, with and without their bytes."""
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 
@@ -9,6 +9,7 @@ from sqlalchemy.orm import Session
 
 from server.records.tables.people import Person
 from server.records.tables.stores import File
+from server.records.trail import fetched
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,3 +41,14 @@ def file_facts(session: Session, file_ids: Sequence[str]) -> dict[str, FileFact]
         .where(File.id.in_(file_ids))
     )  # fmt: skip
     return {row[0]: FileFact(*row) for row in session.execute(asked)}
+
+
+def kept_originals(session: Session) -> Iterator[tuple[str, str, bytes]]:
+    """Yield name, SHA-256 and bytes of every original, one of them in memory at a time.
+
+    Raises:
+        DoesNotHold: one of them can no longer be read.
+    """
+    for file_id in list(session.scalars(select(File.id).order_by(File.made_at, File.id))):
+        kept = select(File.name, File.sha256, File.content).where(File.id == file_id)
+        yield from fetched(session, kept, "A file")

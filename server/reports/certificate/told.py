@@ -72,12 +72,11 @@ def _value(document: Mapping[str, Any], shown: outcome.Printed) -> dict[str, str
     """Return the certified value: with U, or the Monte Carlo interval where that is printed."""
     result, validity = document["result"], document["validity"]
     temperature = f"Amount concentration at {result['concentration']['temperature_C']} °C."
+    percent = f"{100 * result['concentration']['coverage']:g} %"
     says = (
-        f"Expanded uncertainty U, in the same unit, with k = {shown.k} for a coverage of "
-        f"{shown.coverage}."
+        f"Expanded uncertainty U, in the same unit, with k = {shown.k} for a coverage of {percent}."
     )
     if shown.interval:
-        percent = f"{100 * result['concentration']['coverage']:g} %"
         says = f"Coverage interval of {percent}: {shown.interval}; it is not told by U and k."
     return {
         "name": _name(document["lot"]),

@@ -35,13 +35,15 @@ _VOLUME = (
 class Printed:
     """A concentration digit by digit as it is printed.
 
-    ``interval`` holds the Monte Carlo interval where it is the one to print, else it is empty.
+    ``interval`` holds the Monte Carlo interval where it is the one to print, else it is empty;
+    ``beside`` is what stands beside the value: that interval, or U; ``coverage`` is of ``beside``.
     """
 
     value: str
     uncertainty: str
     unit: str
     k: str
+    beside: str
     coverage: str
     factor: str
     decimals: int
@@ -53,13 +55,15 @@ def printed(result: Mapping[str, Any]) -> Printed:
     c = result["concentration"]
     value, uncertainty = rounded_pair(c["value"], c["U"])
     _, _, interval = c["reported"].partition(_INTERVAL)
-    coverage = f"{100 * c['coverage']:g} %"
+    k, coverage = printed_k(c["k"]), f"{100 * c['coverage']:g} %"
+    ends, _, by = interval.partition(" (")
     return Printed(
         value=value,
         uncertainty=uncertainty,
         unit=c["unit"],
-        k=printed_k(c["k"]),
-        coverage=f"{coverage}, interval {interval}" if interval else coverage,
+        k=k,
+        beside=ends or f"± {uncertainty} {c['unit']}",
+        coverage=f"interval of {coverage} ({by}" if interval else f"k = {k}, {coverage}",
         factor=_factor(result),
         decimals=decimals_of(value),
         interval=interval,
