@@ -2,13 +2,25 @@
 
 from collections.abc import Sequence
 from datetime import datetime
+from typing import Any
 
-from sqlalchemy import select
+from sqlalchemy import bindparam, select
 from sqlalchemy.orm import Session
 
 from server.lab.sheet_facts import LogFact, PersonFact, StrikeFact
+from server.records.queries.by_ids import IDS, any_of
 from server.records.tables.people import Person
 from server.records.tables.stores import Log
+
+_LINES = (
+    select(Log, Person)
+    .join(Person, Person.id == Log.person_id)
+    .where(Log.kind == bindparam("kind"), Log.thing_id.in_(any_of()))
+    .order_by(Log.at, Log.id)
+)
+_LINES_SINCE = _LINES.where(
+    (Log.at >= bindparam("since")) | Log.what.in_(bindparam("always", expanding=True))
+)
 
 
 def log_lines(
@@ -23,15 +35,12 @@ def log_lines(
 
     ``since`` leaves out what was written earlier, but for the kinds of line in ``always``.
     """
-    asked = (
-        select(Log, Person)
-        .join(Person, Person.id == Log.person_id)
-        .where(Log.kind == kind, Log.thing_id.in_(thing_ids))
-        .order_by(Log.at, Log.id)
-    )
-    if since is not None:
-        asked = asked.where((Log.at >= since) | Log.what.in_(always))
-    rows = session.execute(asked).all()
+    told: dict[str, Any] = {"kind": kind, IDS: list(thing_ids)}
+    if since is None:
+        rows = session.execute(_LINES, told).all()
+    else:
+        told |= {"since": since, "always": list(always)}
+        rows = session.execute(_LINES_SINCE, told).all()
     strikes = {
         row.strikes: StrikeFact(_person(person), row.at, row.reason or "")
         for row, person in rows

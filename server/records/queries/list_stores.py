@@ -4,11 +4,12 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import datetime, timedelta
 
-from sqlalchemy import func, select
+from sqlalchemy import bindparam, func, select
 from sqlalchemy.orm import Session
 
 from server.lab.calibration.check_log import CHARTS
 from server.lab.sheet_facts import HoldFact, InstrumentFact, LogFact
+from server.records.queries.by_ids import IDS, any_of
 from server.records.queries.list_log import log_lines
 from server.records.queries.load_files import FileFact, file_fact, file_facts
 from server.records.tables.people import Person
@@ -16,6 +17,11 @@ from server.records.tables.stores import Calibration, Hold, Instrument, Recipe
 
 #: A check between two calibrations that is older says nothing about today.
 CHECK_SPAN = timedelta(days=31)
+_HOLDS = (
+    select(Hold)
+    .where(Hold.kind == bindparam("kind"), Hold.thing_id.in_(any_of()))
+    .order_by(Hold.held_at, Hold.id)
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -147,11 +153,7 @@ def holds_by_thing(
     session: Session, kind: str, thing_ids: Sequence[str]
 ) -> dict[str, tuple[HoldFact, ...]]:
     """Return all holds of some things of one kind, oldest first, by the thing."""
-    rows = session.scalars(
-        select(Hold)
-        .where(Hold.kind == kind, Hold.thing_id.in_(thing_ids))
-        .order_by(Hold.held_at, Hold.id)
-    )
+    rows = session.scalars(_HOLDS, {"kind": kind, IDS: list(thing_ids)})
     found: dict[str, tuple[HoldFact, ...]] = {}
     for row in rows:
         one = HoldFact(row.held_at, row.released_at, row.reason)

@@ -2,7 +2,6 @@
 
 from collections.abc import Iterable
 
-from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from server.lab.recipe import read_recipe
@@ -14,15 +13,18 @@ from server.lab.sheet_facts import (
     PersonFact,
     RecipeFact,
 )
+from server.records.queries.by_ids import IDS, rows_by
 from server.records.queries.list_stores import instrument_fact
 from server.records.queries.loading import holds_of, laboratory_row
 from server.records.tables.people import Person
 from server.records.tables.stores import Calibration, Instrument, Recipe
 
+_PEOPLE = rows_by(Person.id)
+
 
 def load_people(session: Session, ids: Iterable[str]) -> dict[str, PersonFact]:
     """Return people by id."""
-    rows = session.scalars(select(Person).where(Person.id.in_(set(ids))))
+    rows = session.scalars(_PEOPLE, {IDS: list(set(ids))})
     return {row.id: PersonFact(row.id, row.printed_name, row.initials) for row in rows}
 
 

@@ -1,12 +1,12 @@
 """Bench sheets with all they rest on, as plain values, in a fixed number of selects."""
 
 import json
-from collections.abc import Callable, Iterable, Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import replace
 from datetime import datetime
 from typing import Any
 
-from sqlalchemy import select
+from sqlalchemy import Select, select
 from sqlalchemy.orm import Session
 
 from server.lab.calibration.check_log import CHARTS
@@ -29,6 +29,7 @@ from server.lab.sheet_facts import (
     StandardLotFact,
     logs_count_at,
 )
+from server.records.queries.by_ids import IDS, any_of, rows_by
 from server.records.queries.list_log import log_lines
 from server.records.queries.list_stores import (
     CHECK_SPAN,
@@ -42,6 +43,18 @@ from server.records.queries.sheet_trail import load_returns
 from server.records.tables.bench import Certificate, Entry, Evaluation, Sheet, Signature
 from server.records.tables.lots import Lot, Pull
 from server.records.tables.stores import Calibration, Instrument, Recipe, StandardLot
+
+_SHEETS = rows_by(Sheet.id)
+_LOTS, _RECIPES, _STANDARDS = rows_by(Lot.id), rows_by(Recipe.id), rows_by(StandardLot.id)
+_EVALUATIONS, _CERTIFICATES = rows_by(Evaluation.id), rows_by(Certificate.lot_id)
+_PULLED = select(Pull.lot_id).where(Pull.lot_id.in_(any_of()), Pull.confirmed_at.is_not(None))
+_ENTRIES = rows_by(Entry.sheet_id, Entry.position, Entry.id)
+_SIGNATURES = rows_by(Signature.sheet_id, Signature.at, Signature.meaning.desc(), Signature.id)
+_INSTRUMENTS = (
+    select(Instrument, Calibration)
+    .join(Calibration, Calibration.instrument_id == Instrument.id)
+    .where(Calibration.id.in_(any_of()))
+)
 
 
 def load_sheet_facts(session: Session, sheet_id: str) -> SheetFacts:
@@ -58,7 +71,7 @@ def load_sheet_facts(session: Session, sheet_id: str) -> SheetFacts:
 
 def load_many_sheet_facts(session: Session, sheet_ids: Sequence[str]) -> tuple[SheetFacts, ...]:
     """Return the facts of several sheets, in the order asked; unknown ones are left out."""
-    rows = session.scalars(select(Sheet).where(Sheet.id.in_(sheet_ids))).all()
+    rows = session.scalars(_SHEETS, {IDS: list(sheet_ids)}).all()
     sheets = {row.id: row for row in rows}
     found = [sheets[one] for one in sheet_ids if one in sheets]
     return _Loaded(session, found).facts(found)
@@ -71,27 +84,21 @@ class _Loaded:
         ids = [sheet.id for sheet in sheets]
         lot_ids = {sheet.lot_id for sheet in sheets}
         self.laboratory = load_laboratory_fact(session)
-        self.lots = _by_id(session, Lot, lot_ids)
-        self.pulled = set(
-            session.scalars(
-                select(Pull.lot_id).where(Pull.lot_id.in_(lot_ids), Pull.confirmed_at.is_not(None))
-            )
-        )
-        self.recipes = _by_id(session, Recipe, {sheet.recipe_id for sheet in sheets})
+        self.lots = _by_id(session, _LOTS, lot_ids)
+        self.pulled = set(session.scalars(_PULLED, {IDS: list(lot_ids)}))
+        self.recipes = _by_id(session, _RECIPES, {sheet.recipe_id for sheet in sheets})
         self.standard_lots = _by_id(
-            session, StandardLot, {sheet.standard_lot_id for sheet in sheets}
+            session, _STANDARDS, {sheet.standard_lot_id for sheet in sheets}
         )
         self.lot_holds = holds_by_thing(session, STANDARD_LOT, list(self.standard_lots))
         self.lot_logs = log_lines(session, STANDARD_LOT, list(self.standard_lots))
         used = {one for sheet in sheets for one in sheet.calibrations.values()}
         since = min((sheet.begun_at for sheet in sheets), default=None)
         self.instruments = _instruments(session, used, since)
-        self.entries = _by_sheet(session, Entry, ids, Entry.position)
-        self.signatures = _by_sheet(session, Signature, ids, Signature.at, Signature.meaning.desc())
-        self.evaluations = _by_id(session, Evaluation, {sheet.evaluation_id for sheet in sheets})
-        self.certificates = session.scalars(
-            select(Certificate).where(Certificate.lot_id.in_(lot_ids))
-        ).all()
+        self.entries = _by_sheet(session, _ENTRIES, ids)
+        self.signatures = _by_sheet(session, _SIGNATURES, ids)
+        self.evaluations = _by_id(session, _EVALUATIONS, {sheet.evaluation_id for sheet in sheets})
+        self.certificates = session.scalars(_CERTIFICATES, {IDS: list(lot_ids)}).all()
         self.people = load_people(session, self._named(sheets))
         self.returns = load_returns(session, [sheet.id for sheet in sheets])
 
@@ -153,24 +160,17 @@ class _Loaded:
         return CertificateFact(row.id, row.number, row.issued_at, row.valid_until, document)
 
 
-def _by_id(session: Session, table: Any, ids: Iterable[str | None]) -> dict[str, Any]:
+def _by_id(session: Session, asked: Select[Any], ids: Iterable[str | None]) -> dict[str, Any]:
     wanted = [one for one in ids if one]
-    return {row.id: row for row in session.scalars(select(table).where(table.id.in_(wanted)))}
+    return {row.id: row for row in session.scalars(asked, {IDS: wanted})}
 
 
 def _by_sheet(
-    session: Session, table: Any, sheet_ids: Sequence[str], *order: Any
+    session: Session, asked: Select[Any], sheet_ids: Sequence[str]
 ) -> dict[str, list[Any]]:
-    rows = session.scalars(
-        select(table).where(table.sheet_id.in_(sheet_ids)).order_by(*order, table.id)
-    )
-    return _grouped(rows, lambda row: row.sheet_id)
-
-
-def _grouped(rows: Iterable[Any], key: Callable[[Any], str]) -> dict[str, list[Any]]:
     found: dict[str, list[Any]] = {}
-    for row in rows:
-        found.setdefault(key(row), []).append(row)
+    for row in session.scalars(asked, {IDS: list(sheet_ids)}):
+        found.setdefault(row.sheet_id, []).append(row)
     return found
 
 
@@ -178,11 +178,8 @@ def _instruments(
     session: Session, calibration_ids: set[Any], since: datetime | None
 ) -> dict[str, InstrumentFact]:
     """Return instruments by their calibrations, with the checks of a month before the sheets."""
-    rows = session.execute(
-        select(Instrument, Calibration)
-        .join(Calibration, Calibration.instrument_id == Instrument.id)
-        .where(Calibration.id.in_([one for one in calibration_ids if one]))
-    ).all()
+    wanted = [one for one in calibration_ids if one]
+    rows = session.execute(_INSTRUMENTS, {IDS: wanted}).all()
     ids = list({row.id for row, _ in rows})
     holds = holds_by_thing(session, "instrument", ids)
     logs = checks_since(session, ids, since - CHECK_SPAN) if since else {}

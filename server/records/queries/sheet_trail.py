@@ -7,9 +7,13 @@ from sqlalchemy import func, select
 from sqlalchemy.orm import Session
 
 from server.lab.sheet_facts import ReturnFact, RowRemark
+from server.records.queries.by_ids import IDS, rows_by
 from server.records.tables.trail import TrailRow
 
 SENT_BACK_ACT = "sent back a bench sheet"
+_RETURNS = rows_by(TrailRow.thing_id, TrailRow.seq).where(
+    TrailRow.kind == "sheet", TrailRow.act == SENT_BACK_ACT
+)
 
 
 def last_act_of_sheet(session: Session, sheet_id: str) -> int:
@@ -20,15 +24,7 @@ def last_act_of_sheet(session: Session, sheet_id: str) -> int:
 
 def load_returns(session: Session, sheet_ids: Sequence[str]) -> dict[str, list[ReturnFact]]:
     """Return for each sheet every time that it was sent back, oldest first, with the remarks."""
-    rows = session.scalars(
-        select(TrailRow)
-        .where(
-            TrailRow.kind == "sheet",
-            TrailRow.act == SENT_BACK_ACT,
-            TrailRow.thing_id.in_(sheet_ids),
-        )
-        .order_by(TrailRow.seq)
-    )
+    rows = session.scalars(_RETURNS, {IDS: list(sheet_ids)})
     found: dict[str, list[ReturnFact]] = {}
     for row in rows:
         found.setdefault(row.thing_id, []).append(_return(row))
