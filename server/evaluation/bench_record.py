@@ -7,23 +7,38 @@ from typing import Any
 
 from server.evaluation.curve_fields import AskedEndPoint, read_end_point
 from server.evaluation.record_fields import Fields, RecordProblem, Table, value_of
+from server.evaluation.reference_fields import (
+    REFERENCE_KEYS,
+    Reference,
+    glass_expansion,
+    reference_of,
+)
 from server.evaluation.replicate_reading import Replicate, read_replicates
+from server.evaluation.route_fields import (
+    Back,
+    Drift,
+    check_back,
+    read_analyte,
+    read_back,
+    read_drift,
+)
 from server.metrology.quantity import Quantity
 
 __all__ = ["BenchRecord", "RecordProblem", "read_record"]
 
 FORMAT = "bench-record/1"
-ROUTES = ("weighed", "aliquot", "against-titrant")
+ROUTES = ("weighed", "aliquot", "against-titrant", "back", "mass-titre")
 WATER_RANGE_C = (0.0, 40.0)  # Tanaka's equation holds here
 _KEYS = frozenset(
     "format titrant route ratio standard solution reference unknown_in balance air burette pipette "
-    "temperature liquid_expansion blank excess repeatability replicates end_point".split()
+    "temperature liquid_expansion blank excess repeatability replicates end_point "
+    "back titre_of drift".split()
 )
 
 
 @dataclass(frozen=True, slots=True)
 class Titrant:
-    """What is standardized: substance, nominal concentration in mol/L, medium."""
+    """What is standardized: substance, nominal value in mol/L (a mass titre: mg/mL), medium."""
 
     substance: str
     nominal: float
@@ -57,24 +72,6 @@ class Solution:
     concentration: Quantity | None
     mass: Quantity | None
     flask: Flask | None
-
-
-@dataclass(frozen=True, slots=True)
-class Component:
-    """One root of a reference's uncertainty: its relative share, signed."""
-
-    id: str
-    relative: float
-
-
-@dataclass(frozen=True, slots=True)
-class Reference:
-    """The in-date titrant used as standard, with the roots that its certificate brings."""
-
-    substance: str | None
-    concentration: Quantity
-    certificate: str | None
-    components: tuple[Component, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -117,7 +114,11 @@ class Pipette:
 
 @dataclass(frozen=True, slots=True)
 class Blank:
-    """A blank in mL and its kind, ``reagent`` or ``indicator``."""
+    """A blank in mL and its kind, ``reagent`` or ``indicator``.
+
+    In a back titration also ``zero``: what the excess alone takes of the reference, as the
+    burette delivered it in one filling at the temperature of the liquids.
+    """
 
     volume: Quantity
     kind: str
@@ -154,12 +155,31 @@ class BenchRecord:
     repeatability: Repeatability | None
     replicates: tuple[Replicate, ...]
     end_point: AskedEndPoint | None = None
+    back: Back | None = None
+    analyte: str | None = None
+    drift: Drift | None = None
+
+    @property
+    def unit(self) -> str:
+        """The unit of the result: mg/mL of a mass titre, else mol/L."""
+        return "mg/mL" if self.route == "mass-titre" else "mol/L"
+
+    @property
+    def weighs_each(self) -> bool:
+        """Whether each replicate has a mass of standard of its own."""
+        to_standard = self.back is not None and self.back.excess_to == "standard"
+        return self.route in {"weighed", "mass-titre"} or to_standard
+
+    @property
+    def zero_by_blank(self) -> bool:
+        """Whether the blank is what the excess of a back titration takes alone."""
+        return self.blank is not None and self.blank.kind == "zero"
 
     @property
     def weighs(self) -> bool:
         """Whether the standard's mass, mass fraction and molar mass enter the result."""
         made_up = self.solution is not None and self.solution.mass is not None
-        return self.route == "weighed" or (self.route == "aliquot" and made_up)
+        return self.weighs_each or (self.route == "aliquot" and made_up)
 
     @property
     def buoyancy(self) -> bool:
@@ -176,8 +196,10 @@ def read_record(document: Mapping[str, Any]) -> BenchRecord:
     top = Fields(document, "", _KEYS)
     top.choice("format", (FORMAT,))
     route = top.choice("route", ROUTES)
+    back = read_back(top, route)
+    drift = read_drift(top, route)
     record = BenchRecord(
-        titrant=_titrant(top),
+        titrant=_titrant(top, "mg/mL" if route == "mass-titre" else "mol/L"),
         route=route,
         ratio=top.ratio("ratio"),
         standard=_standard(top),
@@ -192,13 +214,21 @@ def read_record(document: Mapping[str, Any]) -> BenchRecord:
         pipette=_pipette(top),
         temperature=top.quantity("temperature", "Cel"),
         liquid_expansion=top.quantity("liquid_expansion", "1/K"),
-        blank=_blank(top),
+        blank=_blank(top, route),
         excess=top.quantity("excess", "mL"),
         repeatability=_repeatability(top),
         replicates=read_replicates(
-            top, weighed=route == "weighed", table=burette.error_table, capacity=burette.capacity
+            top,
+            weighed=route in {"weighed", "mass-titre"}
+            or (back is not None and back.excess_to == "standard"),
+            table=burette.error_table,
+            capacity=burette.capacity,
+            timed=drift is not None,
         ),
         end_point=read_end_point(top),
+        back=back,
+        analyte=read_analyte(top, route),
+        drift=drift,
     )
     _check_route(top, record)
     _check_liquids(top, record)
@@ -206,11 +236,11 @@ def read_record(document: Mapping[str, Any]) -> BenchRecord:
     return record
 
 
-def _titrant(top: Fields) -> Titrant:
+def _titrant(top: Fields, unit: str) -> Titrant:
     top.need("titrant", '{"substance": "NaOH", "nominal": {"value": "0.1", "unit": "mol/L"}}')
     fields = Fields(top.document["titrant"], "titrant", ("substance", "nominal", "medium"))
     substance = fields.text("substance", '"NaOH"')
-    nominal = fields.need_quantity("nominal", "mol/L")
+    nominal = fields.need_quantity("nominal", unit)
     medium = fields.text("medium", '"water"', required=False) or "water"
     return Titrant(substance=str(substance), nominal=value_of(nominal), medium=medium)
 
@@ -257,52 +287,15 @@ def _flask(solution: Fields) -> Flask:
     fields = Fields(solution.document["flask"], "solution.flask", keys)
     return Flask(
         volume=fields.need_quantity("volume", "mL"),
-        glass_expansion=_glass(fields),
+        glass_expansion=glass_expansion(fields),
         temperature=fields.decimal("temperature", "20.0"),
     )
-
-
-def _glass(fields: Fields) -> float:
-    """Return a cubic expansion of glass per K; 0 where it is absent."""
-    value = fields.decimal("glass_expansion", "9.9e-6") or 0.0
-    if not 0.0 <= value < 1e-3:
-        says = "A cubic expansion of glass lies between 0 and 0.001 per K."
-        fields.refuse("glass_expansion", says, '"9.9e-6"')
-    return value
 
 
 def _reference(top: Fields) -> Reference | None:
     if not top.has("reference"):
         return None
-    keys = ("substance", "concentration", "certificate", "components")
-    fields = Fields(top.document["reference"], "reference", keys)
-    concentration = fields.need_quantity("concentration", "mol/L")
-    return Reference(
-        substance=fields.text("substance", '"NaOH"', required=False),
-        concentration=concentration,
-        certificate=fields.text("certificate", '"TL-2026-0001"', required=False),
-        components=_components(fields),
-    )
-
-
-def _components(fields: Fields) -> tuple[Component, ...]:
-    rows, example = (
-        fields.document.get("components") or (),
-        '[{"id": "B-3", "relative": "-0.0006"}]',
-    )
-    if not isinstance(rows, list | tuple):
-        fields.refuse("components", "This must be a list of components.", example)
-    return tuple(_component(row, f"{fields.at('components')}[{i}]") for i, row in enumerate(rows))
-
-
-def _component(row: Any, path: str) -> Component:
-    fields = Fields(row, path, ("id", "relative"))
-    relative = fields.need("relative", '"-0.0006"')
-    if isinstance(relative, int | float) and not isinstance(relative, bool):
-        # computed by an earlier evaluation, so it may travel as a number
-        return Component(id=str(fields.text("id", '"B-3"')), relative=float(relative))
-    value = fields.decimal("relative", "-0.0006")
-    return Component(id=str(fields.text("id", '"B-3"')), relative=value or 0.0)
+    return reference_of(Fields(top.document["reference"], "reference", REFERENCE_KEYS))
 
 
 def _balance(top: Fields) -> Balance | None:
@@ -346,7 +339,7 @@ def _burette(top: Fields) -> Burette:
         capacity=None if capacity is None else value_of(capacity),
         delivery=fields.bound("delivery", "mL"),
         error_table=fields.error_table("error_table", "reading"),
-        glass_expansion=_glass(fields),
+        glass_expansion=glass_expansion(fields),
     )
 
 
@@ -357,17 +350,18 @@ def _pipette(top: Fields) -> Pipette | None:
     fields = Fields(top.document["pipette"], "pipette", keys)
     return Pipette(
         delivery=fields.need_quantity("delivery", "mL"),
-        glass_expansion=_glass(fields),
+        glass_expansion=glass_expansion(fields),
         temperature=fields.decimal("temperature", "20.0"),
     )
 
 
-def _blank(top: Fields) -> Blank | None:
+def _blank(top: Fields, route: str) -> Blank | None:
     if not top.has("blank"):
         return None
     document = top.document["blank"]
     kinds = Fields(document, "blank", tuple(document) if isinstance(document, Mapping) else ())
-    kind = kinds.choice("kind", ("reagent", "indicator"))
+    known = ("reagent", "indicator", *(("zero",) if route == "back" else ()))
+    kind = kinds.choice("kind", known)
     volume = {key: value for key, value in document.items() if key != "kind"}
     quantity = Fields({"blank": volume}, "", ("blank",)).quantity("blank", "mL")
     return None if quantity is None else Blank(volume=quantity, kind=kind)
@@ -405,13 +399,26 @@ def _check_route(top: Fields, record: BenchRecord) -> None:
             "reference": '{"substance": "NaOH", "concentration": {"value": "0.1", ...}}',
             "pipette": '{"delivery": {"value": "25.00", "unit": "mL"}}',
         },
+        "back": {
+            "reference": '{"substance": "HCl", "concentration": {"value": "0.1", ...}}',
+            "pipette": '{"delivery": {"value": "25.00", "unit": "mL"}}',
+        },
+        "mass-titre": {
+            "standard": '{"substance": "H2O", "mass_fraction": {"value": "0.01002"}}',
+        },
     }[record.route]
     for key, example in needed.items():
         if not top.has(key):
             top.refuse(key, f'The route "{record.route}" needs this.', example)
     if record.weighs and record.standard is None:
-        says = "A standard solution made up by weighing needs its standard."
+        says = (
+            "The excess is added to a weighed standard: state it."
+            if record.route == "back"
+            else "A standard solution made up by weighing needs its standard."
+        )
         top.refuse("standard", says, '{"substance": "KIO3", "mass_fraction": {"value": "0.9995"}}')
+    if record.back is not None:
+        check_back(top, record.back, record.blank.kind if record.blank else None)
     if record.buoyancy and record.air is None:
         says = "With buoyancy the air's temperature, pressure and humidity are needed."
         top.refuse("air", says, '{"temperature": {"value": "20.0", "unit": "Cel"}, ...}')
@@ -438,10 +445,12 @@ def _check_liquids(top: Fields, record: BenchRecord) -> None:
 def _temperatures(record: BenchRecord) -> list[tuple[str, float]]:
     """Return every temperature of a liquid with its path."""
     flask = record.solution.flask if record.solution else None
+    dose = record.back.dose if record.back else None
     found = [
         ("temperature.value", record.temperature.value if record.temperature else None),
         ("pipette.temperature", record.pipette.temperature if record.pipette else None),
         ("solution.flask.temperature", flask.temperature if flask else None),
+        ("back.added.temperature", dose.temperature if dose else None),
     ]
     found += [
         (f"replicates[{i}].temperature", one.temperature) for i, one in enumerate(record.replicates)

@@ -32,7 +32,8 @@ class Constants:
     """What an evaluation took from tables or the record's own statements.
 
     ``ratio`` is amount of titrant per amount of standard, as text; ``molar_mass`` in g/mol and
-    ``density`` in g/cm³ are there where a mass enters.
+    ``density`` in g/cm³ are there where a mass enters. ``back_ratio`` is the amount of the added
+    excess per amount of reference in a back titration.
     """
 
     ratio: str
@@ -40,11 +41,18 @@ class Constants:
     atomic_weights: str
     molar_mass: Constant | None
     density: Constant | None
+    back_ratio: str | None = None
+    back_ratio_source: str | None = None
 
     @property
     def ratio_value(self) -> float:
         """The ratio as a number."""
         return float(Fraction(self.ratio))
+
+    @property
+    def back_ratio_value(self) -> float:
+        """The ratio of excess to reference as a number, 1 where none enters."""
+        return float(Fraction(self.back_ratio or "1"))
 
 
 def resolve_constants(record: BenchRecord) -> Constants:
@@ -55,18 +63,25 @@ def resolve_constants(record: BenchRecord) -> Constants:
     """
     ratio, source = _ratio(record)
     weighed = record.standard if record.weighs else None
+    by_amount = weighed if record.route != "mass-titre" else None
+    back_ratio, back_source = _back_ratio(record)
     return Constants(
         ratio=str(ratio),
         ratio_source=source,
         atomic_weights=SET_NAME,
-        molar_mass=_molar_mass(weighed) if weighed else None,
+        molar_mass=_molar_mass(by_amount) if by_amount else None,
         density=_density(weighed) if weighed and record.buoyancy else None,
+        back_ratio=None if back_ratio is None else str(back_ratio),
+        back_ratio_source=back_source,
     )
 
 
 def to_document(constants: Constants) -> dict[str, Any]:
     """Return constants as a JSON-able document, for the snapshot."""
-    return asdict(constants)
+    document = asdict(constants)
+    later = ("back_ratio", "back_ratio_source")
+    # what other routes do not have stays out, so that their snapshots keep their text
+    return {key: value for key, value in document.items() if key not in later or value is not None}
 
 
 def read_constants(document: Mapping[str, Any]) -> Constants:
@@ -94,10 +109,11 @@ def of_quantity(quantity: Quantity, source: str) -> Constant:
 
 def _ratio(record: BenchRecord) -> tuple[Fraction, str]:
     """Return the stated ratio, else the reaction table's."""
+    if record.route == "mass-titre":
+        return Fraction(1), "none enters a mass titre"
     if record.ratio is not None:
         return record.ratio, "stated in the record"
-    held = record.reference if record.route == "against-titrant" else record.standard
-    against = held.substance if held else None
+    against = _held_against(record)
     known = reaction_ratio(record.titrant.substance, against) if against else None
     if known is None:
         says = (
@@ -105,6 +121,33 @@ def _ratio(record: BenchRecord) -> tuple[Fraction, str]:
             "in the table; state the amount of titrant per amount of standard."
         )
         raise RecordProblem("ratio", says, '"2/5"')
+    return known, "table of reactions"
+
+
+def _held_against(record: BenchRecord) -> str | None:
+    """Return the substance with which the titrant reacts: standard, reference or added excess."""
+    if record.back is not None and record.back.excess_to == "unknown":
+        return record.back.substance
+    held = record.reference if record.route == "against-titrant" else record.standard
+    return held.substance if held else None
+
+
+def _back_ratio(record: BenchRecord) -> tuple[Fraction | None, str | None]:
+    """Return the amount of the excess per amount of reference: stated, else the table's."""
+    if record.back is None:
+        return None, None
+    if record.back.ratio is not None:
+        return record.back.ratio, "stated in the record"
+    to_standard = record.back.excess_to == "standard"
+    added = record.titrant.substance if to_standard else record.back.substance
+    by = record.reference.substance if record.reference else None
+    known = reaction_ratio(added, by) if added and by else None
+    if known is None:
+        says = (
+            f"No reaction of {added or 'an unnamed excess'} with {by or 'an unnamed reference'} is "
+            "in the table; state the amount of the excess per amount of reference."
+        )
+        raise RecordProblem("back.ratio", says, '"1"')
     return known, "table of reactions"
 
 

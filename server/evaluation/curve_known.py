@@ -87,6 +87,8 @@ def system_of(record: BenchRecord) -> str:
     stated = record.end_point.system if record.end_point else None
     if stated is not None:
         return stated
+    if record.route in {"back", "mass-titre"}:
+        return "none"  # what is left of an excess follows no one acid's or base's curve
     standard = record.standard.substance if record.standard else None
     return system_between(record.titrant.substance, standard, medium=record.titrant.medium)
 

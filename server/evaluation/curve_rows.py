@@ -63,7 +63,7 @@ def _value(
         return None
     taken = replace(curve, taken=answer["method"], volume_mL=volume)
     portion = model.portion(at_volume(one, taken))
-    if (record.route == "weighed" and portion.mass_g is None) or model.volume(portion) <= 0:
+    if (record.weighs_each and portion.mass_g is None) or model.volume(portion) <= 0:
         return None
     value = model.concentration(portion)
     return value if isfinite(value) else None

@@ -18,6 +18,7 @@ from server.evaluation.findings.of_curves import curve_findings
 from server.evaluation.findings.of_measurement import measurement_findings
 from server.evaluation.findings.of_papers import paper_findings
 from server.evaluation.findings.of_replicates import replicate_findings
+from server.evaluation.findings.of_routes import route_findings
 from server.evaluation.findings.of_simulation import simulation_finding
 from server.evaluation.findings.setting import Setting
 from server.evaluation.methods.standardization_v1 import Evaluation
@@ -199,6 +200,7 @@ def _findings(setting: Setting, simulated: Simulated | None) -> list[Finding]:
         *measurement_findings(setting),
         *paper_findings(setting),
         *curve_findings(setting),
+        *route_findings(setting),
     ]
     if simulated is not None:
         found.append(simulation_finding(simulated, setting))

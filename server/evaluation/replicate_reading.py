@@ -12,7 +12,7 @@ __all__ = ["Curve", "Replicate", "read_replicates"]
 
 _KEYS = frozenset(
     "mass tare_load container_and_standard container_less_standard burette delivered corrected "
-    "curve method temperature excluded label".split()
+    "curve method temperature excluded label minutes".split()
 )
 _READ_EXAMPLE = '{"burette": [["0.00", "18.64"]]}'
 
@@ -20,6 +20,8 @@ _READ_EXAMPLE = '{"burette": [["0.00", "18.64"]]}'
 @dataclass(frozen=True, slots=True)
 class Replicate:
     """One replicate as read; ``texts`` keeps the readings as typed, by their path within it.
+
+    ``minutes`` is how long it took, where a drift is taken off.
 
     ``end_point`` is there once a curve was read: ``segments`` then hold its volume.
     """
@@ -34,6 +36,7 @@ class Replicate:
     curve: Curve | None
     texts: Mapping[str, str]
     end_point: CurveEndPoint | None = None
+    minutes: float | None = None
 
     @property
     def weighed(self) -> bool:
@@ -58,9 +61,11 @@ class Replicate:
 
 
 def read_replicates(
-    top: Fields, *, weighed: bool, table: Table, capacity: float | None
+    top: Fields, *, weighed: bool, table: Table, capacity: float | None, timed: bool = False
 ) -> tuple[Replicate, ...]:
     """Return a record's replicates; ``table`` is the burette's error table.
+
+    ``timed``: a drift is taken off, so that each replicate says how many minutes it took.
 
     Raises:
         RecordProblem: a reading that cannot be, or a required one that is missing.
@@ -70,6 +75,12 @@ def read_replicates(
         top.refuse("replicates", "At least one replicate is needed.", f"[{_READ_EXAMPLE}]")
     replicates = tuple(_replicate(row, i, table, capacity) for i, row in enumerate(rows))
     for i, one in enumerate(replicates):
+        if one.minutes is not None and not timed:
+            says = "Minutes count only where the record states a drift."
+            raise RecordProblem(f"replicates[{i}].minutes", says)
+        if timed and one.minutes is None and one.excluded is None:
+            says = "The drift needs the minutes that this titration took."
+            raise RecordProblem(f"replicates[{i}].minutes", says, '"2.5"')
         if one.excluded is None:
             _check_complete(one, f"replicates[{i}]", weighed=weighed)
     return replicates
@@ -93,6 +104,7 @@ def _replicate(row: Any, index: int, table: Table, capacity: float | None) -> Re
         delivered=_delivered(fields, table),
         curve=read_curve(fields, counts=not fields.has("excluded")),
         texts=_texts(fields),
+        minutes=_minutes(fields),
     )
 
 
@@ -104,6 +116,13 @@ def _check_complete(one: Replicate, path: str, *, weighed: bool) -> None:
     if not one.measured:
         says = "The burette readings are missing."
         raise RecordProblem(f"{path}.burette", says, '[["0.00", "18.64"]]')
+
+
+def _minutes(fields: Fields) -> float | None:
+    value = fields.decimal("minutes", "2.5")
+    if value is not None and value < 0:
+        fields.refuse("minutes", "A time cannot be negative.", '"2.5"')
+    return value
 
 
 def _mass(fields: Fields, key: str, example: str) -> float | None:

@@ -12,8 +12,6 @@ from server.metrology.monte_carlo import Simulated
 from server.metrology.rounding import report
 from server.statistics.spread import Summary
 
-UNIT = "mol/L"
-
 
 def components_of(evaluation: Evaluation) -> dict[str, float]:
     """Return the result's relative uncertainty by root, signed; equal roots are summed."""
@@ -26,11 +24,12 @@ def components_of(evaluation: Evaluation) -> dict[str, float]:
 
 
 def concentration(evaluation: Evaluation, simulated: Simulated | None = None) -> dict[str, Any]:
-    """Return value, u, U, k, dof and the words to print, mol/L at 20 °C.
+    """Return value, u, U, k, dof and the words to print, at 20 °C in mol/L, a mass titre in mg/mL.
 
     Where Monte Carlo does not validate first order, its interval is the one to print (JCGM 101, 8).
     """
-    reported = report(evaluation.value, evaluation.U, UNIT, evaluation.k)
+    unit = evaluation.model.record.unit
+    reported = report(evaluation.value, evaluation.U, unit, evaluation.k)
     if simulated is not None and not simulated.first_order_validated:
         reported = _interval(evaluation, simulated)
     return {
@@ -40,7 +39,7 @@ def concentration(evaluation: Evaluation, simulated: Simulated | None = None) ->
         "k": evaluation.k,
         "dof": evaluation.dof,
         "coverage": COVERAGE,
-        "unit": UNIT,
+        "unit": unit,
         "temperature_C": 20,
         "reported": reported,
     }
@@ -48,10 +47,11 @@ def concentration(evaluation: Evaluation, simulated: Simulated | None = None) ->
 
 def _interval(evaluation: Evaluation, simulated: Simulated) -> str:
     """Return the Monte Carlo interval with the decimals that U would be printed with."""
-    printed = report(evaluation.value, evaluation.U, UNIT, evaluation.k).split()[0]
+    unit = evaluation.model.record.unit
+    printed = report(evaluation.value, evaluation.U, unit, evaluation.k).split()[0]
     decimals = len(printed.partition(".")[2])
     low, high = (f"{one:.{decimals}f}" for one in (simulated.low, simulated.high))
-    return f"{printed} {UNIT}, 95 % interval {low} to {high} {UNIT} (Monte Carlo)"
+    return f"{printed} {unit}, 95 % interval {low} to {high} {unit} (Monte Carlo)"
 
 
 def replicate_rows(evaluation: Evaluation) -> list[dict[str, Any]]:
@@ -64,6 +64,7 @@ def replicate_rows(evaluation: Evaluation) -> list[dict[str, Any]]:
             "amount_mmol": one.amount_mmol,
             "volume_mL": one.volume_mL,
             "excluded": one.excluded,
+            **({} if one.amount_mg is None else {"amount_mg": one.amount_mg}),
         }
         for one in evaluation.replicates
     ]
@@ -136,6 +137,11 @@ def constants_row(constants: Constants, models: dict[str, str]) -> dict[str, Any
         "ratio": {"value": constants.ratio, "source": constants.ratio_source},
         "models": models,
     }
+    if constants.back_ratio is not None:
+        found["back_ratio"] = {
+            "value": constants.back_ratio,
+            "source": constants.back_ratio_source,
+        }
     if constants.molar_mass is not None:
         found["atomic_weights"] = constants.atomic_weights
     for key, unit in (("molar_mass", "g/mol"), ("density", "g/cm3")):

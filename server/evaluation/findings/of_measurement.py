@@ -29,8 +29,9 @@ def _nominal(setting: Setting) -> Finding:
     off = 100.0 * (setting.evaluation.value / setting.record.titrant.nominal - 1.0)
     limit = setting.limits.nominal_percent
     holds = abs(off) <= limit
+    what = "titre" if setting.record.route == "mass-titre" else "concentration"
     says = (
-        f"The concentration is {abs(off):.2f} % {'above' if off >= 0 else 'below'} nominal"
+        f"The {what} is {abs(off):.2f} % {'above' if off >= 0 else 'below'} nominal"
         f"{'' if holds else f', farther than the {limit:g} % allowed'}."
     )
     return Finding(
@@ -208,7 +209,10 @@ def _temperature(setting: Setting) -> Finding:
         says = "No temperature was written; the volumes are taken as measured at exactly 20 °C."
     else:
         says = f"The volumes were brought to 20 °C from {min(read):g} to {max(read):g} °C."
-    if moved and record.liquid_expansion is None and nominal > _DILUTE_MOL_L:
+    if moved and record.liquid_expansion is None and record.route == "mass-titre":
+        says += " Water's expansion was used; titrants in other solvents expand more. State yours."
+        verdict = "look"
+    elif moved and record.liquid_expansion is None and nominal > _DILUTE_MOL_L:
         says += (
             f" Water's expansion was used for {nominal:g} mol/L; it serves dilute titrants, to "
             "about 0.1 mol/L. State the expansion of your solution."
@@ -248,12 +252,16 @@ def _blank(setting: Setting) -> Iterator[Finding]:
         says = _held_by_fit(setting)
     elif stated:
         verdict, says = "holds", f"You took off the {stated}."
+        if kind == "zero":
+            says = "The blank sets the zero: what the excess alone takes."
         if record.blank is not None:
             says += (
                 " It counts without an uncertainty."
                 if record.blank.volume.u == 0
                 else f" Its uncertainty is {record.blank.volume.u:.2g} mL."
             )
+    elif record.route == "mass-titre":
+        return  # the cell is titrated dry before; what gets in later is the drift's finding
     elif needs := _blank_needed(setting):
         verdict, says = "look", needs
     elif visual:

@@ -169,7 +169,7 @@ def _last_certificate(setting: Setting, last: LastCertificate) -> Finding:
         basis="|Δc| ≤ 2·u(Δ), u(Δ) from what the two values do not share",
         figure=difference,
         limit=limit,
-        unit="mol/L",
+        unit=setting.record.unit,
         figure_text=f"{relative:+.3f} %",
         limit_text=f"±{100.0 * limit / last.value:.3f} %",
     )

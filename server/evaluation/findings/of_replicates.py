@@ -120,7 +120,8 @@ def _excluded(setting: Setting) -> Iterator[Finding]:
         says += " No value came of it."
     else:
         shift = 100.0 * (setting.with_all.value / setting.evaluation.value - 1.0)
-        says += f" With it the mean would be {setting.with_all.value:.6g} mol/L, {shift:+.3f} %."
+        says += f" With it the mean would be {setting.with_all.value:.6g} "
+        says += f"{setting.record.unit}, {shift:+.3f} %."
     yield Finding(
         name="excluded",
         verdict="look",

@@ -7,14 +7,18 @@ from server.metrology.monte_carlo import Simulated
 
 def simulation_finding(simulated: Simulated, setting: Setting) -> Finding:
     """Return whether Monte Carlo confirms the first-order interval (JCGM 101, clause 8)."""
+    unit = setting.record.unit
     half = setting.evaluation.t_factor * setting.evaluation.u
     value = setting.evaluation.value
     distance = max(abs(value - half - simulated.low), abs(value + half - simulated.high))
     holds = simulated.first_order_validated
-    says = f"{simulated.trials} trials give {simulated.low:.6g} to {simulated.high:.6g} mol/L; " + (
-        "the first-order interval agrees."
-        if holds
-        else "the first-order interval does not agree, so this one is printed."
+    says = (
+        f"{simulated.trials} trials give {simulated.low:.6g} to {simulated.high:.6g} {unit}; "
+        + (
+            "the first-order interval agrees."
+            if holds
+            else "the first-order interval does not agree, so this one is printed."
+        )
     )
     if simulated.u is None:
         says += " An input has two degrees of freedom or fewer, so Monte Carlo has no u."
@@ -25,7 +29,7 @@ def simulation_finding(simulated: Simulated, setting: Setting) -> Finding:
         basis=f"JCGM 101, clause 8, {simulated.digits} digits of u",
         figure=distance,
         limit=simulated.delta,
-        unit="mol/L",
-        figure_text=f"{distance:.2g} mol/L",
-        limit_text=f"{simulated.delta:.2g} mol/L",
+        unit=unit,
+        figure_text=f"{distance:.2g} {unit}",
+        limit_text=f"{simulated.delta:.2g} {unit}",
     )

@@ -36,7 +36,10 @@ MODELS = {
 
 @dataclass(frozen=True, slots=True)
 class ReplicateValue:
-    """One replicate's value in mol/L with what it comes from; None where it was not finished."""
+    """One replicate's value in mol/L with what it comes from; None where it was not finished.
+
+    A mass titre is in mg/mL and has ``amount_mg`` in place of ``amount_mmol``.
+    """
 
     label: str
     value: float | None
@@ -44,6 +47,7 @@ class ReplicateValue:
     amount_mmol: float | None
     volume_mL: float | None
     excluded: str | None
+    amount_mg: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,7 +69,7 @@ class RepeatabilityUsed:
 
 @dataclass(frozen=True, slots=True)
 class Evaluation:
-    """Result of a standardization in mol/L, with everything that findings and budget need."""
+    """Result in mol/L (a mass titre: mg/mL), with everything that findings and budget need."""
 
     value: float
     u: float
@@ -152,7 +156,8 @@ def with_all(record: BenchRecord) -> BenchRecord | None:
     def finished(i: int) -> bool:
         one = record.replicates[i]
         read = bool(one.segments) or one.delivered is not None
-        return read and (record.route != "weighed" or one.weighed)
+        timed = record.drift is None or one.minutes is not None
+        return read and timed and (not record.weighs_each or one.weighed)
 
     kept = [i for i in range(len(record.replicates)) if finished(i)]
     if not any(record.replicates[i].excluded is not None for i in kept):
@@ -172,6 +177,8 @@ def _estimates(terms: Sequence[Term]) -> dict[str, float]:
             "excess",
             "end_point",
             "end_point_own",
+            "drift",
+            "timing",
         ),
         0.0,
     )
@@ -186,21 +193,29 @@ def _replicate(record: BenchRecord, model: Model, index: int) -> ReplicateValue:
         says = "No end point was found on this curve: read it before the record is evaluated."
         raise RecordProblem(f"replicates[{index}].curve", says, '"delivered": "18.64"')
     portion = portion_of(record, one)
-    unweighed = record.route == "weighed" and portion.mass_g is None
-    if portion.read_mL is None or unweighed:
+    unweighed = record.weighs_each and portion.mass_g is None
+    untimed = record.drift is not None and one.minutes is None
+    if portion.read_mL is None or unweighed or untimed:
         return ReplicateValue(one.label, None, portion.mass_g, None, None, one.excluded)
     volume = model.volume(portion)
     if volume <= 0:
         says = f"After blank and excess {volume:.3g} mL are left: the volume must be above zero."
         key = "burette" if one.curve is None else "curve"
         raise RecordProblem(f"replicates[{index}].{key}", says, '[["0.00", "18.64"]]')
+    value, by_mass = model.concentration(portion), record.route == "mass-titre"
+    if value <= 0:
+        says = (
+            f"The excess would be used up: {volume:.4g} mL came back, as much as was added or more."
+        )
+        raise RecordProblem(f"replicates[{index}].burette", says, '[["0.00", "8.64"]]')
     return ReplicateValue(
         label=one.label,
-        value=model.concentration(portion),
+        value=value,
         mass_g=portion.mass_g,
-        amount_mmol=model.amount(portion),
+        amount_mmol=None if by_mass else model.amount(portion),
         volume_mL=volume,
         excluded=one.excluded,
+        amount_mg=model.mass_mg(portion) if by_mass else None,
     )
 
 

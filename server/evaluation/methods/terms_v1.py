@@ -4,11 +4,12 @@ import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 
-from server.evaluation.bench_record import BenchRecord, Reference
+from server.evaluation.bench_record import BenchRecord
 from server.evaluation.circumstances import BetweenDays
 from server.evaluation.constants import Constant, Constants
 from server.evaluation.methods.model_v1 import component_name
 from server.evaluation.record_fields import RecordProblem, value_of
+from server.evaluation.reference_fields import Reference
 from server.metrology.propagation import Input
 from server.metrology.quantity import Quantity
 
@@ -27,12 +28,13 @@ class Term:
 def terms_of(record: BenchRecord, constants: Constants) -> tuple[Term, ...]:
     """Return the inputs that all replicates share, in the order of the budget."""
     found = [*_standard_terms(record, constants)]
-    if record.route == "weighed":
+    if record.weighs_each:
         found += _balance_terms(record)
     found += _air_terms(record, constants)
     found += _solution_terms(record)
-    if record.route == "against-titrant" and record.reference is not None:
+    if record.route in {"against-titrant", "back"} and record.reference is not None:
         found += _reference_terms(record.reference)
+    found += _added_terms(record)
     found += _volume_terms(record)
     return tuple(found)
 
@@ -133,11 +135,15 @@ def _term(source: str, quantity: Quantity | None, name: str, unit: str | None) -
 
 
 def _standard_terms(record: BenchRecord, constants: Constants) -> Iterator[Term]:
-    if not record.weighs or record.standard is None or constants.molar_mass is None:
+    if not record.weighs or record.standard is None:
         return
     standard = record.standard
     words = f"mass fraction of {standard.substance}"
+    if record.route == "mass-titre":
+        words = f"mass fraction of {record.analyte} in {standard.substance}"
     yield from _term(words, standard.mass_fraction, "mass_fraction", None)
+    if constants.molar_mass is None:
+        return
     source = f"molar mass of {standard.substance} ({constants.molar_mass.source})"
     yield Term(source, _of_constant("molar_mass", constants.molar_mass, "g/mol"))
 
@@ -190,22 +196,32 @@ def _solution_terms(record: BenchRecord) -> Iterator[Term]:
         yield from _term("volumetric flask", solution.flask.volume, "flask", "mL")
 
 
-def _reference_terms(reference: Reference) -> Iterator[Term]:
+def _added_terms(record: BenchRecord) -> Iterator[Term]:
+    """Yield the known excess of a back titration: its concentration by roots, and its volume."""
+    dose = record.back.dose if record.back else None
+    if dose is not None:
+        yield from _reference_terms(dose.reference, "added")
+        yield from _term("excess added", dose.delivery, "added_delivery", "mL")
+
+
+def _reference_terms(reference: Reference, name: str = "reference") -> Iterator[Term]:
     """Yield the reference's roots one by one, and what is left of its u once they are out.
 
     Raises:
         RecordProblem: the components are larger than the uncertainty they are part of.
     """
-    through = reference.certificate or "reference titrant"
+    unnamed = "reference titrant" if name == "reference" else "titrant added in excess"
+    through = reference.certificate or unnamed
     value = value_of(reference.concentration)
-    whole = _of_quantity("reference", reference.concentration, "mol/L")
+    whole = _of_quantity(name, reference.concentration, "mol/L")
     known = value * math.sqrt(sum(one**2 for one in _sums_by_root(reference).values()))
     if known > whole.u * _PRINTED_EXCESS:
         says = (
             f"The components together, {known:.3g} mol/L, are larger than the standard "
             f"uncertainty that the concentration states, {whole.u:.3g} mol/L."
         )
-        raise RecordProblem("reference.components", says, '[{"id": "B-3", "relative": "-0.0006"}]')
+        path = "reference.components" if name == "reference" else "back.added.components"
+        raise RecordProblem(path, says, '[{"id": "B-3", "relative": "-0.0006"}]')
     left = math.sqrt(max(0.0, whole.u**2 - known**2))
     root = whole.id or reference.certificate
     words = f"{through}, what its roots leave" if reference.components else through
@@ -214,7 +230,7 @@ def _reference_terms(reference: Reference) -> Iterator[Term]:
     yield Term(
         words,
         Input(
-            name="reference",
+            name=name,
             value=value,
             u=left,
             dof=whole.dof,
@@ -227,7 +243,7 @@ def _reference_terms(reference: Reference) -> Iterator[Term]:
     for i, one in enumerate(reference.components):
         u = abs(one.relative)
         words = f"{one.id}, through {through}"
-        yield Term(words, Input(name=component_name(i), value=0.0, u=u, dof=None, id=one.id))
+        yield Term(words, Input(name=component_name(i, name), value=0.0, u=u, dof=None, id=one.id))
 
 
 def _sums_by_root(reference: Reference) -> dict[str, float]:
@@ -238,13 +254,18 @@ def _sums_by_root(reference: Reference) -> dict[str, float]:
 
 
 def _volume_terms(record: BenchRecord) -> Iterator[Term]:
-    if record.route != "weighed" and record.pipette is not None:
+    if record.route not in {"weighed", "mass-titre"} and record.pipette is not None:
         yield from _term("pipette", record.pipette.delivery, "pipette", "mL")
     yield from _term("burette", record.burette.delivery, "delivery", "mL")
     yield from _term("temperature of the liquids", record.temperature, "temperature", "Cel")
     expansion = record.liquid_expansion
     yield from _term("expansion of the liquid", expansion, "liquid_expansion", "1/K")
-    if record.blank is not None:
+    if record.zero_by_blank and record.blank is not None:
+        yield from _term("blank that sets the zero", record.blank.volume, "zero", "mL")
+    elif record.blank is not None:
         words = f"{record.blank.kind} blank"
         yield from _term(words, record.blank.volume, "blank", "mL")
     yield from _term("excess at the end point", record.excess, "excess", "mL")
+    if record.drift is not None:
+        yield from _term("drift", record.drift.rate, "drift", "ug/min")
+        yield from _term("minutes of the drift", record.drift.timing, "timing", "min")
