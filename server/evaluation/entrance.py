@@ -190,7 +190,10 @@ def _with_all(record: BenchRecord, task: Task) -> Evaluation | None:
     whole = task.calculation.with_all(record)
     if whole is None:
         return None
-    found: Evaluation = task.calculation.evaluate(whole, task.constants, task.circumstances)
+    try:
+        found: Evaluation = task.calculation.evaluate(whole, task.constants, task.circumstances)
+    except RecordProblem:
+        return None  # what was left out has no value, so there is no mean with it
     return found
 
 

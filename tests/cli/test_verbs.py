@@ -17,6 +17,8 @@ from typing import Any
 
 import pytest
 
+from tests.evaluation.test_back_and_mass_titre import RECORDS as RECORDS_BY_ROUTE
+
 ROOT = Path(__file__).resolve().parents[2]
 RECORDS = ROOT / "tests" / "reference" / "records"
 
@@ -52,6 +54,36 @@ def test_evaluate_prints_the_result_of_a_published_example() -> None:
     assert round(result["concentration"]["u"], 5) == 0.00010
     assert result["monte_carlo"]["trials"] >= 20000
     assert result["monte_carlo"]["seed"] == 7
+
+
+@pytest.mark.parametrize(
+    ("name", "reported"),
+    [("zero by blank", " mol/L (k = 2.0)"), ("mass titre", " mg/mL (k = 2.0)")],
+)
+def test_evaluate_of_back_titrations_and_mass_titres_prints_the_result(
+    tmp_path: Path, name: str, reported: str
+) -> None:
+    path = tmp_path / "record.json"
+    path.write_text(json.dumps(RECORDS_BY_ROUTE[name]()))
+
+    done = run("evaluate", path)
+
+    assert done.returncode == 0, done.stderr
+    found = json.loads(done.stdout)["concentration"]
+    assert found["value"] == pytest.approx(5.0 if name == "mass titre" else 0.1, rel=1e-9)
+    assert found["reported"].endswith(reported)
+
+
+def test_evaluate_of_a_mass_titre_without_minutes_names_their_place(tmp_path: Path) -> None:
+    record = RECORDS_BY_ROUTE["mass titre"]()
+    del record["replicates"][0]["minutes"]
+    path = tmp_path / "record.json"
+    path.write_text(json.dumps(record))
+
+    done = run("evaluate", path)
+
+    assert done.returncode == 2
+    assert json.loads(done.stderr)["field"] == "replicates[0].minutes"
 
 
 def test_evaluate_of_findings_that_fail_still_ends_well() -> None:

@@ -148,6 +148,15 @@ def test_back_zero_by_blank_burette_error_cancels():
     assert finding(found, "blank")["verdict"] == "holds"
 
 
+def test_back_excluded_replicate_that_used_the_excess_up_stays_visible_without_a_value():
+    record = to_unknown()
+    record["replicates"].append({"burette": [["0.00", "26.00"]], "excluded": "no acid added"})
+    found = evaluate(record)
+    assert found["replicates"][1]["value"] is None
+    assert found["concentration"]["value"] == pytest.approx(0.1, rel=1e-12)
+    assert "No value came of it" in finding(found, "excluded")["says"]
+
+
 def test_back_roots_of_the_reference_stay_in_the_components():
     found = evaluate(to_standard())
     components = {one["id"]: one["relative"] for one in found["components"]}

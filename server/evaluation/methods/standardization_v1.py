@@ -203,6 +203,9 @@ def _replicate(record: BenchRecord, model: Model, index: int) -> ReplicateValue:
         key = "burette" if one.curve is None else "curve"
         raise RecordProblem(f"replicates[{index}].{key}", says, '[["0.00", "18.64"]]')
     value, by_mass = model.concentration(portion), record.route == "mass-titre"
+    if value <= 0 and one.excluded is not None:
+        # more came back than was added: that is why it was left out
+        return ReplicateValue(one.label, None, portion.mass_g, None, volume, one.excluded)
     if value <= 0:
         says = (
             f"The excess would be used up: {volume:.4g} mL came back, as much as was added or more."
