@@ -100,7 +100,7 @@ def evaluate_task(task: Task) -> dict[str, Any]:
         RecordProblem: the record cannot be read or evaluated.
     """
     record = with_end_points(read_record(task.document), task.curves)
-    evaluation = task.calculation.evaluate(record, task.constants, task.circumstances)
+    evaluation = _evaluated(record, task)
     simulated = _simulate(evaluation, task) if task.trials else None
     setting = Setting(
         record=record,
@@ -185,16 +185,25 @@ def _simulate(evaluation: Evaluation, task: Task) -> Simulated:
     )
 
 
+def _evaluated(record: BenchRecord, task: Task) -> Evaluation:
+    """Return the evaluation of a record; figures that no number holds are refused in words."""
+    try:
+        found: Evaluation = task.calculation.evaluate(record, task.constants, task.circumstances)
+    except (OverflowError, ZeroDivisionError) as problem:
+        says = "A figure is so large or so small that nothing can be reckoned with it."
+        raise RecordProblem("(record)", says) from problem
+    return found
+
+
 def _with_all(record: BenchRecord, task: Task) -> Evaluation | None:
     """Return the evaluation with the excluded replicates counted, where there are any."""
     whole = task.calculation.with_all(record)
     if whole is None:
         return None
     try:
-        found: Evaluation = task.calculation.evaluate(whole, task.constants, task.circumstances)
+        return _evaluated(whole, task)
     except RecordProblem:
         return None  # what was left out has no value, so there is no mean with it
-    return found
 
 
 def _findings(setting: Setting, simulated: Simulated | None) -> list[Finding]:

@@ -319,6 +319,13 @@ def test_odd_record_of_new_routes_is_refused_by_its_path(name, where, what, path
     assert refused.value.says
 
 
+def test_figures_that_no_number_holds_are_refused_in_words():
+    record = to_standard()
+    record["standard"]["molar_mass"]["value"] = "1e-300"
+    with pytest.raises(RecordProblem, match="so large or so small"):
+        evaluate(record)
+
+
 def test_weighed_record_keeps_its_snapshot_free_of_the_new_routes():
     record = to_standard()
     for key in ("back", "reference", "pipette"):
