@@ -2,6 +2,7 @@
 
 import { MOST_KEPT, chosenFile, chosenFrom, chosenText, forPreview, tooLarge } from "../lib/curve.js";
 import { keyOf } from "../lib/overlay.js";
+import { postJson } from "./asking.js";
 
 const PATIENCE_MS = 30000;
 
@@ -103,24 +104,8 @@ export class CurveDesk {
   }
 
   async #ask(body) {
-    try {
-      const answer = await this.fetcher(this.address, {
-        method: "POST",
-        credentials: "same-origin",
-        headers: {
-          Accept: "application/json",
-          "Content-Type": "application/json",
-          "X-Titrant-Ledger": "bench",
-          ...(this.person ? { "X-Titrant-Person": encodeURIComponent(this.person) } : {}),
-        },
-        body: JSON.stringify(body),
-        signal: AbortSignal.timeout(PATIENCE_MS),
-      });
-      const said = await answer.json().catch(() => ({}));
-      return answer.ok && said.mapping ? { preview: said } : { status: answer.status, problem: said };
-    } catch {
-      return { status: 0, problem: {} };
-    }
+    const { ok, status, said } = await postJson(this, this.address, body, PATIENCE_MS);
+    return ok && said.mapping ? { preview: said } : { status, problem: said };
   }
 
   #become(row, told, words = "") {

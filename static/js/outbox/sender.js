@@ -1,6 +1,7 @@
 // Sends what waits, in order, under the uuids it was written with, until the server has answered.
 
 import { forTheDoor } from "../lib/entry.js";
+import { postJson } from "./asking.js";
 
 const PATIENCE_MS = 15000;
 const REFUSED = new Set([400, 404, 409, 412, 413, 415, 422]);
@@ -58,24 +59,9 @@ export class Sender {
   }
 
   async #post(entries) {
-    try {
-      const answer = await this.fetcher(this.door, {
-        method: "POST",
-        credentials: "same-origin",
-        headers: {
-          Accept: "application/json",
-          "Content-Type": "application/json",
-          "X-Titrant-Ledger": "bench",
-          ...(this.person ? { "X-Titrant-Person": encodeURIComponent(this.person) } : {}),
-        },
-        body: JSON.stringify({ entries: entries.map(forTheDoor), sent_at: new Date().toISOString() }),
-        signal: AbortSignal.timeout(PATIENCE_MS),
-      });
-      const said = await answer.json().catch(() => ({}));
-      return answer.ok && said.written ? said : { status: answer.status, problem: said };
-    } catch {
-      return { status: 0, problem: {} };
-    }
+    const body = { entries: entries.map(forTheDoor), sent_at: new Date().toISOString() };
+    const { ok, status, said } = await postJson(this, this.door, body, PATIENCE_MS);
+    return ok && said.written ? said : { status, problem: said };
   }
 
   /** The sheet as the server has it now: somebody else was first, and both values are to be seen. */
